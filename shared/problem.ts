@@ -1,0 +1,104 @@
+// What a problem is: the plug-in that says what is evolved, how it is simulated and what is measured.
+// Types only (defineProblem, which checks one, lives in sim/problem.ts).
+//
+// One *simulation* is one individual under one situation. A situation is one condition (everything random)
+// and, where the problem names cases, one of its cases. A *replicate* is all cases under one condition, so
+// a replicate costs max(1, cases) simulations.
+
+import type { Genome, GenomeOf, GenomeSpec } from './genome.js'
+import type { Stream } from './streams.js'
+
+export type Direction = 'maximise' | 'minimise'
+/** How the replicates of an individual become one number. 'worst' is the worst for the objective's direction. */
+export type Reduction = 'mean' | 'median' | 'worst' | { readonly quantile: number }
+/** How the cases of one replicate become one number. */
+export type CaseCombination = 'mean' | 'worst' | 'sum'
+
+export interface Objective {
+  readonly direction: Direction
+  readonly unit: string
+  readonly reduce: Reduction
+  readonly overCases: CaseCombination
+}
+export interface Measure {
+  readonly low: number
+  readonly high: number
+  readonly unit: string
+}
+
+/** How far a problem's results repeat (design: bits is the default and what our own kernels promise). */
+export type Exactness = 'bits' | 'bits-per-processor' | 'tolerance' | 'statistical'
+
+export interface Situation<Condition> {
+  readonly condition: Condition
+  /** Name of the case, or '' where the problem has none. */
+  readonly case: string
+}
+
+export interface Measured {
+  readonly objectives: { readonly [name: string]: number }
+  readonly measures?: { readonly [name: string]: number }
+}
+/** A simulation that could not give numbers, with the reason a person can read (at most 200 characters kept). */
+export interface FailedSimulation {
+  readonly failed: string
+}
+export type SimulationOutcome = Measured | FailedSimulation
+
+/** What a replay shows: node positions over time, the links between nodes and what they are. SI units. */
+export interface Frames {
+  readonly dimensions: 2 | 3
+  readonly secondsPerFrame: number
+  /** Each frame: x0, y0[, z0], x1, ... in metres. */
+  readonly positions: readonly Float64Array[]
+  readonly links: readonly FrameLink[]
+  readonly nodeRadiiM: readonly number[]
+  /** Outline of the ground as points x, y in metres, left to right. */
+  readonly ground: readonly (readonly [number, number])[]
+  /** Fixed or carried things to draw, e.g. the puck: follows a node. */
+  readonly markers: readonly { readonly node: number; readonly label: string; readonly radiusM: number }[]
+  /** Drive of each active link per frame, -1 to 1; links without drive are absent. */
+  readonly drive: readonly { readonly link: number; readonly values: Float64Array }[]
+}
+export interface FrameLink {
+  readonly a: number
+  readonly b: number
+  /** Short word such as 'soft', 'stiff', 'actuator 1'; used for the legend. */
+  readonly kind: string
+}
+
+/** A caution that leaves with every picture, replay and sheet of the machine. */
+export interface Caution {
+  readonly hazard: string
+  readonly because: string
+  readonly consult: string
+}
+
+export interface Problem<S extends GenomeSpec = GenomeSpec, Condition = unknown> {
+  readonly name: string
+  /** Changes whenever results change. */
+  readonly version: string
+  readonly summary: string
+  readonly genome: S
+  readonly objectives: { readonly [name: string]: Objective }
+  readonly measures: { readonly [name: string]: Measure }
+  readonly cases: readonly string[]
+  readonly exactness: Exactness
+  /** Draws everything random about one simulation. The same stream gives the same condition. */
+  readonly drawCondition: (stream: Stream) => Condition
+  /** One outcome for each situation, in order. Gets all simulations of an evaluation at once. */
+  readonly simulate: (genome: GenomeOf<S>, situations: readonly Situation<Condition>[]) => SimulationOutcome[]
+  /** Positive integer: what a simulation of this genome should cost, relative to others. */
+  readonly expectedCost: (genome: GenomeOf<S>) => number
+  /** Makes a freshly varied genome buildable; must be pure and idempotent. */
+  readonly repair: (genome: GenomeOf<S>) => GenomeOf<S>
+  readonly frames?: (genome: GenomeOf<S>, situation: Situation<Condition>) => Frames
+  /** Lines for a person: part by part, with units. */
+  readonly describe?: (genome: GenomeOf<S>) => readonly string[]
+  readonly cautions?: (genome: GenomeOf<S>) => readonly Caution[]
+}
+
+/** A problem whose genome is known only at run time; what coordinator and worker handle. */
+export type AnyProblem = Problem<GenomeSpec, unknown> & {
+  readonly simulate: (genome: Genome, situations: readonly Situation<unknown>[]) => SimulationOutcome[]
+}
