@@ -86,7 +86,10 @@ export interface SnapshotRow {
 
 /** The write side: one writer, fenced. Throws a Refusal when the disk is full, broken, or another has taken over. */
 export interface Journal {
-  /** All or nothing, durable on return. */
+  /**
+   * All or nothing, durable on return. A second arrival of one evaluation replaces the first (a result that a
+   * confirmation overruled); that is the engine's decision and comes with an event.
+   */
   append(rows: Append): void
 }
 /** The read side, for recovery, rederive and reports. */
@@ -103,6 +106,8 @@ export interface RecordReader {
   isConfirmed(island: number, evaluation: number): boolean
   arrivalsOf(worker: string): Iterable<{ readonly island: number; readonly evaluation: number }>
   birth(id: number): BirthRow | undefined
+  /** Sums over everything that arrived. */
+  totals(): { readonly arrivals: number; readonly cpuSeconds: number }
 }
 
 // ----------------------------------------------------------------------------------------- dispatch

@@ -14,6 +14,8 @@ export interface Individual {
   readonly origin: Origin
   /** Commits on the home island when it was proposed. */
   readonly bornAtCommit: number
+  /** Which evaluations its values came from, in the order of `values`. */
+  blocks: readonly Block[]
   /** Rows of all simulations so far (result.ts), block after block. */
   values: Float64Array
   replicates: number
@@ -22,6 +24,14 @@ export interface Individual {
   score: Float64Array
   /** For methods that count age (age-fitness-pareto), in generations; 0 elsewhere. */
   age: number
+}
+
+/** One committed evaluation of an individual. */
+export interface Block {
+  readonly island: number
+  readonly evaluation: number
+  readonly firstReplicate: number
+  readonly replicates: number
 }
 
 export type Origin = 'founder' | 'crossed' | 'mutated' | 'crossed-mutated' | 'copied'
@@ -76,6 +86,8 @@ export interface MethodMachine {
   immigrate(arrivals: readonly Individual[], placement: Placement, stream: Stream): void
   /** Those who may breed now, in a fixed order. */
   members(): readonly Individual[]
+  /** Everybody the machine refers to: members and those committed but not yet members. For snapshots. */
+  held(): readonly Individual[]
   /** Members best first, total order (last tie-break: id). */
   ranked(): readonly Individual[]
   /** Everything needed to go on, structured-cloneable; individuals by id only. */
