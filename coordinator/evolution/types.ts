@@ -90,6 +90,11 @@ export interface MethodMachine {
   held(): readonly Individual[]
   /** Members best first, total order (last tie-break: id). */
   ranked(): readonly Individual[]
+  /**
+   * Everybody the machine still refers to: members and those who wait to become members. The island keeps these
+   * findable for restore().
+   */
+  held(): readonly Individual[]
   /** Everything needed to go on, structured-cloneable; individuals by id only. */
   save(): unknown
 }
