@@ -19,7 +19,8 @@ export const limits = {
   searchFileBytes: 2 ** 20,
   searchFileDepth: 32,
   seedMost: 2 ** 53 - 1,
-  simulationsMost: 1e12,
+  /** Also the most individuals of an island: their numbers are words of a random stream's counter. */
+  simulationsMost: 2 ** 32 - 1,
 
   // Genome
   partsMost: 1_000,
@@ -82,4 +83,4 @@ check(
 )
 check(limits.dispatchBatch <= limits.appendBatch, 'what returns together can be made durable together')
 check(limits.islandsMost < firstControl, 'island numbers stay below those of controls')
-check(limits.simulationsMost <= 2 ** 40, 'the number of an individual fits its id (ids.ts)')
+check(limits.simulationsMost < 2 ** 32, 'every individual has random streams of its own (streams.ts)')
