@@ -32,6 +32,8 @@ export interface Block {
   readonly evaluation: number
   readonly firstReplicate: number
   readonly replicates: number
+  /** Simulations of this block that failed. */
+  readonly failedSimulations: number
 }
 
 export type Origin = 'founder' | 'crossed' | 'mutated' | 'crossed-mutated' | 'copied'
@@ -90,11 +92,6 @@ export interface MethodMachine {
   held(): readonly Individual[]
   /** Members best first, total order (last tie-break: id). */
   ranked(): readonly Individual[]
-  /**
-   * Everybody the machine still refers to: members and those who wait to become members. The island keeps these
-   * findable for restore().
-   */
-  held(): readonly Individual[]
   /** Everything needed to go on, structured-cloneable; individuals by id only. */
   save(): unknown
 }
