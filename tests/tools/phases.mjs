@@ -1,0 +1,40 @@
+// The phases of `npm test`, in order: what is fast and needs nothing but Node comes first. A row is one line of
+// the report. `project` is a project of vitest.config.ts; `commands` are checks that count as one test each.
+
+import { join } from 'node:path'
+
+/** Sizes of the long tests: how many kills, how many seeds. A larger value on request, through the environment. */
+export const sizes = {
+  SKERRY_CHAOS_KILLS: '50',
+  SKERRY_SEEDS: '2000',
+}
+
+const bin = (...path) => join('node_modules', ...path)
+
+/**
+ * @typedef {{ name: string, says: string, commands?: { name: string, args: string[] }[], project?: string,
+ *   needs?: string[] }} Phase
+ * @type {Phase[]}
+ */
+export const phases = [
+  {
+    name: 'build',
+    says: 'TypeScript to dist/, because Node 20 runs no TypeScript and worker threads start from files',
+    commands: [{ name: 'build', args: ['tests/tools/build.mjs'] }],
+  },
+  {
+    name: 'static',
+    says: 'types of code and tests; style',
+    commands: [
+      { name: 'types (tsc)', args: [bin('typescript', 'bin', 'tsc'), '-p', 'tests'] },
+      { name: 'style (biome)', args: [bin('@biomejs', 'biome', 'bin', 'biome'), 'check', '.'] },
+    ],
+  },
+  { name: 'house', says: 'imports, banned calls, sizes, documents', project: 'house' },
+  { name: 'unit', says: 'units, properties, reference values', project: 'unit' },
+  { name: 'contract', says: 'one suite a port, over every adapter', project: 'contract' },
+  { name: 'package', says: 'what would be published', project: 'package' },
+  { name: 'cluster', says: 'simulated clusters under seeds', project: 'cluster' },
+  { name: 'chaos', says: 'real processes, killed', project: 'chaos' },
+  { name: 'browser', says: 'pages in a real browser', project: 'browser', needs: ['chromium'] },
+]
