@@ -1,0 +1,151 @@
+// Is this a problem? One row a field; every row says what it expects. Used on what authors write and again on
+// what a bundle exports.
+
+import { checkSpec } from '../shared/encodings.js'
+import { limits } from '../shared/limits.js'
+import type { AnyProblem } from '../shared/problem.js'
+import { type RefusalCode, refuse } from '../shared/refusals.js'
+
+type Bag = { readonly [field: string]: unknown }
+
+const identifier = /^[A-Za-z][A-Za-z0-9_]*$/
+/** Names of problems and cases may have hyphens: they are file names and words, never fields. */
+const word = /^[A-Za-z][A-Za-z0-9_-]*$/
+
+function found(value: unknown): string {
+  if (value === undefined) return 'nothing'
+  if (typeof value === 'function') return 'a function'
+  if (typeof value === 'number') return String(value)
+  const text = JSON.stringify(value) ?? String(value)
+  return text.length > 80 ? `${text.slice(0, 77)}...` : text
+}
+
+function demand(truth: boolean, field: string, value: unknown, expected: string): asserts truth {
+  if (truth) return
+  const code: RefusalCode = value === undefined ? 'missing-field' : 'impossible-value'
+  throw refuse(code, {
+    detail: `${field}: found ${found(value)}, expected ${expected}.`,
+    where: { field },
+    cure: `Mend the field \`${field}\` of the problem.`,
+  })
+}
+
+const isBag = (value: unknown): value is Bag =>
+  typeof value === 'object' && value !== null && !Array.isArray(value) && !ArrayBuffer.isView(value)
+const isText = (value: unknown, most: number): value is string =>
+  typeof value === 'string' && value.length > 0 && value.length <= most
+const isNumber = (value: unknown): value is number => typeof value === 'number' && Number.isFinite(value)
+const isOneOf = (value: unknown, options: readonly string[]) =>
+  typeof value === 'string' && options.includes(value)
+
+/** Throws a Refusal that names the field unless `value` is a whole problem. */
+export function checkProblem(value: unknown): asserts value is AnyProblem {
+  if (!isBag(value)) {
+    throw refuse('not-a-problem', {
+      detail: `the default export is ${found(value)}, expected the result of defineProblem({...}).`,
+    })
+  }
+  for (const [field, check] of Object.entries(fields)) check(value[field], field)
+  for (const field of Object.keys(value)) {
+    demand(field in fields, field, value[field], `one of ${Object.keys(fields).join(', ')}`)
+  }
+  const measures = value.measures as Bag
+  for (const name of Object.keys(value.objectives as Bag)) {
+    demand(!(name in measures), `measures.${name}`, name, 'a name that no objective has')
+  }
+}
+
+type FieldCheck = (value: unknown, field: string) => void
+
+const aFunction: FieldCheck = (value, field) =>
+  demand(typeof value === 'function', field, value, 'a function')
+const perhapsAFunction: FieldCheck = (value, field) => {
+  demand(value === undefined || typeof value === 'function', field, value, 'a function or nothing')
+}
+const aSentence: FieldCheck = (value, field) => demand(isText(value, 1_000), field, value, 'a text')
+
+const fields: { readonly [field: string]: FieldCheck } = {
+  name: (value, field) => {
+    const sound = isText(value, limits.nameLength) && word.test(value)
+    demand(sound, field, value, 'letters, digits, - and _, beginning with a letter')
+  },
+  version: (value, field) => demand(isText(value, limits.nameLength), field, value, "a text such as '1'"),
+  summary: aSentence,
+  genome: checkSpec,
+  objectives: checkObjectives,
+  measures: checkMeasures,
+  cases: checkCases,
+  exactness: (value, field) => {
+    const options = ['bits', 'bits-per-processor', 'tolerance', 'statistical']
+    demand(isOneOf(value, options), field, value, `one of ${options.join(', ')}`)
+  },
+  drawCondition: aFunction,
+  simulate: aFunction,
+  expectedCost: aFunction,
+  repair: aFunction,
+  frames: perhapsAFunction,
+  describe: perhapsAFunction,
+  cautions: perhapsAFunction,
+}
+
+function checkNames(value: unknown, field: string, least: number, most: number): asserts value is Bag {
+  demand(isBag(value), field, value, 'an object with one entry a name')
+  const names = Object.keys(value)
+  demand(
+    names.length >= least && names.length <= most,
+    field,
+    `${names.length} entries`,
+    `${least} to ${most} entries`,
+  )
+  for (const name of names) {
+    const sound = identifier.test(name) && name.length <= limits.nameLength
+    demand(sound, `${field}.${name}`, name, 'a plain identifier (letters, digits, _)')
+  }
+}
+
+function checkUnit(value: unknown, field: string): void {
+  demand(isText(value, limits.nameLength), field, value, "a unit such as 'm' ('1' for a pure number)")
+}
+
+function checkObjectives(value: unknown, field: string): void {
+  checkNames(value, field, 1, limits.objectivesMost)
+  for (const [name, row] of Object.entries(value)) {
+    const at = `${field}.${name}`
+    demand(isBag(row), at, row, 'an object')
+    const { direction, unit, reduce, overCases } = row
+    demand(isOneOf(direction, ['maximise', 'minimise']), `${at}.direction`, direction, 'maximise or minimise')
+    checkUnit(unit, `${at}.unit`)
+    const quantile = isBag(reduce) ? reduce.quantile : undefined
+    const sound =
+      isOneOf(reduce, ['mean', 'median', 'worst']) || (isNumber(quantile) && quantile >= 0 && quantile <= 1)
+    demand(sound, `${at}.reduce`, reduce, 'mean, median, worst or { quantile: 0 to 1 }')
+    demand(isOneOf(overCases, ['mean', 'worst', 'sum']), `${at}.overCases`, overCases, 'mean, worst or sum')
+  }
+}
+
+function checkMeasures(value: unknown, field: string): void {
+  checkNames(value, field, 0, limits.measuresMost)
+  for (const [name, row] of Object.entries(value)) {
+    const at = `${field}.${name}`
+    demand(isBag(row), at, row, 'an object')
+    demand(isNumber(row.low), `${at}.low`, row.low, 'a finite number')
+    demand(
+      isNumber(row.high) && row.high > row.low,
+      `${at}.high`,
+      row.high,
+      `a number above low (${row.low})`,
+    )
+    checkUnit(row.unit, `${at}.unit`)
+  }
+}
+
+function checkCases(value: unknown, field: string): void {
+  demand(Array.isArray(value), field, value, 'a list of names')
+  demand(value.length <= limits.casesMost, field, `${value.length} cases`, `at most ${limits.casesMost}`)
+  for (const [i, name] of value.entries()) {
+    const at = `${field}[${i}]`
+    const sound = isText(name, limits.nameLength) && word.test(name)
+    demand(sound, at, name, 'letters, digits, - and _, beginning with a letter')
+    demand(value.indexOf(name) === i, at, name, 'a name that no other case has')
+  }
+}
