@@ -173,6 +173,11 @@ export const refusals = {
     text: 'Recomputing the search gave another digest than the record holds',
     cure: 'Keep the record; the first entry that differs is named above.',
   },
+  'bytes-malformed': {
+    exitCode: badData,
+    text: 'Stored or sent bytes cannot be read',
+    cure: 'The file or message is damaged or of another kind; restore it or let it be made again.',
+  },
   'results-disagree': {
     exitCode: badData,
     text: 'The same simulation gave two different results',

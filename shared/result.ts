@@ -33,6 +33,8 @@ export interface WorkItem {
   readonly purpose: 'evaluate' | 'confirm'
   /** 'alone': in a process of its own, because shared ones died with it. */
   readonly isolation: 'shared' | 'alone'
+  /** Workers that must not do it: they have simulated it already, or are shut out. */
+  readonly avoid: readonly string[]
 }
 
 /** Who simulated: for the record, blame and confirmation. */

@@ -6,7 +6,7 @@ import { highWord, powerOfTwo, withHighWord } from './words.js'
 /** ln 2 in two parts; the first has 21 trailing zero bits, so that small integers times it are exact. */
 export const ln2High = 0.6931471803691238
 export const ln2Low = 1.9082149292705877e-10
-const perLn2 = 1.4426950408889634
+const perLn2 = Math.LOG2E
 const two54 = 18014398509481984
 
 /**
@@ -30,7 +30,7 @@ export function exp(x: number): number {
   const c = x - expRational(x * x)
   if (k === 0) return 1 - ((x * c) / (c - 2) - x)
   const y = 1 - (lower - (x * c) / (2 - c) - upper)
-  if (k === 1024) return y * 2 * 2 ** 1023
+  if (k === 1024) return y * 2 * powerOfTwo(1023)
   return k >= -1021 ? y * powerOfTwo(k) : y * powerOfTwo(k + 1000) * 9.332636185032189e-302 /* 2^-1000 */
 }
 

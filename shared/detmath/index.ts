@@ -1,0 +1,2 @@
+export { exp, log } from './exponential.js'
+export { cos, sin } from './trigonometry.js'
