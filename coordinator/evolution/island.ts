@@ -1,0 +1,544 @@
+// One island: a deterministic machine that proposes evaluations and commits their results in a known order.
+//
+//   commit -> the epoch's work (receive, then send) -> proposals the commit released -> next commit
+//
+// That interleaving is part of the search's definition; drive.ts runs it. Nothing here knows of workers, time
+// or arrival. Every change enters the island's digest, a running hash: equal digests, equal histories.
+
+import { check } from '../../shared/check.js'
+import { chain, emptyChain } from '../../shared/digests.js'
+import { genomeBytes } from '../../shared/encodings.js'
+import type { Genome } from '../../shared/genome.js'
+import { firstControl, idOf } from '../../shared/ids.js'
+import type { EvaluationResult } from '../../shared/result.js'
+import { stream } from '../../shared/streams.js'
+import { amendmentEntry, commitEntry, receiveEntry, sendEntry } from './entries.js'
+import { columnsOf, scoreOf, simulationsPerReplicate } from './estimate.js'
+import type { IslandPlan, SearchPlan } from './plan.js'
+import { Outstanding, type Ticket } from './tickets.js'
+import type { Individual, Method, MethodContext, MethodMachine, Variation } from './types.js'
+
+/** What an island is made with: the plan and functions of the problem and the method. */
+export interface IslandTools {
+  readonly plan: SearchPlan
+  readonly island: IslandPlan
+  /** Simulations this island may spend. */
+  readonly quota: number
+  readonly method: Method
+  readonly variation: Variation
+  readonly expectedCost: (genome: Genome) => number
+}
+
+/** Numbers of an island that change with commits and proposals; plain data. */
+interface Counters {
+  births: number
+  evaluations: number
+  proposedSimulations: number
+  commits: number
+  committedSimulations: number
+  /** Sum of expected costs of the commits; divided by the lookahead it is the island's time in rounds. */
+  costCommitted: number
+  /** Virtual time of the last commit (order 'cost'). */
+  virtualTime: number
+  /** Last epoch whose work is done. */
+  epochsPassed: number
+  /** Island cost at the start of epoch 1; moves only when an ended island is set going again. */
+  epochOriginCost: number
+  /** Last epoch whose emigrants were taken in; at most one ahead of epochsPassed. */
+  epochsReceived: number
+  failures: number
+  topUps: number
+  /** Island cost at which the present best became the best. */
+  bestSinceCost: number
+}
+
+/** A result that turned out wrong after it was committed, put right from a stated commit on. */
+export interface Amendment {
+  readonly individual: number
+  readonly firstReplicate: number
+  readonly result: EvaluationResult
+}
+
+export interface IslandState {
+  readonly counters: Counters
+  readonly digest: Uint8Array
+  readonly quota: number
+  readonly mostReplicates: number
+  readonly ended: boolean
+  readonly finishAfterEpoch: number
+  readonly individuals: readonly Individual[]
+  /** Positions in `individuals`. */
+  readonly held: readonly number[]
+  readonly best: number
+  readonly topUpQueue: readonly number[]
+  readonly tickets: readonly (Omit<Ticket, 'individual'> & { readonly individual: number })[]
+  readonly amendments: readonly Amendment[]
+  readonly bestScores: Float64Array
+  readonly machine: unknown
+}
+
+const noEpoch = Number.MAX_SAFE_INTEGER
+/** Length of an epoch where nothing migrates: budgets still end at epochs. */
+const roundsWithoutMigration = 20
+
+export class Island {
+  readonly tools: IslandTools
+  readonly number: number
+  readonly #machine: MethodMachine
+  readonly #counters: Counters
+  readonly #outstanding: Outstanding
+  readonly #amendments: Amendment[]
+  #topUpQueue: Individual[]
+  #digest: Uint8Array
+  #quota: number
+  #mostReplicates: number
+  #ended: boolean
+  #finishAfterEpoch: number
+  #best: Individual | undefined
+  /** Smallest score seen at a commit, per objective: what a would-be best must beat. */
+  readonly #bestScores: Float64Array
+
+  constructor(tools: IslandTools, state?: IslandState) {
+    this.tools = tools
+    this.number = tools.island.island
+    const byPosition = (position: number): Individual => {
+      const individual = state?.individuals[position]
+      check(individual !== undefined, 'a snapshot refers to its own individuals')
+      return individual
+    }
+    this.#counters = state ? { ...state.counters } : newCounters()
+    this.#digest = state?.digest ?? emptyChain
+    this.#quota = state?.quota ?? tools.quota
+    this.#mostReplicates = state?.mostReplicates ?? tools.plan.replicates.most
+    this.#ended = state?.ended ?? false
+    this.#finishAfterEpoch = state?.finishAfterEpoch ?? noEpoch
+    this.#outstanding = new Outstanding(
+      state?.tickets.map((ticket) => ({ ...ticket, individual: byPosition(ticket.individual) })),
+    )
+    this.#topUpQueue = state?.topUpQueue.map(byPosition) ?? []
+    this.#best = state && state.best >= 0 ? byPosition(state.best) : undefined
+    this.#amendments = [...(state?.amendments ?? [])]
+    this.#bestScores = state?.bestScores.slice() ?? new Float64Array(tools.plan.problem.objectives.length).fill(Infinity)
+    const held = new Map(state?.held.map((position) => [byPosition(position).id, byPosition(position)]))
+    this.#machine = state
+      ? tools.method.restore(contextOf(tools), state.machine, (id) => {
+          const individual = held.get(id)
+          check(individual !== undefined, 'a saved method refers to individuals it held')
+          return individual
+        })
+      : tools.method.create(contextOf(tools))
+  }
+
+  // ------------------------------------------------------------------------------------ what it is
+
+  /** Running hash of everything this island has committed, received, sent and amended. */
+  get digest(): Uint8Array {
+    return this.#digest
+  }
+  get counters(): Readonly<Counters> {
+    return this.#counters
+  }
+  /** True once the quota is used or a finish was ordered, and the word of it may be sent. */
+  get ended(): boolean {
+    return this.#ended
+  }
+  get quota(): number {
+    return this.#quota
+  }
+  get best(): Individual | undefined {
+    return this.#best
+  }
+  get bestScores(): Float64Array {
+    return this.#bestScores
+  }
+  get isControl(): boolean {
+    return this.number >= firstControl
+  }
+  /** Island time: rounds committed. */
+  get rounds(): number {
+    return this.#counters.costCommitted / this.tools.island.lookahead
+  }
+  members(): readonly Individual[] {
+    return this.#machine.members()
+  }
+  ranked(): readonly Individual[] {
+    return this.#machine.ranked()
+  }
+  outstanding(): readonly Ticket[] {
+    return this.#outstanding.all()
+  }
+  ticket(evaluation: number): Ticket | undefined {
+    return this.#outstanding.find(evaluation)
+  }
+
+  // ----------------------------------------------------------------------------------- proposing
+
+  /** Proposes while there are free slots, quota and a willing method. Returns what is new, in order. */
+  fill(): Ticket[] {
+    const released: Ticket[] = []
+    while (!this.#ended && this.#outstanding.size < this.tools.island.lookahead) {
+      const ticket = this.#proposeTopUp() ?? this.#proposeBirth()
+      if (!ticket) break
+      this.#outstanding.add(ticket)
+      released.push(ticket)
+    }
+    if (this.#outstanding.size === 0 && !this.#ended) {
+      check(!this.#affords(this.tools.plan.replicates.first), 'a method waits only for results')
+      this.#ended = true
+    }
+    return released
+  }
+
+  #proposeTopUp(): Ticket | undefined {
+    const individual = this.#topUpQueue[0]
+    if (!individual) return undefined
+    const { topUp } = this.tools.plan.replicates
+    const replicates = Math.min(topUp, this.#mostReplicates - individual.replicates)
+    if (replicates <= 0 || !this.#affords(replicates)) {
+      this.#topUpQueue.shift()
+      return undefined
+    }
+    this.#topUpQueue.shift()
+    this.#counters.topUps++
+    return this.#newTicket(individual, replicates, false)
+  }
+
+  #proposeBirth(): Ticket | undefined {
+    const { first } = this.tools.plan.replicates
+    if (!this.#affords(first)) return undefined
+    const number = this.#counters.births + 1
+    const birth = this.#machine.propose(stream(this.tools.plan.seed, 'birth', this.number, number))
+    if (birth === 'wait') return undefined
+    this.#counters.births = number
+    const individual: Individual = {
+      id: idOf(this.number, number),
+      genome: birth.genome,
+      parents: birth.parents,
+      origin: birth.origin,
+      bornAtCommit: this.#counters.commits,
+      blocks: [],
+      values: new Float64Array(0),
+      replicates: 0,
+      failedSimulations: 0,
+      score: new Float64Array(this.#bestScores.length).fill(Infinity),
+      age: birth.age,
+    }
+    return this.#newTicket(individual, first, birth.origin === 'founder')
+  }
+
+  #newTicket(individual: Individual, replicates: number, founder: boolean): Ticket {
+    const { plan, expectedCost } = this.tools
+    const counters = this.#counters
+    const cost = expectedCost(individual.genome)
+    check(Number.isSafeInteger(cost) && cost > 0, 'an expected cost is a positive whole number')
+    const ticket: Ticket = {
+      evaluation: ++counters.evaluations,
+      individual,
+      firstReplicate: individual.replicates,
+      replicates,
+      simulations: replicates * simulationsPerReplicate(plan.problem),
+      simulationsBefore: counters.proposedSimulations,
+      expectedCost: Math.max(1, Math.round((cost * replicates) / plan.replicates.first)),
+      virtualFinish: 0,
+      founder,
+    }
+    counters.proposedSimulations += ticket.simulations
+    return { ...ticket, virtualFinish: counters.virtualTime + ticket.expectedCost }
+  }
+
+  #affords(replicates: number): boolean {
+    const simulations = replicates * simulationsPerReplicate(this.tools.plan.problem)
+    return this.#counters.proposedSimulations + simulations <= this.#quota
+  }
+
+  // ---------------------------------------------------------------------------------- committing
+
+  /** The ticket that is committed next, or undefined when none is outstanding (or the order is 'arrival'). */
+  next(): Ticket | undefined {
+    if (this.tools.island.order === 'cost') return this.#outstanding.firstToFinish()
+    return this.tools.island.order === 'proposal' ? this.#outstanding.oldest() : undefined
+  }
+
+  /** The score the individual would have with this result: for the question whether it would be the best. */
+  scoreWith(ticket: Ticket, result: EvaluationResult): Float64Array {
+    const { individual } = ticket
+    const values = joined(individual.values, result.values)
+    return scoreOf(this.tools.plan.problem, values, individual.failedSimulations + result.failures.length)
+  }
+
+  /** Takes a result in. `resultDigest` is 32 bytes over the result's canonical bytes. */
+  commit(ticket: Ticket, result: EvaluationResult, resultDigest: Uint8Array): void {
+    const { plan } = this.tools
+    check(!this.#ended, 'an ended island commits nothing')
+    check(
+      result.values.length === ticket.simulations * columnsOf(plan.problem),
+      'a result has a row for every simulation',
+    )
+    this.#outstanding.remove(ticket)
+    const { individual } = ticket
+    const firstBlock = individual.replicates === 0
+    this.#take(individual, ticket, result)
+    const counters = this.#counters
+    counters.commits++
+    counters.committedSimulations += ticket.simulations
+    counters.costCommitted += ticket.expectedCost
+    counters.virtualTime = Math.max(counters.virtualTime, ticket.virtualFinish)
+    counters.failures += result.failures.length > 0 ? 1 : 0
+    if (firstBlock) this.#machine.commit(individual, stream(plan.seed, 'commit', this.number, counters.commits))
+    else this.#machine.reconsider(individual)
+    this.#noteBest(individual)
+    this.#queueTopUp()
+    this.#digest = chain(this.#digest, commitEntry(plan.problem.spec, counters.commits, ticket, resultDigest))
+  }
+
+  #take(individual: Individual, ticket: Ticket, result: EvaluationResult): void {
+    individual.values = joined(individual.values, result.values)
+    individual.replicates += ticket.replicates
+    individual.failedSimulations += result.failures.length
+    individual.blocks = [
+      ...individual.blocks,
+      {
+        island: this.number,
+        evaluation: ticket.evaluation,
+        firstReplicate: ticket.firstReplicate,
+        replicates: ticket.replicates,
+        failedSimulations: result.failures.length,
+      },
+    ]
+    individual.score = scoreOf(this.tools.plan.problem, individual.values, individual.failedSimulations)
+  }
+
+  #noteBest(individual: Individual): void {
+    individual.score.forEach((score, objective) => {
+      if (score < this.#bestScores[objective]!) this.#bestScores[objective] = score
+    })
+    const before = this.#best
+    // The best's own estimate may have become worse: then another member may be the best.
+    if (individual === before) this.#best = [before, ...this.#machine.members()].reduce(better)
+    else this.#best = before ? better(before, individual) : individual
+    if (this.#best !== before) this.#counters.bestSinceCost = this.#counters.costCommitted
+  }
+
+  /** Top-ups go to the island's best until it has the most replicates: the estimate that is shown and bred from. */
+  #queueTopUp(): void {
+    const best = this.#best
+    if (!best || this.tools.plan.replicates.topUp === 0) return
+    if (best.replicates >= this.#mostReplicates || best.failedSimulations > 0) return
+    const asked =
+      this.#topUpQueue.includes(best) || this.#outstanding.all().some((ticket) => ticket.individual === best)
+    if (!asked) this.#topUpQueue.push(best)
+  }
+
+  // -------------------------------------------------------------------------------------- epochs
+
+  /** The epoch that has ended and whose work is not done, or undefined. */
+  epochDue(): number | undefined {
+    const rounds = this.tools.plan.migration?.everyRounds ?? roundsWithoutMigration
+    const epoch = this.#counters.epochsPassed + 1
+    const endCost = this.#counters.epochOriginCost + epoch * rounds * this.tools.island.lookahead
+    return this.#counters.costCommitted >= endCost ? epoch : undefined
+  }
+
+  get hasReceived(): boolean {
+    return this.#counters.epochsReceived > this.#counters.epochsPassed
+  }
+
+  /** Takes in the emigrants that are due at the end of `epoch`, group by group in the order of sources. */
+  receive(epoch: number, groups: readonly (readonly Individual[])[]): void {
+    check(epoch === this.#counters.epochsPassed + 1 && !this.hasReceived, 'epochs are received once, in order')
+    this.#counters.epochsReceived = epoch
+    const arrivals = groups.flat().map((individual) => this.#amended({ ...individual }))
+    const placement = this.tools.plan.migration?.arrive
+    if (arrivals.length === 0 || placement === undefined) return
+    this.#machine.immigrate(arrivals, placement, stream(this.tools.plan.seed, 'arrivals', this.number, epoch))
+    for (const individual of arrivals) this.#noteBest(individual)
+    this.#queueTopUp()
+    this.#digest = chain(this.#digest, receiveEntry(epoch, arrivals))
+  }
+
+  /** Who would leave at the end of `epoch`: as they are now, best first or drawn. */
+  emigrants(epoch: number): Individual[] {
+    const { migration, seed } = this.tools.plan
+    if (!migration || this.isControl) return []
+    const ranked = this.#machine.ranked().filter((individual) => individual.failedSimulations === 0)
+    const count = Math.min(migration.emigrants, ranked.length)
+    if (migration.leave === 'best') return ranked.slice(0, count).map((individual) => ({ ...individual }))
+    const order = stream(seed, 'emigrants', this.number, epoch).permutation(ranked.length)
+    return [...order.subarray(0, count)].map((position) => ({ ...ranked[position]! }))
+  }
+
+  /** Ends the epoch after its emigrants are on their way. */
+  pass(epoch: number, sent: readonly Individual[]): void {
+    check(this.hasReceived && epoch === this.#counters.epochsReceived, 'an epoch is passed after it was received')
+    this.#counters.epochsPassed = epoch
+    if (sent.length > 0) this.#digest = chain(this.#digest, sendEntry(epoch, sent))
+    const { stagnationRounds } = this.tools.plan.budget
+    const stale = this.#counters.costCommitted - this.#counters.bestSinceCost
+    const stagnant =
+      stagnationRounds !== undefined && !this.isControl && stale >= stagnationRounds * this.tools.island.lookahead
+    if (epoch >= this.#finishAfterEpoch || stagnant) this.#end()
+  }
+
+  #end(): void {
+    this.#ended = true
+    this.#outstanding.clear()
+    this.#topUpQueue = []
+  }
+
+  // ------------------------------------------------------------------------ facts of the world
+
+  /** The island ends with this epoch (or at once where it has already passed it: callers must not). */
+  finishAfter(epoch: number): void {
+    check(epoch > this.#counters.epochsPassed, 'a finish is ordered for an epoch to come')
+    this.#finishAfterEpoch = Math.min(this.#finishAfterEpoch, epoch)
+  }
+
+  /** A new quota from now on. */
+  setQuota(quota: number): void {
+    this.#quota = quota
+  }
+
+  /** Sets an ended island going again, as if it had just passed `epoch`. False when its quota is still used up. */
+  resumeAfter(epoch: number): boolean {
+    check(this.#ended, 'only an ended island is set going again')
+    if (!this.#affords(this.tools.plan.replicates.first)) return false
+    const counters = this.#counters
+    const rounds = this.tools.plan.migration?.everyRounds ?? roundsWithoutMigration
+    const passed = Math.max(epoch, counters.epochsPassed)
+    counters.epochOriginCost = counters.costCommitted - passed * rounds * this.tools.island.lookahead
+    counters.epochsPassed = passed
+    counters.epochsReceived = passed
+    counters.bestSinceCost = counters.costCommitted
+    this.#finishAfterEpoch = noEpoch
+    this.#ended = false
+    return true
+  }
+
+  setMostReplicates(most: number): void {
+    this.#mostReplicates = most
+  }
+
+  /** Puts a wrong result right in everybody alive here, and in everybody who arrives later. */
+  amend(amendment: Amendment): void {
+    this.#amendments.push(amendment)
+    const touched = new Set([...this.#machine.held(), ...(this.#best ? [this.#best] : []), ...this.#topUpQueue])
+    for (const ticket of this.#outstanding.all()) touched.add(ticket.individual)
+    for (const individual of touched) {
+      if (individual.id !== amendment.individual) continue
+      Object.assign(individual, this.#amended({ ...individual }))
+      this.#machine.reconsider(individual)
+    }
+    this.#recountBest()
+    this.#digest = chain(this.#digest, amendmentEntry(this.#counters.commits, amendment))
+  }
+
+  /** A false best must not stand in the way of true ones. */
+  #recountBest(): void {
+    const candidates = [...(this.#best ? [this.#best] : []), ...this.#machine.members()]
+    this.#best = candidates.length > 0 ? candidates.reduce(better) : undefined
+    this.#bestScores.fill(Infinity)
+    for (const { score } of candidates) {
+      score.forEach((value, objective) => {
+        if (value < this.#bestScores[objective]!) this.#bestScores[objective] = value
+      })
+    }
+  }
+
+  #amended(individual: Individual): Individual {
+    const perReplicate = columnsOf(this.tools.plan.problem) * simulationsPerReplicate(this.tools.plan.problem)
+    for (const { individual: id, firstReplicate, result } of this.#amendments) {
+      const start = firstReplicate * perReplicate
+      if (id !== individual.id || individual.values.length < start + result.values.length) continue
+      const values = individual.values.slice()
+      values.set(result.values, start)
+      individual.values = values
+      individual.blocks = individual.blocks.map((block) =>
+        block.firstReplicate === firstReplicate
+          ? { ...block, failedSimulations: result.failures.length }
+          : block,
+      )
+      individual.failedSimulations = individual.blocks.reduce((sum, block) => sum + block.failedSimulations, 0)
+      individual.score = scoreOf(this.tools.plan.problem, values, individual.failedSimulations)
+    }
+    return individual
+  }
+
+  // ------------------------------------------------------------------------------------ snapshots
+
+  /** Everything needed to go on from here, structured-cloneable. Shares memory with the island. */
+  save(): IslandState {
+    const individuals: Individual[] = []
+    const positions = new Map<Individual, number>()
+    const positionOf = (individual: Individual): number => {
+      const known = positions.get(individual)
+      if (known !== undefined) return known
+      positions.set(individual, individuals.length)
+      return individuals.push(individual) - 1
+    }
+    return {
+      counters: { ...this.#counters },
+      digest: this.#digest,
+      quota: this.#quota,
+      mostReplicates: this.#mostReplicates,
+      ended: this.#ended,
+      finishAfterEpoch: this.#finishAfterEpoch,
+      held: this.#machine.held().map(positionOf),
+      best: this.#best ? positionOf(this.#best) : -1,
+      topUpQueue: this.#topUpQueue.map(positionOf),
+      tickets: this.#outstanding
+        .all()
+        .map((ticket) => ({ ...ticket, individual: positionOf(ticket.individual) })),
+      amendments: this.#amendments,
+      bestScores: this.#bestScores.slice(),
+      machine: this.#machine.save(),
+      individuals,
+    }
+  }
+
+  /** Canonical bytes of a genome of this search. */
+  bytesOf(genome: Genome): Uint8Array {
+    return genomeBytes(this.tools.plan.problem.spec, genome)
+  }
+}
+
+/** The better of two by the first objective; ties go to the older. */
+function better(a: Individual, b: Individual): Individual {
+  if (a.score[0]! !== b.score[0]!) return a.score[0]! < b.score[0]! ? a : b
+  return a.id <= b.id ? a : b
+}
+
+function joined(a: Float64Array, b: Float64Array): Float64Array {
+  if (a.length === 0) return b
+  const both = new Float64Array(a.length + b.length)
+  both.set(a)
+  both.set(b, a.length)
+  return both
+}
+
+function contextOf(tools: IslandTools): MethodContext {
+  return {
+    spec: tools.plan.problem.spec,
+    objectives: tools.plan.problem.objectives.length,
+    population: tools.island.population,
+    settings: tools.island.settings,
+    variation: tools.variation,
+  }
+}
+
+function newCounters(): Counters {
+  return {
+    births: 0,
+    evaluations: 0,
+    proposedSimulations: 0,
+    commits: 0,
+    committedSimulations: 0,
+    costCommitted: 0,
+    virtualTime: 0,
+    epochsPassed: 0,
+    epochOriginCost: 0,
+    epochsReceived: 0,
+    failures: 0,
+    topUps: 0,
+    bestSinceCost: 0,
+  }
+}

@@ -1,0 +1,294 @@
+// The islands of a search together, and the one driver that moves them. Islands are deterministic processes that
+// read their inputs blockingly (a Kahn process network): whatever order they are driven in, each does the same.
+//
+// The world comes in through a Gate: which results are there, whether emigrants may leave, what was ordered.
+// An in-memory run, the engine, recovery and `rederive` are four gates over this one driver.
+
+import { check } from '../../shared/check.js'
+import { chain, emptyChain } from '../../shared/digests.js'
+import { firstControl } from '../../shared/ids.js'
+import type { EvaluationResult } from '../../shared/result.js'
+import { splitBudget } from './budget.js'
+import { Island, type IslandState, type IslandTools } from './island.js'
+import { topologies } from './migration.js'
+import type { SearchPlan } from './plan.js'
+import type { Ticket } from './tickets.js'
+import type { Individual } from './types.js'
+
+/** What an island put in the post at the end of an epoch; `ended` says that none follows. */
+export interface Mail {
+  readonly island: number
+  readonly epoch: number
+  readonly atCommit: number
+  readonly ended: boolean
+  readonly emigrants: readonly Individual[]
+}
+
+export interface Outcome {
+  readonly result: EvaluationResult
+  readonly digest: Uint8Array
+}
+
+/** The world as the driver sees it. Every method is called in the island's own order. */
+export interface Gate {
+  /** The accepted outcome, or undefined while it is not. */
+  outcome(island: Island, ticket: Ticket): Outcome | undefined
+  /** For order 'arrival': the evaluation that is committed next, or undefined. */
+  nextArrival(island: Island): number | undefined
+  /** False where the island shall rest here (--stop-after, or the end of what is recorded). */
+  mayCommit(island: Island, ticket: Ticket): boolean
+  /** False while an emigrant is not confirmed. */
+  maySend(island: Island, epoch: number, emigrants: readonly Individual[]): boolean
+  /** Facts of the world stated for this island at this commit; called once after every commit. */
+  factsAtCommit(island: Island): void
+  /** Facts stated for the moment before this epoch's emigrants are chosen; may be called again and again. */
+  factsBeforeSending(island: Island, epoch: number): void
+  /** Facts stated for an island that has ended; true when it may have been set going again. */
+  factsWhenEnded(island: Island): boolean
+  /** Facts stated for the end of this epoch; called once after the epoch was passed. */
+  factsAtEpoch(island: Island, epoch: number): void
+  released(island: Island, tickets: readonly Ticket[]): void
+  committed(island: Island, ticket: Ticket, outcome: Outcome): void
+  sent(mail: Mail): void
+}
+
+/** Why an island stands still. */
+export type Standing = 'result' | 'mail' | 'confirmation' | 'resting' | 'ended'
+
+export interface SearchTools {
+  readonly plan: SearchPlan
+  /** Tools of one island, made from the plan; the quota is the search's business. */
+  readonly toolsOf: (island: number, quota: number) => IslandTools
+}
+
+export class Search {
+  readonly plan: SearchPlan
+  readonly islands: readonly Island[]
+  readonly #byNumber = new Map<number, Island>()
+  readonly #post: Post
+  readonly #migrating: readonly number[]
+  readonly #restarted: Set<number>
+
+  /** `states` are snapshots by island; `recordedMail` finds what was sent before them. */
+  constructor(
+    tools: SearchTools,
+    states: ReadonlyMap<number, IslandState> = new Map(),
+    recordedMail: (island: number, epoch: number) => Mail | undefined = () => undefined,
+  ) {
+    this.plan = tools.plan
+    this.#post = new Post(recordedMail)
+    const quotas = quotasOf(tools.plan, tools.plan.budget.simulations)
+    this.islands = [...tools.plan.islands, ...tools.plan.controls].map(({ island }) => {
+      const quota = quotas.get(island)
+      check(quota !== undefined, 'every island has a quota')
+      return new Island(tools.toolsOf(island, quota), states.get(island))
+    })
+    for (const island of this.islands) this.#byNumber.set(island.number, island)
+    this.#migrating = tools.plan.migration ? tools.plan.islands.map(({ island }) => island) : []
+    this.#restarted = new Set(states.keys())
+  }
+
+  island(number: number): Island {
+    const island = this.#byNumber.get(number)
+    check(island !== undefined, 'islands are asked for by their numbers')
+    return island
+  }
+
+  get post(): Post {
+    return this.#post
+  }
+
+  /** Digest of the whole search: the hash of the island digests in the order of their numbers. */
+  digest(): Uint8Array {
+    return this.islands.reduce((digest, island) => chain(digest, island.digest), emptyChain)
+  }
+
+  /** Moves one island as far as it can go. */
+  advance(island: Island, gate: Gate): Standing {
+    for (;;) {
+      const stopped = this.#passEpochs(island, gate)
+      if (stopped) return stopped
+      const released = island.fill()
+      if (released.length > 0) gate.released(island, released)
+      if (island.ended) {
+        if (gate.factsWhenEnded(island) && !island.ended) continue
+        return this.#sendEnd(island, gate)
+      }
+      const ticket = nextTicket(island, gate)
+      if (!ticket) return 'result'
+      if (!gate.mayCommit(island, ticket)) return 'resting'
+      const outcome = gate.outcome(island, ticket)
+      if (!outcome) return 'result'
+      island.commit(ticket, outcome.result, outcome.digest)
+      gate.committed(island, ticket, outcome)
+      gate.factsAtCommit(island)
+    }
+  }
+
+  /** Moves every island until none can move. Returns where each stands. */
+  advanceAll(gate: Gate): Map<number, Standing> {
+    const standing = new Map<number, Standing>()
+    for (let moved = true; moved; ) {
+      moved = false
+      for (const island of this.islands) {
+        const before = island.counters.commits + island.counters.epochsPassed
+        const last = standing.get(island.number)
+        standing.set(island.number, this.advance(island, gate))
+        const after = island.counters.commits + island.counters.epochsPassed
+        if (after !== before || last !== standing.get(island.number)) moved = true
+      }
+    }
+    return standing
+  }
+
+  #passEpochs(island: Island, gate: Gate): Standing | undefined {
+    for (let epoch = island.epochDue(); epoch !== undefined && !island.ended; epoch = island.epochDue()) {
+      if (!island.hasReceived) {
+        const groups = this.#groupsFor(island, epoch)
+        if (!groups) return 'mail'
+        island.receive(epoch, groups)
+      }
+      gate.factsBeforeSending(island, epoch)
+      const emigrants = island.emigrants(epoch)
+      if (emigrants.length > 0 && !gate.maySend(island, epoch, emigrants)) return 'confirmation'
+      island.pass(epoch, emigrants)
+      if (this.#migrating.includes(island.number)) {
+        this.#send({ island: island.number, epoch, atCommit: island.counters.commits, ended: false, emigrants }, gate)
+      }
+      gate.factsAtEpoch(island, epoch)
+    }
+    return undefined
+  }
+
+  #groupsFor(island: Island, epoch: number): (readonly Individual[])[] | undefined {
+    const { migration, seed } = this.plan
+    const position = this.#migrating.indexOf(island.number)
+    if (!migration || position < 0 || epoch <= migration.lag) return []
+    const sentEpoch = epoch - migration.lag
+    const groups: (readonly Individual[])[] = []
+    for (const source of topologies[migration.topology].sources(this.#migrating.length, position, sentEpoch, seed)) {
+      const letters = this.#post.find(this.#migrating[source]!, sentEpoch)
+      if (!letters) return undefined
+      groups.push(letters)
+    }
+    return groups
+  }
+
+  #sendEnd(island: Island, gate: Gate): Standing {
+    const isNews = this.#migrating.includes(island.number) && !this.#post.hasEnded(island.number)
+    if (isNews) {
+      const epoch = island.counters.epochsPassed + 1
+      this.#send({ island: island.number, epoch, atCommit: island.counters.commits, ended: true, emigrants: [] }, gate)
+    }
+    return 'ended'
+  }
+
+  #send(mail: Mail, gate: Gate): void {
+    this.#post.put(mail)
+    gate.sent(mail)
+  }
+
+  /** Forgets mail that every island has taken in. */
+  forgetOldMail(): void {
+    const { migration } = this.plan
+    if (!migration) return
+    const waiting = this.#migrating.map((number) => this.island(number)).filter((island) => !island.ended)
+    const oldest = Math.min(...waiting.map((island) => island.counters.epochsPassed + 1 - migration.lag))
+    if (Number.isFinite(oldest)) this.#post.forgetBefore(oldest)
+  }
+
+  /** The epoch all migrating islands end with when this island reaches the target in its present epoch. */
+  finishEpochAfterTarget(island: Island): { readonly island: number; readonly epoch: number } {
+    const epoch = island.counters.epochsPassed + 1
+    const { migration } = this.plan
+    const steps = migration && topologies[migration.topology].diameter(this.#migrating.length)
+    // Nobody can be further ahead than the mail lets him: within `steps` hops of `lag` epochs each, so nobody
+    // has passed that epoch yet. Where the way is not known, the island ends for itself.
+    if (!migration || steps === undefined) return { island: island.number, epoch }
+    return { island: 0, epoch: epoch + steps * migration.lag }
+  }
+
+  /** The first epoch that no migrating island has passed: when an order from outside takes effect. */
+  firstOpenEpoch(): number {
+    const passed = this.islands.map((island) => (island.isControl ? 0 : island.counters.epochsPassed))
+    return Math.max(0, ...passed) + 1
+  }
+
+  /** True when this island was made from a snapshot and not from nothing. */
+  wasRestored(island: number): boolean {
+    return this.#restarted.has(island)
+  }
+}
+
+function nextTicket(island: Island, gate: Gate): Ticket | undefined {
+  if (island.tools.island.order !== 'arrival') return island.next()
+  const evaluation = gate.nextArrival(island)
+  return evaluation === undefined ? undefined : island.ticket(evaluation)
+}
+
+/** Quotas by island number: the search's budget split by share; each control has as much for itself. */
+export function quotasOf(plan: SearchPlan, simulations: number): Map<number, number> {
+  const split = splitBudget(
+    simulations,
+    plan.islands.map((island) => island.share),
+  )
+  const quotas = new Map(plan.islands.map((island, position) => [island.island, split[position]!]))
+  for (const control of plan.controls) {
+    check(control.island >= firstControl, 'controls have numbers of their own')
+    quotas.set(control.island, simulations)
+  }
+  return quotas
+}
+
+/** Mail between islands: who has sent what in which epoch, and who has ended. */
+export class Post {
+  readonly #mail = new Map<number, Map<number, readonly Individual[]>>()
+  /** Epochs in which an island sends nothing because it had ended: from .. until. */
+  readonly #silences = new Map<number, { readonly from: number; until: number }[]>()
+  readonly #recorded: (island: number, epoch: number) => Mail | undefined
+
+  constructor(recorded: (island: number, epoch: number) => Mail | undefined) {
+    this.#recorded = recorded
+  }
+
+  put(mail: Mail): void {
+    if (mail.ended) {
+      this.#silencesOf(mail.island).push({ from: mail.epoch, until: Infinity })
+    } else {
+      const sent = this.#mail.get(mail.island) ?? new Map<number, readonly Individual[]>()
+      sent.set(mail.epoch, mail.emigrants)
+      this.#mail.set(mail.island, sent)
+    }
+  }
+
+  hasEnded(island: number): boolean {
+    return this.#silencesOf(island).some((silence) => silence.until === Infinity)
+  }
+
+  /** An ended island is going again: it sends mail for the epochs after `epoch`. */
+  resume(island: number, epoch: number): void {
+    for (const silence of this.#silencesOf(island)) silence.until = Math.min(silence.until, epoch)
+  }
+
+  /** The emigrants of that epoch; none when the island had ended; undefined while it may still send. */
+  find(island: number, epoch: number): readonly Individual[] | undefined {
+    const here = this.#mail.get(island)?.get(epoch)
+    if (here) return here
+    const silent = this.#silencesOf(island).some(({ from, until }) => from <= epoch && epoch <= until)
+    if (silent) return []
+    const recorded = this.#recorded(island, epoch)
+    return recorded && !recorded.ended ? recorded.emigrants : undefined
+  }
+
+  forgetBefore(epoch: number): void {
+    for (const sent of this.#mail.values()) {
+      for (const key of sent.keys()) if (key < epoch) sent.delete(key)
+    }
+  }
+
+  #silencesOf(island: number): { readonly from: number; until: number }[] {
+    const known = this.#silences.get(island) ?? []
+    this.#silences.set(island, known)
+    return known
+  }
+}
