@@ -133,10 +133,18 @@ function layOutStruts(spec: LatticeSpec) {
 
 function layOutDrive(spec: LatticeSpec) {
   const actuators = spec.actuators ?? []
+  // Strain times cosine and sine of (phase - lag angle), times the cosine of the lag angle.
+  const turned = actuators.map((strut): readonly [number, number] => {
+    const { frequencyHz, lagSeconds = 0 } = spec.groups![strut.group]!
+    const tangent = turn * frequencyHz * lagSeconds
+    const shrink = strut.strain / (1 + tangent * tangent)
+    const [s, c] = sineAndCosine(turn * strut.phaseTurns)
+    return [shrink * (c + s * tangent), shrink * (s - c * tangent)]
+  })
   return {
     group: Int32Array.from(actuators, (strut) => 2 * strut.group),
-    strainCos: Float64Array.from(actuators, (strut) => strut.strain * cos(turn * strut.phaseTurns)),
-    strainSin: Float64Array.from(actuators, (strut) => strut.strain * sin(turn * strut.phaseTurns)),
+    strainCos: Float64Array.from(turned, ([cosine]) => cosine),
+    strainSin: Float64Array.from(turned, ([, sine]) => sine),
     limitN: Float64Array.from(actuators, (strut) => strut.forceLimitN ?? Number.POSITIVE_INFINITY),
     prescribed: (spec.prescribed ?? []).map((path): Prescribed => {
       const [sine, cosine] = sineAndCosine(turn * path.phaseTurns)
@@ -234,8 +242,9 @@ function checkStruts(spec: LatticeSpec): void {
 function checkDrive(spec: LatticeSpec): void {
   const groups = spec.groups ?? []
   const isGroup = (g: number) => Number.isInteger(g) && g >= 0 && g < groups.length
-  for (const [i, { frequencyHz }] of groups.entries()) {
+  for (const [i, { frequencyHz, lagSeconds = 0 }] of groups.entries()) {
     demand(isAtLeast0(frequencyHz), `groups[${i}].frequencyHz`, frequencyHz, 'a finite frequency >= 0')
+    demand(isAtLeast0(lagSeconds), `groups[${i}].lagSeconds`, lagSeconds, 'a finite time >= 0')
   }
   for (const [i, strut] of (spec.actuators ?? []).entries()) {
     const at = `actuators[${i}]`

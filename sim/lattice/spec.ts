@@ -50,6 +50,11 @@ export interface PrescribedSpec {
 /** Struts and nodes that share one drive frequency. */
 export interface DriveGroupSpec {
   readonly frequencyHz: number
+  /**
+   * Actuators follow their command with a first-order lag of this time constant: the steady answer to a sine is
+   * smaller by cos d and later by d, tan d = 2 pi frequency * lag. Prescribed nodes have none.
+   */
+  readonly lagSeconds?: number
 }
 
 /** Ground as heights at equal spacing, straight lines between them, level beyond the ends. */

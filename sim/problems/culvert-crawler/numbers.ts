@@ -1,0 +1,68 @@
+// The numbers of the crawler's world, each with where it comes from. SI units. The machine and the water works
+// are invented; the numbers are ordinary ones of the trade, good enough for comparing designs, not for building.
+
+export const numbers = {
+  gravityMps2: 9.81,
+
+  // Rubber. Young's modulus from Shore A hardness after A. N. Gent, "On the relation between indentation hardness
+  // and Young's modulus" (1958): E[MPa] = 0.0981 (56 + 7.62336 S) / (0.137505 (254 - 2.54 S)) for S = 10, 20, 30.
+  youngPa: { soft: 0.412683e6, firm: 0.731922e6, hard: 1.142372e6 },
+  // Platinum-cure silicone rubber, makers' data sheets, from memory: 1030 to 1080 kg/m^3.
+  rubberKgpm3: 1070,
+  // A round strut of 8 mm: a common size to cast or to cut from cord.
+  strutAreaM2: Math.PI * 0.004 * 0.004,
+  // c/k of the struts. tan delta = c w / k is then 0.06 to 0.19 between 10 and 30 Hz, where the body's own modes
+  // are; silicone rubbers at low frequency: about 0.05 to 0.2 (from memory).
+  relaxationSeconds: 1e-3,
+  // A moulded joint with its pin, or the like.
+  jointKg: 0.004,
+
+  // Actuators: bellows or sleeved tubes on compressed air. Stroke of fluidic muscles is about 25 % of their length
+  // (makers' data sheets); the wall is taken as soft as the softest strut.
+  strainMost: 0.25,
+  // Gauge pressure and bore: the force limit is their product, 5.7 N.
+  pressurePa: 50e3,
+  boreAreaM2: Math.PI * 0.006 * 0.006,
+  actuatorFittingKg: 0.004,
+  // Valves and hoses limit how fast a bellows fills: the largest rate of strain, 1/s. Assumed.
+  strainRateMost: 1.2,
+
+  // Feet. Rubber on wet concrete and pipe walls slides at roughly 0.3 to 1 (trade tables, wide scatter); the floor's
+  // own number is drawn per simulation. Factors per foot, towards +x and towards -x. Directional pads (bristles,
+  // scales) slide several times more easily one way; the factors are assumed.
+  feet: {
+    bare: { forward: 1, backward: 1 },
+    skid: { forward: 0.35, backward: 0.35 },
+    pad: { forward: 0.4, backward: 1.4 },
+    'pad-reversed': { forward: 1.4, backward: 0.4 },
+  },
+  padKg: 0.002,
+  frictionMost: 1.3,
+  // Sliding slower than this is creep of the friction model (see sim/lattice/kernel.ts).
+  creepMps: 1e-3,
+
+  // Ground contact: a node's weight sinks it by about 0.3 mm.
+  contactNpm: 800,
+  contactNspm2: 2000,
+  depthLimitM: 0.01,
+
+  // The sensor puck and the ring that holds it on an upper node.
+  puckKg: 0.05,
+  puckRadiusM: 0.018,
+
+  // The trial.
+  settleSeconds: 0.6,
+  // Uniform drag while settling only, so that nothing swings when the trial starts.
+  settleDragNspm: 0.15,
+  rampSeconds: 0.5,
+  trialSeconds: 8,
+  /** Longest step; shorter where a body asks for it. */
+  stepSecondsMost: 1e-3,
+  framesPerSecond: 25,
+  samplesPerFrame: 4,
+
+  // Collapse: a bay that keeps less of its area than this, or a strut outside these multiples of its length.
+  bayAreaLeast: 0.2,
+  strutRatioLeast: 0.5,
+  strutRatioMost: 1.7,
+} as const

@@ -1,0 +1,6 @@
+export function describeCrawler(_: unknown): readonly string[] {
+  return []
+}
+export function cautionsOf(_: unknown): [] {
+  return []
+}
