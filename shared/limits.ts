@@ -56,6 +56,8 @@ export const limits = {
   attemptsAlone: 2,
   /** Evaluations that travel to a worker together. */
   dispatchBatch: 256,
+  /** Confirmations of committed evaluations that the engine remembers before it asks the record again. */
+  confirmedInMemory: 100_000,
   /** Rows of one kind in one transaction of the record. */
   appendBatch: 8_192,
   /** Simulation threads of one machine. */

@@ -168,6 +168,16 @@ export const refusals = {
     text: 'Another coordinator has taken over this record',
     cure: 'Nothing was written after the takeover; look at the coordinator that holds the record now.',
   },
+  'network-file-system': {
+    exitCode: configuration,
+    text: 'A record cannot lie on a network file system',
+    cure: 'Name a folder on a local disk with --record; copy the finished record where you like.',
+  },
+  'sqlite-unsafe': {
+    exitCode: configuration,
+    text: 'This version of SQLite can damage a record',
+    cure: 'Install the packages again with `npm ci`, which brings the version that was tested.',
+  },
   'record-differs': {
     exitCode: badData,
     text: 'Recomputing the search gave another digest than the record holds',

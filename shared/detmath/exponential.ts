@@ -1,7 +1,7 @@
 // exp and log, ported from fdlibm (e_exp.c, e_log.c; Sun Microsystems 1993, see NOTICE.txt). Errors below
 // 1 ulp by their authors' analysis; measured in tests/reference/detmath.test.ts.
 
-import { highWord, powerOfTwo, withHighWord } from './words.js'
+import { highWord, powerOfTwo, scaleByPowerOfTwo, withHighWord } from './words.js'
 
 /** ln 2 in two parts; the first has 21 trailing zero bits, so that small integers times it are exact. */
 export const ln2High = 0.6931471803691238
@@ -9,29 +9,32 @@ export const ln2Low = 1.9082149292705877e-10
 const perLn2 = Math.LOG2E
 const two54 = 18014398509481984
 
-/**
- * e to the power of x. Method: x = k ln 2 + r with |r| <= ln 2 / 2, e^r from the rational approximation
- * e^r = 1 + 2r / (R(r) - r), where R(r) = r (e^r + 1) / (e^r - 1) is a polynomial in r * r.
- */
+/** e to the power of x. */
 export function exp(x: number): number {
+  return expTimesPowerOfTwo(x, 0)
+}
+
+/**
+ * e^x * 2^n with one rounding at the end, n from -2 to 2. Method: x = k ln 2 + r with |r| <= ln 2 / 2; e^r from
+ * the rational approximation e^r = 1 + 2r / (R(r) - r), where R(r) = r (e^r + 1) / (e^r - 1) is a polynomial
+ * in r * r.
+ */
+export function expTimesPowerOfTwo(x: number, n: number): number {
   if (Number.isNaN(x)) return x
-  if (x > 709.782712893384) return Infinity
-  if (x < -745.1332191019411) return 0
+  if (x > 712) return Infinity
+  if (x < -750) return 0
   const size = Math.abs(x)
-  let k = 0
-  let upper = x
-  let lower = 0
-  if (size > 0.34657359027997264) {
-    k = size < 1.0397207708399179 ? (x < 0 ? -1 : 1) : Math.trunc(perLn2 * x + (x < 0 ? -0.5 : 0.5))
-    upper = x - k * ln2High
-    lower = k * ln2Low
-    x = upper - lower
-  } else if (size < 3.725290298461914e-9 /* 2^-28 */) return 1 + x
-  const c = x - expRational(x * x)
-  if (k === 0) return 1 - ((x * c) / (c - 2) - x)
-  const y = 1 - (lower - (x * c) / (2 - c) - upper)
-  if (k === 1024) return y * 2 * powerOfTwo(1023)
-  return k >= -1021 ? y * powerOfTwo(k) : y * powerOfTwo(k + 1000) * 9.332636185032189e-302 /* 2^-1000 */
+  if (size <= 0.34657359027997264) {
+    if (size < 3.725290298461914e-9 /* 2^-28 */) return (1 + x) * powerOfTwo(n)
+    const c = x - expRational(x * x)
+    return (1 - ((x * c) / (c - 2) - x)) * powerOfTwo(n)
+  }
+  const k = size < 1.0397207708399179 ? (x < 0 ? -1 : 1) : Math.trunc(perLn2 * x + (x < 0 ? -0.5 : 0.5))
+  const upper = x - k * ln2High
+  const lower = k * ln2Low
+  const r = upper - lower
+  const c = r - expRational(r * r)
+  return scaleByPowerOfTwo(1 - (lower - (r * c) / (2 - c) - upper), k + n)
 }
 
 /** R(r) - 2 over r * r, as a polynomial in t = r * r, times t (coefficients of e_exp.c). */

@@ -2,6 +2,7 @@
 // NOTICE.txt). The argument is first reduced to [-pi/4, pi/4] (reduction.ts), as a sum of two doubles.
 
 import { reduceByHalfPi, reduced } from './reduction.js'
+import { withoutLowWord } from './words.js'
 
 /** sin of (x + y) on [-pi/4, pi/4], y the tail of x. */
 function kernelSin(x: number, y: number): number {
@@ -46,4 +47,62 @@ export function cos(x: number): number {
   const quadrant = reduceByHalfPi(x)
   const y = (quadrant & 1) === 0 ? kernelCos(reduced[0]!, reduced[1]!) : kernelSin(reduced[0]!, reduced[1]!)
   return ((quadrant + 1) & 2) === 0 ? y : -y
+}
+
+/** tan of (x + y) on [-pi/4, pi/4], or -1/tan where `inverted` (fdlibm k_tan.c). */
+function kernelTan(x: number, y: number, inverted: boolean): number {
+  const negative = x < 0
+  const large = Math.abs(x) >= 0.67434
+  if (large) {
+    const z = 0.7853981633974483 - (negative ? -x : x)
+    x = z + (3.061616997868383e-17 - (negative ? -y : y))
+    y = 0
+  }
+  const z = x * x
+  const r = tanTail(z, x, y)
+  const w = x + r
+  if (large) {
+    const v = inverted ? -1 : 1
+    const result = v - 2 * (x - ((w * w) / (w + v) - r))
+    return negative ? -result : result
+  }
+  if (!inverted) return w
+  // -1 / (x + r), carefully: the quotient of the rounded sum alone would lose a bit.
+  const upper = withoutLowWord(w)
+  const v = r - (upper - x)
+  const quotient = -1 / w
+  const t = withoutLowWord(quotient)
+  return t + quotient * (1 + t * upper + t * v)
+}
+
+/** tan(x + y) - x (coefficients of k_tan.c). */
+function tanTail(z: number, x: number, y: number): number {
+  const w = z * z
+  const odd =
+    0.13333333333320124 +
+    w *
+      (0.021869488294859542 +
+        w *
+          (0.0035920791075913124 +
+            w * (0.0005880412408202641 + w * (7.817944429395571e-5 + w * -1.8558637485527546e-5))))
+  const even =
+    z *
+    (0.05396825397622605 +
+      w *
+        (0.0088632398235993 +
+          w *
+            (0.0014562094543252903 +
+              w * (0.0002464631348184699 + w * (7.140724913826082e-5 + w * 2.590730518636337e-5)))))
+  const s = z * x
+  return y + z * (s * (odd + even) + y) + 0.3333333333333341 * s
+}
+
+/** Tangent of x in radians. */
+export function tan(x: number): number {
+  const size = Math.abs(x)
+  if (size < 3.725290298461914e-9 /* 2^-28 */) return x
+  if (size <= 0.7853981633974483) return kernelTan(x, 0, false)
+  if (!(size < Infinity)) return NaN
+  const quadrant = reduceByHalfPi(x)
+  return kernelTan(reduced[0]!, reduced[1]!, (quadrant & 1) === 1)
 }
