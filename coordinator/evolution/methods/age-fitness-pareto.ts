@@ -1,9 +1,8 @@
 // Age-fitness Pareto optimisation: age is one more objective, so that young, still poor lineages live long enough to
 // grow up, and every generation brings newcomers of age 0.
 //
-// What a generation is when proposals overlap. The island never waits for a generation: it proposes as long as
-// somebody may breed. A generation ends with every `population` commits (after the first `population`, which fill
-// the seats). Then members and the committed offspring of the generation are reduced to the population, and the
+// What a generation is when proposals overlap. The island waits once, until all founders are committed, and never
+// for a generation. A generation ends with every `population` commits after the founders. Then members and the committed offspring of the generation are reduced to the population, and the
 // survivors grow one generation older. Among every `population` births after the founders, the first `newcomers`
 // are fresh random individuals. Offspring of the generation in progress are no members and do not breed.
 //
@@ -18,18 +17,11 @@
 
 import { z } from 'zod'
 import type { Stream } from '../../../shared/streams.js'
+import { numberSetting } from '../settings.js'
 import type { Birth, Individual, Method, MethodContext, MethodMachine, Placement } from '../types.js'
 import { survivorsOf } from './age-fitness-reduction.js'
 import { newcomersOf, placeArrivals } from './arrivals.js'
-import {
-  type BreedingRules,
-  breed,
-  breedingRules,
-  breedingSettings,
-  fewestParents,
-  founderBirth,
-  numberSetting,
-} from './breeding.js'
+import { type BreedingRules, breed, breedingRules, breedingSettings, founderBirth } from './breeding.js'
 import { byParetoRank, paretoJudgement } from './pareto-ranking.js'
 import { idsOf, savedCount, savedIds } from './saved.js'
 import { hasFailed, uniformIndex } from './selection.js'
@@ -38,6 +30,8 @@ interface State {
   generation: number
   /** Births proposed so far, founders and newcomers included. */
   births: number
+  /** Founders committed; ends at the population. */
+  founders: number
   /** Commits of the generation in progress. */
   committed: number
   members: Individual[]
@@ -66,7 +60,7 @@ class AgeFitnessMachine implements MethodMachine {
     const state = this.#state
     const { population, variation } = this.#context
     const newcomer = state.births < population || state.births % population < this.#newcomers
-    if (!newcomer && state.members.length < fewestParents(this.#breeding, population)) return 'wait'
+    if (state.births >= population && state.founders < population) return 'wait'
     state.births++
     if (newcomer) return founderBirth(variation, stream)
     this.#breeders ??= breedersOf(state.members)
@@ -80,14 +74,16 @@ class AgeFitnessMachine implements MethodMachine {
   commit(individual: Individual, stream: Stream): void {
     const state = this.#state
     individual.age = individual.parents.length === 0 ? 0 : individual.age + state.generation
-    if (state.members.length < this.#context.population) {
+    const { population } = this.#context
+    const isFounder = state.founders < population
+    if (isFounder) state.founders++
+    if (state.members.length < population) {
       state.members.push(individual)
       this.#breeders = undefined
       return
     }
     state.offspring.push(individual)
-    state.committed++
-    if (state.committed === this.#context.population) this.#endGeneration(stream)
+    if (!isFounder && ++state.committed === population) this.#endGeneration(stream)
   }
 
   #endGeneration(stream: Stream): void {
@@ -132,9 +128,17 @@ class AgeFitnessMachine implements MethodMachine {
   }
 
   save(): unknown {
-    const { generation, births, committed, members, offspring } = this.#state
+    const { generation, births, founders, committed, members, offspring } = this.#state
     const ages = this.held().map((one) => one.age)
-    return { generation, births, committed, members: idsOf(members), offspring: idsOf(offspring), ages }
+    return {
+      generation,
+      births,
+      founders,
+      committed,
+      members: idsOf(members),
+      offspring: idsOf(offspring),
+      ages,
+    }
   }
 }
 
@@ -146,6 +150,7 @@ function breedersOf(members: readonly Individual[]): readonly Individual[] {
 const savedShape = z.strictObject({
   generation: savedCount,
   births: savedCount,
+  founders: savedCount,
   committed: savedCount,
   members: savedIds,
   offspring: savedIds,
@@ -192,6 +197,13 @@ export const ageFitnessPareto: Method = {
   pace: 'steady',
   objectives: 'any',
   create: (context) =>
-    new AgeFitnessMachine(context, { generation: 0, births: 0, committed: 0, members: [], offspring: [] }),
+    new AgeFitnessMachine(context, {
+      generation: 0,
+      births: 0,
+      founders: 0,
+      committed: 0,
+      members: [],
+      offspring: [],
+    }),
   restore,
 }

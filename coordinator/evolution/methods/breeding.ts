@@ -2,9 +2,9 @@
 // draw comes from the birth's own stream, in a fixed order: first parent, whether to cross, second parent,
 // crossover, whether to mutate, mutation.
 
-import { check } from '../../../shared/check.js'
 import type { Stream } from '../../../shared/streams.js'
-import type { Birth, Individual, MethodContext, Settings, SettingTable, Variation } from '../types.js'
+import { numberSetting } from '../settings.js'
+import type { Birth, Individual, MethodContext, SettingTable, Variation } from '../types.js'
 
 export interface BreedingRules {
   readonly variation: Variation
@@ -38,25 +38,6 @@ export function breedingRules(context: MethodContext): BreedingRules {
     crossoverChance: numberSetting(context.settings, 'crossoverChance'),
     mutationChance: numberSetting(context.settings, 'mutationChance'),
   }
-}
-
-/** Checked settings hold a number here, or it is our own mistake. */
-export function numberSetting(settings: Settings, name: string): number {
-  const value = settings[name]
-  check(typeof value === 'number', `setting ${name} is a number`)
-  return value
-}
-
-/** Checked settings hold a word here, or it is our own mistake. */
-export function wordSetting(settings: Settings, name: string): string {
-  const value = settings[name]
-  check(typeof value === 'string', `setting ${name} is a word`)
-  return value
-}
-
-/** How many members a method needs before it can breed: two to cross, unless the population is one. */
-export function fewestParents(rules: BreedingRules, population: number): number {
-  return rules.crossoverChance > 0 && population > 1 ? 2 : 1
 }
 
 export function founderBirth(variation: Variation, stream: Stream): Birth {

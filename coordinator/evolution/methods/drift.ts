@@ -4,7 +4,7 @@
 
 import type { Method } from '../types.js'
 import { breedingSettings } from './breeding.js'
-import { restoreSteady, type SteadyRules, SteadyStateMachine } from './steady-state.js'
+import { createSteady, restoreSteady, type SteadyRules } from './steady-state.js'
 
 const rules: SteadyRules = { tournament: { size: 1, distinct: false }, replacement: 'random' }
 
@@ -17,6 +17,6 @@ export const drift: Method = {
   defaultPopulation: 100,
   pace: 'steady',
   objectives: 'any',
-  create: (context) => new SteadyStateMachine(context, rules, [], 0),
+  create: (context) => createSteady(context, rules),
   restore: (context, saved, individual) => restoreSteady(context, rules, saved, individual),
 }

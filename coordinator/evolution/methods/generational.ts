@@ -7,17 +7,10 @@
 import { z } from 'zod'
 import { check } from '../../../shared/check.js'
 import type { Stream } from '../../../shared/streams.js'
+import { choiceSetting, numberSetting } from '../settings.js'
 import type { Birth, Individual, Method, MethodContext, MethodMachine, Placement } from '../types.js'
 import { type Judgement, newcomersOf, placeArrivals } from './arrivals.js'
-import {
-  type BreedingRules,
-  breed,
-  breedingRules,
-  breedingSettings,
-  founderBirth,
-  numberSetting,
-  wordSetting,
-} from './breeding.js'
+import { type BreedingRules, breed, breedingRules, breedingSettings, founderBirth } from './breeding.js'
 import { idsOf, savedCount, savedIds } from './saved.js'
 import {
   byScoreThenId,
@@ -57,7 +50,7 @@ const parentRules: { readonly [name: string]: ParentRule } = {
   tournament: (context) => {
     const rules = {
       size: numberSetting(context.settings, 'tournament'),
-      distinct: wordSetting(context.settings, 'contestants') === 'distinct',
+      distinct: choiceSetting(context.settings, 'contestants') === 'distinct',
     }
     return (ranked, stream, except) =>
       tournament(ranked.length, rules, (a, b) => compareScores(ranked[a]!, ranked[b]!), stream, except)
@@ -93,7 +86,7 @@ class GenerationalMachine implements MethodMachine {
   #ranked: readonly Individual[] | undefined
 
   constructor(context: MethodContext, state: State) {
-    const rule = parentRules[wordSetting(context.settings, 'parents')]
+    const rule = parentRules[choiceSetting(context.settings, 'parents')]
     check(rule !== undefined, 'the way parents are drawn is a row of the table')
     this.#context = context
     this.#breeding = breedingRules(context)

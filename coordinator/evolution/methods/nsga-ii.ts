@@ -10,16 +10,10 @@
 import { z } from 'zod'
 import { check } from '../../../shared/check.js'
 import type { Stream } from '../../../shared/streams.js'
+import { numberSetting } from '../settings.js'
 import type { Birth, Individual, Method, MethodContext, MethodMachine, Placement } from '../types.js'
 import { newcomersOf, placeArrivals } from './arrivals.js'
-import {
-  type BreedingRules,
-  breed,
-  breedingRules,
-  breedingSettings,
-  founderBirth,
-  numberSetting,
-} from './breeding.js'
+import { type BreedingRules, breed, breedingRules, breedingSettings, founderBirth } from './breeding.js'
 import {
   byParetoRank,
   crowdedComparison,

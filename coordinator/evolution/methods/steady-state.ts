@@ -2,24 +2,17 @@
 // of the committed members, and every committed child may take one seat, by a replacement rule. Those in flight
 // are no members: they neither breed nor can be displaced.
 //
-// Founders are always proposed first, `population` of them. A founder that finds the seats taken (by arrivals or by
-// children that were quicker) enters by the replacement rule like a child.
+// Nobody breeds before the last founder is committed: children of the first few would fill the lookahead, and
+// founders that happen to be proposed early (or to be cheap) would take over a flat landscape. That costs idle
+// slots once in a search. A founder that finds the seats taken by arrivals enters by the replacement rule.
 
 import { z } from 'zod'
 import { check } from '../../../shared/check.js'
 import type { Stream } from '../../../shared/streams.js'
+import { choiceSetting, numberSetting } from '../settings.js'
 import type { Birth, Individual, Method, MethodContext, MethodMachine, Placement } from '../types.js'
 import { type Judgement, placeArrivals, replaceAt } from './arrivals.js'
-import {
-  type BreedingRules,
-  breed,
-  breedingRules,
-  breedingSettings,
-  fewestParents,
-  founderBirth,
-  numberSetting,
-  wordSetting,
-} from './breeding.js'
+import { type BreedingRules, breed, breedingRules, breedingSettings, founderBirth } from './breeding.js'
 import { replacementNamed, replacements } from './replacement.js'
 import { idsOf, savedCount, savedIds } from './saved.js'
 import { byScoreThenId, compareScores, type TournamentRules, tournament } from './selection.js'
@@ -29,36 +22,41 @@ const judgement: Judgement = {
   better: (a, b) => compareScores(a, b) < 0,
 }
 
+/** How many founders were proposed and committed; both end at the population. */
+interface Founders {
+  proposed: number
+  committed: number
+}
+
 export interface SteadyRules {
   readonly tournament: TournamentRules
   readonly replacement: string
 }
 
-export class SteadyStateMachine implements MethodMachine {
+class SteadyStateMachine implements MethodMachine {
   readonly #context: MethodContext
   readonly #rules: SteadyRules
   readonly #breeding: BreedingRules
-  readonly #fewest: number
   /** In order of entry. */
   readonly #members: Individual[]
-  #foundersProposed: number
+  readonly #founders: Founders
 
-  constructor(context: MethodContext, rules: SteadyRules, members: Individual[], foundersProposed: number) {
+  constructor(context: MethodContext, rules: SteadyRules, members: Individual[], founders: Founders) {
     check(members.length <= context.population, 'members fit the population')
     this.#context = context
     this.#rules = rules
     this.#breeding = breedingRules(context)
-    this.#fewest = fewestParents(this.#breeding, context.population)
     this.#members = members
-    this.#foundersProposed = foundersProposed
+    this.#founders = founders
   }
 
   propose(stream: Stream): Birth | 'wait' {
-    if (this.#foundersProposed < this.#context.population) {
-      this.#foundersProposed++
-      return founderBirth(this.#context.variation, stream)
+    const { population, variation } = this.#context
+    if (this.#founders.proposed < population) {
+      this.#founders.proposed++
+      return founderBirth(variation, stream)
     }
-    if (this.#members.length < this.#fewest) return 'wait'
+    if (this.#founders.committed < population) return 'wait'
     return breed(this.#breeding, this.#members, this.#draw, stream)
   }
 
@@ -68,6 +66,7 @@ export class SteadyStateMachine implements MethodMachine {
     tournament(this.#members.length, this.#rules.tournament, this.#prefer, stream, except)
 
   commit(individual: Individual, stream: Stream): void {
+    if (this.#founders.committed < this.#context.population) this.#founders.committed++
     if (this.#members.length < this.#context.population) {
       this.#members.push(individual)
       return
@@ -101,30 +100,38 @@ export class SteadyStateMachine implements MethodMachine {
   }
 
   save(): unknown {
-    return { foundersProposed: this.#foundersProposed, members: idsOf(this.#members) }
+    return { founders: { ...this.#founders }, members: idsOf(this.#members) }
   }
 }
 
-const savedShape = z.strictObject({ foundersProposed: savedCount, members: savedIds })
+const savedShape = z.strictObject({
+  founders: z.strictObject({ proposed: savedCount, committed: savedCount }),
+  members: savedIds,
+})
 
-/** The machine that save() described; `drift` uses it too. */
+/** A new machine; `drift` uses it too. */
+export function createSteady(context: MethodContext, rules: SteadyRules): MethodMachine {
+  return new SteadyStateMachine(context, rules, [], { proposed: 0, committed: 0 })
+}
+
+/** The machine that save() described. */
 export function restoreSteady(
   context: MethodContext,
   rules: SteadyRules,
   saved: unknown,
   individual: (id: number) => Individual,
-): SteadyStateMachine {
+): MethodMachine {
   const state = savedShape.parse(saved)
-  return new SteadyStateMachine(context, rules, state.members.map(individual), state.foundersProposed)
+  return new SteadyStateMachine(context, rules, state.members.map(individual), state.founders)
 }
 
 function rulesOf(context: MethodContext): SteadyRules {
   return {
     tournament: {
       size: numberSetting(context.settings, 'tournament'),
-      distinct: wordSetting(context.settings, 'contestants') === 'distinct',
+      distinct: choiceSetting(context.settings, 'contestants') === 'distinct',
     },
-    replacement: wordSetting(context.settings, 'replace'),
+    replacement: choiceSetting(context.settings, 'replace'),
   }
 }
 
@@ -159,6 +166,6 @@ export const steadyState: Method = {
   defaultPopulation: 100,
   pace: 'steady',
   objectives: 'one',
-  create: (context) => new SteadyStateMachine(context, rulesOf(context), [], 0),
+  create: (context) => createSteady(context, rulesOf(context)),
   restore: (context, saved, individual) => restoreSteady(context, rulesOf(context), saved, individual),
 }
