@@ -1,0 +1,93 @@
+// The embedded dispatcher: threads and processes of this machine. It keeps an inbox of facts and lets the caller wait
+// for it; everything about threads lives in the pool, which is handed in (coordinator/main.ts joins the two).
+
+import { BrokenPromise } from '../../shared/check.js'
+import type { DispatchFact, WorkItem } from '../../shared/result.js'
+import type { Dispatcher, DispatchStatus } from '../engine/ports.js'
+
+/** What the dispatcher needs of whoever simulates here; worker/pool.ts has it. */
+export interface LocalPool {
+  start(): Promise<void>
+  submit(items: readonly WorkItem[]): void
+  status(): DispatchStatus
+  close(): Promise<void>
+}
+export interface LocalPoolEvents {
+  fact(fact: DispatchFact): void
+  failed(error: Error): void
+}
+
+/**
+ * A dispatcher over a pool of this machine. `createPool` makes the pool with the events it is to report to, e.g.
+ * `(events) => createPool({ pluginFile, seed, sharedConditions, threads }, events)`.
+ * facts() throws what made the pool fail: a Refusal ('no-workers') or a broken promise.
+ */
+export function localDispatcher(createPool: (events: LocalPoolEvents) => LocalPool): Dispatcher {
+  return new LocalDispatcher(createPool)
+}
+
+class LocalDispatcher implements Dispatcher {
+  private readonly pool: LocalPool
+  private inbox: DispatchFact[] = []
+  private failure: Error | undefined
+  private wake: (() => void) | undefined
+  private closed = false
+
+  constructor(createPool: (events: LocalPoolEvents) => LocalPool) {
+    this.pool = createPool({
+      fact: (fact) => {
+        this.inbox.push(fact)
+        this.wake?.()
+      },
+      failed: (error) => {
+        this.failure ??= error
+        this.wake?.()
+      },
+    })
+  }
+
+  start(): Promise<void> {
+    return this.pool.start()
+  }
+
+  submit(items: readonly WorkItem[]): void {
+    if (items.length > 0) this.pool.submit(items)
+  }
+
+  async facts(waitMs: number): Promise<DispatchFact[]> {
+    if (this.wake !== undefined) throw new BrokenPromise('one caller at a time waits for facts')
+    if (this.isQuiet()) await this.somethingHappens(waitMs)
+    // What the other threads have answered in the same moment comes along: one append for all of it.
+    else await new Promise((resolve) => setImmediate(resolve))
+    if (this.failure !== undefined) throw this.failure
+    const facts = this.inbox
+    this.inbox = []
+    return facts
+  }
+
+  status(): DispatchStatus {
+    return this.pool.status()
+  }
+
+  async close(): Promise<void> {
+    this.closed = true
+    this.wake?.()
+    await this.pool.close()
+  }
+
+  private isQuiet(): boolean {
+    return this.inbox.length === 0 && this.failure === undefined && !this.closed
+  }
+
+  private somethingHappens(waitMs: number): Promise<void> {
+    return new Promise((resolve) => {
+      const done = () => {
+        clearTimeout(timer)
+        this.wake = undefined
+        resolve()
+      }
+      const timer = setTimeout(done, waitMs)
+      this.wake = done
+    })
+  }
+}

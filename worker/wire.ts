@@ -1,0 +1,134 @@
+// What travels between the pool and those who simulate. Batches are packed into a few flat arrays, whose memory is
+// handed over instead of copied: a trivial simulation must not cost more to send than to run.
+
+import { check } from '../shared/check.js'
+import type { EvaluationResult, SimulationFailure, WorkItem } from '../shared/result.js'
+
+/** What whoever simulates must know, once. */
+export interface SimulatorSettings {
+  /** The pinned bundle. */
+  readonly pluginFile: string
+  readonly seed: number
+  readonly sharedConditions: boolean
+}
+
+export interface BatchMessage {
+  readonly batch: number
+  /** Five numbers an item: individual, firstReplicate, replicates, start and end of its genome in `genomes`. */
+  readonly items: Float64Array<ArrayBuffer>
+  readonly genomes: Uint8Array<ArrayBuffer>
+}
+
+/** Results of items first, first + 1, ... of a batch. */
+export interface DoneMessage {
+  readonly kind: 'done'
+  readonly batch: number
+  readonly first: number
+  /** Three numbers an item: CPU seconds, wall seconds, how many values it has. */
+  readonly numbers: Float64Array<ArrayBuffer>
+  /** The values of all items, one after the other. */
+  readonly values: Float64Array<ArrayBuffer>
+  /** 32 bytes an item. */
+  readonly digests: Uint8Array<ArrayBuffer>
+  /** Only items that have failures: place in this message, then the failures. */
+  readonly failures: readonly (readonly [number, readonly SimulationFailure[]])[]
+}
+/** The other things a simulator says. */
+export type SimulatorMessage =
+  | { readonly kind: 'ready' }
+  /** The bundle cannot be loaded. */
+  | { readonly kind: 'unusable'; readonly reason: string }
+  /** A promise of our own code was broken; the whole house stops. */
+  | { readonly kind: 'broken'; readonly promise: string }
+  | DoneMessage
+
+const itemNumbers = 5
+const resultNumbers = 3
+const digestBytes = 32
+
+export interface PackedItem {
+  readonly individual: number
+  readonly firstReplicate: number
+  readonly replicates: number
+  readonly genome: Uint8Array
+}
+
+/** Copies the items into a message of their own memory. */
+export function packBatch(batch: number, list: readonly WorkItem[]): BatchMessage {
+  const items = new Float64Array(list.length * itemNumbers)
+  const genomes = new Uint8Array(list.reduce((sum, item) => sum + item.genome.length, 0))
+  let end = 0
+  for (const [i, item] of list.entries()) {
+    genomes.set(item.genome, end)
+    items.set(
+      [item.individual, item.firstReplicate, item.replicates, end, end + item.genome.length],
+      i * itemNumbers,
+    )
+    end += item.genome.length
+  }
+  return { batch, items, genomes }
+}
+
+export function batchLength(message: BatchMessage): number {
+  return message.items.length / itemNumbers
+}
+
+export function unpackItem(message: BatchMessage, index: number): PackedItem {
+  const at = index * itemNumbers
+  check(at + itemNumbers <= message.items.length, 'an item asked for is in its batch')
+  return {
+    individual: message.items[at]!,
+    firstReplicate: message.items[at + 1]!,
+    replicates: message.items[at + 2]!,
+    genome: message.genomes.subarray(message.items[at + 3]!, message.items[at + 4]!),
+  }
+}
+
+/** One simulated item. */
+export interface Simulated {
+  readonly result: EvaluationResult
+  readonly digest: Uint8Array
+  readonly cpuSeconds: number
+  readonly wallSeconds: number
+}
+
+export function packDone(batch: number, first: number, list: readonly Simulated[]): DoneMessage {
+  const numbers = new Float64Array(list.length * resultNumbers)
+  const values = new Float64Array(list.reduce((sum, { result }) => sum + result.values.length, 0))
+  const digests = new Uint8Array(list.length * digestBytes)
+  const failures: [number, readonly SimulationFailure[]][] = []
+  let end = 0
+  for (const [i, { result, digest, cpuSeconds, wallSeconds }] of list.entries()) {
+    numbers.set([cpuSeconds, wallSeconds, result.values.length], i * resultNumbers)
+    values.set(result.values, end)
+    digests.set(digest, i * digestBytes)
+    if (result.failures.length > 0) failures.push([i, result.failures])
+    end += result.values.length
+  }
+  return { kind: 'done', batch, first, numbers, values, digests, failures }
+}
+
+/** The results of a message, each with memory of its own, so that keeping one does not keep the whole message. */
+export function unpackDone(message: DoneMessage): Simulated[] {
+  const failures = new Map(message.failures)
+  const list: Simulated[] = []
+  let end = 0
+  for (let i = 0; i * resultNumbers < message.numbers.length; i++) {
+    const start = end
+    end += message.numbers[i * resultNumbers + 2]!
+    list.push({
+      result: { values: message.values.slice(start, end), failures: failures.get(i) ?? [] },
+      digest: message.digests.slice(i * digestBytes, (i + 1) * digestBytes),
+      cpuSeconds: message.numbers[i * resultNumbers]!,
+      wallSeconds: message.numbers[i * resultNumbers + 1]!,
+    })
+  }
+  check(end === message.values.length, 'every value of a message belongs to one of its results')
+  return list
+}
+
+/** The memory of a message that may be handed over instead of copied. */
+export function transferable(message: BatchMessage | DoneMessage): ArrayBuffer[] {
+  if ('genomes' in message) return [message.items.buffer, message.genomes.buffer]
+  return [message.numbers.buffer, message.values.buffer, message.digests.buffer]
+}
