@@ -123,6 +123,7 @@ function addUp(total, counts) {
 }
 
 function runPhase(phase, env, scratch, without, total) {
+  if (phase.needs && listProject(phase, env).length === 0) return 'no tests'
   const missing = findNeeds(phase, env, without)
   if (missing.length === 0) {
     const counts = phase.commands ? runCommands(phase, env) : runProject(phase, env, scratch)

@@ -117,15 +117,18 @@ function unpackFromDebs(name, packages, folder) {
   mkdirSync(join(folder, '..'), { recursive: true })
   const half = mkdtempSync(`${folder}-`)
   try {
-    if (!packages.every((one) => command('apt-get', ['-qq', 'download', one], { cwd: half }))) return false
+    // Which of the libraries are packages of their own differs between releases: what is not there is not needed.
+    for (const one of packages) command('apt-get', ['-qq', 'download', one], { cwd: half, stdio: 'ignore' })
     const debs = readdirSync(half).filter((file) => file.endsWith('.deb'))
-    if (!debs.every((deb) => command('dpkg', ['-x', deb, '.'], { cwd: half }))) return false
+    if (debs.length === 0 || !debs.every((deb) => command('dpkg', ['-x', deb, '.'], { cwd: half })))
+      return false
     for (const deb of debs) rmSync(join(half, deb))
     const libraries = readdirSync(join(half, 'usr', 'lib')).filter((entry) => entry.endsWith('-linux-gnu'))
     const path = libraries.map((entry) => `"$here/usr/lib/${entry}"`).join(':')
     const script = `#!/bin/sh\nhere=$(dirname "$0")\nLD_LIBRARY_PATH=${path} exec "$here/usr/bin/${name}" "$@"\n`
     writeFileSync(join(half, 'run'), script)
     chmodSync(join(half, 'run'), 0o755)
+    if (!command(join(half, 'run'), ['--version'])) return false
     rmSync(folder, { recursive: true, force: true })
     renameSync(half, folder)
     return true
