@@ -97,6 +97,36 @@ test('a plug-in author gets types for what the package exports', () => {
   expect(done.status).toBe(0)
 })
 
+/** The first fenced block of this language in the README. */
+function example(language: string): string {
+  const text = readFileSync(join(root, 'README.md'), 'utf8')
+  const block = new RegExp(`\`\`\`${language}\\n([^\`]*)\`\`\``).exec(text)?.[1]
+  if (block === undefined) throw new Error(`README.md has no ${language} example`)
+  return block
+}
+
+test('the search file and the problem that README.md shows pass skerry check and the type check', () => {
+  const folder = join(home, 'example')
+  mkdirSync(folder)
+  writeFileSync(join(folder, 'search.yaml'), example('yaml'))
+  writeFileSync(join(folder, 'pump-mount.ts'), example('ts'))
+  const tsc = join(root, 'node_modules', 'typescript', 'bin', 'tsc')
+  const args = [
+    '--noEmit',
+    '--strict',
+    '--module',
+    'nodenext',
+    '--types',
+    '',
+    '--skipLibCheck',
+    'pump-mount.ts',
+  ]
+  expect(spawnSync(process.execPath, [tsc, ...args], { cwd: folder, encoding: 'utf8' }).stdout).toBe('')
+  const checked = skerry('check', join('example', 'search.yaml'))
+  expect(checked.stderr).toBe('')
+  expect(checked.status).toBe(0)
+})
+
 test('a new search made by the package runs in an empty folder', () => {
   const made = skerry('new', 'culvert')
   expect(made.stderr).toBe('')
