@@ -123,14 +123,14 @@ function addUp(total, counts) {
 }
 
 function runPhase(phase, env, scratch, without, total) {
-  if (phase.needs && listProject(phase, env).length === 0) return 'no tests'
+  const names = phase.needs ? listProject(phase, env) : []
+  if (phase.needs && names.length === 0) return 'no tests'
   const missing = findNeeds(phase, env, without)
   if (missing.length === 0) {
     const counts = phase.commands ? runCommands(phase, env) : runProject(phase, env, scratch)
     addUp(total, counts)
     return `${counts.passed} passed, ${counts.failed.length} failed, ${counts.skipped.length} skipped`
   }
-  const names = listProject(phase, env)
   const accepted = missing.every((name) => without.includes(name))
   if (accepted)
     total.skipped.push(...names.map((name) => ({ name, note: `--without ${missing.join(', ')}` })))

@@ -30,10 +30,7 @@ test('a service left out knowingly turns its tests into skipped ones, each named
   expect(last).toMatch(/^0 passed, 0 failed, \d+ skipped$/)
   const named = lines.filter((line) => /^skipped: .*replay.* \(--without chromium\)$/.test(line))
   expect(last).toBe(`0 passed, 0 failed, ${named.length} skipped`)
-})
-
-test('exactly one line is the closing line', () => {
-  const { lines } = npmTest('--only', 'browser', '--without', 'chromium')
+  // Exactly one line is the closing line.
   expect(lines.filter((line) => /^\d+ passed, \d+ failed/.test(line))).toHaveLength(1)
 })
 
