@@ -1,5 +1,5 @@
 // exp and log, ported from fdlibm (e_exp.c, e_log.c; Sun Microsystems 1993, see NOTICE.txt). Errors below
-// 1 ulp by their authors' analysis; measured in tests/reference/detmath.test.ts.
+// 1 ulp by their authors' analysis; measured in tests/reference/detmath.
 
 import { highWord, powerOfTwo, scaleByPowerOfTwo, withHighWord } from './words.js'
 

@@ -1,8 +1,9 @@
-// expm1, sinh, cosh, tanh and their inverses, ported from fdlibm (s_expm1.c, e_sinh.c, e_cosh.c, s_tanh.c,
-// s_asinh.c, e_acosh.c, e_atanh.c; Sun Microsystems 1993, see NOTICE.txt).
+// expm1, sinh, cosh, tanh and their inverses, ported from fdlibm (s_expm1.c, e_sinh.c, e_cosh.c,
+// s_asinh.c, e_acosh.c, e_atanh.c; Sun Microsystems 1993, see NOTICE.txt), except tanh.
 
 import { exp, expTimesPowerOfTwo, ln2High, ln2Low, log } from './exponential.js'
 import { log1p } from './logarithms.js'
+import { exactProductTail } from './pairs.js'
 import { powerOfTwo } from './words.js'
 
 const ln2 = Math.LN2
@@ -78,15 +79,21 @@ export function cosh(x: number): number {
   return expTimesPowerOfTwo(size, -1)
 }
 
-/** Hyperbolic tangent. */
+/**
+ * Hyperbolic tangent, as t / (t + 2) with t = e^(2|x|) - 1. Errors of t shrink on the way; what the sum and the
+ * quotient round away is put back, which keeps the error well below that of the usual form.
+ */
 export function tanh(x: number): number {
   const size = Math.abs(x)
   if (Number.isNaN(x) || size < 2.7755575615628914e-17 /* 2^-55 */) return x
-  let z = 1
-  if (size < 1) {
-    const t = expm1(-2 * size)
-    z = -t / (t + 2)
-  } else if (size < 22) z = 1 - 2 / (expm1(2 * size) + 2)
+  if (size >= 22) return x < 0 ? -1 : 1
+  const t = expm1(2 * size)
+  const sum = t + 2
+  const sumTail = t > 2 ? 2 - (sum - t) : t - (sum - 2)
+  const quotient = t / sum
+  const product = quotient * sum
+  const rest = t - product - exactProductTail(quotient, sum, product) - quotient * sumTail
+  const z = quotient + rest / sum
   return x < 0 ? -z : z
 }
 

@@ -1,6 +1,6 @@
 // Mathematical functions that give the same bits on every processor and every version of the host: made of
 // + - * / and square root, which IEEE 754 rounds alike everywhere. Errors are at most 2 units in the last
-// place (measured in tests/reference/detmath.test.ts). The host's own functions differ between processor
+// place (measured in tests/reference/detmath). The host's own functions differ between processor
 // families in the last bit, which is enough to make two searches differ.
 
 import { exp, log } from './exponential.js'

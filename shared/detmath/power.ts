@@ -9,12 +9,16 @@ import { fromWords, highWord, lowWord, scaleByPowerOfTwo, withHighWord, withoutL
 /** Upper and lower part of log2 |x| as the last logarithm left it. */
 const logarithm = new Float64Array(2)
 
-/** log2 of a = |x| close to 1: log(1 + t) from its series. |t| <= 2^-20. */
+/**
+ * log2 of a = |x| close to 1: log(1 + t) from its series. |t| <= 2^-20. The product with 1 / ln 2 is taken
+ * exactly: t can have 33 bits, too many for the shortened constant of e_pow.c, and exponents that come here
+ * are above 2^31, where half a unit of the logarithm is hundreds of units of the power.
+ */
 function logNearOne(a: number): void {
   const t = a - 1
   const w = t * t * (0.5 - t * (0.3333333333333333 - t * 0.25))
-  const u = 1.4426950216293335 * t
-  const v = t * 1.9259629911266175e-8 - w * Math.LOG2E
+  const u = Math.LOG2E * t
+  const v = exactProductTail(Math.LOG2E, t, u) + t * 2.0355273740931033e-17 - w * Math.LOG2E
   const upper = withoutLowWord(u + v)
   logarithm[0] = upper
   logarithm[1] = v - (upper - u)
