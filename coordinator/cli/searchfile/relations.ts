@@ -72,9 +72,8 @@ function eachGroup(
 /** Settings of methods that count members: none may be larger than the population. */
 const memberCounts: { readonly [setting: string]: string } = {
   tournament: 'a tournament draws different members',
-  elite: 'the elite is part of the population',
-  elites: 'the elite is part of the population',
-  parents: 'parents are members of the population',
+  elites: 'elites are members of the population',
+  newcomers: 'newcomers are counted among as many births as the population has members',
 }
 
 export const impossible: { readonly [rule: string]: Rule } = {

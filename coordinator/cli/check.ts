@@ -1,0 +1,233 @@
+// `skerry check FILE`: everything that can be known before a search is started.
+
+import { availableParallelism } from 'node:os'
+import { exitCodes } from '../../shared/refusals.js'
+import type { IslandPlan } from '../evolution/plan.js'
+import {
+  type DriftExpectation,
+  expectedDrift,
+  type Recommendation,
+  recommend,
+  type Spread,
+  spreadOf,
+} from './check/advice.js'
+import { tryFresh } from './check/fresh.js'
+import { type ProblemFault, type TrialPlan, type Trials, tryProblem } from './check/trials.js'
+import type { Command, CommandInput, Output } from './command.js'
+import { counted, duration, grouped, percent, short } from './numbers.js'
+import { searchTables } from './search-tables.js'
+import { type Finding, printFindings } from './searchfile/finding.js'
+import { type OpenedSearch, openSearch } from './searchfile/open.js'
+import { wrap } from './terminal.js'
+
+const machinesTried = 8
+const secondsMost = 20
+
+export const checkCommand: Command = {
+  name: 'check',
+  summary:
+    'Try a search file and its problem: mistakes, determinism, time, cost, fitting order and lookahead.',
+  arguments: [{ name: 'FILE', help: 'the search file' }],
+  options: [
+    {
+      flag: '--machines',
+      value: 'N',
+      kind: 'count',
+      help: `random machines to simulate (default ${machinesTried})`,
+    },
+    {
+      flag: '--seconds',
+      value: 'N',
+      kind: 'count',
+      help: `begin no further machine after this time (default ${secondsMost})`,
+    },
+  ],
+  examples: ['skerry check search.yaml', 'skerry check search.yaml --machines 20 --json'],
+  run,
+}
+
+export interface CheckReport {
+  readonly ok: boolean
+  readonly warnings: readonly Finding[]
+  readonly bundleWarnings: readonly string[]
+  readonly faults: readonly ProblemFault[]
+  readonly machines: number
+  readonly simulations: number
+  readonly failedSimulations: number
+  readonly failedBecause?: string
+  /** Why the fresh process did not run; absent when it did. */
+  readonly freshNotRun?: string
+  readonly secondsPerSimulation: Spread
+  /** Spread of time divided by expected cost. */
+  readonly aroundCost: Spread
+  readonly coreHours: {
+    readonly search: number
+    readonly controls: number
+    readonly confirmation: number
+    readonly total: number
+  }
+  readonly workers: number
+  readonly lookahead: number
+  readonly recommendation: Recommendation
+  readonly drift?: DriftExpectation
+}
+
+async function run(input: CommandInput): Promise<number> {
+  const { output } = input
+  const opened = await openSearch(input.arguments.FILE!, searchTables(), Date.now())
+  const report = await checkSearch(opened, {
+    machines: input.counts['--machines'] ?? machinesTried,
+    secondsMost: input.counts['--seconds'] ?? secondsMost,
+  })
+  if (output.json) output.print(JSON.stringify(report, undefined, 2))
+  else printReport(output, opened, report)
+  return report.ok ? exitCodes.done : exitCodes.configuration
+}
+
+/** All trials of an opened search; prints nothing. */
+export async function checkSearch(
+  opened: OpenedSearch,
+  effort: Pick<TrialPlan, 'machines' | 'secondsMost'>,
+): Promise<CheckReport> {
+  const { plan, problem } = opened
+  const trialPlan: TrialPlan = {
+    seed: plan.seed,
+    shared: plan.replicates.shared,
+    replicates: plan.replicates.first,
+    ...effort,
+  }
+  const trials = tryProblem(problem, trialPlan, () => performance.now() / 1000)
+  const isSound = trials.faults.length === 0
+  const fresh = isSound
+    ? await tryFresh(problem, opened.bundle.code, trialPlan, trials.machines)
+    : { faults: [], notRun: 'the trials in this process have already failed' }
+  // A problem that promises less than bits may differ; that is said, not refused.
+  const faults = [...trials.faults, ...fresh.faults]
+  const binding = faults.filter(({ kind }) => kind !== 'not-deterministic' || isExact(problem.exactness))
+  return {
+    ok: binding.length === 0,
+    warnings: opened.warnings,
+    bundleWarnings: opened.bundle.warnings,
+    faults,
+    machines: trials.machines.length,
+    simulations: trials.simulations,
+    failedSimulations: trials.failed,
+    ...(trials.failedBecause === undefined ? {} : { failedBecause: trials.failedBecause }),
+    ...(fresh.notRun === undefined ? {} : { freshNotRun: fresh.notRun }),
+    ...costAndAdvice(opened, trials),
+  }
+}
+
+function isExact(exactness: string): boolean {
+  return exactness === 'bits' || exactness === 'bits-per-processor'
+}
+
+function costAndAdvice(opened: OpenedSearch, { machines }: Trials) {
+  const { plan, fields } = opened
+  const times = machines.map(({ secondsPerSimulation }) => secondsPerSimulation)
+  const perCost = machines.map(
+    ({ secondsPerSimulation, expectedCost }) => secondsPerSimulation / expectedCost,
+  )
+  const secondsPerSimulation = spreadOf(times.length > 0 ? times : [0])
+  const aroundCost = spreadOf(perCost.length > 0 ? perCost : [0])
+  const workers = fields.workersExpected ?? fields.cores ?? availableParallelism()
+  const lookahead = plan.islands.reduce((sum, island) => sum + island.lookahead, 0)
+  const search = (plan.budget.simulations * secondsPerSimulation.mean) / 3600
+  const controls = search * plan.controls.length
+  const confirmation = search * plan.confirm.fraction
+  const drift = driftOf(
+    plan.islands,
+    machines.map(({ expectedCost }) => expectedCost),
+  )
+  return {
+    secondsPerSimulation,
+    aroundCost,
+    coreHours: { search, controls, confirmation, total: search + controls + confirmation },
+    workers,
+    lookahead,
+    recommendation: recommend(secondsPerSimulation, aroundCost, workers),
+    ...(drift === undefined ? {} : { drift }),
+  }
+}
+
+/** For the widest island in order cost: what the order alone does between the cheapest and the dearest machine seen. */
+function driftOf(islands: readonly IslandPlan[], costs: readonly number[]): DriftExpectation | undefined {
+  const widest = islands.filter(({ order }) => order === 'cost').sort((a, b) => b.lookahead - a.lookahead)[0]
+  const ratio = costs.length > 0 ? Math.max(...costs) / Math.min(...costs) : 1
+  if (!widest || ratio <= 1) return undefined
+  return expectedDrift(ratio, widest.lookahead, widest.population)
+}
+
+function printReport(output: Output, opened: OpenedSearch, report: CheckReport): void {
+  const { problem, plan } = opened
+  const say = (text: string) => output.print(wrap(text, Math.min(100, output.columns - 1)).join('\n'))
+  if (report.warnings.length > 0) output.print(`${printFindings(opened.file, report.warnings)}\n`)
+  for (const warning of report.bundleWarnings) output.print(`warning: ${warning}`)
+  say(`${problem.name} ${problem.version}: ${problem.summary}`)
+  say(
+    `${counted(plan.islands.length, 'island')}, ${counted(plan.controls.length, 'control')}, ${grouped(plan.budget.simulations)} simulations.`,
+  )
+  output.print('')
+  for (const line of faultLines(report, problem.exactness)) say(line)
+  for (const line of [...timeLines(report), ...costLines(report), ...adviceLines(report, opened)]) say(line)
+  output.print('')
+  say(
+    report.ok
+      ? 'Nothing stands in the way of this search.'
+      : 'This search should not be started before the above is mended.',
+  )
+}
+
+function faultLines(report: CheckReport, exactness: string): string[] {
+  const tried = `${counted(report.machines, 'random machine')}, ${counted(report.simulations, 'simulation')} each three times`
+  const also = report.freshNotRun === undefined ? ' and in a fresh process' : ''
+  const lines = report.faults.map(({ kind, sentence }) => `${kind}: ${sentence}`)
+  if (lines.length === 0) lines.push(`Same results to the last bit: ${tried}, in two orders${also}.`)
+  else if (report.ok)
+    lines.push(
+      `The problem promises no more than "${exactness}", so this is no mistake; the search cannot be repeated to the bit.`,
+    )
+  if (report.freshNotRun !== undefined) lines.push(`Not tried in a fresh process: ${report.freshNotRun}`)
+  if (report.failedSimulations > 0) {
+    lines.push(
+      `${grouped(report.failedSimulations)} of ${counted(report.simulations, 'simulation')} failed by the problem's own word, the first because: ${report.failedBecause}. Failed machines rank last.`,
+    )
+  }
+  return lines
+}
+
+function timeLines({ secondsPerSimulation, aroundCost, machines }: CheckReport): string[] {
+  const milliseconds = `${short(secondsPerSimulation.mean * 1000)} ms`
+  return [
+    `A simulation takes ${milliseconds} on this machine (${counted(machines, 'machine')}, spread between them ${short(secondsPerSimulation.cv)} of the mean; divided by expected cost ${short(aroundCost.cv)}).`,
+  ]
+}
+
+function costLines({ coreHours }: CheckReport): string[] {
+  const extra = coreHours.controls + coreHours.confirmation
+  return [
+    `The whole budget costs about ${hours(coreHours.total)}: search ${hours(coreHours.search)}, controls ${hours(coreHours.controls)}, confirmation ${hours(coreHours.confirmation)}${extra > 0 ? '' : ' (none)'}. Evolved machines may take longer than random ones.`,
+  ]
+}
+
+function hours(coreHours: number): string {
+  return coreHours >= 0.1 ? `${short(coreHours)} core-hours` : `${duration(coreHours * 3600)} of one core`
+}
+
+function adviceLines(
+  { workers, lookahead, recommendation, drift }: CheckReport,
+  { plan }: OpenedSearch,
+): string[] {
+  const { order, busy, because } = recommendation
+  const busyWords = busy === undefined ? '' : `, which keeps them busy ${percent(busy)} of the time`
+  const each = Math.ceil(recommendation.lookahead / plan.islands.length)
+  const lines = [
+    `For ${counted(workers, 'worker')}: order ${order} and lookaheads of ${recommendation.lookahead} in all (about ${each} an island)${busyWords}; ${because}. The file has ${lookahead} in all, order ${[...new Set(plan.islands.map((island) => island.order))].join(' and ')}.`,
+  ]
+  if (drift) {
+    lines.push(
+      `Order cost by itself favours cheap bodies: without selection, with costs 1 to ${short(drift.ratio)}, lookahead ${drift.lookahead} and population ${drift.population}, ${percent(drift.cheapShare)} of commits ${grouped(drift.fromCommit)} to ${grouped(drift.toCommit)} would be cheap bodies instead of 50 %.`,
+    )
+  }
+  return lines
+}

@@ -1,0 +1,101 @@
+// `skerry run FILE`: starts the search, or continues it. The same command after a preemption.
+
+import { exitCodes } from '../../shared/refusals.js'
+import type { Command, CommandInput, OptionRow, Output } from './command.js'
+import { openHouse } from './house.js'
+import type { RunEnd, RunEvent, RunOptions } from './run-options.js'
+import { printChanges } from './searchfile/changes.js'
+import { printFindings } from './searchfile/finding.js'
+import { type Watch, watch } from './watch.js'
+
+export const runOptionRows: readonly OptionRow[] = [
+  { flag: '--record', value: 'DIR', kind: 'text', help: 'folder of the record (default ./records/NAME)' },
+  {
+    flag: '--cores',
+    value: 'N',
+    kind: 'count',
+    help: 'simulations at once (default: every core of this machine)',
+  },
+  {
+    flag: '--stop-after',
+    value: 'N',
+    kind: 'count',
+    help: 'stop at this many simulations; running on later gives the same result',
+  },
+  {
+    flag: '--accept-changes',
+    kind: 'switch',
+    help: 'go on with a search file that was edited since the record was begun',
+  },
+  {
+    flag: '--force',
+    kind: 'switch',
+    help: 'take the record over from a coordinator that holds it; that one can write no more',
+  },
+]
+
+export const runCommand: Command = {
+  name: 'run',
+  summary: 'Start a search, or continue it where it stopped.',
+  arguments: [{ name: 'FILE', help: 'the search file' }],
+  options: runOptionRows,
+  examples: ['skerry run search.yaml', 'skerry run search.yaml --cores 8 --stop-after 20000'],
+  run: (input) => runAndReport(input, input.arguments.FILE!, input.texts['--record']),
+}
+
+/** Runs the search of `file` with the options given, shows it, and reports its end. */
+export async function runAndReport(
+  input: CommandInput,
+  file: string,
+  record: string | undefined,
+): Promise<number> {
+  const { output } = input
+  const house = await openHouse()
+  const shown = watch(output)
+  const options: RunOptions = {
+    file,
+    ...given('record', record),
+    ...given('cores', input.counts['--cores']),
+    ...given('stopAfter', input.counts['--stop-after']),
+    acceptChanges: input.switches['--accept-changes'] ?? false,
+    force: input.switches['--force'] ?? false,
+    tell: (event) => hear(event, shown, output),
+    signal: output.signal,
+  }
+  const end = await house.runSearch(options)
+  shown.end(end.view)
+  reportEnd(output, end)
+  return end.ended === 'interrupted' ? exitCodes.interrupted : exitCodes.done
+}
+
+function given<Name extends string, Value>(name: Name, value: Value | undefined): { [key in Name]?: Value } {
+  return (value === undefined ? {} : { [name]: value }) as { [key in Name]?: Value }
+}
+
+function hear(event: RunEvent, shown: Watch, output: Output): void {
+  if (event.kind === 'progress') shown.show(event.view)
+  else if (event.kind === 'said') shown.say(event.sentence)
+  else if (event.kind === 'warned') output.note(printFindings(event.file, event.findings))
+  else
+    shown.say(
+      `The search file was edited since the record was begun:\n${printChanges(event.file, event.changes)}`,
+    )
+}
+
+const endWords: { readonly [ended in RunEnd['ended']]: string } = {
+  finished: 'The search has used its budget.',
+  'stop-after': 'Stopped where --stop-after asked for; the same command without it goes on from here.',
+  interrupted: 'Interrupted; nothing is lost. The same command goes on from here.',
+}
+
+function reportEnd(output: Output, end: RunEnd): void {
+  if (output.json) {
+    output.print(JSON.stringify({ ended: end.ended, ...end.view, files: end.files }, undefined, 2))
+    return
+  }
+  output.print('')
+  for (const line of end.summary) output.print(line)
+  const width = Math.max(0, ...end.files.map(({ what }) => what.length))
+  for (const { what, path } of end.files) output.print(`  ${what.padEnd(width)}  ${path}`)
+  output.print(endWords[end.ended])
+}

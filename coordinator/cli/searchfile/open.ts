@@ -1,0 +1,83 @@
+// From the path of a search file to everything a search needs: the checked plan, the bundled plug-in and the loaded problem.
+// Refuses with everything that is wrong at once.
+
+import { readFileSync } from 'node:fs'
+import { dirname, resolve } from 'node:path'
+import type { AnyProblem } from '../../../shared/problem.js'
+import { Refusal, refuse } from '../../../shared/refusals.js'
+import { problemPlan } from '../../../sim/problem.js'
+import { bundlePlugin, type PluginBundle } from '../../../worker/plugin/bundle.js'
+import { loadPlugin } from '../../../worker/plugin/load.js'
+import type { SearchPlan } from '../../evolution/plan.js'
+import { type Finding, refusalOf } from './finding.js'
+import { planSearch, type ReadFile, readSearchFile } from './read.js'
+import type { SearchFile } from './schema.js'
+import type { SearchTables } from './tables.js'
+
+export interface OpenedSearch {
+  readonly file: string
+  readonly text: string
+  /** As written, with defaults: for the fields that are no part of the plan (cores, port, workersExpected). */
+  readonly fields: SearchFile
+  readonly plan: SearchPlan
+  readonly warnings: readonly Finding[]
+  readonly bundle: PluginBundle
+  readonly problem: AnyProblem
+}
+
+/** Reads, bundles, loads and plans. Refusals: those of the table under "Search file" and "Problem". */
+export async function openSearch(file: string, tables: SearchTables, nowMs?: number): Promise<OpenedSearch> {
+  const text = readText(file)
+  const read = readSearchFile(text, tables)
+  const loaded = await loadProblem(file, read)
+  if (loaded instanceof Refusal) throw refusalOf(file, read.findings) ?? loaded
+  const refused = refusalOf(file, read.findings)
+  if (!loaded || !read.file)
+    throw refused ?? refuse('internal', { detail: 'a search file without a problem passed' })
+  const { plan, findings } = planSearch(
+    read,
+    problemPlan(loaded.problem, loaded.bundle.digest),
+    tables,
+    nowMs,
+  )
+  if (!plan)
+    throw refusalOf(file, findings) ?? refuse('internal', { detail: 'a plan is missing without a reason' })
+  return { file, text, fields: read.file, plan, warnings: findings, ...loaded }
+}
+
+function readText(file: string): string {
+  try {
+    return readFileSync(file, 'utf8')
+  } catch (error) {
+    const code = error instanceof Error && 'code' in error ? String(error.code) : String(error)
+    if (code === 'ENOENT')
+      throw refuse('file-not-found', { detail: `there is no file ${file}.`, where: { file } })
+    const why = code === 'EISDIR' ? `${file} is a folder` : `${file}: ${code}`
+    throw refuse('file-unreadable', { detail: `${why}.`, where: { file } })
+  }
+}
+
+/** The problem, or why there is none; undefined when the file does not name one. */
+async function loadProblem(
+  file: string,
+  read: ReadFile,
+): Promise<{ bundle: PluginBundle; problem: AnyProblem } | Refusal | undefined> {
+  const path = read.partial.problem
+  if (path === undefined) return undefined
+  const plugin = resolve(dirname(file), path)
+  try {
+    const bundle = await bundlePlugin(plugin)
+    return { bundle, problem: await loadPlugin({ code: bundle.code }) }
+  } catch (error) {
+    if (!(error instanceof Refusal)) throw error
+    if (error.code !== 'problem-not-found') return atPlugin(error, plugin)
+    const where = { file, ...read.located.placeOf(['problem']), field: 'problem' }
+    return refuse(error.code, { detail: error.detail, where, cure: error.cure, cause: error })
+  }
+}
+
+/** A refusal that does not know its file was about this plug-in. */
+function atPlugin(error: Refusal, plugin: string): Refusal {
+  const where = { file: plugin, ...error.where }
+  return refuse(error.code, { detail: error.detail, where, cure: error.cure, cause: error })
+}

@@ -1,0 +1,46 @@
+#!/usr/bin/env node
+// The program: gives the commands a terminal, signals and an exit code. Everything else is in table.ts.
+
+import { readFileSync } from 'node:fs'
+import { join } from 'node:path'
+import { emittedRoot } from '../../worker/entry.js'
+import type { Output } from './command.js'
+import { runCommandLine } from './table.js'
+
+const stopping = new AbortController()
+let signals = 0
+for (const name of ['SIGINT', 'SIGTERM'] as const) {
+  process.on(name, () => {
+    signals += 1
+    stopping.abort()
+    // Whoever asks a second time means it; the record survives that too.
+    if (signals > 1) process.exit(name === 'SIGINT' ? 130 : 143)
+  })
+}
+// A reader that went away (a closed pager) is no error of ours.
+process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+  if (error.code === 'EPIPE') process.exit(0)
+  throw error
+})
+
+function processOutput(json: boolean): Output {
+  const { env, stdout, stderr } = process
+  const isTerminal = stdout.isTTY === true && env.TERM !== 'dumb'
+  const locale = env.LC_ALL || env.LC_CTYPE || env.LANG || ''
+  return {
+    json,
+    isTerminal,
+    get columns() {
+      return stdout.columns ?? 100
+    },
+    unicode: /utf-?8/i.test(locale),
+    print: (text) => void stdout.write(`${text}\n`),
+    note: (text) => void stderr.write(`${text}\n`),
+    raw: (text) => void stdout.write(text),
+    signal: stopping.signal,
+  }
+}
+
+const packageFile = join(emittedRoot, '..', 'package.json')
+const { version } = JSON.parse(readFileSync(packageFile, 'utf8')) as { readonly version: string }
+process.exitCode = await runCommandLine(process.argv.slice(2), version, processOutput)

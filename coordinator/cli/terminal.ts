@@ -1,0 +1,178 @@
+// How a running search looks in a terminal: one sentence of state, one line an island with the level of its
+// quota, the best so far, the rate. Drawn as text lines by a pure function; LiveBlock redraws them in place. In a
+// log the same facts are one line each time. Nothing is said by colour alone; emphasis is bold at most.
+
+import type { Output } from './command.js'
+import { counted, duration, estimate, grouped, percent, short } from './numbers.js'
+import type { BestView, IslandView, ProgressView } from './progress-view.js'
+
+export interface DrawOptions {
+  readonly columns: number
+  readonly unicode: boolean
+  /** Lines of islands shown; more are summed up. */
+  readonly islandsMost: number
+  /** Time of day at which the search will end, from seconds left; absent where there is no clock. */
+  readonly clockAfter?: (seconds: number) => string
+}
+
+const narrowest = 60
+const widest = 200
+
+/** The live block, one string a line, none wider than `columns`. */
+export function drawProgress(view: ProgressView, options: DrawOptions): string[] {
+  const columns = Math.min(widest, Math.max(narrowest, options.columns))
+  const lines = [
+    ...wrap(stateSentence(view, options), columns),
+    '',
+    ...islandLines(view, { ...options, columns }),
+    '',
+    ...labelled('best', bestSentence(view.best), columns),
+    ...labelled('work', workSentence(view), columns),
+    ...labelled('purity', puritySentence(view), columns),
+    ...labelled('digest', view.digest.slice(0, 16), columns),
+  ]
+  const plain = options.unicode ? lines : lines.map((line) => line.replaceAll('±', '+-'))
+  return plain.map((line) => (line.length > columns ? `${line.slice(0, columns - 3)}...` : line))
+}
+
+const stateWords: { readonly [state in ProgressView['state']]: string } = {
+  new: 'has not begun',
+  searching: 'is searching',
+  paused: 'is paused',
+  stopped: 'has stopped before its end',
+  finished: 'is finished',
+}
+
+/** culvert-crawler is searching: 12,480 of 200,000 simulations (6.2 %), about 3 h 12 min to go, until 18:40. */
+export function stateSentence(view: ProgressView, options: Pick<DrawOptions, 'clockAfter'>): string {
+  const done = `${grouped(view.simulations)} of ${grouped(view.budget)} simulations (${percent(view.simulations / view.budget)})`
+  const because = view.because ? ` (${view.because})` : ''
+  const left = view.rate?.secondsLeft
+  const clock = left === undefined ? undefined : options.clockAfter?.(left)
+  const until =
+    left === undefined || view.state !== 'searching'
+      ? ''
+      : `, about ${duration(left)} to go${clock ? `, until ${clock}` : ''}`
+  return `${view.name} ${stateWords[view.state]}${because}: ${done}${until}.`
+}
+
+function islandLines(view: ProgressView, options: DrawOptions): string[] {
+  const all = [...view.islands, ...view.controls]
+  const shown = all.slice(0, options.islandsMost)
+  const nameWidth = Math.max(...shown.map(({ name }) => name.length), 2)
+  const methodWidth = Math.min(20, Math.max(...shown.map((island) => methodWords(island).length), 6))
+  const notes = shown.map((island) => islandNote(island))
+  const noteWidth = Math.min(40, Math.max(...notes.map((note) => note.length), 0))
+  const barWidth = Math.min(48, options.columns - 2 - nameWidth - 2 - methodWidth - 2 - 2 - 5 - 2 - noteWidth)
+  const lines = shown.map((island, index) => {
+    const fraction = island.quota > 0 ? island.simulations / island.quota : 1
+    const bar = barWidth >= 6 ? `  ${level(fraction, barWidth, options.unicode)}` : ''
+    const method = fit(methodWords(island), methodWidth)
+    return `  ${island.name.padEnd(nameWidth)}  ${method}${bar} ${percent(fraction).padStart(6)}  ${notes[index]}`.trimEnd()
+  })
+  if (all.length > shown.length) lines.push(`  and ${counted(all.length - shown.length, 'more island')}`)
+  return lines
+}
+
+function methodWords(island: IslandView): string {
+  return island.name.startsWith('c') ? `${island.method}, control` : island.method
+}
+
+function islandNote(island: IslandView): string {
+  if (island.state === 'ended') return island.because ?? 'ended'
+  if (island.state === 'waiting') return island.because ? `waits ${island.because}` : 'waits'
+  const first = island.best?.estimates[0]
+  return first ? `best ${estimate(first.value, first.unit)}` : 'no result yet'
+}
+
+/** A filled channel: how far a quota is used. */
+export function level(fraction: number, width: number, unicode: boolean): string {
+  const filled = Math.min(width, Math.max(0, Math.floor(fraction * width)))
+  const [full, empty] = unicode ? ['▆', '▁'] : ['o', '.']
+  return full!.repeat(filled) + empty!.repeat(width - filled)
+}
+
+function bestSentence(best: BestView | undefined): string {
+  if (!best) return 'no result yet'
+  const numbers = best.estimates
+    .map(
+      ({ objective, value, unit, standardError }) => `${objective} ${estimate(value, unit, standardError)}`,
+    )
+    .join(', ')
+  const sample = `mean of ${counted(best.replicates, 'replicate')}`
+  const confirmed = best.confirmed ? '' : ', not confirmed yet'
+  return `${best.id}: ${numbers} (${sample}${confirmed}; chosen for being best, so a retest will be lower)`
+}
+
+function workSentence(view: ProgressView): string {
+  const { rate } = view
+  const speed = rate
+    ? `${short(rate.simulationsPerSecond)} simulations/s on ${counted(rate.cores, 'core')}, busy ${percent(rate.busyFraction)}; `
+    : ''
+  const waiting = view.proposed - view.committed
+  const troubles = `${counted(view.failedSimulations, 'failed simulation')}, ${grouped(view.setAside)} set aside`
+  return `${speed}${grouped(view.committed)} evaluations committed, ${grouped(waiting)} under way; ${troubles}`
+}
+
+function puritySentence(view: ProgressView): string {
+  return view.purity === 'none' ? 'none but its own rules entered this search' : view.purity.join('; ')
+}
+
+/** One line for a log. */
+export function logLine(view: ProgressView, time: string): string {
+  const first = view.best?.estimates[0]
+  const best = first
+    ? `, best ${view.best!.id} ${first.objective} ${estimate(first.value, first.unit, first.standardError)} (${view.best!.replicates} replicates)`
+    : ''
+  const rate = view.rate ? `, ${short(view.rate.simulationsPerSecond)}/s` : ''
+  const left = view.rate?.secondsLeft === undefined ? '' : `, ${duration(view.rate.secondsLeft)} to go`
+  const done = `${grouped(view.simulations)} of ${grouped(view.budget)} simulations`
+  return `${time}  ${view.state}: ${done}${rate}${left}${best}`
+}
+
+function labelled(label: string, text: string, columns: number): string[] {
+  const width = 8
+  const lines = wrap(text, columns - width - 2)
+  return lines.map((line, index) => `  ${(index === 0 ? label : '').padEnd(width)}${line}`)
+}
+
+function fit(text: string, width: number): string {
+  return text.length > width ? `${text.slice(0, width - 2)}..` : text.padEnd(width)
+}
+
+/** Breaks at spaces; a word wider than a line stays whole. */
+export function wrap(text: string, width: number): string[] {
+  const lines: string[] = []
+  let line = ''
+  for (const word of text.split(' ')) {
+    if (line !== '' && line.length + 1 + word.length > width) {
+      lines.push(line)
+      line = word
+    } else line = line === '' ? word : `${line} ${word}`
+  }
+  return [...lines, line]
+}
+
+/** Lines at the bottom of a terminal that are redrawn in place; what is printed goes above them. */
+export class LiveBlock {
+  readonly #output: Output
+  #height = 0
+
+  constructor(output: Output) {
+    this.#output = output
+  }
+
+  /** One write, so that nothing flickers: cursor up, each line cleared, the rest of the old block cleared. */
+  draw(lines: readonly string[]): void {
+    const up = this.#height > 0 ? `\u001b[${this.#height}A\r` : ''
+    const body = lines.map((line) => `${line}\u001b[K\n`).join('')
+    this.#output.raw(`${up}${body}\u001b[J`)
+    this.#height = lines.length
+  }
+
+  /** Removes the block; the next draw starts below what was printed meanwhile. */
+  clear(): void {
+    if (this.#height > 0) this.#output.raw(`\u001b[${this.#height}A\r\u001b[J`)
+    this.#height = 0
+  }
+}

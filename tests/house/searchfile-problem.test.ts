@@ -1,0 +1,103 @@
+// Search files whose problem is missing, broken or dishonest, through the same door that run and check use.
+
+import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs'
+import { tmpdir } from 'node:os'
+import { join } from 'node:path'
+import { afterAll, describe, expect, it } from 'vitest'
+import { checkSearch } from '../../coordinator/cli/check.js'
+import { problemText, searchText } from '../../coordinator/cli/new-files.js'
+import { searchTables } from '../../coordinator/cli/search-tables.js'
+import { openSearch } from '../../coordinator/cli/searchfile/open.js'
+import { type Refusal, renderRefusal } from '../../shared/refusals.js'
+
+const root = mkdtempSync(join(tmpdir(), 'skerry-searchfile-'))
+afterAll(() => rmSync(root, { recursive: true, force: true }))
+
+let folders = 0
+/** A folder with a search file as `skerry new` writes it and this problem; answers the path of the search file. */
+function folderWith(problem: string | undefined, search = searchText('mount', 4)): string {
+  const folder = join(root, String(++folders))
+  mkdirSync(folder)
+  writeFileSync(join(folder, 'search.yaml'), search)
+  if (problem !== undefined) writeFileSync(join(folder, 'problem.ts'), problem)
+  return join(folder, 'search.yaml')
+}
+async function refusal(file: string): Promise<Refusal> {
+  return openSearch(file, searchTables()).then(
+    () => Promise.reject(new Error('it was not refused')),
+    (error: Refusal) => error,
+  )
+}
+
+describe('what `skerry new` writes', () => {
+  it('opens without a warning', async () => {
+    for (const workers of [1, 200]) {
+      const opened = await openSearch(folderWith(problemText, searchText('mount', workers)), searchTables())
+      expect(opened.warnings, `for ${workers} workers`).toEqual([])
+      expect(opened.plan.problem.name).toBe('gauge-mount')
+    }
+  })
+  it('passes check, in a fresh process too', async () => {
+    const opened = await openSearch(folderWith(problemText), searchTables())
+    const report = await checkSearch(opened, { machines: 3, secondsMost: 10 })
+    expect(report.faults).toEqual([])
+    expect(report.freshNotRun).toBeUndefined()
+    expect(report.ok).toBe(true)
+    expect(report.coreHours.total).toBeGreaterThan(report.coreHours.search)
+  })
+})
+
+describe('a search file that is not there', () => {
+  it('is refused by its name', async () => {
+    expect(await refusal(join(root, 'none.yaml'))).toMatchObject({ code: 'file-not-found', exitCode: 78 })
+  })
+  it('is refused when it is a folder', async () => {
+    expect(await refusal(root)).toMatchObject({ code: 'file-unreadable' })
+  })
+})
+
+describe('a problem', () => {
+  it('that is missing is refused at the line of the search file that names it', async () => {
+    const file = folderWith(problemText, searchText('mount', 4).replace('./problem.ts', './problm.ts'))
+    const refused = await refusal(file)
+    expect(refused).toMatchObject({
+      code: 'problem-not-found',
+      where: { file, field: 'problem', line: 6, column: 10 },
+    })
+    expect(renderRefusal(refused)).toContain('problem.ts')
+  })
+  it('that throws while it is loaded is refused with its words', async () => {
+    const refused = await refusal(folderWith('throw new Error("the pump is not on the list")\n'))
+    expect(refused.code).toBe('problem-throws')
+    expect(renderRefusal(refused)).toContain('the pump is not on the list')
+  })
+  it('that has a syntax error is refused with its own line and column', async () => {
+    const refused = await refusal(folderWith('export default {\n  name: ,\n}\n'))
+    expect(refused).toMatchObject({ code: 'problem-does-not-bundle', where: { line: 2 } })
+  })
+  it('that exports no problem is refused', async () => {
+    expect((await refusal(folderWith('export const nothing = 1\n'))).exitCode).toBe(78)
+  })
+  it('that is missing does not hide mistakes of the search file', async () => {
+    const text = searchText('mount', 4)
+      .replace('topology: ring', 'topology: rign')
+      .replace('seed: 1 ', 'seed: one ')
+    const printed = renderRefusal(await refusal(folderWith(undefined, text)))
+    expect(printed).toContain('Did you mean "ring"?')
+    expect(printed).toContain('the text "one"')
+  })
+  it('whose clock makes it differ between processes is found by check', async () => {
+    // The time a module was loaded differs between any two processes; plug-ins are not given a clock, so it is smuggled in.
+    const smuggled = problemText
+      .replace(
+        'import { choice,',
+        "const loaded = Number(String(new Error('x').stack?.length ?? 0))\nimport { choice,",
+      )
+      .replace('travel: travelM,', 'travel: travelM * (1 + loaded * 2 ** -52),')
+    const opened = await openSearch(folderWith(smuggled), searchTables())
+    const report = await checkSearch(opened, { machines: 2, secondsMost: 10 })
+    expect(report.freshNotRun).toBeUndefined()
+    expect(report.ok).toBe(false)
+    expect(report.faults[0]?.sentence).toMatch(/travel of machine \d .* ulp in a fresh process/)
+  })
+})
