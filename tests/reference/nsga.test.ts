@@ -31,9 +31,9 @@ function zdt1(genome: Genome): number[] {
 }
 
 describe('NSGA-II on ZDT1', () => {
-  test('median hypervolume of seven runs lies in the bracket of an independent implementation, widened by one sd', () => {
+  test('median hypervolume of five runs lies in the bracket of an independent implementation, widened by one sd', () => {
     const volumes: number[] = []
-    for (let run = 0; run < 7; run++) {
+    for (let run = 0; run < 5; run++) {
       const started = drive({
         method: nsgaTwo,
         population: 100,
@@ -51,7 +51,7 @@ describe('NSGA-II on ZDT1', () => {
       expect(volume).toBeLessThan(0.8766666666666667)
       volumes.push(volume)
     }
-    const median = volumes.toSorted((a, b) => a - b)[3]!
+    const median = volumes.toSorted((a, b) => a - b)[2]!
     expect(median).toBeGreaterThan(0.868562 - 0.00031)
     expect(median).toBeLessThan(0.869515 + 0.00031)
   })

@@ -52,7 +52,10 @@ class AgeFitnessMachine implements MethodMachine {
     this.#context = context
     this.#breeding = breedingRules(context)
     this.#newcomers = numberSetting(context.settings, 'newcomers')
-    this.#frontMost = numberSetting(context.settings, 'frontLimit') * context.population
+    // Room for both ends of age and of every objective, whatever the limit.
+    const ends = 2 * (context.objectives + 1)
+    const limit = Math.floor(numberSetting(context.settings, 'frontLimit') * context.population)
+    this.#frontMost = Math.max(limit, ends)
     this.#state = state
   }
 

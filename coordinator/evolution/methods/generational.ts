@@ -185,7 +185,7 @@ export const generational: Method = {
       default: 1,
       low: 0,
       high: 100000,
-      help: 'best members that stay for the next generation; equal scores: the older ones stay',
+      help: 'best members that stay for the next generation, at most the population less one; equal scores: the older stay',
     },
     parents: {
       kind: 'choice',
