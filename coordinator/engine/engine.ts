@@ -7,6 +7,7 @@
 //
 // No clock, no I/O, no randomness of its own: a week passes in a test in one line.
 
+import { z } from 'zod'
 import { check } from '../../shared/check.js'
 import { resultDigest } from '../../shared/digests.js'
 import { islandName, nameOf } from '../../shared/ids.js'
@@ -84,6 +85,8 @@ export class Engine implements Gate {
   readonly #suspects: string[] = []
   readonly #arrivalOrder = new Map<number, number[]>()
   readonly #impurities = new Set<string>()
+  /** Nobody can move and everything to be reported is confirmed. */
+  #settled = false
 
   /** Made by recover.ts, which has brought `search` to where the record stands. */
   constructor(search: Search, schedule: Schedule, reader: RecordReader, options: EngineOptions) {
@@ -97,18 +100,26 @@ export class Engine implements Gate {
     for (const island of search.islands) {
       this.#due.add(island.number)
       this.#lastSnapshot.set(island.number, island.counters.commits)
-      this.#resumeWork(island)
+      if (island.tools.island.order === 'arrival') this.#arrivalOrder.set(island.number, [])
     }
+    for (const event of reader.events()) {
+      if (event.kind === 'worker-shut-out') this.#shutOut.add(shutOutSchema.parse(event.data).worker)
+      if (event.changesSearch) this.#impurities.add(event.kind)
+    }
+    this.#suspects.push(...this.#shutOut)
+    for (const island of search.islands) this.#resumeWork(island)
   }
 
   #resumeWork(island: Island): void {
     for (const ticket of island.outstanding()) {
       const arrival = this.#reader.arrival(island.number, ticket.evaluation)
       const work = this.#addWork(island, ticket)
-      if (arrival) {
+      const confirmed = this.#reader.isConfirmed(island.number, ticket.evaluation)
+      if (arrival && (confirmed || !this.#shutOut.has(arrival.worker))) {
         const executor = { kind: 'thread', worker: arrival.worker, host: arrival.host } as const
-        this.#vote(work, { result: arrival.result, digest: arrival.digest, executor }, 'evaluate')
-        work.confirmed = this.#reader.isConfirmed(island.number, ticket.evaluation)
+        work.recorded = { result: arrival.result, digest: arrival.digest, executor }
+        this.#vote(work, work.recorded, 'evaluate')
+        work.confirmed = confirmed || arrival.worker === setAsideWorker
       } else this.#works.want(work, 'evaluate')
     }
   }
@@ -145,6 +156,14 @@ export class Engine implements Gate {
       this.#works.want(work, purpose)
     }
     this.#advance()
+    this.#settled = !this.#moves() && this.#confirmBests()
+  }
+
+  #moves(): boolean {
+    for (const standing of this.#standing.values()) {
+      if (standing === 'result' || standing === 'confirmation') return true
+    }
+    return this.#standing.size < this.search.islands.length
   }
 
   /** What became true since the last call, or undefined when nothing did. Stays until appended(). */
@@ -173,15 +192,13 @@ export class Engine implements Gate {
   #takeResult(fact: Extract<DispatchFact, { kind: 'result' }>): void {
     const work = this.#works.find(fact.item.island, fact.item.evaluation)
     if (!work) {
-      this.counts.late++
+      this.#takeLate(fact)
       return
     }
-    if (this.#works.find(work.island, work.evaluation)?.lanes[fact.item.purpose].attempt === fact.item.attempt) {
-      this.#works.settle(work, fact.item.purpose)
-    }
+    if (work.lanes[fact.item.purpose].attempt === fact.item.attempt) this.#works.settle(work, fact.item.purpose)
     if (this.#shutOut.has(fact.executor.worker)) {
       this.counts.late++
-      this.#wantMore(work)
+      this.#works.want(work, fact.item.purpose)
       return
     }
     check(
@@ -198,6 +215,18 @@ export class Engine implements Gate {
     this.#judge(work)
   }
 
+  /** Committed already, or of another search: nothing changes, but a difference is said. */
+  #takeLate(fact: Extract<DispatchFact, { kind: 'result' }>): void {
+    this.counts.late++
+    const known = this.#reader.arrival(fact.item.island, fact.item.evaluation)
+    if (!known || sameBytes(known.digest, fact.digest)) return
+    this.counts.disagreements++
+    this.note(
+      'late-result-differs',
+      `A late result of evaluation ${fact.item.evaluation} of ${islandName(fact.item.island)} by ${fact.executor.worker} differs from the one that was used, by ${known.worker}.`,
+    )
+  }
+
   /** Counts a vote; false when this worker has voted the same already. */
   #vote(work: Work, vote: Vote, purpose: Purpose): boolean {
     const earlier = work.votes.find((other) => other.executor.worker === vote.executor.worker)
@@ -207,27 +236,14 @@ export class Engine implements Gate {
       return false
     }
     work.votes.push(vote)
-    if (work.votes.length === 1 && work.kind === 'first') {
-      const order = this.#arrivalOrder.get(work.island) ?? []
-      order.push(work.evaluation)
-      this.#arrivalOrder.set(work.island, order)
-    }
+    if (work.votes.length === 1 && work.kind === 'first') this.#arrivalOrder.get(work.island)?.push(work.evaluation)
     this.#due.add(work.island)
     return true
   }
 
   #recordVote(work: Work, vote: Vote, fact: Extract<DispatchFact, { kind: 'result' }>): void {
     if (work.votes.length === 1) {
-      this.#rows.arrival({
-        island: work.island,
-        evaluation: work.evaluation,
-        worker: vote.executor.worker,
-        host: vote.executor.host,
-        attempt: fact.item.attempt,
-        cpuSeconds: fact.cpuSeconds,
-        result: vote.result,
-        digest: vote.digest,
-      })
+      this.#keep(work, fact.cpuSeconds)
       return
     }
     this.counts.confirmations++
@@ -240,6 +256,23 @@ export class Engine implements Gate {
       by: vote.executor.host === first.executor.host ? 'process' : 'host',
       digest: vote.digest,
       agrees: sameBytes(vote.digest, first.digest),
+    })
+  }
+
+  /** Writes the first vote down where the record does not have it yet. */
+  #keep(work: Work, cpuSeconds = 0): void {
+    const vote = work.votes[0]
+    if (!vote || vote === work.recorded) return
+    work.recorded = vote
+    this.#rows.arrival({
+      island: work.island,
+      evaluation: work.evaluation,
+      worker: vote.executor.worker,
+      host: vote.executor.host,
+      attempt: work.lanes.evaluate.attempt,
+      cpuSeconds,
+      result: vote.result,
+      digest: vote.digest,
     })
   }
 
@@ -279,17 +312,8 @@ export class Engine implements Gate {
 
   /** The first result was wrong and nothing was committed with it: the right one takes its place. */
   #overrule(work: Work, right: Vote): void {
-    this.#rows.arrival({
-      island: work.island,
-      evaluation: work.evaluation,
-      worker: right.executor.worker,
-      host: right.executor.host,
-      attempt: work.lanes.evaluate.attempt,
-      cpuSeconds: 0,
-      result: right.result,
-      digest: right.digest,
-    })
     work.votes = [right, ...work.votes.filter((vote) => vote !== right)]
+    this.#keep(work)
   }
 
   /** A committed result was wrong: every island puts it right at a stated point. */
@@ -308,16 +332,15 @@ export class Engine implements Gate {
   #convict({ executor }: Vote, work: Work): void {
     if (this.#shutOut.has(executor.worker)) return
     this.#shutOut.add(executor.worker)
-    this.note(
-      'worker-shut-out',
-      `Worker ${executor.worker} on ${executor.host} gave a wrong result for evaluation ${work.evaluation} of ${islandName(work.island)}: two others agree against it. Its results are not used any more.`,
-    )
+    const sentence = `Worker ${executor.worker} on ${executor.host} gave a wrong result for evaluation ${work.evaluation} of ${islandName(work.island)}: two others agree against it. Its results are not used any more.`
+    this.#rows.event(eventRow('worker-shut-out', 0, 0, 0, false, sentence, { worker: executor.worker }))
     this.#suspects.push(executor.worker)
     for (const other of this.#works.all()) {
       if (other.kind !== 'first' || other.confirmed) continue
       const left = other.votes.filter((vote) => vote.executor.worker !== executor.worker)
       if (left.length === other.votes.length) continue
       other.votes = left
+      this.#keep(other)
       this.#wantMore(other)
     }
   }
@@ -362,7 +385,8 @@ export class Engine implements Gate {
       return
     }
     this.counts.setAside++
-    const reason = `set aside: ${fact.cause} ${work.sharedDeaths} times among others and ${work.aloneDeaths} times alone`
+    // The same words whatever the deaths were like: the result enters the digest, the event tells the rest.
+    const reason = 'set aside after its last try'
     const result: EvaluationResult = {
       values: new Float64Array(work.simulations * columnsOf(this.search.plan.problem)),
       failures: Array.from({ length: work.simulations }, (_, simulation) => ({ simulation, reason })),
@@ -370,21 +394,12 @@ export class Engine implements Gate {
     const vote: Vote = {
       result,
       digest: resultDigest(result),
-      executor: { kind: 'process', worker: 'set-aside', host: fact.executor.host },
+      executor: { kind: 'process', worker: setAsideWorker, host: fact.executor.host },
     }
     this.#vote(work, vote, 'evaluate')
     work.confirmed = true
-    this.#rows.arrival({
-      island: work.island,
-      evaluation: work.evaluation,
-      worker: 'set-aside',
-      host: fact.executor.host,
-      attempt: fact.item.attempt,
-      cpuSeconds: 0,
-      result,
-      digest: vote.digest,
-    })
-    this.#impurities.add('evaluations set aside')
+    this.#keep(work)
+    this.#impurities.add('set-aside')
     this.#rows.event(
       eventRow(
         'set-aside',
@@ -404,9 +419,10 @@ export class Engine implements Gate {
   #mustConfirm(island: Island, work: Work): boolean {
     if (work.confirmed || work.kind !== 'first') return false
     const { seed, confirm } = this.search.plan
-    if (confirm.fraction > 0) {
-      if (stream(seed, 'confirm', work.island, work.evaluation).uniform() < confirm.fraction) return true
-    }
+    work.spotCheck ??=
+      confirm.fraction > 0 &&
+      stream(seed, 'confirm', work.island, work.evaluation).uniform() < confirm.fraction
+    if (work.spotCheck) return true
     const ticket = island.ticket(work.evaluation)
     const vote = work.votes[0]
     if (!ticket || !vote) return false
@@ -559,11 +575,11 @@ export class Engine implements Gate {
 
   committed(island: Island, ticket: Ticket, _outcome: Outcome): void {
     const work = this.#works.find(island.number, ticket.evaluation)
-    check(work !== undefined, 'what is committed was in hand')
+    check(work !== undefined && work.recorded === work.votes[0], 'what is committed is what the record holds')
     if (work.confirmed) this.#confirmed.add(keyOf(work.island, work.evaluation))
     this.#works.forget(work)
     const order = this.#arrivalOrder.get(island.number)
-    if (order) order.splice(order.indexOf(ticket.evaluation), 1)
+    if (order) this.#arrivalOrder.set(island.number, order.filter((evaluation) => evaluation !== ticket.evaluation))
     this.#rows.commit(island, ticket)
     this.#announceTarget(island, ticket)
   }
@@ -572,7 +588,7 @@ export class Engine implements Gate {
     if (island.isControl || !targetReached(this.search.plan, island)) return
     if (ticket.individual !== island.best) return
     const { island: whom, epoch } = this.search.finishEpochAfterTarget(island)
-    const sentence = `${nameOf(ticket.individual)} reached the target; the search finishes with epoch ${epoch}.`
+    const sentence = `${nameOf(ticket.individual.id)} reached the target; the search finishes with epoch ${epoch}.`
     const fact: WorldFact = { fact: 'finish', epoch }
     const targets = whom === 0 ? this.search.islands.filter((one) => !one.isControl) : [island]
     for (const one of targets) this.#orderAt(one, 'target-reached', false, sentence, { stage: 'epoch', at: epoch, fact })
@@ -591,23 +607,22 @@ export class Engine implements Gate {
     this.#impurities.add(kind)
     const standing = this.#standing.get(island.number)
     const { commits, epochsPassed } = island.counters
-    const data: FactData = island.ended
-      ? { stage: 'ended', at: commits, fact }
-      : standing === 'confirmation'
-        ? { stage: 'sending', at: epochsPassed + 1, fact }
-        : { stage: 'commit', at: commits + 1, fact }
+    const atEpoch = standing === 'confirmation' || standing === 'mail'
+    const data: FactData = atEpoch
+      ? { stage: 'sending', at: epochsPassed + 1, fact }
+      : { stage: 'waiting', at: commits, fact }
     this.#orderAt(island, kind, true, sentence, data)
   }
 
   /** Orders a fact for the end of an epoch: the first that no island has passed. */
-  orderAtEpoch(kind: string, sentence: string, make: (epoch: number) => WorldFact): void {
+  orderAtEpoch(kind: string, sentence: string, make: (epoch: number, island: Island) => WorldFact): void {
     this.#impurities.add(kind)
     const shared = this.search.firstOpenEpoch()
     for (const island of this.search.islands) {
       const epoch = island.isControl ? island.counters.epochsPassed + 1 : shared
-      const stage = island.ended ? 'ended' : 'epoch'
+      const stage = island.ended ? 'waiting' : 'epoch'
       const at = island.ended ? island.counters.commits : epoch
-      this.#orderAt(island, kind, true, sentence, { stage, at, fact: make(epoch) })
+      this.#orderAt(island, kind, true, sentence, { stage, at, fact: make(epoch, island) })
     }
   }
 
@@ -621,8 +636,8 @@ export class Engine implements Gate {
       eventRow(
         kind,
         island.number,
-        stage === 'commit' || stage === 'ended' ? at : island.counters.commits,
-        stage === 'epoch' || stage === 'sending' ? at : 0,
+        stage === 'waiting' ? at : island.counters.commits,
+        stage === 'waiting' ? 0 : at,
         changesSearch,
         sentence,
         data,
@@ -631,8 +646,17 @@ export class Engine implements Gate {
     this.#due.add(island.number)
   }
 
-  factsAtCommit(island: Island): void {
-    this.#enter(island, this.#schedule.take(island.number, 'commit', island.counters.commits))
+  factWhileWaiting(island: Island): boolean {
+    const fact = this.#schedule.next(island.number, 'waiting', island.counters.commits)
+    if (fact) apply(this.search, island, fact)
+    else if (island.ended) this.#dropWorkOf(island)
+    return fact !== undefined
+  }
+  /** An ended island's unfinished work is of no use any more. */
+  #dropWorkOf(island: Island): void {
+    for (const work of [...this.#works.all()]) {
+      if (work.island === island.number && work.kind === 'first') this.#works.forget(work)
+    }
   }
   factsBeforeSending(island: Island, epoch: number): void {
     this.#enter(island, this.#schedule.take(island.number, 'sending', epoch))
@@ -641,27 +665,25 @@ export class Engine implements Gate {
     this.#enter(island, this.#schedule.take(island.number, 'epoch', epoch))
     this.#rows.epoch(island)
   }
-  factsWhenEnded(island: Island): boolean {
-    // An ended island's unfinished work is of no use any more.
-    for (const work of [...this.#works.all()]) {
-      if (work.island === island.number && work.kind === 'first') this.#works.forget(work)
-    }
-    const facts = this.#schedule.take(island.number, 'ended', island.counters.commits)
-    this.#enter(island, facts)
-    return facts.some((fact) => fact.fact === 'budget') && this.search.resume(island)
-  }
   #enter(island: Island, facts: readonly WorldFact[]): void {
     for (const fact of facts) apply(this.search, island, fact)
+  }
+
+  /** What will be reported is confirmed before the search says that it stands still. */
+  #confirmBests(): boolean {
+    const bests = this.search.islands.flatMap((island) => island.best ?? [])
+    return bests
+      .filter((best) => best.failedSimulations === 0)
+      .map((best) => this.#isConfirmed(best))
+      .every(Boolean)
   }
 
   // ---------------------------------------------------------------------------------------- for people
 
   /** 'finished' when all islands have ended, 'rested' when none can go on before more is allowed. */
   status(): 'running' | 'rested' | 'finished' {
-    const standings = this.search.islands.map((island) => this.#standing.get(island.number))
-    if (standings.every((standing) => standing === 'ended')) return 'finished'
-    const moving = standings.some((standing) => standing === 'result' || standing === 'confirmation')
-    return moving || standings.includes(undefined) ? 'running' : 'rested'
+    if (!this.#settled) return 'running'
+    return this.search.islands.every((island) => island.ended) ? 'finished' : 'rested'
   }
 
   standing(island: number): Standing | undefined {
@@ -680,6 +702,10 @@ export class Engine implements Gate {
     return { waiting: this.#works.waiting, submitted: this.#works.submitted }
   }
 }
+
+/** Stands in the record where a worker's name would: nobody simulated this, it was given up. */
+export const setAsideWorker = 'set-aside'
+const shutOutSchema = z.object({ worker: z.string() })
 
 function eventRow(
   kind: string,

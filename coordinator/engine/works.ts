@@ -28,6 +28,10 @@ export interface Work {
   /** One vote a worker. */
   votes: Vote[]
   confirmed: boolean
+  /** The vote whose result stands in the record: what a replay would commit. */
+  recorded: Vote | undefined
+  /** Chosen by hash for a second simulation; undefined until asked. */
+  spotCheck: boolean | undefined
   /** Lanes: the first simulation, and a second one for confirmation. */
   readonly lanes: { readonly evaluate: Lane; readonly confirm: Lane }
   sharedDeaths: number
@@ -53,18 +57,33 @@ const countsAsDeath: Record<LossCause, boolean> = {
   'handed-back': false,
 }
 
-export function newWork(from: Omit<Work, 'votes' | 'confirmed' | 'lanes' | 'sharedDeaths' | 'aloneDeaths'>): Work {
+/** A piece of work nobody has begun. */
+export function newWork(
+  from: Omit<Work, 'votes' | 'confirmed' | 'recorded' | 'spotCheck' | 'lanes' | 'sharedDeaths' | 'aloneDeaths'>,
+): Work {
+  // Spelt out, not spread: one is made for every evaluation, and a spread costs ten times as much.
   return {
-    ...from,
+    island: from.island,
+    evaluation: from.evaluation,
+    individual: from.individual,
+    firstReplicate: from.firstReplicate,
+    replicates: from.replicates,
+    simulations: from.simulations,
+    expectedCost: from.expectedCost,
+    genome: from.genome,
+    kind: from.kind,
     votes: [],
     confirmed: false,
-    lanes: {
-      evaluate: { state: 'idle', attempt: 0, leaseEndsMs: Infinity },
-      confirm: { state: 'idle', attempt: 0, leaseEndsMs: Infinity },
-    },
+    recorded: undefined,
+    spotCheck: undefined,
+    lanes: { evaluate: newLane(), confirm: newLane() },
     sharedDeaths: 0,
     aloneDeaths: 0,
   }
+}
+
+function newLane(): Lane {
+  return { state: 'idle', attempt: 0, leaseEndsMs: Infinity }
 }
 
 /** Counts a loss and says what follows. */

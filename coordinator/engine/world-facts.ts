@@ -1,6 +1,6 @@
-// Facts of the world that change a search, and the stated points at which they enter: after a commit, before an
-// epoch's emigrants are chosen, at the end of an epoch, or where an island has ended. Each is an event in the
-// record, so that a replay puts it in at the same point.
+// Facts of the world that change a search, and the stated points at which they enter: while an island waits for the
+// result after a given commit (or has ended there), before an epoch's emigrants are chosen, or at the end of an
+// epoch. Each is an event in the record, so that a replay puts it in at the same point.
 
 import { z } from 'zod'
 import { refuse } from '../../shared/refusals.js'
@@ -8,8 +8,8 @@ import type { Island } from '../evolution/island.js'
 import { quotasOf, type Search } from '../evolution/search.js'
 import type { EventRow } from './ports.js'
 
-/** Where a fact enters: number is a commit for 'commit' and 'ended', an epoch for 'sending' and 'epoch'. */
-export type Stage = 'commit' | 'sending' | 'epoch' | 'ended'
+/** Where a fact enters: its number is a count of commits for 'waiting', an epoch for 'sending' and 'epoch'. */
+export type Stage = 'waiting' | 'sending' | 'epoch'
 
 const resultSchema = z.object({
   values: z.array(z.number()),
@@ -18,13 +18,14 @@ const resultSchema = z.object({
 const factSchema = z.discriminatedUnion('fact', [
   z.object({ fact: z.literal('amend'), individual: z.number(), firstReplicate: z.number(), result: resultSchema }),
   z.object({ fact: z.literal('finish'), epoch: z.number() }),
-  z.object({ fact: z.literal('budget'), simulations: z.number() }),
+  /** `silentFrom` > 0: the island had ended and sent nothing from that epoch on; it goes on after `epoch`. */
+  z.object({ fact: z.literal('budget'), simulations: z.number(), epoch: z.number(), silentFrom: z.number() }),
   z.object({ fact: z.literal('most-replicates'), most: z.number() }),
 ])
 export type WorldFact = z.infer<typeof factSchema>
 
 const dataSchema = z.object({
-  stage: z.enum(['commit', 'sending', 'epoch', 'ended']),
+  stage: z.enum(['waiting', 'sending', 'epoch']),
   at: z.number(),
   fact: factSchema,
 })
@@ -35,13 +36,14 @@ export class Schedule {
   readonly #facts = new Map<string, WorldFact[]>()
 
   /** Adds what an event of the record says; events without a fact are only news. */
-  addRecorded(event: EventRow): void {
-    if (event.data === null || typeof event.data !== 'object' || !('fact' in event.data)) return
+  addRecorded(event: EventRow): FactData | undefined {
+    if (event.data === null || typeof event.data !== 'object' || !('fact' in event.data)) return undefined
     const parsed = dataSchema.safeParse(event.data)
     if (!parsed.success) {
       throw refuse('record-corrupted', { detail: `event "${event.kind}" has data this version cannot read` })
     }
     this.add(event.island, parsed.data)
+    return parsed.data
   }
 
   add(island: number, { stage, at, fact }: FactData): void {
@@ -49,18 +51,23 @@ export class Schedule {
     this.#facts.set(key, [...(this.#facts.get(key) ?? []), fact])
   }
 
-  /** What enters here, once: it is taken off the schedule. */
+  /** The next fact that enters here, in the order they were stated; it is taken off the schedule. */
+  next(island: number, stage: Stage, at: number): WorldFact | undefined {
+    if (this.#facts.size === 0) return undefined
+    const key = keyOf(island, stage, at)
+    const facts = this.#facts.get(key)
+    const fact = facts?.shift()
+    if (facts?.length === 0) this.#facts.delete(key)
+    return fact
+  }
+
+  /** Everything that enters here, once: it is taken off the schedule. */
   take(island: number, stage: Stage, at: number): readonly WorldFact[] {
     if (this.#facts.size === 0) return []
     const key = keyOf(island, stage, at)
     const facts = this.#facts.get(key) ?? []
     this.#facts.delete(key)
     return facts
-  }
-
-  /** Epoch ends are shared by all migrating islands: their facts stay until the last has passed. */
-  at(island: number, stage: Stage, at: number): readonly WorldFact[] {
-    return this.#facts.get(keyOf(island, stage, at)) ?? []
   }
 
   /** The epoch this island is ordered to finish with, if any. */
@@ -73,10 +80,6 @@ export class Schedule {
       }
     }
     return earliest
-  }
-
-  get isEmpty(): boolean {
-    return this.#facts.size === 0
   }
 }
 
@@ -100,6 +103,7 @@ export function apply(search: Search, island: Island, fact: WorldFact): void {
     case 'budget': {
       const quota = quotasOf(search.plan, fact.simulations).get(island.number)
       if (quota !== undefined) island.setQuota(quota)
+      if (island.ended) search.resume(island, fact.epoch)
       return
     }
     case 'most-replicates':

@@ -39,12 +39,13 @@ export interface Gate {
   mayCommit(island: Island, ticket: Ticket): boolean
   /** False while an emigrant is not confirmed. */
   maySend(island: Island, epoch: number, emigrants: readonly Individual[]): boolean
-  /** Facts of the world stated for this island at this commit; called once after every commit. */
-  factsAtCommit(island: Island): void
+  /**
+   * Lets the next fact of the world stated for this number of commits enter, while the island waits for its next
+   * result (or has ended); true when one did. One at a time, so that a replay does the same.
+   */
+  factWhileWaiting(island: Island): boolean
   /** Facts stated for the moment before this epoch's emigrants are chosen; may be called again and again. */
   factsBeforeSending(island: Island, epoch: number): void
-  /** Facts stated for an island that has ended; true when it may have been set going again. */
-  factsWhenEnded(island: Island): boolean
   /** Facts stated for the end of this epoch; called once after the epoch was passed. */
   factsAtEpoch(island: Island, epoch: number): void
   released(island: Island, tickets: readonly Ticket[]): void
@@ -110,10 +111,8 @@ export class Search {
       if (stopped) return stopped
       const released = island.fill()
       if (released.length > 0) gate.released(island, released)
-      if (island.ended) {
-        if (gate.factsWhenEnded(island) && !island.ended) continue
-        return this.#sendEnd(island, gate)
-      }
+      if (gate.factWhileWaiting(island)) continue
+      if (island.ended) return this.#sendEnd(island, gate)
       const ticket = nextTicket(island, gate)
       if (!ticket) return 'result'
       if (!gate.mayCommit(island, ticket)) return 'resting'
@@ -121,7 +120,6 @@ export class Search {
       if (!outcome) return 'result'
       island.commit(ticket, outcome.result, outcome.digest)
       gate.committed(island, ticket, outcome)
-      gate.factsAtCommit(island)
     }
   }
 
@@ -214,6 +212,11 @@ export class Search {
     return Math.max(0, ...passed) + 1
   }
 
+  /** Sets an ended island going again after `epoch`, if it has quota. */
+  resume(island: Island, epoch: number): void {
+    if (island.resumeAfter(epoch)) this.#post.resume(island.number, epoch)
+  }
+
   /** True when this island was made from a snapshot and not from nothing. */
   wasRestored(island: number): boolean {
     return this.#restarted.has(island)
@@ -263,6 +266,11 @@ export class Post {
 
   hasEnded(island: number): boolean {
     return this.#silencesOf(island).some((silence) => silence.until === Infinity)
+  }
+
+  /** Known from a record: the island sent nothing for these epochs. */
+  silence(island: number, from: number, until: number): void {
+    this.#silencesOf(island).push({ from, until })
   }
 
   /** An ended island is going again: it sends mail for the epochs after `epoch`. */

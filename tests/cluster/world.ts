@@ -1,0 +1,237 @@
+// A whole cluster under one seed: a virtual clock, a coordinator that crashes, a disk that loses what it was
+// writing, workers that die, stall, duplicate, reorder, answer late and lie. The engine is the real one; only the
+// world is made up. One run of a search takes milliseconds, and a failure is repeated by its seed.
+//
+// First comes a phase with faults, then one without that must finish.
+
+import type { SearchPlan } from '../../coordinator/evolution/plan.js'
+import type { Engine } from '../../coordinator/engine/engine.js'
+import { openEngine } from '../../coordinator/engine/recover.js'
+import { genomeFromBytes } from '../../shared/encodings.js'
+import { hex, resultDigest } from '../../shared/digests.js'
+import type { DispatchFact, EvaluationResult, WorkItem } from '../../shared/result.js'
+import { type Stream, stream } from '../../shared/streams.js'
+import { fixtureCost, fixtureTools, simulated } from '../fixture.js'
+import { Disk, PowerCut } from './disk.js'
+
+export interface Weather {
+  readonly workers: number
+  /** Chances in 1000, each per piece of work. */
+  readonly dies: number
+  readonly stalls: number
+  readonly duplicates: number
+  readonly late: number
+  readonly handsBack: number
+  /** A result held back by up to 1000 times its duration. */
+  readonly delayed: number
+  /** Chances in 1000 per append. */
+  readonly crashes: number
+  /** Workers that give wrong results, and their chance in 1000. */
+  readonly liars: number
+  readonly lies: number
+  /** Genomes of this size kill whoever simulates them; 0 for none. */
+  readonly poisonSize: number
+}
+
+export const calm: Weather = {
+  workers: 3,
+  dies: 0,
+  stalls: 0,
+  duplicates: 0,
+  late: 0,
+  handsBack: 0,
+  delayed: 0,
+  crashes: 0,
+  liars: 0,
+  lies: 0,
+  poisonSize: 0,
+}
+
+/** Bad weather drawn from the seed: every fault at its own strength, many of them none. */
+export function stormOf(seed: number): Weather {
+  const draw = stream(seed, 'weather', 1)
+  const some = (most: number) => (draw.chance(1, 2) ? 0 : 1 + draw.below(most))
+  return {
+    workers: 1 + draw.below(24),
+    dies: some(80),
+    stalls: some(60),
+    duplicates: some(300),
+    late: some(100),
+    handsBack: some(100),
+    delayed: some(200),
+    crashes: some(20),
+    liars: 0,
+    lies: 0,
+    poisonSize: 0,
+  }
+}
+
+export interface Ending {
+  readonly digest: string
+  readonly engine: Engine
+  readonly disk: Disk
+  readonly crashes: number
+  readonly simulations: number
+  readonly liars: readonly string[]
+  readonly status: string
+}
+
+interface Arrival {
+  readonly atMs: number
+  readonly order: number
+  readonly fact: DispatchFact
+}
+
+const leaseMs = 60_000
+
+export class World {
+  readonly #plan: SearchPlan
+  readonly #weather: Weather
+  readonly #draw: Stream
+  readonly #disk: Disk
+  readonly #inFlight: Arrival[] = []
+  readonly #busyUntilMs: number[]
+  #engine: Engine
+  #nowMs = 0
+  #order = 0
+  #crashes = 0
+  #simulations = 0
+  #faulty = true
+  readonly #snapshotCommits: number
+
+  constructor(plan: SearchPlan, seed: number, weather: Weather) {
+    this.#plan = plan
+    this.#weather = weather
+    this.#draw = stream(seed, 'weather', 2)
+    this.#disk = new Disk(stream(seed, 'weather', 3))
+    this.#busyUntilMs = new Array<number>(weather.workers).fill(0)
+    this.#snapshotCommits = 10 + this.#draw.below(190)
+    this.#engine = this.#open()
+  }
+
+  #open(): Engine {
+    const { engine } = openEngine(fixtureTools(this.#plan), this.#disk, {
+      leaseMs,
+      snapshotCommits: this.#snapshotCommits,
+    })
+    return engine
+  }
+
+  /** Runs to the end: `stormSteps` looks of the coordinator with faults, then without. */
+  run(stormSteps: number, stepsMost = 200_000): Ending {
+    for (let step = 0; step < stepsMost; step++) {
+      this.#faulty = step < stormSteps
+      this.#disk.cutsPerThousand = this.#faulty ? this.#weather.crashes : 0
+      try {
+        if (this.#look()) break
+      } catch (fault) {
+        if (!(fault instanceof PowerCut)) throw fault
+        this.#crashes++
+        this.#engine = this.#open()
+      }
+    }
+    return {
+      digest: hex(this.#engine.search.digest()),
+      engine: this.#engine,
+      disk: this.#disk,
+      crashes: this.#crashes,
+      simulations: this.#simulations,
+      liars: Array.from({ length: this.#weather.liars }, (_, worker) => nameOf(worker)),
+      status: this.#engine.status(),
+    }
+  }
+
+  /** One look of the coordinator; true when there is nothing left to do. */
+  #look(): boolean {
+    this.#engine.take(this.#arrived(), this.#nowMs)
+    this.#makeDurable()
+    if (this.#engine.status() !== 'running') return true
+    const items = this.#engine.work(2 * this.#weather.workers, this.#nowMs)
+    for (const item of items) this.#simulate(item)
+    return false
+  }
+
+  #makeDurable(): void {
+    for (let rows = this.#engine.rows(); rows; rows = this.#engine.rows()) {
+      this.#disk.append(rows)
+      this.#engine.appended()
+    }
+  }
+
+  #arrived(): DispatchFact[] {
+    if (this.#inFlight.length === 0) {
+      // Nothing will arrive: only a lease that runs out can move the search.
+      this.#nowMs += leaseMs
+      return []
+    }
+    this.#inFlight.sort((a, b) => a.atMs - b.atMs || a.order - b.order)
+    this.#nowMs = Math.max(this.#nowMs, this.#inFlight[0]!.atMs)
+    const ready = this.#inFlight.filter((arrival) => arrival.atMs <= this.#nowMs)
+    this.#inFlight.splice(0, ready.length)
+    return ready.map((arrival) => arrival.fact)
+  }
+
+  #simulate(item: WorkItem): void {
+    const worker = this.#workerFor(item)
+    const genome = genomeFromBytes(this.#plan.problem.spec, item.genome)
+    const duration = fixtureCost(genome) * 100 * (1 + this.#draw.below(3))
+    const delay = this.#happens(this.#weather.delayed) ? duration * this.#draw.below(1000) : 0
+    const startMs = Math.max(this.#nowMs, this.#busyUntilMs[worker]!)
+    const endMs = startMs + duration
+    this.#busyUntilMs[worker] = endMs
+    const executor = { kind: 'thread', worker: nameOf(worker), host: `h${worker % 5}` } as const
+    const poison = this.#weather.poisonSize > 0 && genome.size![0] === this.#weather.poisonSize
+    if (poison) {
+      this.#arrive(endMs, { kind: 'lost', item, cause: 'died', detail: 'killed by the genome', executor })
+      return
+    }
+    if (this.#happens(this.#weather.stalls)) return
+    if (this.#happens(this.#weather.dies) || this.#happens(this.#weather.handsBack)) {
+      this.#arrive(endMs, { kind: 'lost', item, cause: 'agent-lost', detail: 'preempted', executor })
+      if (!this.#happens(this.#weather.late)) return
+    }
+    this.#simulations++
+    const result = this.#resultOf(item, genome, worker)
+    const fact = {
+      kind: 'result',
+      item,
+      result,
+      digest: resultDigest(result),
+      executor,
+      cpuSeconds: duration / 1000,
+      wallSeconds: duration / 1000,
+    } as const
+    this.#arrive(endMs + delay, fact)
+    if (this.#happens(this.#weather.duplicates)) this.#arrive(endMs + delay + this.#draw.below(100_000), fact)
+  }
+
+  #resultOf(item: WorkItem, genome: Parameters<typeof fixtureCost>[0], worker: number): EvaluationResult {
+    const result = simulated(this.#plan, genome, item.firstReplicate, item.replicates)
+    const lies = this.#faulty && worker < this.#weather.liars && this.#draw.chance(this.#weather.lies, 1000)
+    if (!lies) return result
+    const values = result.values.slice()
+    values[this.#draw.below(values.length)] = -5 + 3 * this.#draw.uniform()
+    return { values, failures: [] }
+  }
+
+  /** A worker that may do it: the first free one of a random order, as a queue would have it. */
+  #workerFor(item: WorkItem): number {
+    const order = this.#draw.permutation(this.#weather.workers)
+    for (const worker of order) if (!item.avoid.includes(nameOf(worker))) return worker
+    // Everybody is to be avoided: a fresh process on some machine.
+    this.#busyUntilMs.push(this.#nowMs)
+    return this.#busyUntilMs.length - 1
+  }
+
+  #happens(inThousand: number): boolean {
+    return this.#faulty && inThousand > 0 && this.#draw.chance(inThousand, 1000)
+  }
+
+  #arrive(atMs: number, fact: DispatchFact): void {
+    this.#inFlight.push({ atMs, order: this.#order++, fact })
+  }
+}
+
+function nameOf(worker: number): string {
+  return `w${worker}`
+}
