@@ -49,6 +49,6 @@ function mustBeFresh(file: string, root: string): void {
 function notBuilt(detail: string): Error {
   return refuse('internal', {
     detail,
-    cure: 'Run `npx tsc -p .` in the folder of the package, then try again.',
+    cure: 'Run `npm run build` in the folder of the package, then try again.',
   })
 }

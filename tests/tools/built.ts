@@ -8,7 +8,14 @@ import { fileURLToPath } from 'node:url'
 import { emittedFile } from '../../worker/entry.js'
 
 const root = join(dirname(fileURLToPath(import.meta.url)), '..', '..')
-const entries = ['worker/thread', 'worker/alone', 'worker/plugin/bundle', 'sim/index', 'shared/detmath']
+const entries = [
+  'worker/pool',
+  'worker/thread',
+  'worker/alone',
+  'worker/plugin/load',
+  'sim/index',
+  'shared/detmath',
+]
 
 /** Makes sure that the emitted files are those of the sources as they are now. */
 export function ensureBuilt(): void {
