@@ -238,6 +238,7 @@ interface SeedKeys {
   readonly words: Int32Array
 }
 const seedsKept = 64
+const purposeNumbers = 1 + Math.max(...Object.values(purposes))
 const keysOfSeeds = new Map<number, SeedKeys>()
 let latest: SeedKeys | undefined
 
@@ -247,7 +248,7 @@ function keysOf(seed: number): SeedKeys {
   if (keys === undefined) {
     check(Number.isSafeInteger(seed) && seed >= 0, 'a seed is an integer from 0 to 2^53 - 1')
     if (keysOfSeeds.size >= seedsKept) keysOfSeeds.clear()
-    keys = { seed, made: new Uint8Array(256), words: new Int32Array(512) }
+    keys = { seed, made: new Uint8Array(purposeNumbers), words: new Int32Array(2 * purposeNumbers) }
     keysOfSeeds.set(seed, keys)
   }
   latest = keys
