@@ -68,11 +68,9 @@ export default defineProblem({
   simulate: (genome, situations) => situations.map((situation) => simulateOne(genome, situation)),
   expectedCost: (genome) => {
     const body = buildBody(genome)
-    // Thousands of strut steps, roughly: what time goes by (measured; see README.md).
-    return Math.max(
-      1,
-      Math.round(((body.members.length + 2 * body.columns) * stepsOf(genome, body)) / 100_000),
-    )
+    // In units of 20,000 strut steps; a node costs about as much as two struts.
+    const work = (body.members.length + 2 * 2 * body.columns) * stepsOf(genome, body)
+    return Math.max(1, Math.round(work / 20_000))
   },
   repair: repairCrawler,
   frames: crawlerFrames,

@@ -9,13 +9,16 @@ export const numbers = {
   youngPa: { soft: 0.412683e6, firm: 0.731922e6, hard: 1.142372e6 },
   // Platinum-cure silicone rubber, makers' data sheets, from memory: 1030 to 1080 kg/m^3.
   rubberKgpm3: 1070,
-  // A round strut of 8 mm: a common size to cast or to cut from cord.
-  strutAreaM2: Math.PI * 0.004 * 0.004,
+  // A tube of 16 mm mean diameter with a wall of 1 mm, as sold or cast. A solid rod of the same area would buckle
+  // under a compression of 1 to 4 %; the tube does at 5 to 36 % (Euler, pinned ends, 80 to 30 mm). Buckling is not
+  // simulated.
+  strutAreaM2: Math.PI * 0.016 * 0.001,
+  strutDiameterM: 0.016,
   // c/k of the struts. tan delta = c w / k is then 0.06 to 0.19 between 10 and 30 Hz, where the body's own modes
   // are; silicone rubbers at low frequency: about 0.05 to 0.2 (from memory).
   relaxationSeconds: 1e-3,
   // A moulded joint with its pin, or the like.
-  jointKg: 0.004,
+  jointKg: 0.005,
 
   // Actuators: bellows or sleeved tubes on compressed air. Stroke of fluidic muscles is about 25 % of their length
   // (makers' data sheets); the wall is taken as soft as the softest strut.
@@ -41,10 +44,11 @@ export const numbers = {
   // Sliding slower than this is creep of the friction model (see sim/lattice/kernel.ts).
   creepMps: 1e-3,
 
-  // Ground contact: a node's weight sinks it by about 0.3 mm.
-  contactNpm: 800,
-  contactNspm2: 2000,
-  depthLimitM: 0.01,
+  // Ground contact: a node's weight sinks it by about 0.1 mm; a node that lands at 0.3 m/s comes up with 0.83 of
+  // its speed (Hunt and Crossley, y = 0.3), the rest is left to the body's own damping.
+  contactNpm: 1500,
+  contactNspm2: 1500,
+  depthLimitM: 0.004,
 
   // The sensor puck and the ring that holds it on an upper node.
   puckKg: 0.05,
@@ -62,7 +66,7 @@ export const numbers = {
   samplesPerFrame: 4,
 
   // Collapse: a bay that keeps less of its area than this, or a strut outside these multiples of its length.
-  bayAreaLeast: 0.2,
-  strutRatioLeast: 0.5,
-  strutRatioMost: 1.7,
+  bayAreaLeast: 0.35,
+  strutRatioLeast: 0.6,
+  strutRatioMost: 1.5,
 } as const
