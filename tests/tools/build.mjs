@@ -13,7 +13,7 @@ import {
   rmSync,
   writeFileSync,
 } from 'node:fs'
-import { dirname, extname, join, relative } from 'node:path'
+import { dirname, extname, join, relative, sep } from 'node:path'
 import { fileURLToPath } from 'node:url'
 
 const root = join(dirname(fileURLToPath(import.meta.url)), '..', '..')
@@ -55,6 +55,7 @@ function removeOrphans(sources) {
   for (const file of [...filesBelow(dist)]) {
     const name = relative(dist, file)
     const source = name.replace(/\.(d\.ts|js\.map|js)$/, '')
+    if (name.startsWith(`tests${sep}`)) continue // the benchmarks' (bench.mjs)
     if (file !== stamp && !expected.has(name) && !expected.has(source)) rmSync(file)
   }
 }
