@@ -184,7 +184,11 @@ export class Engine implements Gate {
 
   /** A sentence for the record that changes nothing in the search. */
   note(kind: string, sentence: string, island = 0): void {
-    this.#rows.event(eventRow(kind, island, 0, 0, false, sentence, null))
+    this.noteData(kind, sentence, null, island)
+  }
+  /** The same with a JSON value that a later start reads again. */
+  noteData(kind: string, sentence: string, data: unknown, island = 0): void {
+    this.#rows.event(eventRow(kind, island, 0, 0, false, sentence, data))
   }
 
   // -------------------------------------------------------------------------------- results, losses
@@ -231,8 +235,13 @@ export class Engine implements Gate {
   #vote(work: Work, vote: Vote, purpose: Purpose): boolean {
     const earlier = work.votes.find((other) => other.executor.worker === vote.executor.worker)
     if (earlier) {
-      if (!sameBytes(earlier.digest, vote.digest)) this.#notRepeatable(work, [earlier, vote])
-      if (purpose === 'confirm') this.#works.want(work, 'confirm')
+      // Whoever contradicts himself is no witness: others must say it.
+      const contradicts = !sameBytes(earlier.digest, vote.digest)
+      if (contradicts) {
+        this.counts.disagreements++
+        work.spotCheck = true
+      }
+      if (purpose === 'confirm' || contradicts) this.#works.want(work, 'confirm')
       return false
     }
     work.votes.push(vote)

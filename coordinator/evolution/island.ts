@@ -46,7 +46,7 @@ interface Counters {
   epochOriginCost: number
   /** Last epoch whose emigrants were taken in; at most one ahead of epochsPassed. */
   epochsReceived: number
-  failures: number
+  failedSimulations: number
   topUps: number
   /** Island cost at which the present best became the best. */
   bestSinceCost: number
@@ -283,7 +283,7 @@ export class Island {
     counters.committedSimulations += ticket.simulations
     counters.costCommitted += ticket.expectedCost
     counters.virtualTime = Math.max(counters.virtualTime, ticket.virtualFinish)
-    counters.failures += result.failures.length > 0 ? 1 : 0
+    counters.failedSimulations += result.failures.length
     if (firstBlock) this.#machine.commit(individual, stream(plan.seed, 'commit', this.number, counters.commits))
     else this.#machine.reconsider(individual)
     this.#noteBest(individual)
@@ -537,7 +537,7 @@ function newCounters(): Counters {
     epochsPassed: 0,
     epochOriginCost: 0,
     epochsReceived: 0,
-    failures: 0,
+    failedSimulations: 0,
     topUps: 0,
     bestSinceCost: 0,
   }

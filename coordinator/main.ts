@@ -1,0 +1,299 @@
+// The meeting place: a search file, a record, a pool of threads and the engine become a running search. Everything
+// is decided elsewhere; here the parts are handed to one another.
+
+import { randomBytes } from 'node:crypto'
+import { existsSync, readFileSync, statSync } from 'node:fs'
+import { availableParallelism } from 'node:os'
+import { join } from 'node:path'
+import { z } from 'zod'
+import { hex } from '../shared/digests.js'
+import { islandName } from '../shared/ids.js'
+import type { AnyProblem } from '../shared/problem.js'
+import { refuse } from '../shared/refusals.js'
+import { loadPlugin } from '../worker/plugin/load.js'
+import { createPool } from '../worker/pool.js'
+import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
+import { type Finish, retest, write, writeFinish } from './cli/join/finish.js'
+import { Meter } from './cli/join/meter.js'
+import { resimulate, Sample } from './cli/join/resimulate.js'
+import { bestOf, progressView } from './cli/join/view.js'
+import type { ProgressView } from './cli/progress-view.js'
+import type { RederiveOptions, RederiveReport, RunEnd, RunOptions } from './cli/run-options.js'
+import { searchTables } from './cli/search-tables.js'
+import { type OpenedSearch, openSearch } from './cli/searchfile/open.js'
+import { localDispatcher } from './dispatch/local.js'
+import type { Engine } from './engine/engine.js'
+import { type LoopEnd, type LoopState, runLoop } from './engine/loop.js'
+import type { Dispatcher } from './engine/ports.js'
+import { openEngine, replayRecord } from './engine/recover.js'
+import { searchTools } from './evolution/build.js'
+import type { SearchPlan } from './evolution/plan.js'
+import type { SearchTools } from './evolution/search.js'
+import { type OpenRecord, openRecord, readRecord, recordFolder, thisProcess } from './record/index.js'
+
+/** Commits of an island between two snapshots: a restart replays at most as many. */
+const snapshotCommits = 20_000
+const beatSeconds = 2
+const progressSeconds = 1
+const progressFile = 'progress.json'
+
+const toolsOf = (plan: SearchPlan, problem: AnyProblem): SearchTools =>
+  searchTools(plan, { expectedCost: problem.expectedCost as never, repair: problem.repair as never })
+
+/** Starts the search of a file, or goes on where its record stands. */
+export async function runSearch(options: RunOptions): Promise<RunEnd> {
+  const opened = await openSearch(options.file, searchTables(), Date.now())
+  if (opened.warnings.length > 0) options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
+  for (const warning of opened.bundle.warnings) options.tell({ kind: 'said', sentence: warning })
+  const folder = options.record ?? join('records', opened.plan.name)
+  const record = openRecord(folder, {
+    create: {
+      plan: opened.plan,
+      searchText: opened.text,
+      pluginCode: new TextEncoder().encode(opened.bundle.code),
+    },
+    holder: thisProcess(),
+    nonce: randomBytes(16).toString('hex'),
+    clock: Date.now,
+    ...(options.force ? { takeover: 'force' } : {}),
+  })
+  try {
+    return await runRecord(options, opened, record, folder)
+  } finally {
+    record.close()
+  }
+}
+
+async function runRecord(
+  options: RunOptions,
+  opened: OpenedSearch,
+  record: OpenRecord,
+  folder: string,
+): Promise<RunEnd> {
+  for (const sentence of record.notices) options.tell({ kind: 'said', sentence })
+  const changes = record.created
+    ? []
+    : judgeChanges(
+        options.file,
+        acceptedText(record.reader, record.searchText),
+        opened.text,
+        options.acceptChanges,
+        (found) => options.tell({ kind: 'changed', file: options.file, changes: found }),
+      )
+  if (record.plan.problem.digest !== opened.bundle.digest) {
+    options.tell({
+      kind: 'said',
+      sentence: `${opened.fields.problem} was edited since the record was begun. The search goes on with its pinned copy; for the new one, begin another record.`,
+    })
+  }
+  const problem = await loadPlugin({ code: new TextDecoder().decode(record.pluginCode) })
+  const { engine, replay } = openEngine(toolsOf(record.plan, problem), record.reader, {
+    // The pool of this machine answers for everything it was given.
+    leaseMs: Number.POSITIVE_INFINITY,
+    snapshotCommits,
+    ...(options.stopAfter === undefined ? {} : { stopAfter: options.stopAfter }),
+  })
+  noteStart(engine, record, replay.commits, options)
+  orderChanges(engine, changes, opened.fields, opened.text)
+  const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
+  return await drive({ options, record, folder, engine, problem, cores })
+}
+
+function noteStart(engine: Engine, record: OpenRecord, replayed: number, options: RunOptions): void {
+  if (record.created) {
+    engine.note('begun', 'The search was begun.')
+    return
+  }
+  const { submitted, waiting } = engine.inHand
+  const sentence = `Continued: ${replayed} commits were derived again behind the snapshots, ${submitted + waiting} evaluations are sent out again.`
+  options.tell({ kind: 'said', sentence })
+  engine.note('continued', sentence)
+  if (record.loss) {
+    engine.note('end-of-record-lost', `The last ${record.loss.appends} appends were missing and are simulated again.`)
+  }
+}
+
+interface Driven {
+  readonly options: RunOptions
+  readonly record: OpenRecord
+  readonly folder: string
+  readonly engine: Engine
+  readonly problem: AnyProblem
+  readonly cores: number
+}
+
+async function drive(driven: Driven): Promise<RunEnd> {
+  const { options, record, folder, engine, cores } = driven
+  const dispatcher = dispatcherOf(driven)
+  const meter = new Meter(cores, () => performance.now())
+  const beat = setInterval(() => record.beat(), beatSeconds * 1000)
+  try {
+    await dispatcher.start()
+    const end = await runLoop(engine, {
+      journal: record.journal,
+      dispatcher,
+      nowMs: () => performance.now(),
+      pause: (ms) => pause(ms, options.signal),
+      signal: options.signal,
+      onStep: (state) => {
+        orderBudgetEnds(driven)
+        if (meter.isDue(progressSeconds)) tellProgress(driven, meter, state)
+      },
+    })
+    const finish = await finishRun(driven, end, dispatcher)
+    const view = progressView({ search: engine.search, reader: record.reader, folder, ...stateOf(end) })
+    write(folder, progressFile, 'progress', JSON.stringify(view))
+    return { ended: endWord[end], view, summary: finish.summary, files: finish.files }
+  } finally {
+    clearInterval(beat)
+    await dispatcher.close()
+  }
+}
+
+function dispatcherOf({ record, folder, cores }: Driven): Dispatcher {
+  const { seed, replicates } = record.plan
+  return localDispatcher((events) =>
+    createPool(
+      { pluginFile: recordFolder(folder).plugin, seed, sharedConditions: replicates.shared, threads: cores },
+      events,
+    ),
+  )
+}
+
+const endWord: { readonly [end in LoopEnd]: RunEnd['ended'] } = {
+  finished: 'finished',
+  rested: 'stop-after',
+  interrupted: 'interrupted',
+}
+
+function stateOf(end: LoopEnd): { readonly state: ProgressView['state']; readonly because?: string } {
+  if (end === 'finished') return { state: 'finished' }
+  return { state: 'stopped', because: end === 'rested' ? 'because --stop-after asked for it' : 'by a signal' }
+}
+
+async function finishRun(driven: Driven, end: LoopEnd, dispatcher: Dispatcher): Promise<Finish> {
+  const { engine, options, folder, problem } = driven
+  if (end === 'interrupted') return { summary: [], files: [] }
+  const best = bestOf(engine.search.islands.filter((island) => !island.isControl))
+  const retested = best && (await retest(engine.search, best, dispatcher, options.signal))
+  return writeFinish(folder, engine.search, problem, retested)
+}
+
+function tellProgress({ options, record, folder, engine }: Driven, meter: Meter, state: LoopState): void {
+  const simulations = engine.search.islands.reduce((sum, one) => sum + one.counters.committedSimulations, 0)
+  const left = engine.search.islands.reduce((sum, one) => sum + (one.ended ? 0 : one.quota), 0) - simulations
+  const rate = meter.rate(simulations, record.reader.totals().cpuSeconds, Math.max(0, left))
+  const view = progressView({
+    search: engine.search,
+    reader: record.reader,
+    folder,
+    state: state.kind,
+    ...(state.kind === 'paused' ? { because: state.refusal.message } : {}),
+    standing: (island) => engine.standing(island),
+    rate,
+  })
+  options.tell({ kind: 'progress', view })
+  if (state.kind === 'searching') write(folder, progressFile, 'progress', JSON.stringify(view))
+}
+
+/** Budgets of hours and of a date end the search at the next epoch, once. */
+function orderBudgetEnds({ engine, record }: Driven): void {
+  const { coreHours, until } = record.plan.budget
+  if (engine.impurities().includes('budget-used')) return
+  const usedHours = coreHours === undefined ? 0 : record.reader.totals().cpuSeconds / 3600
+  const because =
+    coreHours !== undefined && usedHours >= coreHours
+      ? `${coreHours} core-hours are used`
+      : until !== undefined && Date.now() >= Date.parse(until)
+        ? `it is ${until}`
+        : undefined
+  if (because === undefined) return
+  engine.orderAtEpoch('budget-used', `The search finishes with the epoch, because ${because}.`, (epoch) => ({
+    fact: 'finish',
+    epoch,
+  }))
+}
+
+function pause(ms: number, signal: AbortSignal): Promise<void> {
+  return new Promise((resolve) => {
+    const timer = setTimeout(done, ms)
+    function done() {
+      clearTimeout(timer)
+      signal.removeEventListener('abort', done)
+      resolve()
+    }
+    signal.addEventListener('abort', done)
+  })
+}
+
+// ------------------------------------------------------------------------------------------ looking on
+
+const shownSchema = z.looseObject({ state: z.string(), digest: z.string(), committed: z.number() })
+
+/** How a search stands, without disturbing it: what its coordinator last showed, or the record itself when none runs. */
+export async function readProgress(folder: string): Promise<ProgressView> {
+  const record = readRecord(folder, { me: thisProcess() })
+  try {
+    const holder = record.holder()
+    if (holder && holder.running !== false) {
+      const shown = shownProgress(folder)
+      if (shown) return shown
+    }
+    const problem = await loadPlugin({ code: new TextDecoder().decode(record.pluginCode) })
+    const { search } = replayRecord(toolsOf(record.plan, problem), record.reader)
+    const begun = search.islands.some((island) => island.counters.commits > 0)
+    const ended = begun && search.islands.every((island) => island.ended)
+    return progressView({
+      search,
+      reader: record.reader,
+      folder,
+      state: ended ? 'finished' : begun ? 'stopped' : 'new',
+      ...(begun && !ended ? { because: 'no coordinator runs it' } : {}),
+    })
+  } finally {
+    record.close()
+  }
+}
+
+function shownProgress(folder: string): ProgressView | undefined {
+  const path = join(folder, progressFile)
+  if (!existsSync(path) || statSync(path).size === 0) return undefined
+  const parsed = shownSchema.safeParse(JSON.parse(readFileSync(path, 'utf8')))
+  // Written by a coordinator of this version or another: its own shape is the interface.
+  return parsed.success ? (parsed.data as unknown as ProgressView) : undefined
+}
+
+/** Derives a search again from its journal, compares every digest, and simulates a sample again. */
+export async function rederive(options: RederiveOptions): Promise<RederiveReport> {
+  const record = readRecord(options.record)
+  try {
+    const verification = record.verify()
+    if (!verification.intact) {
+      throw refuse('record-corrupted', {
+        detail: verification.sentences.join(' '),
+        where: { file: recordFolder(options.record).database },
+      })
+    }
+    for (const sentence of verification.sentences) options.tell(sentence)
+    const problem = await loadPlugin({ code: new TextDecoder().decode(record.pluginCode) })
+    const sample = new Sample(record.plan, options.resimulate)
+    const { search, replay } = replayRecord(toolsOf(record.plan, problem), record.reader, {
+      fromStart: true,
+      onCommit: (island, ticket) => sample.offer(island, ticket),
+    })
+    options.tell(`${replay.commits} commits derived again, ${replay.digestsCompared} recorded digests compared and equal.`)
+    const resimulated = resimulate(record.plan, problem, record.reader, sample, options.signal)
+    return {
+      islands: search.islands.map((island) => ({
+        name: islandName(island.number),
+        commits: island.counters.commits,
+        digest: hex(island.digest),
+      })),
+      digest: hex(search.digest()),
+      resimulated,
+      exactness: problem.exactness,
+    }
+  } finally {
+    record.close()
+  }
+}
