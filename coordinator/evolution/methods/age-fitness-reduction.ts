@@ -38,31 +38,47 @@ interface Contests {
   readonly removable: number
 }
 
+/** Every decided pair. The hot loop of the method, pool size squared: flat numbers, one pass a pair. */
 function contestsOf(pool: readonly Individual[]): Contests {
   const n = pool.length
-  const criteria = pool.map(criteriaOf)
-  const failed = pool.map(hasFailed)
-  const beats = (i: number, j: number) =>
-    failed[i] === failed[j] ? dominates(criteria[i]!, criteria[j]!) : failed[j]!
+  const width = (pool[0]?.score.length ?? 0) + 2
+  // Failure comes first and counts as one more criterion only between a failed and a working one.
+  const flat = new Float64Array(n * width)
+  pool.forEach((one, i) => {
+    flat[i * width] = hasFailed(one) ? 1 : 0
+    flat.set(criteriaOf(one), i * width + 1)
+  })
   const pairs: number[] = []
   const equals = new Set<number>()
   const removable = new Uint8Array(n)
   for (let i = 0; i < n; i++) {
     for (let j = i + 1; j < n; j++) {
-      if (beats(i, j)) {
-        pairs.push(i * n + j)
-        removable[j] = 1
-      } else if (beats(j, i)) {
-        pairs.push(j * n + i)
-        removable[i] = 1
-      } else if (criteria[i]!.every((value, m) => value === criteria[j]![m])) {
-        pairs.push(i * n + j)
-        equals.add(i * n + j)
-        removable[j] = 1
-      }
+      const outcome = verdict(flat, i * width, j * width, width)
+      if (outcome === neither) continue
+      const loser = outcome === secondWins ? i : j
+      const pair = (i + j - loser) * n + loser
+      pairs.push(pair)
+      if (outcome === even) equals.add(pair)
+      removable[loser] = 1
     }
   }
   return { pairs, equals, removable: removable.reduce((sum, one) => sum + one, 0) }
+}
+
+const even = 0
+const firstWins = 1
+const secondWins = 2
+const neither = 3
+
+/** Two rows of failure, age and scores, at `a` and `b`: bit 1 when the first is better somewhere, bit 2 the second. */
+function verdict(flat: Float64Array, a: number, b: number, width: number): number {
+  if (flat[a] !== flat[b]) return flat[a]! < flat[b]! ? firstWins : secondWins
+  let better = even
+  for (let m = 1; m < width; m++) {
+    if (flat[a + m]! < flat[b + m]!) better |= firstWins
+    else if (flat[a + m]! > flat[b + m]!) better |= secondWins
+  }
+  return better
 }
 
 /**

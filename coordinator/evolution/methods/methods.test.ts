@@ -4,10 +4,12 @@
 import fc from 'fast-check'
 import { describe, expect, test } from 'vitest'
 import type { Genome } from '../../../shared/genome.js'
+import { numberOf } from '../../../shared/ids.js'
 import { stream } from '../../../shared/streams.js'
-import { contextOf, individualOf } from '../../../tests/reference/drive.js'
+import { contextOf, drive, individualOf } from '../../../tests/reference/drive.js'
 import type { Birth, Individual, Method, MethodMachine, Placement, Settings, Variation } from '../types.js'
 import { methodNamed, methods } from './index.js'
+import { byParetoRank } from './pareto-ranking.js'
 
 type Move =
   | { readonly kind: 'commit'; readonly pick: number }
@@ -336,18 +338,25 @@ describe('who survives', () => {
     )
   })
 
-  test('random-sampling keeps the best `population` of all it has seen', () => {
+  test('random-sampling keeps the best `population` of all it has seen, ranked again with every newcomer', () => {
     const method = methodNamed('random-sampling')
     fc.assert(
       fc.property(worlds(method), (drawn) => {
-        const world = { ...drawn, objectives: 1, moves: drawn.moves.filter((one) => one.kind === 'commit') }
-        const { births } = play({ ...world, lookahead: 1 }, false, () => {})
-        const all = births.slice(0, world.moves.length).map((birth) => scoreOf(birth.genome, world)[0]!)
-        let kept: number[] = []
-        play({ ...world, lookahead: 1 }, false, ({ machine }) => {
-          kept = machine.ranked().map((one) => one.score[0]!)
+        const world = { ...drawn, lookahead: 1, moves: drawn.moves.filter((one) => one.kind === 'commit') }
+        let kept: readonly Individual[] = []
+        const { births } = play(world, false)
+        let commits = 0
+        play(world, false, ({ machine, before }) => {
+          const birth = births[commits++]!
+          const newcomer = individualOf(1, commits, birth, scoreOf(birth.genome, world))
+          kept = byParetoRank([...before, newcomer]).slice(0, world.population)
+          expect(ids(machine.members()).toSorted()).toEqual(ids(kept).toSorted())
+          expect(ids(machine.ranked())).toEqual(ids(byParetoRank(kept)))
         })
-        expect(kept).toEqual(all.toSorted((a, b) => (a < b ? -1 : a > b ? 1 : 0)).slice(0, world.population))
+        if (world.objectives > 1) return
+        const all = births.slice(0, commits).map((birth) => scoreOf(birth.genome, world)[0]!)
+        const best = all.toSorted((a, b) => (a < b ? -1 : a > b ? 1 : 0)).slice(0, world.population)
+        expect(kept.map((one) => one.score[0]!)).toEqual(best)
       }),
       runs,
     )
@@ -370,6 +379,23 @@ describe('who survives', () => {
       runs,
     )
   })
+})
+
+test('one-plus-lambda: an equal mutant takes the place of its parent, the first of equals; a worse one does not', () => {
+  const scores = [5, 5, 5, 6, 7, 4, 4]
+  const started = drive({
+    method: methodNamed('one-plus-lambda'),
+    population: 2,
+    lookahead: 2,
+    variation,
+    score: () => [scores.shift() ?? 9],
+    seed: 1,
+  })
+  const parents = [1, 2, 2, 2].map((commits) => {
+    started.steps(commits)
+    return numberOf(started.machine.members()[0]!.id)
+  })
+  expect(parents).toEqual([1, 2, 2, 6])
 })
 
 test('every row of the table is complete, and its defaults lie within their bounds', () => {

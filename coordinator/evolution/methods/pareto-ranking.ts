@@ -37,13 +37,15 @@ export function crowdedComparison(ranking: ParetoRanking, a: number, b: number):
   return ranking.crowding[a]! > ranking.crowding[b]! ? -1 : 1
 }
 
-/** Best first, a total order. */
+/** Best first, a total order that depends on who they are and not on the order they are given in. */
 export function byParetoRank(members: readonly Individual[]): Individual[] {
   if (members.length > 0 && members[0]!.score.length === 1) return members.toSorted(byScoreThenId)
-  const ranking = paretoRanking(members)
-  const order = members.map((_, index) => index)
-  order.sort((a, b) => crowdedComparison(ranking, a, b) || members[a]!.id - members[b]!.id)
-  return order.map((index) => members[index]!)
+  // Among equal scores crowding goes by place in line, so the line must be one and the same.
+  const line = members.toSorted((a, b) => a.id - b.id)
+  const ranking = paretoRanking(line)
+  const order = line.map((_, index) => index)
+  order.sort((a, b) => crowdedComparison(ranking, a, b) || a - b)
+  return order.map((index) => line[index]!)
 }
 
 export const paretoJudgement: Judgement = {

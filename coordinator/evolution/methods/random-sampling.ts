@@ -3,6 +3,7 @@
 
 import { z } from 'zod'
 import type { Stream } from '../../../shared/streams.js'
+import { dominates, nonDominatedFronts } from '../pareto.js'
 import type { Birth, Individual, Method, MethodContext, MethodMachine, Placement } from '../types.js'
 import { newcomersOf, placeArrivals } from './arrivals.js'
 import { founderBirth } from './breeding.js'
@@ -12,8 +13,10 @@ import { byScoreThenId } from './selection.js'
 
 class RandomSamplingMachine implements MethodMachine {
   readonly #context: MethodContext
-  /** Best first. */
+  /** Best first when they were ranked last. */
   #members: Individual[]
+  /** Several objectives: the members of the last front, or undefined when members or estimates have changed. */
+  #lastFront: readonly Individual[] | undefined
 
   constructor(context: MethodContext, members: Individual[]) {
     this.#context = context
@@ -26,8 +29,24 @@ class RandomSamplingMachine implements MethodMachine {
 
   commit(individual: Individual): void {
     if (this.#context.objectives === 1) this.#insert(individual)
-    else this.#members = byParetoRank([...this.#members, individual])
+    else if (this.#isBehindAll(individual)) return
+    else this.#rankWith([individual])
     if (this.#members.length > this.#context.population) this.#members.pop()
+  }
+
+  /**
+   * True when the seats are taken and somebody of the last front dominates the newcomer: it would be a front of its
+   * own behind all others and leave at once, and nobody else's rank depends on it. Spares the sorting.
+   */
+  #isBehindAll(individual: Individual): boolean {
+    if (this.#members.length < this.#context.population) return false
+    this.#lastFront ??= lastFrontOf(this.#members)
+    return this.#lastFront.some((member) => dominates(member.score, individual.score))
+  }
+
+  #rankWith(newcomers: readonly Individual[]): void {
+    this.#members = byParetoRank([...this.#members, ...newcomers])
+    this.#lastFront = undefined
   }
 
   /** One objective: keeps the order without sorting. */
@@ -43,14 +62,15 @@ class RandomSamplingMachine implements MethodMachine {
   }
 
   reconsider(): void {
-    this.#members = byParetoRank(this.#members)
+    this.#rankWith([])
   }
 
   immigrate(arrivals: readonly Individual[], placement: Placement, stream: Stream): void {
     const { population } = this.#context
     if (placement === 'if-better') this.#members.push(...newcomersOf(this.#members, arrivals))
     else placeArrivals(this.#members, population, arrivals, placement, paretoJudgement, stream)
-    this.#members = byParetoRank(this.#members).slice(0, population)
+    this.#rankWith([])
+    this.#members.length = Math.min(this.#members.length, population)
   }
 
   members(): readonly Individual[] {
@@ -62,12 +82,18 @@ class RandomSamplingMachine implements MethodMachine {
   }
 
   ranked(): readonly Individual[] {
-    return this.#members
+    // With several objectives who left last may have changed how crowded the others are.
+    return this.#context.objectives === 1 ? this.#members : byParetoRank(this.#members)
   }
 
   save(): unknown {
     return { members: idsOf(this.#members) }
   }
+}
+
+function lastFrontOf(members: readonly Individual[]): readonly Individual[] {
+  const fronts = nonDominatedFronts(members.map((member) => member.score))
+  return (fronts.at(-1) ?? []).map((index) => members[index]!)
 }
 
 const savedShape = z.strictObject({ members: savedIds })
