@@ -269,9 +269,9 @@ function describe(contents: Uint8Array): string {
     const range = ranges.get(island!) ?? { low: evaluation!, high: evaluation! }
     ranges.set(island!, { low: Math.min(range.low, evaluation!), high: Math.max(range.high, evaluation!) })
   }
-  const results = [...ranges].map(
-    ([island, { low, high }]) => `${islandName(island)}: ${low === high ? low : `${low}-${high}`}`,
-  )
+  const results = [...ranges]
+    .sort(([a], [b]) => a - b)
+    .map(([island, { low, high }]) => `${islandName(island)}: ${low === high ? low : `${low}-${high}`}`)
   const others = chainedTables
     .filter((table) => table !== 'results' && keys[table].length > 0)
     .map((table) => `${keys[table].length} rows of ${table}`)
