@@ -244,6 +244,7 @@ describe('crossover by exchange', () => {
     const counts = new Float64Array(10)
     for (const child of fromSecond('one-point', 11, {}, 10_000, 52)) {
       const cut = child.indexOf(1)
+      expect(cut).toBeGreaterThan(0)
       expect([...child]).toEqual(Array.from({ length: 11 }, (_, i) => (i < cut ? 0 : 1)))
       counts[cut - 1]!++
     }
@@ -262,6 +263,7 @@ describe('crossover by exchange', () => {
     for (let i = 0; i < 10; i++) expectChance(sum(children.map((child) => child[i]!)), trials, 0.5)
     const lengths = new Float64Array(10)
     for (const child of fromSecond('two-point', 11, {}, 10_000, 54)) lengths[sum(child) - 1]!++
+    expect(sum(lengths)).toBe(10_000)
     expectUniform(lengths, 9)
   })
   test('a single gene comes from either parent', () => {
