@@ -1,0 +1,24 @@
+// The problems that come with Skerry, by name. A search file names one by the module a plug-in would import,
+// 'skerry/problems/NAME'; every module has the problem as its default export.
+
+import { type ClassicName, classics } from './classic/index.js'
+
+export interface BuiltInProblem {
+  /** What a plug-in imports: `export { default } from MODULE`. */
+  readonly module: string
+  /** Folder under sim/problems. */
+  readonly folder: string
+  readonly summary: string
+}
+
+function row(name: string, summary: string): [string, BuiltInProblem] {
+  return [name, { module: `skerry/problems/${name}`, folder: name, summary }]
+}
+
+export const builtInProblems: { readonly [name: string]: BuiltInProblem } = Object.fromEntries([
+  row(
+    'culvert-crawler',
+    'A soft truss crawls along a culvert with debris on its floor, carrying a sensor puck.',
+  ),
+  ...(Object.keys(classics) as ClassicName[]).map((name) => row(name, classics[name].summary)),
+])

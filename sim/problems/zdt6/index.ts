@@ -1,0 +1,5 @@
+// The classic test function 'zdt6' at its usual size: see ../classic/index.ts.
+
+import { classicProblem } from '../classic/index.js'
+
+export default classicProblem('zdt6')
