@@ -1,0 +1,79 @@
+// What a picture says beside the drawing, and the sentences it says it in: the same in picture, replay and their
+// text alternatives.
+
+import type { Caution } from '../../../shared/problem.js'
+
+export interface ResultFact {
+  readonly name: string
+  readonly unit: string
+  readonly value: number
+  /** Of the mean over replicates; absent with fewer than two. */
+  readonly standardError?: number
+}
+
+export interface PictureFacts {
+  readonly search: string
+  /** 'i3-01842' */
+  readonly id: string
+  readonly results: readonly ResultFact[]
+  readonly replicates: number
+  /** Which simulation is shown, such as 'replicate 1 of 16, case idle'. */
+  readonly shown: string
+  /** True when the numbers were used to choose this machine; false for a retest on fresh conditions. */
+  readonly selected: boolean
+  /** How to build it, line by line. */
+  readonly description: readonly string[]
+  readonly cautions: readonly Caution[]
+  /** Where it came from: digest, versions. */
+  readonly provenance: readonly string[]
+}
+
+/** A caution that stands even where the problem names none. */
+export const alwaysCaution =
+  'A simulation is no certificate. A machine found by a search works at the edge of its model: test it behind a guard, and follow local codes and licensed practice.'
+
+export function titleOf(facts: PictureFacts): string {
+  return `${facts.id} of the search ${facts.search}`
+}
+
+/** distance 0.812 ± 0.031 m */
+export function resultText({ name, unit, value, standardError }: ResultFact): string {
+  const ending = unit === '1' || unit === '' ? '' : ` ${unit}`
+  if (standardError === undefined || !(standardError > 0)) return `${name} ${significant(value)}${ending}`
+  const decimals = Math.min(9, Math.max(0, 1 - Math.floor(Math.log10(standardError))))
+  return `${name} ${value.toFixed(decimals)} ± ${standardError.toFixed(decimals)}${ending}`
+}
+
+/** Three significant digits without a superfluous exponent. */
+export function significant(value: number): string {
+  return String(Number(value.toPrecision(3)))
+}
+
+/** Results with spread and sample size, and how far to trust them. */
+export function resultSentence(facts: PictureFacts): string {
+  const numbers = facts.results.map(resultText).join(', ')
+  const hasError = facts.results.some(({ standardError }) => standardError !== undefined)
+  const sample =
+    facts.replicates === 1
+      ? 'one replicate, so no uncertainty is known'
+      : `mean of ${facts.replicates} replicates${hasError ? ', ± one standard error' : ''}`
+  const trust = facts.selected
+    ? 'Chosen for being the best: fresh tests will on average be worse.'
+    : 'Measured on conditions it was not chosen on.'
+  return `${numbers} (${sample}). ${trust}`
+}
+
+export function cautionText({ hazard, because, consult }: Caution): string {
+  return `${capital(hazard)}: ${because}. Consult: ${consult}.`
+}
+
+function capital(text: string): string {
+  return text.charAt(0).toUpperCase() + text.slice(1)
+}
+
+/** Text safe inside XML and HTML, attribute values too; characters that XML 1.0 forbids are dropped. */
+export function escaped(text: string): string {
+  return text
+    .replace(/[^\t\n\r\x20-\ud7ff\ue000-\ufffd]/g, '')
+    .replace(/[&<>"']/g, (character) => `&#${character.charCodeAt(0)};`)
+}
