@@ -10,9 +10,18 @@ import type { EvaluationResult } from './result.js'
 
 export const digestBytes = 32
 
-/** SHA-256, 32 bytes. */
-export function sha256(bytes: Uint8Array): Uint8Array {
-  return nobleSha256(bytes)
+// Making a hash object costs twice as much as hashing a block: one is kept and set back before each use.
+const untouched = nobleSha256.create()
+const reused = nobleSha256.create()
+const lastDigest = new Uint8Array(digestBytes)
+
+/** SHA-256, 32 bytes, of one or two pieces in a row. */
+export function sha256(first: Uint8Array, second?: Uint8Array): Uint8Array {
+  untouched._cloneInto(reused)
+  reused.update(first)
+  if (second !== undefined) reused.update(second)
+  reused.digestInto(lastDigest)
+  return lastDigest.slice()
 }
 
 const hexDigits = Array.from({ length: 256 }, (_, byte) => byte.toString(16).padStart(2, '0'))
@@ -59,18 +68,16 @@ function writeResult(result: EvaluationResult): ByteWriter {
 
 /** Digest of a result; equal for equal results on every machine (-0 counts as 0). */
 export function resultDigest(result: EvaluationResult): Uint8Array {
-  return nobleSha256(writeResult(result).peek())
+  return sha256(writeResult(result).peek())
 }
 
 /** Digest of a genome under its specification. */
 export function genomeDigest(spec: GenomeSpec, genome: Genome): Uint8Array {
-  return nobleSha256(genomeBytes(spec, genome))
+  return sha256(genomeBytes(spec, genome))
 }
 
 /** Where every chain begins: 32 zero bytes. */
 export const emptyChain: Uint8Array = new Uint8Array(digestBytes)
-
-const chainMemory = new Uint8Array(4096)
 
 /**
  * The next digest of a chain: sha256(previous, entry). The cost is one compression for an entry of up to 23
@@ -78,9 +85,5 @@ const chainMemory = new Uint8Array(4096)
  */
 export function chain(previous: Uint8Array, entry: Uint8Array): Uint8Array {
   check(previous.length === digestBytes, 'a chain goes on from a digest')
-  const length = digestBytes + entry.length
-  if (length > chainMemory.length) return nobleSha256.create().update(previous).update(entry).digest()
-  chainMemory.set(previous)
-  chainMemory.set(entry, digestBytes)
-  return nobleSha256(chainMemory.subarray(0, length))
+  return sha256(previous, entry)
 }
