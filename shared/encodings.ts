@@ -158,16 +158,21 @@ export function genomeByteLength(spec: GenomeSpec): number {
   return total
 }
 
+/** One writer for all genomes: its memory is made once. */
+const genomeWriter = new ByteWriter(4096)
+
 /** Canonical bytes of a genome; the genome must fit its specification. */
 export function genomeBytes(spec: GenomeSpec, genome: Genome): Uint8Array {
-  const writer = new ByteWriter(genomeByteLength(spec))
+  const writer = genomeWriter.reset()
   for (const part of Object.keys(spec)) {
+    const encoding = spec[part]!
+    const row = rowOf(encoding)
     const value = genome[part]
     check(
-      value !== undefined && value.length === slotsOf(spec[part]!),
+      value !== undefined && value.length === row.slots(encoding),
       'a genome has every part at its length',
     )
-    rowOf(spec[part]!).write(spec[part]!, value, writer)
+    row.write(encoding, value, writer)
   }
   return writer.finish()
 }
@@ -178,8 +183,9 @@ export function genomeFromBytes(spec: GenomeSpec, bytes: Uint8Array): Genome {
   const genome: { [part: string]: PartValue } = {}
   for (const part of Object.keys(spec)) {
     const encoding = spec[part]!
-    const value = rowOf(encoding).read(encoding, reader)
-    const fault = rowOf(encoding).fault(encoding, value)
+    const row = rowOf(encoding)
+    const value = row.read(encoding, reader)
+    const fault = row.fault(encoding, value)
     if (fault !== undefined) reader.malformed(`part ${part}, ${fault}`)
     genome[part] = value
   }

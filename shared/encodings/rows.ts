@@ -88,10 +88,12 @@ const realRow: EncodingRow<RealEncoding, Float64Array> = {
     firstFault(value, (x) => x >= low && x <= high, `a number from ${low} to ${high}`),
   array: Float64Array,
   write(_, value, writer) {
-    for (const x of value) writer.double(x)
+    for (let i = 0; i < value.length; i++) writer.double(value[i]!)
   },
   read({ length }, reader) {
-    return Float64Array.from({ length }, () => reader.double())
+    const value = new Float64Array(length)
+    for (let i = 0; i < length; i++) value[i] = reader.double()
+    return value
   },
   random({ length, low, high, scale }, stream) {
     const value = new Float64Array(length)
@@ -126,14 +128,17 @@ const integerRow: EncodingRow<IntegerEncoding, Int32Array> = {
   array: Int32Array,
   write({ low, high }, value, writer) {
     const width = widthOf(high - low)
-    for (const x of value) writeWidth(writer, width, x - low)
+    for (let i = 0; i < value.length; i++) writeWidth(writer, width, value[i]! - low)
   },
   read({ length, low, high }, reader) {
     const width = widthOf(high - low)
-    return Int32Array.from({ length }, () => {
+    const value = new Int32Array(length)
+    for (let i = 0; i < length; i++) {
       const above = readWidth(reader, width)
-      return above <= high - low ? low + above : reader.malformed(`found an integer above ${high}`)
-    })
+      if (above > high - low) reader.malformed(`found an integer above ${high}`)
+      value[i] = low + above
+    }
+    return value
   },
   random({ length, low, high }, stream) {
     const value = new Int32Array(length)
@@ -261,14 +266,17 @@ function optionFault(options: readonly string[], value: PartValue): string | und
 }
 function writeOptions(options: readonly string[], value: PartValue, writer: ByteWriter): void {
   const width = widthOf(options.length - 1)
-  for (const x of value) writeWidth(writer, width, x)
+  for (let i = 0; i < value.length; i++) writeWidth(writer, width, value[i]!)
 }
 function readOptions(options: readonly string[], length: number, reader: ByteReader): Int32Array {
   const width = widthOf(options.length - 1)
-  return Int32Array.from({ length }, () => {
+  const value = new Int32Array(length)
+  for (let i = 0; i < length; i++) {
     const index = readWidth(reader, width)
-    return index < options.length ? index : reader.malformed(`found option ${index} of ${options.length}`)
-  })
+    if (index >= options.length) reader.malformed(`found option ${index} of ${options.length}`)
+    value[i] = index
+  }
+  return value
 }
 function randomOptions(options: readonly string[], length: number, stream: Stream): Int32Array {
   const value = new Int32Array(length)
