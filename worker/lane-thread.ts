@@ -7,10 +7,9 @@
 
 import { Worker } from 'node:worker_threads'
 import { check } from '../shared/check.js'
-import { limits } from '../shared/limits.js'
 import type { Executor, LossCause, WorkItem } from '../shared/result.js'
 import { emittedFile } from './entry.js'
-import { Blackbox } from './tail.js'
+import { Blackbox, withLastWords } from './tail.js'
 import type { ThreadSettings } from './thread.js'
 import {
   packBatch,
@@ -197,11 +196,4 @@ export class ThreadLane {
     const said = this.verdict?.detail ?? (this.lastError || `the thread ended with exit code ${exitCode}`)
     return { item, cause, detail: withLastWords(said, this.box) }
   }
-}
-
-/** A sentence and what was printed last, in at most limits.lossDetailLength characters. */
-export function withLastWords(sentence: string, box: Blackbox): string {
-  const start = sentence.slice(0, limits.lossDetailLength / 2)
-  const printed = box.lastWords(limits.lossDetailLength - start.length - 20)
-  return printed === '' ? start : `${start}; last printed: ${printed}`
 }

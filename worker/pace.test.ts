@@ -14,6 +14,7 @@ const item = (expectedCost: number, replicates = 1): WorkItem => ({
   attempt: 1,
   purpose: 'evaluate',
   isolation: 'shared',
+  avoid: [],
 })
 const many = (count: number, cost = 1) => Array.from({ length: count }, () => item(cost))
 

@@ -50,6 +50,7 @@ function itemOf(x: number, more: Partial<WorkItem> = {}): WorkItem {
     attempt: 1,
     purpose: 'evaluate',
     isolation: 'shared',
+    avoid: [],
     ...more,
   }
 }
@@ -108,7 +109,7 @@ describe('a bundle that cannot be loaded is refused at the start, not tried for 
   test('also when only processes cannot load it', async () => {
     const pluginFile = await pinned(
       'x',
-      "if (process.cwd().includes('skerry-alone-')) throw new Error('not here')",
+      "if (process.cwd().includes('skerry-work-')) throw new Error('not here')",
     )
     const error: unknown = await answers({ pluginFile }, [itemOf(1, { isolation: 'alone' })]).catch(
       (reason: unknown) => reason,
@@ -145,8 +146,8 @@ test('a confirming process is replaced after its number of items', async () => {
 
 test('a process has no environment of ours and a folder of its own', async () => {
   const before =
-    "if (process.cwd().includes('skerry-alone-')) { if (process.env.PATH || process.env.HOME) throw new Error('environment') }"
-  const pluginFile = await pinned("process.cwd().includes('skerry-alone-') ? 1 : 0", before)
+    "if (process.cwd().includes('skerry-work-')) { if (process.env.PATH || process.env.HOME) throw new Error('environment') }"
+  const pluginFile = await pinned("process.cwd().includes('skerry-work-') ? 1 : 0", before)
   const [fact] = await answers({ pluginFile }, [itemOf(1, { isolation: 'alone' })])
   expect(fact?.kind === 'result' && fact.result.values[0]).toBe(1)
 })
@@ -165,7 +166,7 @@ test('no orphans: when the parent is killed, a child ends although its simulatio
     // The child works on its item when it has used CPU for a while.
     setInterval(() => {
       const children = readFileSync('/proc/self/task/' + process.pid + '/children', 'utf8').trim().split(' ').filter(Boolean)
-      if (children.length > 0) setTimeout(() => writeFileSync(${JSON.stringify(pidFile)}, children.join(' ')), 2000)
+      if (children.length > 1) setTimeout(() => writeFileSync(${JSON.stringify(pidFile)}, children.join(' ')), 2000)
     }, 100)
   `
   const parent = spawn(process.execPath, ['--input-type=module', '-e', script], {
@@ -173,7 +174,7 @@ test('no orphans: when the parent is killed, a child ends although its simulatio
   })
   await until(() => existsSync(pidFile) && readFileSync(pidFile, 'utf8') !== '', 20)
   const children = readFileSync(pidFile, 'utf8').split(' ').map(Number)
-  expect(children.length).toBe(1)
+  expect(children.length).toBe(2)
   expect(children.every(isAlive)).toBe(true)
   parent.kill('SIGKILL')
   await until(() => !children.some(isAlive), 10)

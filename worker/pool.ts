@@ -1,23 +1,22 @@
 // The simulating threads and processes of this machine: takes items, answers each with a result or a loss.
 //
-//   shared items   batches to threads, a message about 75 ms long, at most two messages a thread ahead
-//   alone          one child process, fresh for each item
-//   confirm        one child process, fresh after 500 items: never whoever computed the first result
+//   shared items   threads of an agent process, in batches; the item that kills or hangs a thread is lost
+//   doubtful       items whose agent died, or held too much memory among others: one process, one at a time, so that
+//                  the one that did it is known; the pool's own affair, nobody outside notices
+//   confirm        a process, fresh after 500 items: never whoever computed the first result
+//   alone          a process, fresh for each item
 //
-// A thread that dies or hangs is replaced; the item it was running is answered `lost`, the others of its batches run
-// elsewhere. When a thread's memory outside the JavaScript heap (typed arrays, wasm) grows beyond all limits, nobody
-// can tell from outside whose it is: the running items of all threads then move to processes, where it can be told.
-//
-// A native crash takes the whole process along, threads and pool; that is what `alone` is for.
+// The coordinator's own process never runs a simulation, so nothing a plug-in does can end it.
 
-import { hostname, totalmem } from 'node:os'
+import { hostname } from 'node:os'
 import { BrokenPromise, check } from '../shared/check.js'
-import { limits } from '../shared/limits.js'
 import { refuse } from '../shared/refusals.js'
 import type { DispatchFact, Executor, WorkItem } from '../shared/result.js'
+import { AgentLane } from './lane-agent.js'
 import { ProcessLane } from './lane-process.js'
-import { type Loss, ThreadLane } from './lane-thread.js'
+import type { Loss } from './lane-thread.js'
 import { defaultTimeLimit, Pace, type TimeLimit } from './pace.js'
+import { everyTick } from './threads.js'
 import type { Simulated, SimulatorSettings } from './wire.js'
 
 export interface PoolOptions extends SimulatorSettings {
@@ -56,10 +55,8 @@ export interface Pool {
   close(): Promise<void>
 }
 
-const tickSeconds = 0.1
 const closeSeconds = 3
-/** Threads in a row that could not load the bundle. */
-const failedStartsMost = 3
+const itemsPerProcess = 500
 
 export function createPool(options: PoolOptions, events: PoolEvents): Pool {
   return new MachinePool(options, events)
@@ -68,258 +65,141 @@ export function createPool(options: PoolOptions, events: PoolEvents): Pool {
 class MachinePool implements Pool {
   private readonly options: PoolOptions
   private readonly events: PoolEvents
-  private readonly settings: SimulatorSettings
-  private readonly host: string
-  private readonly megabytes: number
   private readonly pace: Pace
-  private readonly lanes = new Set<ThreadLane>()
-  private readonly alone: ProcessLane
+  private readonly agent: AgentLane
+  private readonly doubtful: ProcessLane
   private readonly confirming: ProcessLane
-  private readonly memoryGuard: MemoryGuard
-  private readonly suspects = new Set<WorkItem>()
-  private queue = new WorkQueue()
+  private readonly alone: ProcessLane
   private sharedOutstanding = 0
-  private threadsMade = 0
-  private failedStarts = 0
-  private lastTick = 0
   private timer: NodeJS.Timeout | undefined
   private closed = false
   private hasFailed = false
   private started: { resolve(): void; reject(error: Error): void } | undefined
 
   constructor(options: PoolOptions, events: PoolEvents) {
-    check(
-      options.threads >= 1 && options.threads <= limits.threadsMost,
-      'a pool has a sensible number of threads',
-    )
     this.options = options
     this.events = events
-    const { pluginFile, seed, sharedConditions } = options
-    this.settings = { pluginFile, seed, sharedConditions }
-    this.host = options.host ?? hostname()
-    this.megabytes = options.megabytes ?? 1024
-    this.pace = new Pace({ ...defaultTimeLimit, ...options.timeLimit }, options.secondsPerCost)
-    this.memoryGuard = new MemoryGuard(options.threads * this.megabytes * 2 ** 20)
+    const timeLimit = { ...defaultTimeLimit, ...options.timeLimit }
+    this.pace = new Pace(timeLimit, options.secondsPerCost)
+    this.agent = this.agentLane()
+    this.doubtful = this.processLane(itemsPerProcess)
+    this.confirming = this.processLane(options.confirmationsPerProcess ?? itemsPerProcess)
     this.alone = this.processLane(1)
-    this.confirming = this.processLane(options.confirmationsPerProcess ?? 500)
   }
 
   start(): Promise<void> {
     check(this.timer === undefined && !this.closed, 'a pool is started once')
-    this.lastTick = performance.now()
-    this.timer = setInterval(() => this.tick(), tickSeconds * 1000)
+    this.timer = everyTick((seconds) => this.tick(seconds))
     return new Promise((resolve, reject) => {
       this.started = { resolve, reject }
-      for (let i = 0; i < this.options.threads; i++) this.addThread()
+      this.agent.start()
     })
   }
 
   submit(items: readonly WorkItem[]): void {
     check(!this.closed, 'a closed pool takes no work')
+    const shared: WorkItem[] = []
     for (const item of items) {
       if (item.isolation === 'alone') this.alone.add(item)
       else if (item.purpose === 'confirm') this.confirming.add(item)
-      else {
-        this.sharedOutstanding++
-        this.queue.push(item)
-      }
+      else shared.push(item)
     }
-    this.feed()
+    this.sharedOutstanding += shared.length
+    this.agent.submit(shared)
   }
 
   status(): PoolStatus {
     const slots = this.options.threads
-    const outstanding = this.sharedOutstanding + this.alone.load + this.confirming.load
+    const apart = this.doubtful.load + this.confirming.load + this.alone.load
     const depth = 2 * slots * this.pace.usualBatchLength()
-    return { slots, outstanding, wanted: Math.max(0, depth - this.sharedOutstanding) }
+    return {
+      slots,
+      outstanding: this.sharedOutstanding + apart,
+      wanted: Math.max(0, depth - this.sharedOutstanding),
+    }
   }
 
   async close(): Promise<void> {
     this.closed = true
     clearInterval(this.timer)
-    this.queue = new WorkQueue()
-    const ends = [...[...this.lanes].map((lane) => lane.stop()), this.alone.stop(), this.confirming.stop()]
+    this.started?.reject(refuse('no-workers', { detail: 'closed while starting' }))
+    const lanes = [this.agent, this.doubtful, this.confirming, this.alone]
     let bound: NodeJS.Timeout | undefined
     const waited = new Promise<void>((resolve) => {
       bound = setTimeout(resolve, closeSeconds * 1000)
     })
-    await Promise.race([Promise.all(ends), waited])
+    await Promise.race([Promise.all(lanes.map((lane) => lane.stop())), waited])
     clearTimeout(bound)
   }
 
-  // ------------------------------------------------------------------------------------- threads
-
-  private addThread(): void {
-    const worker = `${this.host}/${process.pid}/t${++this.threadsMade}`
-    const executor: Executor = { kind: 'thread', worker, host: this.host }
-    this.lanes.add(
-      new ThreadLane(executor, this.settings, this.megabytes, {
-        ready: () => this.threadReady(),
-        answered: (lane, item, simulated) => this.threadAnswered(lane, item, simulated),
-        ended: (lane, loss, back) => this.threadEnded(lane, loss, back),
-        broken: (promise) => this.broken(promise),
-      }),
-    )
+  private agentLane(): AgentLane {
+    return new AgentLane(threadsOptions(this.options), {
+      ready: () => {
+        this.started?.resolve()
+        this.started = undefined
+      },
+      answered: (item, simulated, executor) => {
+        this.sharedOutstanding--
+        this.answered(item, simulated, executor)
+      },
+      lost: (loss, executor) => {
+        this.sharedOutstanding--
+        this.events.fact(lostFact(loss, executor))
+      },
+      doubtful: (item) => {
+        this.sharedOutstanding--
+        this.doubtful.add(item)
+      },
+      unusable: (reason) => this.unusable(reason),
+      broken: (promise) => this.fail(new BrokenPromise(promise)),
+    })
   }
-
-  private threadReady(): void {
-    this.failedStarts = 0
-    this.started?.resolve()
-    this.started = undefined
-    this.feed()
-  }
-
-  private threadAnswered(lane: ThreadLane, item: WorkItem, simulated: Simulated): void {
-    if (this.closed) return
-    this.sharedOutstanding--
-    this.pace.note(item, simulated.wallSeconds)
-    this.events.fact(resultFact(item, simulated, lane.executor))
-    if (lane.load < 2) this.feed()
-  }
-
-  private threadEnded(lane: ThreadLane, loss: Loss | undefined, back: readonly WorkItem[]): void {
-    this.lanes.delete(lane)
-    if (this.closed) return
-    if (loss !== undefined) {
-      this.sharedOutstanding--
-      this.events.fact(lostFact(loss, lane.executor))
-    }
-    const told = back.filter((item) => this.suspects.delete(item))
-    this.sharedOutstanding -= told.length
-    for (const item of told) this.alone.add(item)
-    this.queue.putBack(back.filter((item) => !told.includes(item)))
-    if (lane.startFailure !== undefined) this.failedStarts++
-    if (this.failedStarts < failedStartsMost) this.addThread()
-    else this.fail(lane.startFailure ?? 'no reason was given')
-    this.feed()
-  }
-
-  /** Gives batches to threads that have room, the least loaded first. */
-  private feed(): void {
-    for (const depth of [1, 2]) {
-      if (depth === 2 && this.pace.isSlow()) return
-      for (const lane of this.lanes) {
-        if (this.queue.length === 0) return
-        if (lane.state !== 'working' || lane.load >= depth) continue
-        // A short queue is shared out, so that nobody idles while another has a long batch.
-        const share = Math.ceil(this.queue.length / this.options.threads)
-        lane.send(this.queue.take(this.pace.batchLength(this.queue, share)))
-      }
-    }
-  }
-
-  // ------------------------------------------------------------------------------------ processes
 
   private processLane(itemsMost: number): ProcessLane {
-    const { host, megabytes } = this
+    const { settings, host, megabytes } = threadsOptions(this.options)
     return new ProcessLane(
-      { settings: this.settings, host, megabytes, itemsMost },
+      { settings, host, megabytes, itemsMost },
       {
-        answered: (item, simulated, executor) => this.events.fact(resultFact(item, simulated, executor)),
+        answered: (item, simulated, executor) => this.answered(item, simulated, executor),
         lost: (loss, executor) => this.events.fact(lostFact(loss, executor)),
-        unusable: (reason) => this.fail(reason),
-        broken: (promise) => this.broken(promise),
+        unusable: (reason) => this.unusable(reason),
+        broken: (promise) => this.fail(new BrokenPromise(promise)),
       },
     )
   }
 
-  // ----------------------------------------------------------------------------------------- time
+  private answered(item: WorkItem, simulated: Simulated, executor: Executor): void {
+    this.pace.note(item, simulated.wallSeconds)
+    this.events.fact(resultFact(item, simulated, executor))
+  }
 
-  private tick(): void {
-    const now = performance.now()
-    // A pause of this process (stopped, swapped, busy) is no time that a simulation used.
-    const seconds = Math.min((now - this.lastTick) / 1000, 2 * tickSeconds)
-    this.lastTick = now
+  private tick(seconds: number): void {
     const limit = (item: WorkItem) => this.pace.limitSeconds(item)
-    for (const lane of this.lanes) lane.tick(seconds, limit)
-    this.alone.tick(seconds, limit)
-    this.confirming.tick(seconds, limit)
-    if (this.memoryGuard.isOver(seconds)) this.suspectAll()
+    for (const lane of [this.doubtful, this.confirming, this.alone]) lane.tick(seconds, limit)
   }
 
-  private suspectAll(): void {
-    for (const lane of this.lanes) {
-      const item = lane.running()
-      if (item === undefined) continue
-      this.suspects.add(item)
-      void lane.stop()
-    }
+  private unusable(reason: string): void {
+    this.fail(refuse('no-workers', { detail: `the pinned problem cannot be loaded: ${reason}` }))
   }
 
-  // --------------------------------------------------------------------------------------- failing
-
-  private fail(reason: string): void {
-    const error = refuse('no-workers', { detail: `the pinned problem cannot be loaded: ${reason}` })
+  private fail(error: Error): void {
     if (this.hasFailed) return
     this.hasFailed = true
-    this.failedStarts = failedStartsMost
     if (this.started !== undefined) this.started.reject(error)
     else this.events.failed(error)
     this.started = undefined
   }
-
-  private broken(promise: string): void {
-    if (!this.hasFailed) this.events.failed(new BrokenPromise(promise))
-    this.hasFailed = true
-  }
 }
 
-/** Watches the memory of the whole process against what the threads may hold together. */
-class MemoryGuard {
-  private readonly allowance: number
-  private most: number
-  private restSeconds = 0
-
-  constructor(allowance: number) {
-    this.allowance = allowance
-    this.most = this.bound()
-  }
-
-  /** After it was over it looks away for a while, then takes what is held then as normal: memory returns late. */
-  isOver(seconds: number): boolean {
-    if (this.restSeconds > 0) {
-      this.restSeconds -= seconds
-      if (this.restSeconds <= 0) this.most = Math.max(this.most, this.bound())
-      return false
-    }
-    if (process.memoryUsage.rss() <= this.most) return false
-    this.restSeconds = 5
-    return true
-  }
-
-  private bound(): number {
-    const held = process.memoryUsage.rss()
-    return Math.max(held + 2 ** 28, Math.min(held + this.allowance, 0.85 * totalmem()))
-  }
-}
-
-/** First in, first out; items that come back go to the front. Taking is cheap however long it is. */
-class WorkQueue {
-  private items: WorkItem[] = []
-  private first = 0
-
-  get length(): number {
-    return this.items.length - this.first
-  }
-  push(item: WorkItem): void {
-    this.items.push(item)
-  }
-  putBack(items: readonly WorkItem[]): void {
-    if (items.length === 0) return
-    this.items = [...items, ...this.items.slice(this.first)]
-    this.first = 0
-  }
-  take(count: number): WorkItem[] {
-    const taken = this.items.slice(this.first, this.first + count)
-    this.first += taken.length
-    if (this.first > 1024 && this.first * 2 > this.items.length) {
-      this.items = this.items.slice(this.first)
-      this.first = 0
-    }
-    return taken
-  }
-  *[Symbol.iterator](): Iterator<WorkItem> {
-    for (let i = this.first; i < this.items.length; i++) yield this.items[i]!
+function threadsOptions(options: PoolOptions) {
+  const { pluginFile, seed, sharedConditions, threads, secondsPerCost } = options
+  return {
+    settings: { pluginFile, seed, sharedConditions },
+    threads,
+    megabytes: options.megabytes ?? 1024,
+    timeLimit: options.timeLimit ?? {},
+    host: options.host ?? hostname(),
+    ...(secondsPerCost === undefined ? {} : { secondsPerCost }),
   }
 }
 

@@ -3,11 +3,14 @@
 import { resultDigest } from '../shared/digests.js'
 import { genomeFromBytes } from '../shared/encodings.js'
 import type { AnyProblem } from '../shared/problem.js'
+import type { WorkItem } from '../shared/result.js'
 import { evaluate } from '../sim/evaluate.js'
 import { importPlugin } from './plugin/import.js'
-import type { PackedItem, Simulated, SimulatorSettings } from './wire.js'
+import type { Simulated, SimulatorSettings } from './wire.js'
 
-export type Simulator = (item: PackedItem) => Simulated
+export type Simulator = (
+  item: Pick<WorkItem, 'individual' | 'firstReplicate' | 'replicates' | 'genome'>,
+) => Simulated
 
 /** Seconds of CPU so far, of whatever runs this code. */
 export type CpuClock = () => number

@@ -4,6 +4,9 @@
 // Layout of the shared memory: Int32 [runningItem + 1, batch, bytesPrinted (wraps)], then the ring of bytes.
 // The first two words say which item was running when a thread died or hung: the heartbeat of a batch.
 
+import { limits } from '../shared/limits.js'
+import { plainText } from '../shared/refusals.js'
+
 const ringBytes = 65_536
 const headWords = 4
 
@@ -72,4 +75,11 @@ export function captureOutput(box: Blackbox): void {
   }
   process.stdout.write = write
   process.stderr.write = write
+}
+
+/** A sentence and what was printed last, in at most limits.lossDetailLength plain characters. */
+export function withLastWords(sentence: string, box: Blackbox): string {
+  const start = sentence.slice(0, limits.lossDetailLength / 2)
+  const printed = box.lastWords(limits.lossDetailLength - start.length - 20).trim()
+  return plainText(printed === '' ? start : `${start}; last printed: ${printed}`)
 }

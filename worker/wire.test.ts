@@ -4,17 +4,24 @@ import type { WorkItem } from '../shared/result.js'
 import { batchLength, packBatch, packDone, type Simulated, unpackDone, unpackItem } from './wire.js'
 
 const bytes = fc.uint8Array({ maxLength: 40 })
-const itemArbitrary = fc.record({
+const itemArbitrary: fc.Arbitrary<WorkItem> = fc.record({
+  island: fc.integer({ min: 1, max: 1000 }),
+  evaluation: fc.nat(),
+  attempt: fc.integer({ min: 1, max: 9 }),
   individual: fc.nat({ max: 2 ** 52 }),
   firstReplicate: fc.nat(4096),
   replicates: fc.integer({ min: 1, max: 64 }),
+  expectedCost: fc.integer({ min: 1, max: 1e9 }),
   genome: bytes,
+  purpose: fc.constant('evaluate' as const),
+  isolation: fc.constant('shared' as const),
+  avoid: fc.constant([]),
 })
 
 test('a batch arrives as it was packed', () => {
   fc.assert(
     fc.property(fc.array(itemArbitrary, { maxLength: 20 }), fc.nat(), (list, number) => {
-      const message = packBatch(number, list as unknown as WorkItem[])
+      const message = packBatch(number, list)
       expect(message.batch).toBe(number)
       expect(batchLength(message)).toBe(list.length)
       for (const [i, item] of list.entries()) expect(unpackItem(message, i)).toEqual(item)

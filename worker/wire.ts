@@ -14,7 +14,10 @@ export interface SimulatorSettings {
 
 export interface BatchMessage {
   readonly batch: number
-  /** Five numbers an item: individual, firstReplicate, replicates, start and end of its genome in `genomes`. */
+  /**
+   * Nine numbers an item: island, evaluation, attempt, individual, firstReplicate, replicates, expectedCost, start and
+   * end of its genome in `genomes`. Items in batches are for evaluation and shared: others travel alone.
+   */
   readonly items: Float64Array<ArrayBuffer>
   readonly genomes: Uint8Array<ArrayBuffer>
 }
@@ -42,16 +45,9 @@ export type SimulatorMessage =
   | { readonly kind: 'broken'; readonly promise: string }
   | DoneMessage
 
-const itemNumbers = 5
+const itemNumbers = 9
 const resultNumbers = 3
 const digestBytes = 32
-
-export interface PackedItem {
-  readonly individual: number
-  readonly firstReplicate: number
-  readonly replicates: number
-  readonly genome: Uint8Array
-}
 
 /** Copies the items into a message of their own memory. */
 export function packBatch(batch: number, list: readonly WorkItem[]): BatchMessage {
@@ -60,10 +56,9 @@ export function packBatch(batch: number, list: readonly WorkItem[]): BatchMessag
   let end = 0
   for (const [i, item] of list.entries()) {
     genomes.set(item.genome, end)
-    items.set(
-      [item.individual, item.firstReplicate, item.replicates, end, end + item.genome.length],
-      i * itemNumbers,
-    )
+    const { island, evaluation, attempt, individual, firstReplicate, replicates, expectedCost } = item
+    const own = [island, evaluation, attempt, individual, firstReplicate, replicates, expectedCost]
+    items.set([...own, end, end + item.genome.length], i * itemNumbers)
     end += item.genome.length
   }
   return { batch, items, genomes }
@@ -73,14 +68,23 @@ export function batchLength(message: BatchMessage): number {
   return message.items.length / itemNumbers
 }
 
-export function unpackItem(message: BatchMessage, index: number): PackedItem {
+/** Item `index` of a batch; its genome is a view of the message. */
+export function unpackItem(message: BatchMessage, index: number): WorkItem {
   const at = index * itemNumbers
   check(at + itemNumbers <= message.items.length, 'an item asked for is in its batch')
+  const number = (place: number): number => message.items[at + place]!
   return {
-    individual: message.items[at]!,
-    firstReplicate: message.items[at + 1]!,
-    replicates: message.items[at + 2]!,
-    genome: message.genomes.subarray(message.items[at + 3]!, message.items[at + 4]!),
+    island: number(0),
+    evaluation: number(1),
+    attempt: number(2),
+    individual: number(3),
+    firstReplicate: number(4),
+    replicates: number(5),
+    expectedCost: number(6),
+    genome: message.genomes.subarray(number(7), number(8)),
+    purpose: 'evaluate',
+    isolation: 'shared',
+    avoid: [],
   }
 }
 

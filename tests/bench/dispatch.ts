@@ -98,6 +98,7 @@ function itemOf(evaluation: number): WorkItem {
     attempt: 1,
     purpose: 'evaluate',
     isolation: 'shared',
+    avoid: [],
   }
 }
 

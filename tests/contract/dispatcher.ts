@@ -65,6 +65,7 @@ function itemOf(evaluation: number, deed = 'well', more: Partial<WorkItem> = {})
     attempt: 1,
     purpose: 'evaluate',
     isolation: 'shared',
+    avoid: [],
     ...more,
   }
 }
@@ -277,6 +278,16 @@ function surviving(started: Started): void {
     }
   })
 
+  test.each([
+    ['one piece of memory beyond all limits', 'memory', 'large'],
+    ['a crash that ends the whole process', 'died', 'abort'],
+  ])('%s is lost as %s, and nobody else', async (_, cause, deed) => {
+    const dispatcher = await started({ megabytes: 48 })
+    expect(await among(dispatcher, deed)).toMatchObject({ kind: 'lost', cause })
+    const later = numbers(20, 500).map((n) => itemOf(n))
+    expectExact(await run(dispatcher, later), later)
+  })
+
   test('every second one deadly: each death is its own, all others are answered well', async () => {
     const dispatcher = await started()
     const items = numbers(24).map((n) => itemOf(n, n % 2 === 0 ? 'exit' : 'well'))
@@ -343,6 +354,18 @@ function isolating(started: Started): void {
     expect(facts.find(({ item }) => item.evaluation === 1)).toMatchObject({ kind: 'lost', cause })
     expect(facts.filter(isResult).length).toBe(2)
     expectExact(facts, items)
+  })
+
+  test('an item is not simulated by those it must avoid', async () => {
+    const dispatcher = await started()
+    const seen = new Set<string>()
+    for (const purpose of ['evaluate', 'confirm', 'evaluate', 'confirm', 'confirm'] as const) {
+      const item = itemOf(1, 'well', { purpose, avoid: [...seen], attempt: seen.size + 1 })
+      const [fact] = await run(dispatcher, [item])
+      expect(fact?.kind).toBe('result')
+      expect([...seen]).not.toContain(fact?.executor.worker)
+      if (fact) seen.add(fact.executor.worker)
+    }
   })
 
   test('a death while confirming blames only the one that died', async () => {

@@ -4,7 +4,7 @@ import { choice, defineProblem, real } from 'skerry'
 
 /** A plug-in has no business with these; this one wants trouble. */
 const host = globalThis as unknown as {
-  process: { exit(code: number): never; pid: number; abort(): never }
+  process: { exit(code: number): never; pid: number; kill(pid: number, signal: string): never }
   setTimeout(work: () => void, ms: number): void
   console: { log(text: string): void; error(text: string): void }
 }
@@ -34,6 +34,13 @@ const deeds: { readonly [deed: string]: (x: number) => number } = {
     }
     return x + eaten.length
   },
+  /** One list that grows: V8 asks for its memory in one piece and ends the whole process when it gets none. */
+  large: (x) => {
+    const eaten: { readonly x: number }[] = []
+    for (let i = 0; i < 2 ** 27; i++) eaten.push({ x: x + i })
+    return eaten.length
+  },
+  abort: () => host.process.kill(host.process.pid, 'SIGSEGV'),
   throw: () => {
     throw new RangeError('the pump ran dry')
   },

@@ -1,0 +1,113 @@
+// The code of the process that holds the simulating threads. It runs no plug-in on its own event loop, so it always
+// hears its parent; when the channel closes it ends, threads and all.
+//
+// Why a process of its own: V8 ends the whole process when one thread asks for a single piece of memory beyond its
+// limit, and so does a crash in native code. Here that costs an agent, never the coordinator.
+
+import { check } from '../shared/check.js'
+import type { Executor, LossCause, WorkItem } from '../shared/result.js'
+import { Threads, type ThreadsOptions } from './threads.js'
+import {
+  type BatchMessage,
+  batchLength,
+  type DoneMessage,
+  packDone,
+  type Simulated,
+  unpackItem,
+} from './wire.js'
+
+/** What the parent says: options once, then items; item i of a batch has the sequence number batch + i. */
+export type AgentOrder = { readonly start: ThreadsOptions } | { readonly items: BatchMessage }
+
+export type AgentMessage =
+  | { readonly kind: 'ready' }
+  | { readonly kind: 'unusable'; readonly reason: string }
+  | { readonly kind: 'broken'; readonly promise: string }
+  /** Results of one thread; result i is that of the item numbered sequences[i]. */
+  | {
+      readonly kind: 'answers'
+      readonly executor: Executor
+      readonly sequences: Float64Array
+      readonly done: DoneMessage
+    }
+  | {
+      readonly kind: 'lost'
+      readonly executor: Executor
+      readonly sequence: number
+      readonly cause: LossCause
+      readonly detail: string
+    }
+  | { readonly kind: 'doubtful'; readonly sequence: number }
+
+interface Answer {
+  readonly sequence: number
+  readonly simulated: Simulated
+}
+
+let threads: Threads | undefined
+const sequences = new Map<WorkItem, number>()
+const answers = new Map<Executor, Answer[]>()
+
+process.on('disconnect', () => process.exit(0))
+process.on('message', (order: AgentOrder) => {
+  if ('start' in order) start(order.start)
+  else submit(order.items)
+})
+
+function start(options: ThreadsOptions): void {
+  threads = new Threads(options, {
+    ready: () => say({ kind: 'ready' }),
+    answered: (item, simulated, executor) => keep(executor, { sequence: settle(item), simulated }),
+    lost: ({ item, cause, detail }, executor) =>
+      say({ kind: 'lost', executor, sequence: settle(item), cause, detail }),
+    doubtful: (item) => say({ kind: 'doubtful', sequence: settle(item) }),
+    unusable: (reason) => say({ kind: 'unusable', reason }),
+    broken: (promise) => say({ kind: 'broken', promise }),
+  })
+}
+
+function submit(message: BatchMessage): void {
+  check(threads !== undefined, 'items come after the options')
+  const items = Array.from({ length: batchLength(message) }, (_, i) => unpackItem(message, i))
+  for (const [i, item] of items.entries()) sequences.set(item, message.batch + i)
+  threads.submit(items)
+}
+
+/** The item has its answer: its number, for the last time. */
+function settle(item: WorkItem): number {
+  const sequence = sequences.get(item)
+  check(sequence !== undefined, 'an item is answered once')
+  sequences.delete(item)
+  return sequence
+}
+
+/** Answers that a thread gave in one message travel on in one message. */
+function keep(executor: Executor, answer: Answer): void {
+  const list = answers.get(executor)
+  if (list !== undefined) {
+    list.push(answer)
+    return
+  }
+  if (answers.size === 0) queueMicrotask(flush)
+  answers.set(executor, [answer])
+}
+
+function flush(): void {
+  for (const [executor, list] of answers) {
+    say({
+      kind: 'answers',
+      executor,
+      sequences: Float64Array.from(list, ({ sequence }) => sequence),
+      done: packDone(
+        0,
+        0,
+        list.map(({ simulated }) => simulated),
+      ),
+    })
+  }
+  answers.clear()
+}
+
+function say(message: AgentMessage): void {
+  if (process.connected) process.send?.(message)
+}
