@@ -62,9 +62,9 @@ describe('intensity and variance on a normal population', () => {
     [2, 0.564189583547756, 0.681690113816],
     [5, 1.16296447364052, 0.447534069021],
   ])('tournament of %i with replacement, in a large population', (size, intensity, variance) => {
-    // 2,000 members: the same one is drawn twice in 0.05 % (t = 2) or 0.5 % (t = 5) of tournaments.
+    // 1,000 members: the same one is drawn twice in 0.1 % (t = 2) or 1 % (t = 5) of tournaments.
     const rules = { size, distinct: false }
-    const sample = selectedNormals(21100 + size, 2000, 500, 40, (values, s) =>
+    const sample = selectedNormals(21100 + size, 1000, 500, 40, (values, s) =>
       tournament(values.length, rules, byRank, s),
     )
     expectMoments(sample, intensity, variance)
@@ -75,7 +75,7 @@ describe('intensity and variance on a normal population', () => {
     [0.5, 0.797884560803, 0.363380227632],
     [0.8, 0.34995240051, 0.583005946369],
   ])('truncation to the best %d', (fraction, intensity, variance) => {
-    const sample = selectedNormals(21200 + 100 * fraction, 2000, 500, 40, (values, s) =>
+    const sample = selectedNormals(21200 + 100 * fraction, 1000, 500, 40, (values, s) =>
       truncatedRank(values.length, fraction, s),
     )
     expectMoments(sample, intensity, variance)
@@ -83,7 +83,7 @@ describe('intensity and variance on a normal population', () => {
 
   test.each([1.2, 1.5, 2])('linear ranking with pressure %d', (pressure) => {
     // Intensity (1 - m) / sqrt(pi), variance 1 - (1 - m)^2 / pi, with m = 2 - pressure the worst's expectation.
-    const sample = selectedNormals(21300 + 10 * pressure, 2000, 500, 40, (values, s) =>
+    const sample = selectedNormals(21300 + 10 * pressure, 1000, 500, 40, (values, s) =>
       linearRank(values.length, pressure, s),
     )
     expectMoments(sample, (pressure - 1) / Math.sqrt(Math.PI), 1 - (pressure - 1) ** 2 / Math.PI)
