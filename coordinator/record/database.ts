@@ -73,7 +73,7 @@ export function connect(storage: Storage, path: string, mode: 'create' | 'write'
       // when the power fails.
       database.exec('PRAGMA synchronous = FULL; PRAGMA fullfsync = ON; PRAGMA checkpoint_fullfsync = ON')
       settle(database, 'PRAGMA synchronous', 2)
-      database.exec('PRAGMA cache_size = -16000; PRAGMA wal_autocheckpoint = 1000')
+      database.exec('PRAGMA cache_size = -8000; PRAGMA wal_autocheckpoint = 1000')
       settle(database, 'PRAGMA journal_size_limit = 67108864', 67108864)
     }
   } catch (error) {

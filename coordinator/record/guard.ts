@@ -2,6 +2,8 @@
 // connection after an I/O error or damage. After those the outcome of the last write is unknown; only a new
 // start, which reads what is really there, can tell.
 
+import { accessSync, constants } from 'node:fs'
+import { dirname } from 'node:path'
 import { BrokenPromise } from '../../shared/check.js'
 import { Refusal, type RefusalCode, refuse } from '../../shared/refusals.js'
 import type { Column, Database, Statement } from './storage.js'
@@ -51,7 +53,7 @@ const faults: readonly FaultRow[] = [
     prefix: 'SQLITE_PERM',
     code: 'disk-read-only',
     final: true,
-    says: 'the database may not be opened by this user',
+    says: 'the database, or the log beside it, cannot be opened for writing',
   },
   { prefix: 'SQLITE_IOERR', code: 'disk-error', final: true, says: 'reading or writing the database failed' },
   {
@@ -149,6 +151,21 @@ export class GuardedDatabase implements Database {
   }
 }
 
+function rowFor(code: string, path: string): FaultRow | undefined {
+  // On a read-only disk the log beside the database cannot be made, which SQLite reports as not opening it.
+  const said = code.startsWith('SQLITE_CANTOPEN') && !isWritable(dirname(path)) ? 'SQLITE_PERM' : code
+  return faults.find(({ prefix }) => said.startsWith(prefix))
+}
+
+function isWritable(folder: string): boolean {
+  try {
+    accessSync(folder, constants.W_OK)
+    return true
+  } catch {
+    return false
+  }
+}
+
 function asRefusal(error: unknown, path: string): { readonly refusal: Refusal; readonly final: boolean } {
   if (error instanceof Refusal) return { refusal: error, final: false }
   const code = codeOf(error)
@@ -159,7 +176,7 @@ function asRefusal(error: unknown, path: string): { readonly refusal: Refusal; r
       ? error
       : new BrokenPromise(`the record is used as designed: ${said}`)
   }
-  const row = faults.find(({ prefix }) => code.startsWith(prefix))
+  const row = rowFor(code, path)
   const detail = `${row?.says ?? 'the database reported an error'} (${code})`
   return {
     refusal: refuse(row?.code ?? 'disk-error', { detail, where: { file: path }, cause: error }),

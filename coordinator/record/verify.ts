@@ -66,6 +66,7 @@ export class ChainChecker {
   readonly #chunk: Statement
   readonly #meta: Statement
   readonly #selectOverruled: Statement
+  readonly #range: Statement
   readonly #anyOverruled: boolean
   /** Rows that appends have named so far. */
   readonly counts = new Map<ChainedTable, number>(chainedTables.map((table) => [table, 0]))
@@ -80,6 +81,9 @@ export class ChainChecker {
     this.#selectOverruled = database.prepare(
       `SELECT ${chained.results.columns.join(', ')}, replaced_in FROM overruled
        WHERE island = ? AND evaluation = ? AND replaced_in >= ? ORDER BY number`,
+    )
+    this.#range = database.prepare(
+      `SELECT ${chained.results.columns.join(', ')} FROM results WHERE island = ? AND evaluation BETWEEN ? AND ?`,
     )
     this.#anyOverruled = database.prepare('SELECT 1 FROM overruled LIMIT 1').get() !== undefined
   }
@@ -112,15 +116,26 @@ export class ChainChecker {
     for (const table of chainedTables) {
       const found: Column[][] = []
       this.counts.set(table, this.counts.get(table)! + keys[table].length)
+      const ahead = table === 'results' ? this.#readRanges(keys.results) : noRows
       for (const [index, key] of keys[table].entries()) {
         const overruled = table === 'results' && this.#overruled(sequence, keys.results, index)
-        const row = overruled || this.#selects[table].get(...key)
+        const row = overruled || (ahead.get(key.join()) ?? this.#selects[table].get(...key))
         if (!row) return `a row of ${table} is missing (${key.join(', ')})`
         found.push(row)
       }
       rows[table] = found
     }
     return rows as AppendedRows
+  }
+
+  /** Results of an append mostly lie side by side: they are read in one go for each island. */
+  #readRanges(keys: readonly (readonly number[])[]): ReadonlyMap<string, Column[]> {
+    const found = new Map<string, Column[]>()
+    for (const [island, { low, high, count }] of rangesOf(keys)) {
+      if (high - low >= 2 * count) continue
+      for (const row of this.#range.all(island, low, high)) found.set(`${row[0]},${row[1]}`, row)
+    }
+    return found
   }
 
   /**
@@ -264,12 +279,7 @@ function describe(contents: Uint8Array): string {
   } catch {
     return 'what cannot be told: its list of contents is damaged'
   }
-  const ranges = new Map<number, { low: number; high: number }>()
-  for (const [island, evaluation] of keys.results) {
-    const range = ranges.get(island!) ?? { low: evaluation!, high: evaluation! }
-    ranges.set(island!, { low: Math.min(range.low, evaluation!), high: Math.max(range.high, evaluation!) })
-  }
-  const results = [...ranges]
+  const results = [...rangesOf(keys.results)]
     .sort(([a], [b]) => a - b)
     .map(([island, { low, high }]) => `${islandName(island)}: ${low === high ? low : `${low}-${high}`}`)
   const others = chainedTables
@@ -277,4 +287,27 @@ function describe(contents: Uint8Array): string {
     .map((table) => `${keys[table].length} rows of ${table}`)
   const all = results.length > 0 ? [`evaluations ${results.join(', ')}`, ...others] : others
   return all.length > 0 ? all.join('; ') : 'the description of the search'
+}
+
+interface Range {
+  low: number
+  high: number
+  count: number
+}
+const noRows: ReadonlyMap<string, Column[]> = new Map()
+
+/** Lowest and highest evaluation of each island. */
+function rangesOf(keys: readonly (readonly number[])[]): Map<number, Range> {
+  const ranges = new Map<number, Range>()
+  for (const [island, evaluation] of keys as readonly (readonly [number, number])[]) {
+    const range = ranges.get(island)
+    if (!range) {
+      ranges.set(island, { low: evaluation, high: evaluation, count: 1 })
+      continue
+    }
+    range.low = Math.min(range.low, evaluation)
+    range.high = Math.max(range.high, evaluation)
+    range.count += 1
+  }
+  return ranges
 }

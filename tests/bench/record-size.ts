@@ -2,6 +2,7 @@
 // benchmark with a million evaluations and, small, by a test that holds the limit of bytes.
 
 import { readdirSync, statSync } from 'node:fs'
+import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import type { Append, ArrivalRow, CommitRow } from '../../coordinator/engine/ports.js'
 import { type OpenRecord, verifyRecord } from '../../coordinator/record/index.js'
@@ -14,6 +15,7 @@ export interface RecordSizeOptions {
   readonly numbers: number
   /** Evaluations of one transaction, over all islands. */
   readonly batch: number
+  /** Divides `batch`. */
   readonly islands: number
   /** Told now and then how far it is, with the resident memory. */
   readonly progress?: (evaluations: number, residentBytes: number) => void
@@ -39,7 +41,7 @@ export interface RecordSize {
 
 /** Writes a record of made-up results in a temporary folder, reads it back and removes it. */
 export function measureRecord(options: RecordSizeOptions): RecordSize {
-  const { folder, remove } = temporaryFolder()
+  const { folder, remove } = temporaryFolder(tmpdir())
   try {
     const appended = appendAll(openAt(folder), options)
     const bytes = readdirSync(folder).reduce((sum, name) => sum + statSync(join(folder, name)).size, 0)

@@ -22,7 +22,7 @@ import { refusalOf } from './record.js'
 import { arrival, good, madeUpSearch, openAt, pinned, rows, temporaryFolder } from './record-fixture.js'
 
 const source = temporaryFolder()
-const batches = 150
+const batches = 60
 const shape = { batches, perBatch: 4, islands: 3 }
 const evaluations = batches * 4
 
@@ -132,7 +132,7 @@ describe('damage inside the chain', () => {
       sql(folder, 'INSERT INTO results VALUES (1, 9999, 1, 1, 0, NULL, zeroblob(24))')
       const found = verifyRecord(folder)
       expect(found.intact).toBe(false)
-      expect(found.sentences.join(' ')).toContain('The table results has 1801 rows, and 1800 were appended.')
+      expect(found.sentences.join(' ')).toContain('The table results has 721 rows, and 720 were appended.')
     })
   })
 
@@ -146,7 +146,7 @@ describe('damage inside the chain', () => {
       const refusal = openRefused(folder)
       expect(refusal?.code).toBe('record-corrupted')
       expect(refusal?.detail).toMatch(
-        /append 148 of 150: its digest does not match its rows; it holds evaluations i1: 589-592/,
+        /append 58 of 60: its digest does not match its rows; it holds evaluations i1: 229-232/,
       )
     })
   })
@@ -183,7 +183,7 @@ describe('a missing end', () => {
       const refusal = openRefused(folder)
       expect(refusal?.code).toBe('record-corrupted')
       expect(refusal?.detail).toMatch(
-        /ends at append 150 of 2\d\d\d-.* UTC, but 5 more \(the last at 2\d\d\d-.*\) with 5 results/,
+        /ends at append 60 of 2\d\d\d-.* UTC, but 5 more \(the last at 2\d\d\d-.*\) with 5 results/,
       )
       expect(renderRefusal(refusal!)).toMatch(/next: {2}Put back the newest copy.*accept the loss/)
       // Refusing has not changed its mind: it is refused again, and not taken as a new start.
@@ -258,7 +258,7 @@ describe('a missing end', () => {
       for (const refusal of [openRefused(folder), refusalOf(() => readRecord(folder))]) {
         expect(refusal?.code).toBe('record-corrupted')
         expect(refusal?.detail).toContain(
-          'record.db is missing, but there was one with 150 appends, 1800 results',
+          'record.db is missing, but there was one with 60 appends, 720 results',
         )
       }
       expect(existsSync(recordFolder(folder).database)).toBe(false)

@@ -15,7 +15,7 @@ import { arrival, contentOf, good, madeUpSearch, openAt, rows, temporaryFolder }
 
 const fresh = temporaryFolder()
 const work = temporaryFolder()
-const appends = [...madeUpSearch(51, { batches: 3, islands: 1, perBatch: 2 })]
+const appends = [...madeUpSearch(51, { batches: 2, islands: 1, perBatch: 2 })]
 let expected: unknown
 let callsOfOpening = 0
 let callsOfRun = 0
@@ -98,7 +98,7 @@ const faults: readonly Omit<Fault, 'at'>[] = [
 
 describe('the k-th storage call fails', () => {
   test.each(faults)('%o: for every k, nothing acknowledged is lost or doubled', (fault) => {
-    expect(callsOfRun).toBeGreaterThan(callsOfOpening + 3 * 10)
+    expect(callsOfRun).toBeGreaterThan(callsOfOpening + 2 * 10)
     for (let at = 1; at <= callsOfRun; at++) {
       const what = `call ${at} of ${callsOfRun}`
       inCopy((folder) => {

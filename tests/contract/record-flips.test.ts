@@ -13,7 +13,7 @@ const evaluations = batches * 4
 
 // Source of the method: single-bit flips in copies; a chain of digests and the database's own checks together
 // must leave no flip that changes what is read. (Common practice, no source.)
-test('150 single-bit flips: refused, or found by the check, or nothing that is read has changed', () => {
+test('100 single-bit flips: refused, or found by the check, or nothing that is read has changed', () => {
   const source = temporaryFolder()
   const record = openAt(source.folder)
   for (const append of madeUpSearch(31, { batches, perBatch: 4, islands: 3 })) record.journal.append(append)
@@ -29,7 +29,7 @@ test('150 single-bit flips: refused, or found by the check, or nothing that is r
   const target = recordFolder(folder).database
   const counts = { found: 0, harmless: 0 }
   try {
-    for (let flip = 0; flip < 150; flip++) {
+    for (let flip = 0; flip < 100; flip++) {
       const [at, bit] = [draw.below(bytes.length), draw.below(8)]
       bytes[at]! ^= 1 << bit
       for (const end of ['-wal', '-shm']) rmSync(target + end, { force: true })
@@ -42,8 +42,8 @@ test('150 single-bit flips: refused, or found by the check, or nothing that is r
     source.remove()
   }
   // Most of a record is data: most flips must be found, and free space makes some harmless.
-  expect(counts.found).toBeGreaterThan(25)
-  expect(counts.found + counts.harmless).toBe(150)
+  expect(counts.found).toBeGreaterThan(15)
+  expect(counts.found + counts.harmless).toBe(100)
 })
 
 function verdictOf(folder: string, content: unknown, what: string): 'found' | 'harmless' {

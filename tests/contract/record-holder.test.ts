@@ -129,12 +129,12 @@ describe('real processes', () => {
     remove()
   })
 
-  test('stopped, taken over by force, woken: not one stale append, in 6 takeovers', async () => {
+  test('stopped, taken over by force, woken: not one stale append, in 3 takeovers', async () => {
     const { folder, remove } = temporaryFolder()
     openAt(folder).close()
     let asleep = new Writer(folder)
     await asleep.until('writes', () => asleep.acknowledged > 2)
-    for (let round = 1; round <= 6; round++) {
+    for (let round = 1; round <= 3; round++) {
       const before = await takeOverWhileAsleep(folder, asleep)
       const next = before.next
       asleep.process.kill('SIGCONT')

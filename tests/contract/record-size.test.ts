@@ -8,7 +8,7 @@ test.each([3, 12])(
   (numbers) => {
     for (const [batch, islands] of [
       [100, 5],
-      [50, 8],
+      [50, 10],
     ] as const) {
       const size = measureRecord({ evaluations: 20_000, numbers, batch, islands })
       expect(size.bytesPerEvaluation).toBeLessThanOrEqual(100 + 8 * numbers)
