@@ -2,8 +2,7 @@
 
 import type { House } from './run-options.js'
 
-/** What main.ts exports. A specifier in a variable, because main.ts itself imports from this folder. */
+/** What main.ts exports, loaded when first asked for. */
 export async function openHouse(): Promise<House> {
-  const specifier = '../main.js'
-  return (await import(specifier)) as House
+  return import('../main.js')
 }

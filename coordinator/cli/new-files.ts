@@ -71,16 +71,16 @@ import { choice, defineProblem, integer, real } from 'skerry'
 const shearModulusPa = 79e9 // spring steel
 const densityKgpm3 = 7850
 const pads = [
-  { name: 'felt', stiffnessNpm: 900, dampingNspm: 6 },
-  { name: 'cork', stiffnessNpm: 4000, dampingNspm: 11 },
-  { name: 'neoprene', stiffnessNpm: 1800, dampingNspm: 16 },
+  { name: 'felt', stiffnessNpm: 60, dampingNspm: 1.5 },
+  { name: 'cork', stiffnessNpm: 500, dampingNspm: 4 },
+  { name: 'neoprene', stiffnessNpm: 180, dampingNspm: 7 },
 ]
 const padCount = 3
 const springCount = 3
 const gravityMps2 = 9.81
 const seconds = 4
 const stepSeconds = 0.0004
-const travelMostM = 0.006
+const travelMostM = 0.004
 const sagMostM = 0.012
 const stressMostPa = 450e6
 
@@ -201,8 +201,8 @@ export default defineProblem({
       links: [
         { a: 0, b: 1, kind: 'pipe' },
         { a: 1, b: 2, kind: 'pipe' },
-        { a: 3, b: 4, kind: 'gauge' },
-        { a: 4, b: 5, kind: 'gauge' },
+        { a: 3, b: 4, kind: 'gauge plate' },
+        { a: 4, b: 5, kind: 'gauge plate' },
         ...[0, 1, 2].map((a) => ({ a, b: a + 3, kind: 'spring' })),
       ],
       nodeRadiiM: [0.002, 0.002, 0.002, 0.002, 0.002, 0.002],

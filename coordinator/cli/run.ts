@@ -6,6 +6,7 @@ import { openHouse } from './house.js'
 import type { RunEnd, RunEvent, RunOptions } from './run-options.js'
 import { printChanges } from './searchfile/changes.js'
 import { printFindings } from './searchfile/finding.js'
+import { fitted } from './terminal.js'
 import { type Watch, watch } from './watch.js'
 
 export const runOptionRows: readonly OptionRow[] = [
@@ -93,9 +94,10 @@ function reportEnd(output: Output, end: RunEnd): void {
     output.print(JSON.stringify({ ended: end.ended, ...end.view, files: end.files }, undefined, 2))
     return
   }
+  const say = (line: string) => output.print(output.isTerminal ? fitted(line, output.columns - 1) : line)
   output.print('')
-  for (const line of end.summary) output.print(line)
+  for (const line of end.summary) say(line)
   const width = Math.max(0, ...end.files.map(({ what }) => what.length))
   for (const { what, path } of end.files) output.print(`  ${what.padEnd(width)}  ${path}`)
-  output.print(endWords[end.ended])
+  say(endWords[end.ended])
 }

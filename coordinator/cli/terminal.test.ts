@@ -76,7 +76,7 @@ describe('the live view', () => {
       .join(' ')
       .replace(/\s+/g, ' ')
     expect(text).toContain(
-      'culvert-crawler is searching: 12,480 of 200,000 simulations (6.2 %), about 3 h 12 min to go, until 18:40.',
+      'culvert-crawler is searching: 12,480 of 200,000 simulations (6.2 %), about 3 h 12 min to go, ending about 18:40.',
     )
     expect(text).toContain('i3-01842: distance 0.812 ± 0.031 m, material 0.431 kg (mean of 16 replicates')
     expect(text).toContain('412 simulations/s on 2 cores, busy 97 %')
@@ -105,7 +105,7 @@ describe('the live view', () => {
   })
   it('redraws in place with one write, and leaves nothing of a taller block', () => {
     const written: string[] = []
-    const block = new LiveBlock({ raw: (text: string) => written.push(text) } as never)
+    const block = new LiveBlock({ columns: 80, raw: (text: string) => written.push(text) } as never)
     block.draw(['a', 'b', 'c'])
     block.draw(['d'])
     expect(written).toEqual(['a\u001b[K\nb\u001b[K\nc\u001b[K\n\u001b[J', '\u001b[3A\rd\u001b[K\n\u001b[J'])

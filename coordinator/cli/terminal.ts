@@ -43,7 +43,7 @@ const stateWords: { readonly [state in ProgressView['state']]: string } = {
   finished: 'is finished',
 }
 
-/** culvert-crawler is searching: 12,480 of 200,000 simulations (6.2 %), about 3 h 12 min to go, until 18:40. */
+/** culvert-crawler is searching: 12,480 of 200,000 simulations (6.2 %), about 3 h 12 min to go, ending about 18:40. */
 export function stateSentence(view: ProgressView, options: Pick<DrawOptions, 'clockAfter'>): string {
   const done = `${grouped(view.simulations)} of ${grouped(view.budget)} simulations (${percent(view.simulations / view.budget)})`
   const because = view.because ? ` (${view.because})` : ''
@@ -52,7 +52,7 @@ export function stateSentence(view: ProgressView, options: Pick<DrawOptions, 'cl
   const until =
     left === undefined || view.state !== 'searching'
       ? ''
-      : `, about ${duration(left)} to go${clock ? `, until ${clock}` : ''}`
+      : `, about ${duration(left)} to go${clock ? `, ending about ${clock}` : ''}`
   return `${view.name} ${stateWords[view.state]}${because}: ${done}${until}.`
 }
 
@@ -101,7 +101,7 @@ function bestSentence(best: BestView | undefined): string {
     .join(', ')
   const sample = `mean of ${counted(best.replicates, 'replicate')}`
   const confirmed = best.confirmed ? '' : ', not confirmed yet'
-  return `${best.id}: ${numbers} (${sample}${confirmed}; chosen for being best, so a retest will be lower)`
+  return `${best.id}: ${numbers} (${sample}${confirmed}; chosen for being best, so fresh tests will on average be worse)`
 }
 
 function workSentence(view: ProgressView): string {
@@ -115,7 +115,7 @@ function workSentence(view: ProgressView): string {
 }
 
 function puritySentence(view: ProgressView): string {
-  return view.purity === 'none' ? 'none but its own rules entered this search' : view.purity.join('; ')
+  return view.purity === 'none' ? 'nothing but its own rules entered this search' : view.purity.join('; ')
 }
 
 /** One line for a log. */
@@ -153,10 +153,19 @@ export function wrap(text: string, width: number): string[] {
   return [...lines, line]
 }
 
+/** A line broken at spaces to fit, its indentation kept. */
+export function fitted(line: string, columns: number): string {
+  const indent = /^ */.exec(line)![0]
+  if (line.length <= columns) return line
+  return wrap(line.slice(indent.length), Math.max(20, columns - indent.length))
+    .map((part) => indent + part)
+    .join('\n')
+}
+
 /** Lines at the bottom of a terminal that are redrawn in place; what is printed goes above them. */
 export class LiveBlock {
   readonly #output: Output
-  #height = 0
+  #lines: readonly string[] = []
 
   constructor(output: Output) {
     this.#output = output
@@ -164,15 +173,23 @@ export class LiveBlock {
 
   /** One write, so that nothing flickers: cursor up, each line cleared, the rest of the old block cleared. */
   draw(lines: readonly string[]): void {
-    const up = this.#height > 0 ? `\u001b[${this.#height}A\r` : ''
     const body = lines.map((line) => `${line}\u001b[K\n`).join('')
-    this.#output.raw(`${up}${body}\u001b[J`)
-    this.#height = lines.length
+    this.#output.raw(`${this.#up()}${body}\u001b[J`)
+    this.#lines = lines
   }
 
   /** Removes the block; the next draw starts below what was printed meanwhile. */
   clear(): void {
-    if (this.#height > 0) this.#output.raw(`\u001b[${this.#height}A\r\u001b[J`)
-    this.#height = 0
+    if (this.#lines.length > 0) this.#output.raw(`${this.#up()}\u001b[J`)
+    this.#lines = []
+  }
+
+  /** Back to the first line; a terminal made narrower since has broken the lines it shows. */
+  #up(): string {
+    const rows = this.#lines.reduce(
+      (sum, line) => sum + Math.max(1, Math.ceil(line.length / this.#output.columns)),
+      0,
+    )
+    return rows > 0 ? `\u001b[${rows}A\r` : ''
   }
 }

@@ -27,6 +27,8 @@ export const freshAnswer = z.array(
   }),
 )
 
+const childFile = 'coordinator/cli/check/fresh-child.js'
+
 export interface FreshOutcome {
   readonly faults: readonly ProblemFault[]
   /** Why it was not done, for a person. */
@@ -42,7 +44,7 @@ export async function tryFresh(
 ): Promise<FreshOutcome> {
   let child: string
   try {
-    child = emittedFile('coordinator/cli/check/fresh-child')
+    child = emittedFile(childFile.replace(/\.js$/, ''))
   } catch (error) {
     if (error instanceof Refusal) return { faults: [], notRun: error.detail }
     throw error

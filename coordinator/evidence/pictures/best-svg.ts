@@ -201,7 +201,7 @@ function pathPart(frames: Frames, node: number, last: number, at: At): string {
 /** Horizontal axis with ticks in metres, and faint lines up through all rows. */
 function axis(scale: Scale, topPx: number, y: number): string {
   const { left, right } = scale.extent
-  const step = roundStep(Math.max(((right - left) * 110) / scale.plotPx, (right - left) / 12))
+  const step = roundStep(Math.max(((right - left) * 72) / scale.plotPx, (right - left) / 12))
   const decimals = Math.max(0, -Math.floor(Math.log10(step) + 1e-9))
   const parts = [
     `<path d="M${px(scale.leftPx)},${px(y)}H${px(scale.leftPx + scale.plotPx)}" stroke="${theme.faint}"/>`,
@@ -212,11 +212,10 @@ function axis(scale: Scale, topPx: number, y: number): string {
     parts.push(`<path d="M${px(x)},${px(topPx)}V${px(y)}" stroke="${theme.faint}" stroke-opacity="0.14"/>`)
     parts.push(text(x, y + 22, (tick * step).toFixed(decimals), 14, theme.faint, 'text-anchor="middle"'))
   }
-  parts.push(text(scale.leftPx, y + 44, 'along the ground, m (height on the same scale)', 14, theme.faint))
   return parts.join('')
 }
 
-/** Holds along and across. */
+/** Holds along and across; with the words for the axis. */
 function scaleBar(scale: Scale, y: number): string {
   const bar = roundStep(scale.plotPx / scale.pxPerM / 4)
   const barPx = bar * scale.pxPerM
@@ -224,6 +223,7 @@ function scaleBar(scale: Scale, y: number): string {
   return [
     `<path d="M${px(from)},${px(y + 36)}v10h${px(barPx)}v-10" fill="none" stroke="${theme.ink}" stroke-width="2"/>`,
     text(from - 8, y + 46, lengthText(bar), 14, theme.ink, 'text-anchor="end"'),
+    text(scale.leftPx, y + 44, 'along the ground, m (height on the same scale)', 14, theme.faint),
   ].join('')
 }
 
