@@ -27,7 +27,13 @@ const fresh = new Set<string>()
 export function emittedFile(module: string): string {
   const file = [join(emittedRoot, `${module}.js`), join(emittedRoot, module, 'index.js')].find(existsSync)
   if (file === undefined) throw notBuilt(`${module} has not been built: there is no emitted file for it.`)
-  if (sourceRoot !== undefined) mustBeFresh(file, sourceRoot)
+  try {
+    if (sourceRoot !== undefined) mustBeFresh(file, sourceRoot)
+  } catch (error) {
+    // Files on the way to the old one were taken for fresh; the next call looks at all of them again.
+    fresh.clear()
+    throw error
+  }
   return file
 }
 
@@ -37,13 +43,18 @@ function mustBeFresh(file: string, root: string): void {
   const module = relative(emittedRoot, file).replace(/\.js$/, '')
   const source = join(root, `${module}.ts`)
   if (!existsSync(file)) throw notBuilt(`${module} has not been built.`)
-  if (existsSync(source) && statSync(source).mtimeMs > statSync(file).mtimeMs) {
+  if (existsSync(source) && statSync(source).mtimeMs > Math.max(statSync(file).mtimeMs, builtMs())) {
     throw notBuilt(`${module} was changed after it was built.`)
   }
   fresh.add(file)
   for (const [, specifier] of readFileSync(file, 'utf8').matchAll(/\bfrom\s*['"](\.{1,2}\/[^'"]+)['"]/g)) {
     mustBeFresh(join(dirname(file), specifier!), root)
   }
+}
+
+/** When the build last found that dist/ is what the sources give. */
+function builtMs(): number {
+  return statSync(join(emittedRoot, '.built'), { throwIfNoEntry: false })?.mtimeMs ?? 0
 }
 
 function notBuilt(detail: string): Error {

@@ -11,6 +11,7 @@ import {
   readdirSync,
   readFileSync,
   rmSync,
+  utimesSync,
   writeFileSync,
 } from 'node:fs'
 import { dirname, extname, join, relative, sep } from 'node:path'
@@ -66,7 +67,11 @@ export function build({ force = false } = {}) {
     .filter((file) => !notShipped.test(file))
     .filter((file) => extname(file) === '.ts' || copied.has(extname(file)))
   const now = fingerprint(sources)
-  if (!force && existsSync(stamp) && readFileSync(stamp, 'utf8') === now) return { built: false, status: 0 }
+  if (!force && existsSync(stamp) && readFileSync(stamp, 'utf8') === now) {
+    // Sources that were touched and not changed are not newer than dist/ (worker/entry.ts looks at this time).
+    utimesSync(stamp, new Date(), new Date())
+    return { built: false, status: 0 }
+  }
   const tsc = compiler()
   if (tsc === undefined) {
     console.error('build: the TypeScript compiler is not installed. Run `npm ci` without --omit=dev.')
