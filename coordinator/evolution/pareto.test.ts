@@ -21,6 +21,7 @@ function frontsByPeeling(points: readonly Point[]): number[][] {
   const fronts: number[][] = []
   while (left.length > 0) {
     const front = left.filter((i) => !left.some((j) => dominates(points[j]!, points[i]!)))
+    if (front.length === 0) throw new Error('among finitely many points some are not dominated')
     fronts.push(front)
     left = left.filter((i) => !front.includes(i))
   }

@@ -122,7 +122,7 @@ function bracket(
 ) {
   const samples: number[][] = []
   const corners: number[][] = []
-  const perSegment = 20_000
+  const perSegment = 4_000
   for (const [from, to] of segments) {
     const at = (i: number): number => from + ((to - from) * i) / perSegment
     for (let i = 0; i <= perSegment; i++) samples.push([at(i), g(at(i))])
@@ -180,7 +180,7 @@ describe('closed-form fronts of two objectives (Zitzler, Deb, Thiele, Comparison
         const { low, high } = bracket(segments, g, [r, r])
         expect(low).toBeLessThanOrEqual(volumes[k]! + 1e-12)
         expect(high).toBeGreaterThanOrEqual(volumes[k]! - 1e-12)
-        expect(high - low).toBeLessThan(2e-4)
+        expect(high - low).toBeLessThan(1e-3)
       })
     })
   }
@@ -240,7 +240,7 @@ describe('closed-form fronts of more objectives (Deb, Thiele, Laumanns, Zitzler,
   for (const [m, divisions] of [
     [2, 2_000],
     [3, 100],
-    [4, 16],
+    [4, 12],
     [5, 8],
   ] as const) {
     test(`DTLZ1 with ${m} objectives: a lattice encloses the closed form`, () => {
@@ -261,7 +261,7 @@ describe('closed-form fronts of more objectives (Deb, Thiele, Laumanns, Zitzler,
   for (const [m, divisions] of [
     [2, 2_000],
     [3, 100],
-    [4, 16],
+    [4, 12],
     [5, 8],
   ] as const) {
     test(`DTLZ2 with ${m} objectives: finer samples of the sphere close in on the closed form from below`, () => {

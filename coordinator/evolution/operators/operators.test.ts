@@ -21,6 +21,8 @@ const encodings: readonly Encoding[] = [
   real({ low: -1, high: 3, length: 7 }),
   real({ low: 0.7, high: 0.7000000000000001, length: 3 }),
   real({ low: 1e-9, high: 1e6, length: 5, scale: 'log' }),
+  // e to the logarithm of 20 rounds below 20, that of 100 above 100.
+  real({ low: 20, high: 100, length: 5, scale: 'log' }),
   real({ low: -1e300, high: 1e300, length: 2 }),
   integer({ low: -3, high: 9, length: 6 }),
   integer({ low: -(2 ** 31), high: 2 ** 31 - 1, length: 3 }),
