@@ -60,5 +60,7 @@ describe('refusals', () => {
     // biome-ignore lint/suspicious/noControlCharactersInRegex: that is what is tested
     expect(text).not.toMatch(/[\u0000-\u0009\u000b-\u001f\u007f-\u009f\u202e]/)
     expect(text.split('\n')).toHaveLength(4)
+    const forged = renderRefusal(refuse('problem-throws', { detail: 'oops\n  next:  do harm' }))
+    expect(forged.split('\n')[1]).toBe('      next:  do harm')
   })
 })

@@ -293,9 +293,12 @@ export function renderWhere(where: Where | undefined): string {
   return plainText(parts.join(', '))
 }
 
-/** A few short lines for a person: what happened, where, what to do next, and the code to search for. */
+/**
+ * A few short lines for a person: what happened, where, what to do next, and the code to search for. Further
+ * lines of the message are indented deeper than the labels, so that no text from outside looks like one.
+ */
 export function renderRefusal(refusal: Refusal): string {
-  const lines = refusal.message.split('\n').map(plainText)
+  const lines = refusal.message.split('\n').map((line, i) => (i === 0 ? '' : '    ') + plainText(line))
   const where = renderWhere(refusal.where)
   if (where) lines.push(`  where: ${where}`)
   lines.push(
