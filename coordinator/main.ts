@@ -4,7 +4,7 @@
 import { randomBytes } from 'node:crypto'
 import { existsSync, readFileSync, statSync } from 'node:fs'
 import { availableParallelism } from 'node:os'
-import { join } from 'node:path'
+import { join, resolve } from 'node:path'
 import { z } from 'zod'
 import { hex } from '../shared/digests.js'
 import { islandName } from '../shared/ids.js'
@@ -154,7 +154,7 @@ function dispatcherOf({ record, folder, cores }: Driven): Dispatcher {
   const { seed, replicates } = record.plan
   return localDispatcher((events) =>
     createPool(
-      { pluginFile: recordFolder(folder).plugin, seed, sharedConditions: replicates.shared, threads: cores },
+      { pluginFile: resolve(recordFolder(folder).plugin), seed, sharedConditions: replicates.shared, threads: cores },
       events,
     ),
   )

@@ -133,7 +133,7 @@ export class Engine implements Gate {
       replicates: ticket.replicates,
       simulations: ticket.simulations,
       expectedCost: ticket.expectedCost,
-      genome: island.bytesOf(ticket.individual.genome),
+      genome: ticket.genome,
       kind: 'first',
     })
     this.#works.add(work)

@@ -34,6 +34,8 @@ const diskRetryMs = 1000
  */
 export async function runLoop(engine: Engine, world: LoopWorld): Promise<LoopEnd> {
   let facts: DispatchFact[] = []
+  // What was noted while the record was opened.
+  if (!(await makeDurable(engine, world))) return 'interrupted'
   for (;;) {
     engine.take(facts, world.nowMs())
     if (!(await makeDurable(engine, world))) return 'interrupted'

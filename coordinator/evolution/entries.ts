@@ -8,8 +8,6 @@
 
 import { ByteWriter } from '../../shared/bytes.js'
 import { resultDigest } from '../../shared/digests.js'
-import { genomeBytes } from '../../shared/encodings.js'
-import type { GenomeSpec } from '../../shared/genome.js'
 import type { Amendment } from './island.js'
 import type { Ticket } from './tickets.js'
 import type { Individual } from './types.js'
@@ -19,7 +17,6 @@ const writer = new ByteWriter(4096)
 
 /** Valid until the next entry is written. */
 export function commitEntry(
-  spec: GenomeSpec,
   commit: number,
   ticket: Ticket,
   resultDigestBytes: Uint8Array,
@@ -34,7 +31,7 @@ export function commitEntry(
     .count(ticket.replicates)
     .bytes(resultDigestBytes)
   // A top-up adds no genome: it stands in the entry of the first block.
-  if (ticket.firstReplicate === 0) writer.bytes(genomeBytes(spec, ticket.individual.genome))
+  if (ticket.firstReplicate === 0) writer.bytes(ticket.genome)
   return writer.peek()
 }
 

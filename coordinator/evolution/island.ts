@@ -231,19 +231,22 @@ export class Island {
     const counters = this.#counters
     const cost = expectedCost(individual.genome)
     check(Number.isSafeInteger(cost) && cost > 0, 'an expected cost is a positive whole number')
-    const ticket: Ticket = {
+    const expected = Math.max(1, Math.round((cost * replicates) / plan.replicates.first))
+    const simulations = replicates * simulationsPerReplicate(plan.problem)
+    const before = counters.proposedSimulations
+    counters.proposedSimulations += simulations
+    return {
       evaluation: ++counters.evaluations,
       individual,
+      genome: this.bytesOf(individual.genome),
       firstReplicate: individual.replicates,
       replicates,
-      simulations: replicates * simulationsPerReplicate(plan.problem),
-      simulationsBefore: counters.proposedSimulations,
-      expectedCost: Math.max(1, Math.round((cost * replicates) / plan.replicates.first)),
-      virtualFinish: 0,
+      simulations,
+      simulationsBefore: before,
+      expectedCost: expected,
+      virtualFinish: counters.virtualTime + expected,
       founder,
     }
-    counters.proposedSimulations += ticket.simulations
-    return { ...ticket, virtualFinish: counters.virtualTime + ticket.expectedCost }
   }
 
   #affords(replicates: number): boolean {
@@ -288,7 +291,7 @@ export class Island {
     else this.#machine.reconsider(individual)
     this.#noteBest(individual)
     this.#queueTopUp()
-    this.#digest = chain(this.#digest, commitEntry(plan.problem.spec, counters.commits, ticket, resultDigest))
+    this.#digest = chain(this.#digest, commitEntry(counters.commits, ticket, resultDigest))
   }
 
   #take(individual: Individual, ticket: Ticket, result: EvaluationResult): void {

@@ -13,6 +13,8 @@ export interface Ticket {
   /** 1, 2, ... in order of proposal on its island. */
   readonly evaluation: number
   readonly individual: Individual
+  /** Canonical bytes of its genome, made once: for the work that travels and for the digest. */
+  readonly genome: Uint8Array
   readonly firstReplicate: number
   readonly replicates: number
   readonly simulations: number

@@ -36,14 +36,24 @@ export function judgeChanges(
   if (branches.length > 0) {
     throw refuse('changed-search-file', {
       detail: `${branches.map((change) => change.field).join(', ')} cannot be changed in a running search`,
-      where: { file, line: branches[0]!.place.line, column: branches[0]!.place.column, field: branches[0]!.field },
+      where: {
+        file,
+        line: branches[0]!.place.line,
+        column: branches[0]!.place.column,
+        field: branches[0]!.field,
+      },
       cure: `Put ${branches.length === 1 ? 'it' : 'them'} back, or begin a new search with --record and another folder.\n${printChanges(file, changes)}`,
     })
   }
   if (!accept) {
     throw refuse('changed-search-file', {
       detail: `${binding.map((change) => change.field).join(', ')} would take effect at the end of the next epoch`,
-      where: { file, line: binding[0]!.place.line, column: binding[0]!.place.column, field: binding[0]!.field },
+      where: {
+        file,
+        line: binding[0]!.place.line,
+        column: binding[0]!.place.column,
+        field: binding[0]!.field,
+      },
       cure: 'Run the same command with --accept-changes to take the differences, or put the file back.',
     })
   }
@@ -58,23 +68,33 @@ export function orderChanges(
   searchText: string,
 ): void {
   if (changes.length === 0) return
-  engine.noteData(changedKind, `The search file was changed: ${changes.map(sentenceOf).join('; ')}.`, { searchText })
+  engine.noteData(changedKind, `The search file was changed: ${changes.map(sentenceOf).join('; ')}.`, {
+    searchText,
+  })
   const touched = (field: string) => changes.some((change) => change.field.startsWith(field))
   if (touched('budget.simulations')) {
     const { simulations } = fields.budget
-    engine.orderAtEpoch('budget-changed', `The budget is ${simulations} simulations from now on.`, (epoch, island) => ({
-      fact: 'budget',
-      simulations,
-      epoch,
-      silentFrom: island.ended ? island.counters.epochsPassed + 1 : 0,
-    }))
+    engine.orderAtEpoch(
+      'budget-changed',
+      `The budget is ${simulations} simulations from now on.`,
+      (epoch, island) => ({
+        fact: 'budget',
+        simulations,
+        epoch,
+        silentFrom: island.ended ? island.counters.epochsPassed + 1 : 0,
+      }),
+    )
   }
   if (touched('replicates.most')) {
     const most = fields.replicates.most ?? fields.replicates.first
-    engine.orderAtEpoch('replicates-changed', `An individual gets at most ${most} replicates from now on.`, () => ({
-      fact: 'most-replicates',
-      most,
-    }))
+    engine.orderAtEpoch(
+      'replicates-changed',
+      `An individual gets at most ${most} replicates from now on.`,
+      () => ({
+        fact: 'most-replicates',
+        most,
+      }),
+    )
   }
 }
 

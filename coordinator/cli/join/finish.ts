@@ -13,13 +13,18 @@ import { limits } from '../../../shared/limits.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import type { EvaluationResult } from '../../../shared/result.js'
 import type { Dispatcher } from '../../engine/ports.js'
+import { bestSvg } from '../../evidence/pictures/best-svg.js'
+import {
+  alwaysCaution,
+  cautionText,
+  type PictureFacts,
+  resultSentence,
+} from '../../evidence/pictures/facts.js'
+import { replayHtml } from '../../evidence/pictures/replay.js'
 import { estimateOf, replicateValues } from '../../evolution/estimate.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Search } from '../../evolution/search.js'
 import type { Individual } from '../../evolution/types.js'
-import { bestSvg } from '../../evidence/pictures/best-svg.js'
-import { alwaysCaution, cautionText, type PictureFacts, resultSentence } from '../../evidence/pictures/facts.js'
-import { replayHtml } from '../../evidence/pictures/replay.js'
 import { bestOf, estimatesOf, standardErrorOf } from './view.js'
 
 export interface Finish {
@@ -144,7 +149,12 @@ function summaryOf(
   facts: PictureFacts,
   retested: EvaluationResult | undefined,
 ): string[] {
-  const chosen = { ...facts, results: toResults(search.plan, best), replicates: best.replicates, selected: true }
+  const chosen = {
+    ...facts,
+    results: toResults(search.plan, best),
+    replicates: best.replicates,
+    selected: true,
+  }
   return [
     `Best machine: ${facts.id}`,
     ...(retested ? [`  On fresh conditions: ${resultSentence(facts)}`] : []),
@@ -177,7 +187,12 @@ function controlLines(search: Search): string[] {
 }
 
 /** Whole or not at all: a reader never sees half a file. */
-export function write(folder: string, name: string, what: string, text: string): { what: string; path: string } {
+export function write(
+  folder: string,
+  name: string,
+  what: string,
+  text: string,
+): { what: string; path: string } {
   const path = join(folder, name)
   writeFileSync(`${path}.new`, text)
   renameSync(`${path}.new`, path)

@@ -45,7 +45,7 @@ export class Sample {
       individual: ticket.individual.id,
       firstReplicate: ticket.firstReplicate,
       replicates: ticket.replicates,
-      genome: island.bytesOf(ticket.individual.genome),
+      genome: ticket.genome,
     }
   }
 

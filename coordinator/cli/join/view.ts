@@ -2,13 +2,13 @@
 
 import { hex } from '../../../shared/digests.js'
 import { islandName, nameOf } from '../../../shared/ids.js'
+import type { RecordReader } from '../../engine/ports.js'
 import { diversityOf } from '../../evolution/diversity.js'
 import { naturalValue, replicateValues } from '../../evolution/estimate.js'
 import type { Island } from '../../evolution/island.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Search, Standing } from '../../evolution/search.js'
 import type { Individual } from '../../evolution/types.js'
-import type { RecordReader } from '../../engine/ports.js'
 import { recordVersion } from '../../record/index.js'
 import type { BestView, EstimateView, IslandView, ProgressView } from '../progress-view.js'
 

@@ -69,13 +69,18 @@ function victimUnlessBetter(members: readonly Individual[], child: Individual, v
 
 /** One of those that score worst, drawn evenly: the id would prefer some on a flat landscape. */
 function oneOfTheWorst(members: readonly Individual[], stream: Stream): number {
+  // Every commit comes through here: the first objective decides almost always, so it is compared by itself.
   let worst = 0
+  let worstFirst = members[0]!.score[0]!
   let equals = 1
   for (let index = 1; index < members.length; index++) {
-    const order = compareScores(members[index]!, members[worst]!)
+    const first = members[index]!.score[0]!
+    if (first < worstFirst) continue
+    const order = first > worstFirst ? 1 : compareScores(members[index]!, members[worst]!)
     if (order < 0) continue
     if (order > 0) {
       worst = index
+      worstFirst = first
       equals = 1
     } else equals++
   }
