@@ -5,6 +5,7 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { afterAll, describe, expect, it } from 'vitest'
 import { checkSearch } from '../../coordinator/cli/check.js'
+import { demoProblemText, demoSearchText } from '../../coordinator/cli/demo.js'
 import { problemText, searchText } from '../../coordinator/cli/new-files.js'
 import { searchTables } from '../../coordinator/cli/search-tables.js'
 import { openSearch } from '../../coordinator/cli/searchfile/open.js'
@@ -44,6 +45,16 @@ describe('what `skerry new` writes', () => {
     expect(report.freshNotRun).toBeUndefined()
     expect(report.ok).toBe(true)
     expect(report.coreHours.total).toBeGreaterThan(report.coreHours.search)
+  })
+})
+
+describe('the search of `skerry demo`', () => {
+  it('opens without a warning', async () => {
+    const file = folderWith(undefined, demoSearchText)
+    writeFileSync(join(file, '..', 'problem.js'), demoProblemText)
+    const opened = await openSearch(file, searchTables())
+    expect(opened.warnings).toEqual([])
+    expect(opened.plan.problem.name).toBe('culvert-crawler')
   })
 })
 

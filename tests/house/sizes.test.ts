@@ -12,6 +12,14 @@ function entries(): string[] {
   return [...sources, 'coordinator/setup/preinstall.mjs']
 }
 
+/** Adapters of ports that only tests use, beside the ports' own folders. */
+const forTests = [
+  'coordinator/dispatch/weather.ts',
+  'coordinator/record/faulty.ts',
+  'coordinator/record/memory.ts',
+  'coordinator/record/memory-store.ts',
+]
+
 test('no file is longer than 500 lines', () => {
   expect(show(longFiles(readSources()))).toEqual([])
 })
@@ -21,7 +29,7 @@ test('no function is longer than 70 lines', () => {
 })
 
 test('every file is used by the program, by plug-in authors, or at install', () => {
-  expect(show(unusedFiles(readSources(), entries()))).toEqual([])
+  expect(show(unusedFiles(readSources(), entries(), forTests))).toEqual([])
 })
 
 const lines = (count: number) => '  x()\n'.repeat(count)
@@ -40,6 +48,26 @@ test('a function of 71 lines is caught by name in every form, one of 70 is not',
   expect(of(`class A {\n  tall() {\n${lines(69)}}\n}`)[0]).toContain('tall has 71')
   expect(of(`run(() => {\n${lines(69)}})`)[0]).toContain('a function without a name has 71')
   expect(of(`function fits() {\n${lines(68)}}`)).toEqual([])
+})
+
+test('in a test file the suite may be long, a test in it may not', () => {
+  const of = (text: string) => show(longFunctions([{ path: 'tests/a.ts', text }]))
+  expect(of(`export function suite() {\n${"  test.each([1])('x', () => {})\n".repeat(80)}}`)).toEqual([])
+  expect(of(`describe('x', () => {\n  test('y', () => {\n${lines(80)}})\n})`)).toHaveLength(1)
+  expect(of(`export function helper() {\n${lines(80)}}`)).toHaveLength(1)
+})
+
+test('a file for tests must be used by tests, and by nobody else', () => {
+  const sources = [
+    { path: 'worker/main.ts', text: "import './a.js'" },
+    { path: 'worker/a.ts', text: 'export {}' },
+    { path: 'worker/fake.ts', text: 'export {}' },
+    { path: 'worker/main.test.ts', text: "import './main.js'" },
+  ]
+  expect(show(unusedFiles(sources, ['worker/main.ts'], ['worker/a.ts', 'worker/fake.ts']))).toEqual([
+    'worker/a.ts:1 is used by the program: list it no more',
+    'worker/fake.ts:1 is used by nobody: use it or remove it',
+  ])
 })
 
 test('a file reached only by tests, or only by itself, is caught; one named as a thread is not', () => {

@@ -37,21 +37,37 @@ function nameOf(node: SyntaxNode, parents: readonly SyntaxNode[]): string {
   return named ? String((named as SyntaxNode).name) : 'a function without a name'
 }
 
-/** Functions past the limit. `describe(...)` of a test file only groups, so its function is not counted. */
+const grouping = new Set(['describe', 'test', 'it'])
+
+/** Whether a function of a test file only groups tests: it calls test(...) or describe(...) as a statement. */
+function groupsTests(node: SyntaxNode): boolean {
+  let groups = false
+  walk(node, (inner, parents) => {
+    if (inner !== node && functionTypes.has(inner.type)) return false
+    const isCall = inner.type === 'CallExpression' && parents.at(-1)?.type === 'ExpressionStatement'
+    if (isCall && grouping.has(firstName(inner.callee as SyntaxNode))) groups = true
+    return undefined
+  })
+  return groups
+}
+
+/** 'test' of test(...), test.each(...)(...) and the like. */
+function firstName(callee: SyntaxNode): string {
+  const inner = (callee.object ?? callee.callee) as SyntaxNode | undefined
+  return inner ? firstName(inner) : String(callee.name ?? '')
+}
+
+/** Functions past the limit. Suites of a test file, which only group tests, are not counted; their tests are. */
 export function longFunctions(sources: readonly Source[]): Violation[] {
   const violations: Violation[] = []
   for (const source of sources) {
     walk(parse(source), (node, parents) => {
       if (!functionTypes.has(node.type)) return undefined
-      const callee = parents.at(-1)?.callee as SyntaxNode | undefined
-      const words = callee ? source.text.slice(callee.start, callee.end) : ''
-      if (isTest(source.path) && words.startsWith('describe')) return undefined
       const first = lineAt(source.text, node.start)
       const lines = lineAt(source.text, node.end) - first + 1
-      if (lines > functionLinesMost) {
-        const text = `${nameOf(node, parents)} has ${lines} lines, at most ${functionLinesMost}: take it apart`
-        violations.push({ path: source.path, line: first, text })
-      }
+      if (lines <= functionLinesMost || (isTest(source.path) && groupsTests(node))) return undefined
+      const text = `${nameOf(node, parents)} has ${lines} lines, at most ${functionLinesMost}: take it apart`
+      violations.push({ path: source.path, line: first, text })
       return undefined
     })
   }
@@ -80,13 +96,34 @@ function usesOf(source: Source, paths: ReadonlySet<string>): string[] {
 }
 
 /** Sources that cannot be reached from the entries by imports or by name. Tests do not count as users. */
-export function unusedFiles(sources: readonly Source[], entries: readonly string[]): Violation[] {
+export function unusedFiles(
+  sources: readonly Source[],
+  entries: readonly string[],
+  forTests: readonly string[] = [],
+): Violation[] {
   const ours = sources.filter((source) => !isTest(source.path))
-  const paths = new Set(ours.map((source) => source.path))
-  const byPath = new Map(ours.map((source) => [source.path, source]))
-  const missing = entries.filter((path) => !byPath.has(path))
+  const missing = [...entries, ...forTests].filter((path) => !ours.some((source) => source.path === path))
   if (missing.length > 0)
-    return missing.map((path) => ({ path, line: 1, text: 'is an entry but does not exist' }))
+    return missing.map((path) => ({ path, line: 1, text: 'is expected but does not exist' }))
+  const reached = reachedFrom(ours, entries)
+  const reachedByTests = reachedFrom(
+    sources,
+    sources.filter((source) => isTest(source.path)).map((one) => one.path),
+  )
+  const violations: Violation[] = []
+  for (const { path } of ours) {
+    const known = forTests.includes(path)
+    if (known && reached.has(path))
+      violations.push({ path, line: 1, text: 'is used by the program: list it no more' })
+    const used = known ? reachedByTests : reached
+    if (!used.has(path)) violations.push({ path, line: 1, text: 'is used by nobody: use it or remove it' })
+  }
+  return violations
+}
+
+function reachedFrom(sources: readonly Source[], entries: readonly string[]): Set<string> {
+  const byPath = new Map(sources.map((source) => [source.path, source]))
+  const paths = new Set(byPath.keys())
   const reached = new Set<string>()
   const queue = [...entries]
   for (let path = queue.pop(); path !== undefined; path = queue.pop()) {
@@ -95,7 +132,5 @@ export function unusedFiles(sources: readonly Source[], entries: readonly string
     reached.add(path)
     queue.push(...usesOf(source, paths))
   }
-  return ours
-    .filter((source) => !reached.has(source.path))
-    .map(({ path }) => ({ path, line: 1, text: 'is used by nobody: use it or remove it' }))
+  return reached
 }
