@@ -25,7 +25,7 @@ const writer = new ByteWriter(1 << 16)
 
 /**
  * Keys of the rows as counts: per table how many, then each key as differences to the key before it (results:
- * to the last evaluation of the same island), so that a key mostly takes two bytes.
+ * to the last evaluation of the same island), so that a key mostly takes two bytes. Keys are below 2^52.
  */
 export function contentsOf(rows: AppendedRows): Uint8Array {
   writer.reset()

@@ -292,7 +292,7 @@ export class SqliteReader implements StoredReader {
 
   #arrivalOf(row: readonly Column[]): ArrivalRow {
     const [island, evaluation] = [numberAt(row, 0), numberAt(row, 1)]
-    const what = `result ${evaluation} of island ${island}`
+    const what = () => `result ${evaluation} of island ${island}`
     return new StoredArrival({
       island,
       evaluation,

@@ -63,13 +63,21 @@ export function bytesOfNumbers(numbers: Float64Array): Uint8Array {
   return new Uint8Array(numbers.buffer, numbers.byteOffset, numbers.byteLength)
 }
 
-export function numbersOfBytes(bytes: Uint8Array, what: string): Float64Array {
-  if (bytes.length % 8 !== 0) throw damaged(what, `${bytes.length} bytes are no whole number of doubles`)
+/** `what` is asked for only when the row is damaged: this runs for every result of a record. */
+export function numbersOfBytes(bytes: Uint8Array, what: () => string): Float64Array {
+  if (bytes.length % 8 !== 0) throw damaged(what(), `${bytes.length} bytes are no whole number of doubles`)
+  const numbers = ownNumbers(bytes)
+  for (let i = 0; i < numbers.length; i++) {
+    if (!Number.isFinite(numbers[i]!)) throw damaged(what(), `number ${i} is not finite`)
+  }
+  return numbers
+}
+
+/** The bytes as doubles: the same memory where nobody else has a part in it, else a copy. */
+function ownNumbers(bytes: Uint8Array): Float64Array {
+  if (bytes.byteLength === bytes.buffer.byteLength) return new Float64Array(bytes.buffer)
   const numbers = new Float64Array(bytes.length / 8)
   bytesOfNumbers(numbers).set(bytes)
-  for (let i = 0; i < numbers.length; i++) {
-    if (!Number.isFinite(numbers[i]!)) throw damaged(what, `number ${i} is not finite`)
-  }
   return numbers
 }
 
@@ -81,9 +89,11 @@ export function textOfFailures(failures: readonly SimulationFailure[]): string |
   return JSON.stringify(failures.map(({ simulation, reason }) => [simulation, reason]))
 }
 
-export function failuresOfText(text: Column | undefined, what: string): readonly SimulationFailure[] {
-  if (text === null || text === undefined) return []
-  return decode(what, () =>
+const noFailures: readonly SimulationFailure[] = []
+
+export function failuresOfText(text: Column | undefined, what: () => string): readonly SimulationFailure[] {
+  if (text === null || text === undefined) return noFailures
+  return decode(what(), () =>
     failureSchema.parse(JSON.parse(String(text))).map(([simulation, reason]) => ({ simulation, reason })),
   )
 }
