@@ -15,7 +15,7 @@ name: demo
 problem: ./problem.js
 seed: 20261201
 workersExpected: 4
-budget: { simulations: 6000 }
+budget: { simulations: 10000 }
 replicates: { first: 2, topUp: 2, most: 8 }
 islands:
   - { count: 2, method: nsga-ii, population: 48, lookahead: 12 }

@@ -25,7 +25,7 @@ const timePx = 76
 /** Moments shown, by number of columns they stand in. */
 const momentsByColumns = [5, 4, 6] as const
 const gapPx = 28
-const rowHeightMostPx = 190
+const rowHeightMostPx = 210
 const theme = light
 
 interface Scale {
