@@ -119,6 +119,11 @@ describe('crowding', () => {
     ])
     expect([...crowdingDistance([[0], [0], [0], [1]], [0, 1, 2, 3])]).toEqual([Infinity, 0, 1, Infinity])
   })
+  test('among infinite scores only the outer ones are ends', () => {
+    const points = [[0], [1], [2], [Infinity], [Infinity], [Infinity]]
+    const distance = crowdingDistance(points, [0, 1, 2, 3, 4, 5])
+    expect([...distance]).toEqual([Infinity, 1, Infinity, Infinity, 0, Infinity])
+  })
   test('infinite scores never make a distance that is not a number', () => {
     fc.assert(
       fc.property(pointSets(3, 30), (points) => {

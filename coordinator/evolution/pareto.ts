@@ -211,9 +211,8 @@ function insertStair(stairs: Point[], point: Point, reference: Point): number {
   }
   const right = end < stairs.length ? stairs[end]![0]! : reference[0]!
   added += (right - left) * (ceiling - point[1]!)
-  // A step with the same first objective lies before `at` and is now covered as well.
-  const start = at > 0 && stairs[at - 1]![0]! === point[0]! ? at - 1 : at
-  stairs.splice(start, end - start, point)
+  // A step before `at` with the same first objective is covered too; it has no width and does no harm.
+  stairs.splice(at, end - at, point)
   return added
 }
 
