@@ -116,8 +116,17 @@ export function acosh(x: number): number {
   if (!(x >= 1)) return NaN
   if (x >= 268435456) return log(x) + ln2
   if (x > 2) return log(2 * x - 1 / (x + Math.sqrt(x * x - 1)))
+  // log(1 + u) with u = t + sqrt(2t + t^2); what rounding takes from u is put back afterwards.
   const t = x - 1
-  return log1p(t + Math.sqrt(2 * t + t * t))
+  const square = t * t
+  const sum = 2 * t + square
+  const sumTail = square - (sum - 2 * t) + exactProductTail(t, t, square)
+  const root = Math.sqrt(sum)
+  if (root === 0) return 0
+  const rootSquare = root * root
+  const rootTail = (sum - rootSquare - exactProductTail(root, root, rootSquare) + sumTail) / (2 * root)
+  const u = root + t
+  return log1p(u) + (t - (u - root) + rootTail) / (1 + u)
 }
 
 /** Inverse hyperbolic tangent; NaN beyond 1. */
