@@ -273,6 +273,15 @@ describe('an impossible value', () => {
     expect(findings.map(({ field }) => field)).toEqual(['islands[0].method', 'islands[1].method'])
     expect(findings[0]!.expected).toContain('nsga-ii')
   })
+  it('is refused at once: thousands of islands', () => {
+    const text = edited('count: 3,', 'count: 1000,').replace('count: 1\n', 'count: 1000\n')
+    const finding = refused(text)
+    expect(finding).toMatchObject({
+      field: 'islands',
+      found: '2000 islands in all',
+      expected: 'at most 1000',
+    })
+  })
   it('covers the default of a setting', () => {
     const text = edited(
       'count: 3, method: steady-state, population: 40, lookahead: 6',

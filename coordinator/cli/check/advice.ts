@@ -71,7 +71,10 @@ export function recommend(times: Spread, aroundCost: Spread, workers: number): R
     const enough = rows.find(({ busy }) => busy >= busyEnough) ?? rows.findLast(({ busy }) => busy >= least)
     return enough && { order, lookahead: Math.ceil(enough.ratio * workers), busy: enough.busy, because }
   }
-  const alike = 'machines take about the same time'
+  const alike =
+    times.cv <= 0.2
+      ? 'machines take about the same time'
+      : 'a lookahead of that width absorbs the spread of times'
   const foretold = 'times differ between machines, but expectedCost foretells them'
   const bearable =
     'times differ between machines; order arrival would idle less, but not repeat from the search file'

@@ -117,8 +117,9 @@ export function planSearch(
     objectives: problem.objectives.length,
     ...(nowMs === undefined ? {} : { nowMs }),
   }
+  const related = relationFindings(read.located, subject)
   const { islands, controls, findings } = planIslands(read.located, subject, problem.spec)
-  const all = sortFindings([...read.findings, ...findings, ...relationFindings(read.located, subject)])
+  const all = sortFindings([...read.findings, ...findings, ...related])
   if (isRefused(all)) return { plan: undefined, findings: all }
   return { plan: assemble(file, problem, tables, islands, controls), findings: all }
 }
@@ -131,6 +132,9 @@ function relationFindings(located: LocatedText, subject: Subject): Finding[] {
     field: fieldName(path),
     ...rest,
   })
+  const tooMany = impossible.tooManyIslands!(subject)
+  // The other rules share out the budget island by island, which would take for ever.
+  if (tooMany.length > 0) return tooMany.map((one) => finding('refused', one))
   const refused = Object.values(impossible).flatMap((rule) =>
     rule(subject).map((one) => finding('refused', one)),
   )

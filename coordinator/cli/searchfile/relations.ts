@@ -50,16 +50,21 @@ export function shareOf(group: IslandGroup): number {
   return group.share ?? group.lookahead
 }
 
+const quotasOfFile = new WeakMap<SearchFile, number[]>()
+
 /** Simulations an island of each group gets, by the rule of coordinator/evolution/budget.ts (the smallest of the group). */
 export function quotas(file: SearchFile): number[] {
+  const known = quotasOfFile.get(file)
+  if (known) return known
   const shares = file.islands.flatMap((group) => Array<number>(group.count).fill(shareOf(group)))
   const split = splitBudget(file.budget.simulations, shares)
   let first = 0
-  return file.islands.map((group) => {
-    const own = split.slice(first, first + group.count)
+  const smallest = file.islands.map((group) => {
     first += group.count
-    return own[own.length - 1]!
+    return split[first - 1]!
   })
+  quotasOfFile.set(file, smallest)
+  return smallest
 }
 
 function eachGroup(
