@@ -1,5 +1,5 @@
 // The code of a simulating child process: one item at a time, each answered before the next is asked for. It lives
-// for items that killed threads, and for confirmation by somebody who did not compute the first result.
+// for items that killed threads or whose agent died among others: here it is known who did it.
 //
 // No orphans: when the channel to the parent closes the process ends, and a small watching thread ends it when the
 // parent is gone although the simulation never returns to its event loop.

@@ -41,7 +41,8 @@ export class Child<Order, Message> {
   constructor(entry: string, heapMegabytes: number | undefined, events: ChildEvents<Message>) {
     const forked = fork(emittedFile(entry), [], {
       cwd: this.folder,
-      env: {},
+      // Local times and texts of a plug-in do not depend on where it runs.
+      env: { TZ: 'UTC', LC_ALL: 'C' },
       execArgv: heapMegabytes === undefined ? [] : [`--max-old-space-size=${heapMegabytes}`],
       serialization: 'advanced',
       stdio: ['ignore', 'ignore', 'pipe', 'ipc'],

@@ -53,8 +53,9 @@ export class AgentLane {
 
   /** Takes items; when one must avoid a thread of this agent, a new agent takes over first. */
   submit(items: readonly WorkItem[]): void {
-    const own = `${this.options.host}/${this.agent?.pid}/`
-    if (items.some(({ avoid }) => avoid.some((worker) => worker.startsWith(own)))) this.replace()
+    const own = `${this.options.host}/${this.agent?.pid}`
+    const isOwn = (worker: string) => worker === own || worker.startsWith(`${own}/`)
+    if (items.some(({ avoid }) => avoid.some(isOwn))) this.replace()
     this.waiting.push(...items)
     this.forward()
   }

@@ -145,6 +145,15 @@ test('a confirming process is replaced after its number of items', async () => {
   expect(new Set(pids).size).toBe(3)
 })
 
+test('local times and texts in a plug-in are the same on every machine', async () => {
+  const value = 'new Date(2026, 6, 1).getTimezoneOffset() + (1234.5).toLocaleString().length'
+  const facts = await answers({ pluginFile: await pinned(value) }, [
+    itemOf(1),
+    itemOf(2, { isolation: 'alone' }),
+  ])
+  expect(facts.map((fact) => fact.kind === 'result' && fact.result.values[0])).toEqual([7, 7])
+})
+
 test('a process has no environment of ours and a folder of its own', async () => {
   const before =
     "if (process.cwd().includes('skerry-work-')) { if (process.env.PATH || process.env.HOME) throw new Error('environment') }"

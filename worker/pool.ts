@@ -3,7 +3,7 @@
 //   shared items   threads of an agent process, in batches; the item that kills or hangs a thread is lost
 //   doubtful       items whose agent died, or held too much memory among others: one process, one at a time, so that
 //                  the one that did it is known; the pool's own affair, nobody outside notices
-//   confirm        a process, fresh after 500 items: never whoever computed the first result
+//   confirm        an agent of one thread, fresh after 500 items: never whoever computed the first result
 //   alone          a process, fresh for each item
 //
 // The coordinator's own process never runs a simulation, so nothing a plug-in does can end it.
@@ -13,6 +13,7 @@ import { BrokenPromise, check } from '../shared/check.js'
 import { refuse } from '../shared/refusals.js'
 import type { DispatchFact, Executor, WorkItem } from '../shared/result.js'
 import { AgentLane } from './lane-agent.js'
+import { ConfirmLane } from './lane-confirm.js'
 import { ProcessLane } from './lane-process.js'
 import type { Loss } from './lane-thread.js'
 import { defaultTimeLimit, Pace, type TimeLimit } from './pace.js'
@@ -68,7 +69,7 @@ class MachinePool implements Pool {
   private readonly pace: Pace
   private readonly agent: AgentLane
   private readonly doubtful: ProcessLane
-  private readonly confirming: ProcessLane
+  private readonly confirming: ConfirmLane
   private readonly alone: ProcessLane
   private sharedOutstanding = 0
   private timer: NodeJS.Timeout | undefined
@@ -83,7 +84,7 @@ class MachinePool implements Pool {
     this.pace = new Pace(timeLimit, options.secondsPerCost)
     this.agent = this.agentLane()
     this.doubtful = this.processLane(itemsPerProcess)
-    this.confirming = this.processLane(options.confirmationsPerProcess ?? itemsPerProcess)
+    this.confirming = this.confirmLane(options.confirmationsPerProcess ?? itemsPerProcess)
     this.alone = this.processLane(1)
   }
 
@@ -155,6 +156,19 @@ class MachinePool implements Pool {
     })
   }
 
+  private confirmLane(itemsMost: number): ConfirmLane {
+    return new ConfirmLane(
+      { agent: { ...threadsOptions(this.options), threads: 1 }, itemsMost },
+      {
+        answered: (item, simulated, executor) => this.answered(item, simulated, executor),
+        lost: (loss, executor) => this.events.fact(lostFact(loss, executor)),
+        doubtful: (item) => this.doubtful.add(item),
+        unusable: (reason) => this.unusable(reason),
+        broken: (promise) => this.fail(new BrokenPromise(promise)),
+      },
+    )
+  }
+
   private processLane(itemsMost: number): ProcessLane {
     const { settings, host, megabytes } = threadsOptions(this.options)
     return new ProcessLane(
@@ -175,7 +189,7 @@ class MachinePool implements Pool {
 
   private tick(seconds: number): void {
     const limit = (item: WorkItem) => this.pace.limitSeconds(item)
-    for (const lane of [this.doubtful, this.confirming, this.alone]) lane.tick(seconds, limit)
+    for (const lane of [this.doubtful, this.alone]) lane.tick(seconds, limit)
   }
 
   private unusable(reason: string): void {

@@ -1,0 +1,115 @@
+// Confirmation by somebody else: agents of one thread, in processes that never compute a first result. Each serves a
+// limited number of items, so that what a plug-in may keep between calls does not live long; its successor is started
+// when half of them are done, so that nobody waits for it.
+
+import type { Executor, WorkItem } from '../shared/result.js'
+import { AgentLane, type AgentLaneEvents } from './lane-agent.js'
+import type { ThreadsOptions } from './threads.js'
+
+export interface ConfirmLaneOptions {
+  readonly agent: ThreadsOptions
+  /** Items one process may simulate before a fresh one takes over. */
+  readonly itemsMost: number
+}
+
+export type ConfirmLaneEvents = Omit<AgentLaneEvents, 'ready'>
+
+interface Serving {
+  readonly lane: AgentLane
+  /** Items handed to it so far, and those of them that are not answered. */
+  given: number
+  open: number
+}
+
+export class ConfirmLane {
+  private readonly options: ConfirmLaneOptions
+  private readonly events: ConfirmLaneEvents
+  private readonly waiting: WorkItem[] = []
+  private current: Serving | undefined
+  private successor: Serving | undefined
+  private readonly leaving = new Set<Promise<void>>()
+  private closed = false
+
+  constructor(options: ConfirmLaneOptions, events: ConfirmLaneEvents) {
+    this.options = options
+    this.events = events
+  }
+
+  /** Items waiting or running. */
+  get load(): number {
+    return this.waiting.length + (this.current?.open ?? 0)
+  }
+
+  add(item: WorkItem): void {
+    this.waiting.push(item)
+    // Items that are added together travel together.
+    if (this.waiting.length === 1) queueMicrotask(() => this.serve())
+  }
+
+  async stop(): Promise<void> {
+    this.closed = true
+    this.waiting.length = 0
+    const last = [this.current, this.successor].map((serving) => serving?.lane.stop())
+    await Promise.all([...this.leaving, ...last])
+  }
+
+  private serve(): void {
+    if (this.closed || this.waiting.length === 0) return
+    const { itemsMost } = this.options
+    this.current ??= this.take()
+    const { current } = this
+    const items = this.waiting.splice(0, itemsMost - current.given)
+    if (items.length === 0) return
+    current.given += items.length
+    current.open += items.length
+    current.lane.submit(items)
+    if (current.given * 2 >= itemsMost) this.successor ??= this.open()
+  }
+
+  /** The successor, or a fresh one when there is none. */
+  private take(): Serving {
+    const serving = this.successor ?? this.open()
+    this.successor = undefined
+    return serving
+  }
+
+  private open(): Serving {
+    const { events } = this
+    const settle = () => this.settled(serving)
+    const lane = new AgentLane(this.options.agent, {
+      ready: () => undefined,
+      answered: (item, simulated, executor) => {
+        settle()
+        events.answered(item, simulated, processOf(executor))
+      },
+      lost: (loss, executor) => {
+        settle()
+        events.lost(loss, processOf(executor))
+      },
+      doubtful: (item) => {
+        settle()
+        events.doubtful(item)
+      },
+      unusable: events.unusable,
+      broken: events.broken,
+    })
+    const serving: Serving = { lane, given: 0, open: 0 }
+    lane.start()
+    return serving
+  }
+
+  private settled(serving: Serving): void {
+    serving.open--
+    if (serving.open > 0 || serving.given < this.options.itemsMost || serving !== this.current) return
+    this.current = undefined
+    const gone = serving.lane.stop()
+    this.leaving.add(gone)
+    void gone.then(() => this.leaving.delete(gone))
+    this.serve()
+  }
+}
+
+/** Confirmation is by a process; which of its threads did it is nobody's concern. */
+function processOf({ worker, host }: Executor): Executor {
+  return { kind: 'process', worker: worker.slice(0, worker.lastIndexOf('/')), host }
+}
