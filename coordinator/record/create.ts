@@ -1,7 +1,7 @@
 // Making a record. The database is built under another name and linked to its own only when it is complete and
 // on the disk: a record.db that exists is whole, whatever was killed, and of two makers only one succeeds.
 
-import { closeSync, fsyncSync, linkSync, openSync, readdirSync, rmSync } from 'node:fs'
+import { closeSync, existsSync, fsyncSync, linkSync, openSync, readdirSync, rmSync } from 'node:fs'
 import { basename, dirname, join } from 'node:path'
 import { Refusal } from '../../shared/refusals.js'
 import { emptyChainContents, genesisOf } from './chain.js'
@@ -28,7 +28,8 @@ export function makeDatabase(
     syncPath(dirname(files.database))
     return true
   } catch (error) {
-    if (error instanceof Error && 'code' in error && error.code === 'EEXIST') return false
+    // Whatever went wrong: if it is there now, another maker was faster (and may have cleared our half away).
+    if (existsSync(files.database)) return false
     throw error instanceof Refusal ? error : fileTrouble(error, files.database)
   } finally {
     for (const end of ['', '-wal', '-shm', '-journal']) rmSync(temporary + end, { force: true })

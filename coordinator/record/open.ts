@@ -11,7 +11,7 @@ import { existsSync, mkdirSync, statSync } from 'node:fs'
 import { join } from 'node:path'
 import { check } from '../../shared/check.js'
 import { equalBytes } from '../../shared/digests.js'
-import { refuse } from '../../shared/refusals.js'
+import { Refusal, refuse } from '../../shared/refusals.js'
 import type { Journal } from '../engine/ports.js'
 import { makeDatabase, removeLeftovers } from './create.js'
 import { connect, examineFile } from './database.js'
@@ -77,8 +77,11 @@ export interface OpenRecord extends Pinned {
   readonly notices: readonly string[]
   /** Present when `acceptLoss` was needed: worth an event. */
   readonly loss: Loss | undefined
-  /** A sign of life for coordinators on other machines; every two seconds or so. @throws Refusal like append */
-  beat(): void
+  /**
+   * A sign of life for coordinators on other machines; every two seconds or so. Gives the refusal that kept it from
+   * being written instead of throwing it, because it is called by a timer; the next append meets the same.
+   */
+  beat(): Refusal | undefined
   /** Lets the record go. The journal and the reader are of no use after it. */
   close(): void
 }
@@ -217,12 +220,22 @@ function settle(opening: Opening): OpenRecord {
     epoch: hold.epoch,
     notices,
     loss,
-    beat: () => hold.beat(),
+    beat: () => beatOnce(hold),
     close: () => {
       hold.release()
       witness.close()
       database.close()
     },
+  }
+}
+
+function beatOnce(hold: Hold): Refusal | undefined {
+  try {
+    hold.beat()
+    return undefined
+  } catch (error) {
+    if (error instanceof Refusal) return error
+    throw error
   }
 }
 

@@ -17,6 +17,8 @@ export interface RecordSizeOptions {
   readonly batch: number
   /** Divides `batch`. */
   readonly islands: number
+  /** Where the folder is made; a real disk unless told otherwise. */
+  readonly place?: string
   /** Told now and then how far it is, with the resident memory. */
   readonly progress?: (evaluations: number, residentBytes: number) => void
 }
@@ -41,7 +43,7 @@ export interface RecordSize {
 
 /** Writes a record of made-up results in a temporary folder, reads it back and removes it. */
 export function measureRecord(options: RecordSizeOptions): RecordSize {
-  const { folder, remove } = temporaryFolder(tmpdir())
+  const { folder, remove } = temporaryFolder(options.place ?? tmpdir())
   try {
     const appended = appendAll(openAt(folder), options)
     const bytes = readdirSync(folder).reduce((sum, name) => sum + statSync(join(folder, name)).size, 0)

@@ -234,7 +234,7 @@ export function pinned(changes: Partial<SearchPlan> = {}): Pinned {
 }
 
 /** Memory where there is some: no test pulls the plug, so none needs to wait for a disk. */
-const scratch = existsSync('/dev/shm') ? '/dev/shm' : tmpdir()
+export const scratch = existsSync('/dev/shm') ? '/dev/shm' : tmpdir()
 
 /** A folder for one test, or on the real disk for a benchmark; call the second to remove it. */
 export function temporaryFolder(base = scratch): { readonly folder: string; readonly remove: () => void } {

@@ -2,7 +2,7 @@
 // over ever appends again.
 
 import { type ChildProcess, spawn } from 'node:child_process'
-import { mkdirSync, rmSync } from 'node:fs'
+import { mkdirSync, readdirSync, rmSync } from 'node:fs'
 import { dirname, join } from 'node:path'
 import { fileURLToPath } from 'node:url'
 import { buildSync } from 'esbuild'
@@ -173,6 +173,23 @@ describe('real processes', () => {
     throw new Error('the writer was stopped in the middle of a write 20 times')
   }
 
+  test('of six that make the same record at once, one makes and holds it, the others are told', async () => {
+    for (let round = 1; round <= 2; round++) {
+      const { folder, remove } = temporaryFolder()
+      const all = Array.from({ length: 6 }, () => new Writer(folder, 'create'))
+      for (const one of all)
+        await one.until('decided', () => one.acknowledged > 0 || one.exitCode !== undefined)
+      const holders = all.filter((one) => one.exitCode === undefined)
+      expect(holders.length).toBe(1)
+      for (const one of all) if (one !== holders[0]) expect(one.refused?.code).toBe('record-in-use')
+      await holders[0]!.kill()
+      expect(verifyRecord(folder).intact).toBe(true)
+      openAt(folder).close()
+      expect(readdirSync(folder).filter((name) => name.includes('.new-'))).toEqual([])
+      remove()
+    }
+  })
+
   test('killed at random times: nothing acknowledged is lost, and the chain holds', async () => {
     const { folder, remove } = temporaryFolder()
     openAt(folder).close()
@@ -236,7 +253,7 @@ describe('whether a holder lives', () => {
     const { folder, remove } = temporaryFolder()
     const far = openAt(folder, { holder: other })
     const watch = (during: () => void) => watchHolder(folder, 5, async () => during())
-    expect(await watch(() => far.beat())).toBeUndefined()
+    expect(await watch(() => expect(far.beat()).toBeUndefined())).toBeUndefined()
     let n = 0
     expect(
       await watch(() => far.journal.append(rows({ arrivals: [arrival(1, ++n, good(1))] }))),
@@ -252,7 +269,8 @@ describe('whether a holder lives', () => {
     const again = await watch(() => {})
     const record = openAt(folder, { takeover: again! })
     expect(record.notices.join(' ')).toContain('gave no sign of life')
-    expect(refusalOf(() => far.beat())?.code).toBe('record-fenced')
+    expect(far.beat()?.code).toBe('record-fenced')
+    expect(record.beat()).toBeUndefined()
     record.close()
     expect(await watch(() => {})).toBeUndefined()
     remove()

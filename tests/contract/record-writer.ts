@@ -4,7 +4,7 @@
 import { randomBytes } from 'node:crypto'
 import { mayTryAgain, openRecord, thisProcess } from '../../coordinator/record/index.js'
 import { Refusal } from '../../shared/refusals.js'
-import { arrival, good, rows } from './record-fixture.js'
+import { arrival, good, pinned, rows } from './record-fixture.js'
 
 const [folder, takeover] = process.argv.slice(2)
 
@@ -17,6 +17,7 @@ try {
     holder: thisProcess(),
     nonce: randomBytes(16).toString('hex'),
     clock: () => Date.now(),
+    ...(takeover === 'create' ? { create: pinned() } : {}),
     takeover: takeover === 'force' ? 'force' : 'if-dead',
   })
   say('open', { epoch: record.epoch, notices: record.notices, appends: record.reader.totals().appends })
