@@ -2,19 +2,30 @@
 
 import { isTest, parse, plainString, type Source, type SyntaxNode, walk } from './source.js'
 
-/** Functions that take a kind of event, with the place of that argument. */
+/** Functions that take a kind of event: the place of that argument, or of an object that has it as `kind`. */
 const writers: { readonly [name: string]: number } = {
   note: 0,
   noteData: 0,
   eventRow: 0,
-  order: 1,
   orderAtEpoch: 0,
-  orderAt: 1,
+  atEpoch: 0,
+  order: 1,
+  now: 1,
+  at: 1,
 }
 
 function calledName(callee: SyntaxNode | undefined): string | undefined {
   const named = (callee?.type === 'MemberExpression' ? callee.property : callee) as SyntaxNode | undefined
   return named?.name as string | undefined
+}
+
+/** The argument itself, or the value of its property `kind`. */
+function kindOf(given: SyntaxNode | undefined): SyntaxNode | undefined {
+  if (given?.type !== 'ObjectExpression') return given
+  const row = (given.properties as SyntaxNode[]).find(
+    (one) => (one.key as SyntaxNode | undefined)?.name === 'kind',
+  )
+  return row?.value as SyntaxNode | undefined
 }
 
 /** Constants of the file that hold a plain string, by name. */
@@ -40,7 +51,8 @@ export function eventKinds(sources: readonly Source[]): string[] {
       if (node.type !== 'CallExpression') return undefined
       const place = writers[calledName(node.callee as SyntaxNode) ?? '']
       const given = place === undefined ? undefined : (node.arguments as SyntaxNode[])[place]
-      const kind = plainString(given) ?? known.get(String(given?.name))
+      const named = kindOf(given)
+      const kind = plainString(named) ?? known.get(String(named?.name))
       if (kind !== undefined && /^[a-z]+(-[a-z]+)*$/.test(kind)) kinds.add(kind)
       return undefined
     })

@@ -96,6 +96,7 @@ describe('a problem', () => {
     const printed = renderRefusal(await refusal(folderWith(undefined, text)))
     expect(printed).toContain('Did you mean "ring"?')
     expect(printed).toContain('the text "one"')
+    expect(printed).toMatch(/search\.yaml:6:10 {2}refused: problem/)
   })
   it('whose clock makes it differ between processes is found by check', async () => {
     // The time a module was loaded differs between any two processes; plug-ins are not given a clock, so it is smuggled in.

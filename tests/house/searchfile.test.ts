@@ -200,6 +200,27 @@ describe('several mistakes', () => {
   })
 })
 
+describe('a mistake', () => {
+  it('hides no other one: in the same group, and between fields that are right by themselves', () => {
+    const text = edited('count: 3, method: steady-state,', 'cuont: 3, method: steady-sate,')
+      .replace('seed: 7', 'seed: seven')
+      .replace('most: 16', 'most: 2')
+    const { findings, plan: planned } = plan(text)
+    expect(planned).toBeUndefined()
+    expect(findings.map(({ field }) => field)).toEqual([
+      'seed',
+      'replicates.most',
+      'islands[0].cuont',
+      'islands[0].method',
+    ])
+  })
+  it('is told once: a value of the wrong type needs no word about its size', () => {
+    expect(refused(edited('settings: { tournament: 5 }', 'settings: { tournament: [5] }')).code).toBe(
+      'wrong-type',
+    )
+  })
+})
+
 describe('an impossible value', () => {
   const cases: readonly [string, string, string, string, RegExp][] = [
     ['more emigrants than members', 'emigrants: 2', 'emigrants: 50', 'migration.emigrants', /at most 40/],
