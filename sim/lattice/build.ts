@@ -181,9 +181,9 @@ function layOutGround(ground: GroundSpec | undefined): { heightsM: Float64Array;
 }
 
 function layOutContact(contact: ContactSpec | undefined): Float64Array {
-  if (!contact) return Float64Array.of(0, 0, 0, 1)
-  const { stiffness, damping, exponent, creepMps } = contact
-  return Float64Array.of(stiffness, damping, exponent === 1.5 ? 1 : 0, creepMps * creepMps)
+  if (!contact) return new Float64Array(3)
+  const { stiffness, damping, exponent } = contact
+  return Float64Array.of(stiffness, damping, exponent === 1.5 ? 1 : 0)
 }
 
 function distanceM(spec: LatticeSpec, strut: StrutSpec): number {
@@ -273,12 +273,11 @@ function checkGround(ground: GroundSpec, contact: ContactSpec | undefined): void
   demand(isPositive(spacingM), 'ground.spacingM', spacingM, 'a finite spacing above 0')
   demand(Number.isFinite(firstXM), 'ground.firstXM', firstXM, 'a finite number')
   demand(contact !== undefined, 'contact', 'none', 'a contact law, because there is a ground')
-  const { stiffness, damping, exponent, depthLimitM, creepMps } = contact
+  const { stiffness, damping, exponent, depthLimitM } = contact
   demand(isPositive(stiffness), 'contact.stiffness', stiffness, 'a finite stiffness above 0')
   demand(isAtLeast0(damping), 'contact.damping', damping, 'a finite number >= 0')
   demand(exponent === 1 || exponent === 1.5, 'contact.exponent', exponent, '1 or 1.5')
   demand(isPositive(depthLimitM), 'contact.depthLimitM', depthLimitM, 'a finite depth above 0')
-  demand(isPositive(creepMps), 'contact.creepMps', creepMps, 'a finite speed above 0')
 }
 
 function checkStep(spec: LatticeSpec): void {

@@ -73,8 +73,6 @@ export interface ContactSpec {
   readonly exponent: 1 | 1.5
   /** Deeper than this the simulation has failed; the step size is chosen for contact up to this depth. */
   readonly depthLimitM: number
-  /** Sliding slower than this counts as creep: the speed at which friction is 1/sqrt 2 of its full value. */
-  readonly creepMps: number
 }
 
 export interface LatticeSpec {

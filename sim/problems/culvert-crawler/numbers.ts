@@ -41,8 +41,6 @@ export const numbers = {
   },
   padKg: 0.002,
   frictionMost: 1.3,
-  // Sliding slower than this is creep of the friction model (see sim/lattice/kernel.ts).
-  creepMps: 1e-3,
 
   // Ground contact: a node's weight sinks it by about 0.1 mm; a node that lands at 0.3 m/s comes up with 0.83 of
   // its speed (Hunt and Crossley, y = 0.3), the rest is left to the body's own damping.
@@ -66,7 +64,7 @@ export const numbers = {
   samplesPerFrame: 4,
 
   // Collapse: a bay that keeps less of its area than this, or a strut outside these multiples of its length.
-  bayAreaLeast: 0.35,
+  bayAreaLeast: 0.15,
   strutRatioLeast: 0.6,
   strutRatioMost: 1.5,
 } as const

@@ -49,7 +49,6 @@ export function describeLattice(genome: CrawlerGenome, body: Body, condition: Cu
       damping: numbers.contactNspm2,
       exponent: 1 as const,
       depthLimitM: numbers.depthLimitM,
-      creepMps: numbers.creepMps,
     },
     drive: { startSeconds: numbers.settleSeconds, rampSeconds: numbers.rampSeconds },
     stepSeconds: numbers.stepSecondsMost,
