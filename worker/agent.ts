@@ -6,6 +6,7 @@
 
 import { check } from '../shared/check.js'
 import type { Executor, LossCause, WorkItem } from '../shared/result.js'
+import { leaveWithFolder } from './leave.js'
 import { Threads, type ThreadsOptions } from './threads.js'
 import {
   type BatchMessage,
@@ -48,7 +49,7 @@ let threads: Threads | undefined
 const sequences = new Map<WorkItem, number>()
 const answers = new Map<Executor, Answer[]>()
 
-process.on('disconnect', () => process.exit(0))
+process.on('disconnect', leaveWithFolder)
 process.on('message', (order: AgentOrder) => {
   if ('start' in order) start(order.start)
   else submit(order.items)

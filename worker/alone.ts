@@ -6,6 +6,7 @@
 
 import { Worker } from 'node:worker_threads'
 import { BrokenPromise } from '../shared/check.js'
+import { leaveWithFolder } from './leave.js'
 import { createSimulator, processCpuSeconds, type Simulator } from './simulate.js'
 import {
   type BatchMessage,
@@ -22,7 +23,7 @@ const watchSeconds = 0.5
 let simulator: Simulator | undefined
 
 watchParent()
-process.on('disconnect', () => process.exit(0))
+process.on('disconnect', leaveWithFolder)
 process.on('uncaughtException', (error) => console.error('after a simulation:', error))
 process.on('message', (order: ChildOrder) => {
   if ('settings' in order) void load(order.settings)
@@ -54,7 +55,11 @@ function say(message: SimulatorMessage): void {
 function watchParent(): void {
   const code = `
     const parent = process.ppid
-    setInterval(() => { if (process.ppid !== parent) process.kill(process.pid, 'SIGKILL') }, ${watchSeconds * 1000})
+    setInterval(() => {
+      if (process.ppid === parent) return
+      try { require('node:fs').rmdirSync(process.cwd()) } catch {}
+      process.kill(process.pid, 'SIGKILL')
+    }, ${watchSeconds * 1000})
   `
   new Worker(code, { eval: true, resourceLimits: { maxOldGenerationSizeMb: 16 } }).unref()
 }

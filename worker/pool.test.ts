@@ -1,5 +1,5 @@
 import { spawn } from 'node:child_process'
-import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
+import { existsSync, mkdtempSync, readFileSync, readlinkSync, rmSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { pathToFileURL } from 'node:url'
@@ -186,8 +186,11 @@ test('no orphans: when the parent is killed, a child ends although its simulatio
   const children = readFileSync(pidFile, 'utf8').split(' ').map(Number)
   expect(children.length).toBe(2)
   expect(children.every(isAlive)).toBe(true)
+  const folders = children.map((pid) => readlinkSync(`/proc/${pid}/cwd`))
+  expect(folders.every((path) => existsSync(path))).toBe(true)
   parent.kill('SIGKILL')
   await until(() => !children.some(isAlive), 10)
+  expect(folders.filter((path) => existsSync(path))).toEqual([])
 }, 40_000)
 
 function isAlive(pid: number): boolean {
