@@ -105,9 +105,16 @@ describe('a mistake in the text', () => {
     expect(refused(`${goodFile}<<: { a: 1 }\n`).found).toContain('<<')
   })
   it('survives nesting that is deeper than the stack', () => {
-    const read = readSearchFile('['.repeat(200_000), tables)
-    expect(read.file).toBeUndefined()
-    expect(read.findings.length).toBeGreaterThan(0)
+    for (const text of [
+      '['.repeat(200_000),
+      '- '.repeat(200_000),
+      '[\n'.repeat(900),
+      '{ a: '.repeat(60) + '}'.repeat(60),
+    ]) {
+      const read = readSearchFile(text, tables)
+      expect(read.file).toBeUndefined()
+      expect(read.findings.length).toBeGreaterThan(0)
+    }
   })
   it('refuses a file that is too large, and an empty one', () => {
     expect(refused(`# ${'x'.repeat(2 ** 20)}`).code).toBe('file-too-large')

@@ -3,6 +3,7 @@
 
 import { readFileSync } from 'node:fs'
 import { dirname, resolve } from 'node:path'
+import { check } from '../../../shared/check.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import { Refusal, refuse } from '../../../shared/refusals.js'
 import { problemPlan } from '../../../sim/problem.js'
@@ -30,19 +31,36 @@ export async function openSearch(file: string, tables: SearchTables, nowMs?: num
   const text = readText(file)
   const read = readSearchFile(text, tables)
   const loaded = await loadProblem(file, read)
-  if (loaded instanceof Refusal) throw refusalOf(file, read.findings) ?? loaded
-  const refused = refusalOf(file, read.findings)
-  if (!loaded || !read.file)
-    throw refused ?? refuse('internal', { detail: 'a search file without a problem passed' })
+  const found = loaded instanceof Refusal ? undefined : loaded
   const { plan, findings } = planSearch(
     read,
-    problemPlan(loaded.problem, loaded.bundle.digest),
+    found && problemPlan(found.problem, found.bundle.digest),
     tables,
     nowMs,
   )
-  if (!plan)
-    throw refusalOf(file, findings) ?? refuse('internal', { detail: 'a plan is missing without a reason' })
-  return { file, text, fields: read.file, plan, warnings: findings, ...loaded }
+  const refused = findings.filter(({ severity }) => severity === 'refused')
+  if (loaded instanceof Refusal) {
+    throw refused.length === 0 ? loaded : refusalOf(file, [...refused, findingOf(loaded, read)])!
+  }
+  if (refused.length > 0) throw refusalOf(file, refused)!
+  check(
+    found !== undefined && plan !== undefined && read.file !== undefined,
+    'a search without a plan has a reason',
+  )
+  return { file, text, fields: read.file, plan, warnings: findings, ...found }
+}
+
+/** A problem that could not be loaded, among other mistakes of the file that names it. */
+function findingOf(refusal: Refusal, read: ReadFile): Finding {
+  return {
+    severity: 'refused',
+    code: refusal.code,
+    place: read.located.placeOf(['problem']),
+    field: 'problem',
+    found: refusal.detail,
+    expected: 'a problem that can be loaded',
+    advice: refusal.cure,
+  }
 }
 
 function readText(file: string): string {

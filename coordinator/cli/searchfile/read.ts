@@ -8,16 +8,8 @@ import type { IslandPlan, ProblemPlan, SearchPlan } from '../../evolution/plan.j
 import { explainIssues, unknownName } from './explain.js'
 import { type Finding, isRefused, sortFindings } from './finding.js'
 import { operatorsOf, rowNamed, settingFindings, settingsOf } from './names.js'
-import {
-  type Complaint,
-  impossible,
-  methodOf,
-  poor,
-  populationOf,
-  type Subject,
-  shareOf,
-} from './relations.js'
-import { type Control, fields, type IslandGroup, type SearchFile } from './schema.js'
+import { impossible, methodOf, poor, populationOf, type Rule, type Subject, shareOf } from './relations.js'
+import { type Control, type FieldKey, fields, type IslandGroup, type SearchFile } from './schema.js'
 import type { SearchTables } from './tables.js'
 import { type FieldPath, fieldName, type LocatedText, readText } from './text.js'
 
@@ -36,9 +28,14 @@ export function readSearchFile(text: string, tables: SearchTables): ReadFile {
   if (located.findings.length > 0)
     return { partial: {}, file: undefined, findings: located.findings, located }
   const { partial, findings } = readFields(located)
-  findings.push(...nameFindings(located, partial, tables))
+  findings.push(...unlike(findings, nameFindings(located, tables)))
   const sorted = sortFindings(findings)
   return { partial, file: isRefused(sorted) ? undefined : (partial as SearchFile), findings: sorted, located }
+}
+
+/** Of `more`, those about fields that have no finding yet: what is no number needs no word about its size. */
+function unlike(findings: readonly Finding[], more: readonly Finding[]): Finding[] {
+  return more.filter(({ field }) => !findings.some((finding) => finding.field === field))
 }
 
 function readFields(located: LocatedText): { partial: Partial<SearchFile>; findings: Finding[] } {
@@ -73,19 +70,32 @@ function notAMap(located: LocatedText): Finding {
   }
 }
 
-/** Methods and their settings, by evolution's tables. */
-function nameFindings(located: LocatedText, partial: Partial<SearchFile>, tables: SearchTables): Finding[] {
-  const of = (path: FieldPath, name: string, settings: object) => {
-    const row = rowNamed(located, [...path, 'method'], 'method', name, tables.methods)
-    if ('severity' in row) return [row]
-    return settingFindings(located, [...path, 'settings'], row.settings, { ...settings })
+/** Methods and their settings, by evolution's tables; in the raw text, so that another mistake nearby hides nothing. */
+function nameFindings(located: LocatedText, tables: SearchTables): Finding[] {
+  const root = mapOf(located.value)
+  const control = root.control
+  const controls = Array.isArray(control) ? control : [control]
+  const groups = Array.isArray(root.islands) ? root.islands : []
+  const look = (value: unknown, path: FieldPath, key: 'method' | 'kind'): Finding[] => {
+    const { [key]: name, settings } = mapOf(value)
+    if (typeof name !== 'string') return []
+    const row = rowNamed(located, [...path, key], 'method', name, tables.methods)
+    // A control's kind is a matter of the schema.
+    if ('severity' in row) return key === 'method' ? [row] : []
+    return settingFindings(located, [...path, 'settings'], row.settings, mapOf(settings))
   }
-  const islands = partial.islands ?? []
-  const controls = controlsOf(partial)
   return [
-    ...islands.flatMap((group, index) => of(['islands', index], group.method, group.settings)),
-    ...controls.flatMap(({ control, path }) => of(path, control.kind, control.settings)),
+    ...groups.flatMap((group, index) => look(group, ['islands', index], 'method')),
+    ...controls.flatMap((one, index) =>
+      look(one, Array.isArray(control) ? ['control', index] : ['control'], 'kind'),
+    ),
   ]
+}
+
+/** The fields of a map; none of anything else. */
+function mapOf(value: unknown): { readonly [key: string]: unknown } {
+  const isMap = typeof value === 'object' && value !== null && !Array.isArray(value)
+  return isMap ? (value as { readonly [key: string]: unknown }) : {}
 }
 
 function controlsOf(partial: Partial<SearchFile>): { readonly control: Control; readonly path: FieldPath }[] {
@@ -101,46 +111,63 @@ export interface PlannedSearch {
   readonly findings: readonly Finding[]
 }
 
-/** Step two: the checked plan, with the findings of step one in it. `nowMs` only serves the warning about a date that is past. */
+/**
+ * Step two: the checked plan, with the findings of step one among its own. Without a problem (it could not be loaded), or with a
+ * file that was refused, there is no plan, but what can be said of the rest is said. `nowMs` only serves the warning about a date that is past.
+ */
 export function planSearch(
   read: ReadFile,
-  problem: ProblemPlan,
+  problem: ProblemPlan | undefined,
   tables: SearchTables,
   nowMs?: number,
 ): PlannedSearch {
-  const file = read.file
-  if (!file) return { plan: undefined, findings: read.findings }
+  const { file, located } = read
   const subject: Subject = {
-    file,
+    // Rules are asked only about fields that are there.
+    file: read.partial as SearchFile,
     tables,
-    casesPerReplicate: Math.max(1, problem.cases.length),
-    objectives: problem.objectives.length,
+    casesPerReplicate: Math.max(1, problem?.cases.length ?? 1),
+    objectives: problem?.objectives.length,
     ...(nowMs === undefined ? {} : { nowMs }),
   }
-  const related = relationFindings(read.located, subject)
-  const { islands, controls, findings } = planIslands(read.located, subject, problem.spec)
+  const related = relationFindings(located, subject, soundFields(read))
+  if (!file || !problem) return { plan: undefined, findings: sortFindings([...read.findings, ...related]) }
+  const { islands, controls, findings } = planIslands(located, { ...subject, file }, problem.spec)
   const all = sortFindings([...read.findings, ...findings, ...related])
   if (isRefused(all)) return { plan: undefined, findings: all }
   return { plan: assemble(file, problem, tables, islands, controls), findings: all }
 }
 
-function relationFindings(located: LocatedText, subject: Subject): Finding[] {
-  const finding = (severity: Finding['severity'], { path, ...rest }: Complaint): Finding => ({
-    severity,
-    code: 'impossible-value',
-    place: located.placeOf(path),
-    field: fieldName(path),
-    ...rest,
-  })
-  const tooMany = impossible.tooManyIslands!(subject)
+/** Fields of the top level without a finding. */
+function soundFields(read: ReadFile): Set<FieldKey> {
+  const sound = new Set(Object.keys(read.partial) as FieldKey[])
+  for (const { field, severity } of read.findings) {
+    const root = /^[^.[]*/.exec(field)![0] as FieldKey
+    if (severity === 'refused') sound.delete(root)
+  }
+  return sound
+}
+
+function relationFindings(located: LocatedText, subject: Subject, sound: ReadonlySet<FieldKey>): Finding[] {
+  const ask = (rules: readonly Rule[], severity: Finding['severity']) =>
+    rules
+      .filter(({ needs }) => needs.every((field) => sound.has(field)))
+      .flatMap(({ look }) => look(subject))
+      .map(({ path, ...rest }): Finding => {
+        return {
+          severity,
+          code: 'impossible-value',
+          place: located.placeOf(path),
+          field: fieldName(path),
+          ...rest,
+        }
+      })
   // The other rules share out the budget island by island, which would take for ever.
-  if (tooMany.length > 0) return tooMany.map((one) => finding('refused', one))
-  const refused = Object.values(impossible).flatMap((rule) =>
-    rule(subject).map((one) => finding('refused', one)),
-  )
+  const tooMany = ask([impossible.tooManyIslands!], 'refused')
+  if (tooMany.length > 0) return tooMany
+  const refused = ask(Object.values(impossible), 'refused')
   // What is impossible makes the advice of the other table misleading.
-  if (refused.length > 0) return refused
-  return Object.values(poor).flatMap((rule) => rule(subject).map((one) => finding('warning', one)))
+  return refused.length > 0 ? refused : ask(Object.values(poor), 'warning')
 }
 
 function planIslands(located: LocatedText, subject: Subject, spec: GenomeSpec) {

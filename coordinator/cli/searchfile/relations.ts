@@ -1,14 +1,15 @@
 // What the fields of a search file mean to each other. Rows of two tables: `impossible` are refused with the
 // reason, `poor` are warnings: the search runs, but not as anybody would want.
 //
-// A row looks at a file in which every field by itself is right, and says what it finds.
+// A row looks at fields that are right by themselves, and says what it finds; what is wrong elsewhere in the file does not
+// hide it.
 
 import { limits } from '../../../shared/limits.js'
 import { splitBudget } from '../../evolution/budget.js'
 import { topologies } from '../../evolution/migration.js'
 import { defaultSettings } from '../../evolution/settings.js'
 import type { Finding } from './finding.js'
-import type { IslandGroup, SearchFile } from './schema.js'
+import type { FieldKey, IslandGroup, SearchFile } from './schema.js'
 import type { MethodRow, SearchTables } from './tables.js'
 import type { FieldPath } from './text.js'
 
@@ -27,7 +28,17 @@ export type Complaint = Pick<Finding, 'found' | 'expected'> & {
   readonly path: FieldPath
   readonly advice?: string
 }
-type Rule = (subject: Subject) => Complaint[]
+type Look = (subject: Subject) => Complaint[]
+
+export interface Rule {
+  /** Fields it reads: it is asked only when they are right by themselves. */
+  readonly needs: readonly FieldKey[]
+  readonly look: Look
+}
+
+function rule(needs: readonly FieldKey[], look: Look): Rule {
+  return { needs, look }
+}
 
 export function methodOf(tables: SearchTables, name: string): MethodRow | undefined {
   return tables.methods.find((method) => method.name === name)
@@ -69,9 +80,9 @@ export function quotas(file: SearchFile): number[] {
 
 function eachGroup(
   subject: Subject,
-  rule: (group: IslandGroup, path: FieldPath) => Complaint | undefined,
+  look: (group: IslandGroup, path: FieldPath) => Complaint | undefined,
 ): Complaint[] {
-  return subject.file.islands.flatMap((group, index) => rule(group, ['islands', index]) ?? [])
+  return subject.file.islands.flatMap((group, index) => look(group, ['islands', index]) ?? [])
 }
 
 /** Settings of methods that count members: none may be larger than the population. */
@@ -82,15 +93,15 @@ const memberCounts: { readonly [setting: string]: string } = {
 }
 
 export const impossible: { readonly [rule: string]: Rule } = {
-  tooManyIslands: ({ file }) => {
+  tooManyIslands: rule(['islands'], ({ file }) => {
     const count = islandCount(file)
     if (count <= limits.islandsMost) return []
     return [
       { path: ['islands'], found: `${count} islands in all`, expected: `at most ${limits.islandsMost}` },
     ]
-  },
+  }),
 
-  settingAbovePopulation: (subject) =>
+  settingAbovePopulation: rule(['islands'], (subject) =>
     eachGroup(subject, (group, path) => {
       const population = populationOf(subject.tables, group)
       const defaults = defaultSettings(methodOf(subject.tables, group.method)?.settings ?? {})
@@ -104,8 +115,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         expected: `at most ${population}, because ${memberCounts[name]}`,
       }
     }),
+  ),
 
-  oneObjectiveMethod: (subject) =>
+  oneObjectiveMethod: rule(['islands'], (subject) =>
     eachGroup(subject, (group, path) => {
       const method = methodOf(subject.tables, group.method)
       if (method?.objectives !== 'one' || subject.objectives === undefined || subject.objectives < 2)
@@ -117,8 +129,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         expected: `a method for several objectives: ${others.join(', ')}`,
       }
     }),
+  ),
 
-  shareOnSomeGroups: ({ file }) => {
+  shareOnSomeGroups: rule(['islands'], ({ file }) => {
     const without = file.islands.findIndex((group) => group.share === undefined)
     if (without < 0 || file.islands.every((group) => group.share === undefined)) return []
     return [
@@ -129,9 +142,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         advice: 'Where no group has one, the budget is split in proportion to lookahead.',
       },
     ]
-  },
+  }),
 
-  emigrantsAbovePopulation: ({ file, tables }) => {
+  emigrantsAbovePopulation: rule(['islands', 'migration'], ({ file, tables }) => {
     const migration = file.migration
     if (migration === undefined || migration === 'none') return []
     const smallest = Math.min(...file.islands.map((group) => populationOf(tables, group)))
@@ -144,9 +157,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         advice: 'One to three emigrants are usual; many make all islands alike.',
       },
     ]
-  },
+  }),
 
-  topologyMisfit: ({ file }) => {
+  topologyMisfit: rule(['islands', 'migration'], ({ file }) => {
     const migration = file.migration
     if (migration === undefined || migration === 'none') return []
     const count = islandCount(file)
@@ -160,9 +173,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         advice: 'Change the number of islands (count), or use ring, two-way-ring, complete or random.',
       },
     ]
-  },
+  }),
 
-  replicateBlocks: ({ file }) => {
+  replicateBlocks: rule(['replicates'], ({ file }) => {
     const { first, topUp, most } = file.replicates
     if (most === undefined) return []
     if (most < first) {
@@ -182,9 +195,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         expected: `at most ${most - first}`,
       },
     ]
-  },
+  }),
 
-  blockTooLarge: ({ file, casesPerReplicate }) => {
+  blockTooLarge: rule(['replicates'], ({ file, casesPerReplicate }) => {
     const largest = Math.max(file.replicates.first, file.replicates.topUp)
     const rows = largest * casesPerReplicate
     if (rows <= limits.simulationsPerEvaluation) return []
@@ -195,9 +208,9 @@ export const impossible: { readonly [rule: string]: Rule } = {
         expected: `at most ${limits.simulationsPerEvaluation}`,
       },
     ]
-  },
+  }),
 
-  quotaBelowOneEvaluation: ({ file, casesPerReplicate }) => {
+  quotaBelowOneEvaluation: rule(['islands', 'budget', 'replicates'], ({ file, casesPerReplicate }) => {
     const block = file.replicates.first * casesPerReplicate
     const group = quotas(file).findIndex((quota) => quota < block)
     if (group < 0) return []
@@ -208,11 +221,11 @@ export const impossible: { readonly [rule: string]: Rule } = {
         expected: `at least ${block} for every island: one evaluation of ${file.replicates.first} replicates`,
       },
     ]
-  },
+  }),
 }
 
 export const poor: { readonly [rule: string]: Rule } = {
-  lookaheadAbovePopulation: (subject) =>
+  lookaheadAbovePopulation: rule(['islands'], (subject) =>
     eachGroup(subject, (group, path) => {
       const population = populationOf(subject.tables, group)
       if (group.lookahead <= population) return undefined
@@ -223,8 +236,9 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: `Children are bred from a population that is ${group.lookahead - 1} results old: enlarge the population or use more islands.`,
       }
     }),
+  ),
 
-  lookaheadBelowWorkers: ({ file }) => {
+  lookaheadBelowWorkers: rule(['islands', 'workersExpected'], ({ file }) => {
     if (file.workersExpected === undefined) return []
     const total = file.islands.reduce((sum, group) => sum + group.count * group.lookahead, 0)
     if (total >= file.workersExpected) return []
@@ -236,9 +250,9 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: `At least ${file.workersExpected - total} workers would always be idle.`,
       },
     ]
-  },
+  }),
 
-  quotaBelowOneGeneration: (subject) => {
+  quotaBelowOneGeneration: rule(['islands', 'budget', 'replicates'], (subject) => {
     const { file, tables, casesPerReplicate } = subject
     const split = quotas(file)
     return subject.file.islands.flatMap((group, index) => {
@@ -254,29 +268,33 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: 'Enlarge the budget, or use a smaller population or fewer islands.',
       }
     })
-  },
+  }),
 
-  migrationNeverHappens: ({ file, casesPerReplicate }) => {
-    const migration = file.migration
-    if (migration === undefined || migration === 'none' || islandCount(file) < 2) return []
-    const rounds = quotas(file).map(
-      (quota, index) => quota / (file.replicates.first * casesPerReplicate * file.islands[index]!.lookahead),
-    )
-    const fewest = Math.min(...rounds)
-    const needed = migration.every * (migration.lag + 1)
-    if (fewest >= needed) return []
-    return [
-      {
-        path: ['migration', 'every'],
-        found: `every ${migration.every} rounds with lag ${migration.lag}, but an island lasts about ${Math.floor(fewest)} rounds`,
-        expected: `${needed} rounds or more, so that somebody arrives`,
-        advice:
-          "A round is one evaluation for each of an island's L slots: use a shorter interval or a larger budget.",
-      },
-    ]
-  },
+  migrationNeverHappens: rule(
+    ['islands', 'budget', 'replicates', 'migration'],
+    ({ file, casesPerReplicate }) => {
+      const migration = file.migration
+      if (migration === undefined || migration === 'none' || islandCount(file) < 2) return []
+      const rounds = quotas(file).map(
+        (quota, index) =>
+          quota / (file.replicates.first * casesPerReplicate * file.islands[index]!.lookahead),
+      )
+      const fewest = Math.min(...rounds)
+      const needed = migration.every * (migration.lag + 1)
+      if (fewest >= needed) return []
+      return [
+        {
+          path: ['migration', 'every'],
+          found: `every ${migration.every} rounds with lag ${migration.lag}, but an island lasts about ${Math.floor(fewest)} rounds`,
+          expected: `${needed} rounds or more, so that somebody arrives`,
+          advice:
+            "A round is one evaluation for each of an island's L slots: use a shorter interval or a larger budget.",
+        },
+      ]
+    },
+  ),
 
-  migrationOfOne: ({ file }) => {
+  migrationOfOne: rule(['islands', 'migration'], ({ file }) => {
     if (file.migration === undefined || file.migration === 'none' || islandCount(file) > 1) return []
     return [
       {
@@ -286,9 +304,9 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: 'The field has no effect.',
       },
     ]
-  },
+  }),
 
-  migrationUnsaid: ({ file }) => {
+  migrationUnsaid: rule(['islands', 'migration'], ({ file }) => {
     if (file.migration !== undefined || islandCount(file) < 2) return []
     return [
       {
@@ -298,9 +316,9 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: 'Without the field the islands never exchange anybody.',
       },
     ]
-  },
+  }),
 
-  unevenTopUps: ({ file }) => {
+  unevenTopUps: rule(['replicates'], ({ file }) => {
     const { first, topUp, most } = file.replicates
     if (most === undefined || most <= first) return []
     if (topUp > 0 && (most - first) % topUp === 0) return []
@@ -317,9 +335,9 @@ export const poor: { readonly [rule: string]: Rule } = {
             : 'The last block is smaller than the others.',
       },
     ]
-  },
+  }),
 
-  arrivalOrder: (subject) =>
+  arrivalOrder: rule(['islands'], (subject) =>
     eachGroup(subject, (group, path) => {
       if (group.order !== 'arrival') return undefined
       return {
@@ -329,8 +347,9 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: 'This search can be re-derived from its journal, but not repeated from this file alone.',
       }
     }),
+  ),
 
-  untilPast: ({ file, nowMs }) => {
+  untilPast: rule(['budget'], ({ file, nowMs }) => {
     const until = file.budget.until
     if (until === undefined || nowMs === undefined || Date.parse(until) > nowMs) return []
     return [
@@ -341,5 +360,5 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: 'The search would end at its first epoch.',
       },
     ]
-  },
+  }),
 }

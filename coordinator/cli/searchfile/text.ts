@@ -33,6 +33,7 @@ export function fieldName(path: FieldPath): string {
 /** Reads the text; a nesting beyond the parser's recursion ends as a finding too. See parseText. */
 export function readText(text: string): LocatedText {
   if (text.length > limits.searchFileBytes) return tooLong(text.length)
+  if (isNestedBeyondReason(text)) return tooDeep()
   try {
     const located = parseText(text)
     return deeperThan(located.value, limits.searchFileDepth) ? tooDeep() : located
@@ -73,6 +74,19 @@ function parseText(text: string): LocatedText {
       return offsetPlace(key ?? node)
     },
   }
+}
+
+/**
+ * A thousand brackets open at once, or a thousand dashes in a row: no search file, and the parser would take seconds.
+ * Brackets in texts and comments count too, which is why the bound is so far off.
+ */
+function isNestedBeyondReason(text: string): boolean {
+  let open = 0
+  for (const [bracket] of text.matchAll(/[[\]{}]/g)) {
+    open = bracket === '[' || bracket === '{' ? open + 1 : Math.max(0, open - 1)
+    if (open > 1000) return true
+  }
+  return /(?:[-?:] ){1000}/.test(text)
 }
 
 /** Whether some value lies more than `levels` levels deep. */
