@@ -84,9 +84,15 @@ export interface Trial {
   readonly tally: Tally
 }
 
-/** The settled body, ready to start; or why it could not settle. */
-export function startTrial(genome: CrawlerGenome, body: Body, condition: CulvertCondition): Trial | Fault {
-  const lattice = buildLattice(describeLattice(genome, body, condition))
+/** The settled body, ready to start; or why it could not settle. `divide` makes the step smaller, for checks. */
+export function startTrial(
+  genome: CrawlerGenome,
+  body: Body,
+  condition: CulvertCondition,
+  divide = 1,
+): Trial | Fault {
+  const spec = describeLattice(genome, body, condition)
+  const lattice = buildLattice({ ...spec, stepSeconds: spec.stepSeconds / divide })
   const stepsPerSample = Math.round(frameSeconds / numbers.samplesPerFrame / lattice.stepSeconds)
   const fault = advance(lattice, lattice.driveStartStep) ?? collapse(lattice, body)
   if (fault) return fault

@@ -1,0 +1,239 @@
+// Promises of the culvert crawler: buildable, honest, repeatable. How well it can be evolved is a matter of the bench.
+
+import { describe, expect, test } from 'vitest'
+import { conditionStream } from '../../../shared/conditions.js'
+import { checkGenome, genomesEqual, randomGenome } from '../../../shared/encodings.js'
+import { stream } from '../../../shared/streams.js'
+import { stride } from '../../lattice/kernel.js'
+import { contactJ, elasticJ, gravitationalJ, kineticJ } from '../../lattice/observe.js'
+import { stepBound, stepSafety } from '../../lattice/stability.js'
+import { buildBody } from './body.js'
+import { culvertGround, drawCulvert, steepestGround } from './floor.js'
+import { actuator, type CrawlerGenome, feet, none } from './genome.js'
+import problem from './index.js'
+import { numbers } from './numbers.js'
+import { advanceFrame, describeLattice, framesPerTrial, startTrial } from './trial.js'
+
+function founder(number: number): CrawlerGenome {
+  return problem.repair(
+    randomGenome(problem.genome, stream(20_261_201, 'founder', 1, number)) as CrawlerGenome,
+  )
+}
+const condition = (replicate: number) => drawCulvert(conditionStream(20_261_201, true, 1, replicate))
+const situation = (replicate: number) => ({ condition: condition(replicate), case: '' })
+
+/** Three bays, all soft, one chain of actuators below, pads that let go forwards. */
+function inchworm(amplitude: number): CrawlerGenome {
+  const genome = founder(1)
+  const struts = new Int32Array(genome.struts.length)
+  for (let column = 0; column < 9; column++) {
+    struts[5 * column + 1] = actuator
+    struts[5 * column + 3] = 1
+  }
+  return {
+    ...genome,
+    bays: Int32Array.of(3),
+    bayLength: genome.bayLength.map(() => 0.06),
+    height: genome.height.map(() => 0.05),
+    struts,
+    group: new Int32Array(struts.length),
+    foot: genome.foot.map(() => feet.indexOf('pad')),
+    amplitude: genome.amplitude.map(() => amplitude),
+    frequency: Float64Array.of(1),
+  }
+}
+
+function distanceOf(genome: CrawlerGenome, replicate: number): number {
+  const outcome = problem.simulate(genome, [situation(replicate)])[0]!
+  return 'failed' in outcome ? Number.NaN : outcome.objectives.distance!
+}
+
+describe('the genome', () => {
+  test('repair leaves a genome that fits, is idempotent and keeps every bay braced', () => {
+    for (let i = 0; i < 50; i++) {
+      const genome = founder(i)
+      expect(checkGenome(problem.genome, genome)).toBeUndefined()
+      expect(genomesEqual(problem.genome, problem.repair(genome), genome)).toBe(true)
+      for (let slot = 0; slot < genome.struts.length; slot += 5) {
+        expect(Array.from(genome.struts.subarray(slot, slot + 3))).not.toContain(none)
+        expect(Math.min(genome.struts[slot + 3]!, genome.struts[slot + 4]!)).toBeLessThan(none)
+      }
+    }
+  })
+
+  test('masses add up, and the rate of strain is limited', () => {
+    for (let i = 0; i < 20; i++) {
+      const body = buildBody(founder(i))
+      const sum = body.nodeMassesKg.reduce((a, b) => a + b, 0)
+      expect(sum).toBeCloseTo(body.massKg, 12)
+      expect(body.massKg).toBeCloseTo(body.materialKg + numbers.puckKg, 12)
+      for (const strain of body.strains) {
+        expect(2 * Math.PI * body.frequencyHz * strain).toBeLessThanOrEqual(
+          numbers.strainRateMost * (1 + 1e-12),
+        )
+        expect(strain).toBeLessThanOrEqual(numbers.strainMost)
+      }
+    }
+  })
+})
+
+describe('the floor', () => {
+  test('no debris is steeper than what the step is chosen for', () => {
+    const slope = steepestGround.heightsM[1]! / steepestGround.spacingM
+    for (let j = 0; j < 50; j++) {
+      const { heightsM, spacingM } = culvertGround(condition(j).debris)
+      for (let i = 1; i < heightsM.length; i++) {
+        expect(Math.abs(heightsM[i]! - heightsM[i - 1]!) / spacingM).toBeLessThanOrEqual(slope)
+      }
+    }
+  })
+
+  test('the body stands on smooth floor at first', () => {
+    const { heightsM, spacingM, firstXM } = culvertGround(condition(3).debris)
+    for (let i = 0; firstXM + i * spacingM <= 0; i++) expect(heightsM[i]).toBe(0)
+  })
+})
+
+describe('a trial', () => {
+  test('every body gets a safe step', () => {
+    for (let i = 0; i < 30; i++) {
+      const genome = founder(i)
+      const spec = describeLattice(genome, buildBody(genome), condition(i))
+      const { limitSeconds } = stepBound({ ...spec, ground: steepestGround })
+      expect(spec.stepSeconds).toBeLessThanOrEqual(stepSafety * limitSeconds * (1 + 1e-9))
+    }
+  })
+
+  test('a body without stroke stays where it settled and only loses energy', () => {
+    const genome = inchworm(0)
+    const trial = startTrial(genome, buildBody(genome), condition(0))
+    if ('reason' in trial) throw new Error(trial.reason)
+    const { lattice } = trial
+    const energy = () => kineticJ(lattice) + elasticJ(lattice) + gravitationalJ(lattice) + contactJ(lattice)
+    let last = energy()
+    const first = lattice.nodes.slice()
+    for (let frame = 0; frame < framesPerTrial; frame++) {
+      expect(advanceFrame(trial)).toBeUndefined()
+      // 1e-6 J lifts the puck by 2 micrometres: the ripple of the scheme.
+      expect(energy()).toBeLessThan(last + 1e-6)
+      last = energy()
+    }
+    for (let i = 0; i < lattice.nodeCount; i++) {
+      expect(Math.abs(lattice.nodes[i * stride]! - first[i * stride]!)).toBeLessThan(1e-3)
+    }
+  })
+
+  test('it has settled when it starts', () => {
+    for (let i = 0; i < 20; i++) {
+      const genome = founder(i)
+      const trial = startTrial(genome, buildBody(genome), condition(i))
+      if ('reason' in trial) continue
+      // As much as the whole body at 2 cm/s.
+      expect(kineticJ(trial.lattice)).toBeLessThan(0.5 * trial.body.massKg * 0.02 * 0.02)
+    }
+  })
+
+  test('pads decide the way: an inchworm goes forwards, and backwards on reversed pads', () => {
+    const genome = inchworm(0.15)
+    const reversed = { ...genome, foot: genome.foot.map(() => feet.indexOf('pad-reversed')) }
+    // Smooth floor, so that only the pads differ.
+    const smooth = { condition: { floorFriction: 0.6, lagSeconds: 0.03, debris: [] }, case: '' }
+    const way = (g: CrawlerGenome) => {
+      const outcome = problem.simulate(g, [smooth])[0]!
+      return 'failed' in outcome ? Number.NaN : outcome.objectives.distance!
+    }
+    expect(way(genome)).toBeGreaterThan(0.02)
+    expect(way(reversed)).toBeLessThan(-0.02)
+  })
+
+  test('half the step gives the same distance within 2 %', () => {
+    const genome = inchworm(0.15)
+    const body = buildBody(genome)
+    const run = (divide: number) => {
+      const trial = startTrial(genome, body, condition(2), divide)
+      if ('reason' in trial) throw new Error(trial.reason)
+      for (let frame = 0; frame < framesPerTrial; frame++) advanceFrame(trial)
+      return trial.lattice.nodes[body.puckNode * stride]! - trial.startXM
+    }
+    const whole = run(1)
+    expect(whole).toBeGreaterThan(0.02)
+    expect(Math.abs(run(2) / whole - 1)).toBeLessThan(0.02)
+  })
+
+  test('the same twice, to the bit, whatever was simulated between', () => {
+    const genome = founder(4)
+    const once = problem.simulate(genome, [situation(0), situation(1)])
+    problem.simulate(founder(5), [situation(1)])
+    expect(problem.simulate(genome, [situation(1), situation(0)])).toEqual([once[1], once[0]])
+  })
+
+  test('a broken body fails with a reason and a time', () => {
+    // Nothing but actuators at full stroke, posts against chords: bays fold.
+    const genome = founder(1)
+    const outcome = problem.simulate(
+      {
+        ...genome,
+        bays: Int32Array.of(8),
+        struts: genome.struts.map(() => actuator),
+        group: genome.group.map((_, slot) => (slot + Math.floor(slot / 5)) % 4),
+        amplitude: genome.amplitude.map(() => numbers.strainMost),
+        phase: Float64Array.of(0, 0.5, 0.25, 0.75),
+        frequency: Float64Array.of(0.7),
+      },
+      [situation(0)],
+    )[0]!
+    expect(outcome).toMatchObject({ failed: expect.stringMatching(/^\w.* at \d\.\d\d s$/) })
+  })
+
+  test('random bodies hardly move', () => {
+    const distances = Array.from({ length: 40 }, (_, i) => Math.abs(distanceOf(founder(i), 0))).sort(
+      (a, b) => a - b,
+    )
+    expect(distances[20]).toBeLessThan(0.03)
+  })
+})
+
+describe('what is told of a machine', () => {
+  test('frames run from the settled body to the end, 25 a second, and end where the distance says', () => {
+    const genome = inchworm(0.15)
+    const frames = problem.frames!(genome, situation(2))
+    expect(frames.positions).toHaveLength(framesPerTrial + 1)
+    expect(frames.secondsPerFrame).toBe(0.04)
+    const puck = 2 * frames.markers[0]!.node
+    const travelled = frames.positions.at(-1)![puck]! - frames.positions[0]![puck]!
+    expect(travelled).toBeCloseTo(distanceOf(genome, 2), 12)
+    expect(frames.drive).toHaveLength(3)
+    for (const { values } of frames.drive) {
+      expect(values).toHaveLength(framesPerTrial + 1)
+      expect(values.every((value) => Math.abs(value) <= 1)).toBe(true)
+    }
+  })
+
+  test('every part is described with units', () => {
+    const genome = inchworm(0.15)
+    const lines = problem.describe!(genome)
+    const body = buildBody(genome)
+    expect(lines.filter((line) => /lower|upper \d/.test(line) && /N\/m/.test(line))).toHaveLength(
+      body.members.length,
+    )
+    expect(lines.join('\n')).toMatch(/Group 1: length \+-15\.0 %/)
+  })
+
+  test('cautions carry the numbers of this machine, and air only where there is some', () => {
+    const withAir = problem.cautions!(inchworm(0.15))
+    expect(withAir.find((row) => row.hazard === 'Compressed air')?.because).toMatch(
+      /3 bellows work at up to 50 kPa/,
+    )
+    for (const row of withAir) expect(row.consult.length).toBeGreaterThan(20)
+    const passive = { ...inchworm(0), struts: new Int32Array(45) }
+    expect(problem.cautions!(passive).map((row) => row.hazard)).not.toContain('Compressed air')
+    expect(problem.cautions!(passive).map((row) => row.hazard)).toContain('Confined space')
+  })
+
+  test('expected costs follow the work', () => {
+    const small = problem.expectedCost(inchworm(0.1))
+    const large = problem.expectedCost({ ...inchworm(0.1), bays: Int32Array.of(8) })
+    expect(small).toBeGreaterThanOrEqual(1)
+    expect(large).toBeGreaterThan(1.8 * small)
+  })
+})
