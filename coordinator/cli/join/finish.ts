@@ -13,14 +13,13 @@ import { limits } from '../../../shared/limits.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import type { EvaluationResult } from '../../../shared/result.js'
 import type { Dispatcher } from '../../engine/ports.js'
-import { bestSvg } from '../../evidence/pictures/best-svg.js'
+import { drawPictures } from '../../evidence/pictures/draw.js'
 import {
   alwaysCaution,
   cautionText,
   type PictureFacts,
   resultSentence,
 } from '../../evidence/pictures/facts.js'
-import { replayHtml } from '../../evidence/pictures/replay.js'
 import { estimateOf, replicateValues } from '../../evolution/estimate.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Search } from '../../evolution/search.js'
@@ -82,14 +81,17 @@ export function writeFinish(
   const facts = factsOf(search, problem, best, retested)
   const summary = summaryOf(search, best, facts, retested)
   const files = [write(folder, 'summary.txt', 'this summary', `${summary.join('\n')}\n`)]
-  if (problem.frames) {
+  const { frames } = problem
+  if (frames) {
     const condition = problem.drawCondition(
       conditionStream(plan.seed, plan.replicates.shared, best.id, firstFreshReplicate),
     )
-    const frames = problem.frames(best.genome as never, { condition, case: plan.problem.cases[0] ?? '' })
+    const situation = { condition, case: plan.problem.cases[0] ?? '' }
+    const drawn = drawPictures(() => frames(best.genome as never, situation), facts)
+    if ('fault' in drawn) return { summary: [...summary, drawn.fault], files }
     files.unshift(
-      write(folder, 'best.svg', 'picture of the best machine', bestSvg(frames, facts)),
-      write(folder, 'replay.html', 'replay, opens in a browser', replayHtml(frames, facts)),
+      write(folder, 'best.svg', 'picture of the best machine', drawn.svg),
+      write(folder, 'replay.html', 'replay, opens in a browser', drawn.html),
     )
   }
   return { summary, files }

@@ -26,7 +26,7 @@ export function nearestName(word: string, names: readonly string[]): string | un
   const plain = (name: string) => name.toLowerCase().replace(/[-_ ]/g, '')
   const wanted = plain(word).slice(0, 80)
   let best: string | undefined
-  let fewest = Math.max(1, Math.floor(wanted.length / 3)) + 1
+  let fewest = Math.max(1, Math.round(0.4 * wanted.length)) + 1
   for (const name of names) {
     const edits = editDistance(wanted, plain(name))
     if (edits < fewest) {

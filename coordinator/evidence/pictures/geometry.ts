@@ -15,7 +15,10 @@ export interface Kind {
   readonly isActive: boolean
 }
 
-/** Refuses frames that cannot be drawn; they come from a plug-in. Undefined when all is well. */
+/** Numbers in all frames together: a replay of 20 MB. */
+const numbersMost = 5_000_000
+
+/** What is wrong with frames, which come from a plug-in; undefined when they can be drawn. */
 export function framesFault(frames: Frames): string | undefined {
   const { dimensions, positions, links, markers, drive, ground, nodeRadiiM } = frames
   if (dimensions !== 2 && dimensions !== 3) return `${dimensions} dimensions; expected 2 or 3`
@@ -30,6 +33,8 @@ export function framesFault(frames: Frames): string | undefined {
       return `frame ${index} has ${frame.length} numbers, the first ${first.length}`
     if (!frame.every(Number.isFinite)) return `frame ${index} has a number that is not finite`
   }
+  if (positions.length * first.length > numbersMost)
+    return `more than ${numbersMost} numbers: give fewer frames a second`
   const isNode = (node: number) => Number.isInteger(node) && node >= 0 && node < nodes
   if (!links.every(({ a, b }) => isNode(a) && isNode(b))) return 'a link names a node that is not there'
   if (!markers.every(({ node, radiusM }) => isNode(node) && Number.isFinite(radiusM)))

@@ -4,6 +4,7 @@ import { createContext, runInContext } from 'node:vm'
 import { describe, expect, it } from 'vitest'
 import type { Frames } from '../../../shared/problem.js'
 import { bestSvg, clipped } from './best-svg.js'
+import { drawPictures } from './draw.js'
 import { alwaysCaution, escaped, type PictureFacts, resultSentence } from './facts.js'
 import { extentOf, framesFault, kindsOf, lengthText, momentsOf, roundStep } from './geometry.js'
 import { packed, replayHtml } from './replay.js'
@@ -147,6 +148,30 @@ describe('the picture', () => {
     expect(framesFault(bare)).toBeUndefined()
     for (const text of [bestSvg(bare, facts), replayHtml(bare, facts)])
       expect(text).not.toMatch(/NaN|Infinity|undefined/)
+  })
+})
+
+describe('frames of a plug-in', () => {
+  it('are drawn when they are sound', () => {
+    expect(drawPictures(() => frames, facts)).toHaveProperty('svg')
+  })
+  it('that throw, are nothing or are wrong end in a sentence, never in a crash', () => {
+    const wrong: [() => unknown, RegExp][] = [
+      [() => undefined, /cannot be drawn/],
+      [() => ({}), /cannot be drawn/],
+      [() => ({ ...frames, positions: 3 }), /cannot be drawn/],
+      [() => ({ ...frames, nodeRadiiM: [] }), /0 node radii for 4 nodes/],
+      [
+        () => {
+          throw new Error('no \u001b[31mframes')
+        },
+        /cannot be drawn: no {2}\[31mframes\.$/,
+      ],
+    ]
+    for (const [make, expected] of wrong) {
+      const drawn = drawPictures(make as () => Frames, facts)
+      expect('fault' in drawn && drawn.fault).toMatch(expected)
+    }
   })
 })
 
