@@ -96,6 +96,20 @@ describe('Hunt-Crossley contact', () => {
     expect(Math.abs((at(lattice, 0, y) * 1e4) / -g - 1)).toBeLessThan(1e-9)
   })
 
+  test('what sinks deeper than the contact allows ends the simulation with the depth', () => {
+    const lattice = buildLattice({
+      nodes: [{ positionM: [0, 0], massKg: 1 }],
+      struts: [],
+      gravityMps2: [0, -g],
+      ground: { firstXM: -1, spacingM: 1, heightsM: [0, 0, 0] },
+      contact: { ...firm, stiffness: 100, damping: 10 },
+      stepSeconds: 1e-4,
+    })
+    const fault = advance(lattice, 10_000)
+    expect(fault?.reason).toMatch(/node 0 sank 1\d\.\d mm into the ground/)
+    expect(fault?.seconds).toBeLessThan(0.1)
+  })
+
   test('a bouncing and sliding mass never gains energy, over kinks of the ground included', () => {
     // No source: the elastic part of the force is the gradient of a continuous potential (sim/lattice/kernel.ts).
     const lattice = buildLattice({

@@ -168,21 +168,21 @@ describe('a trial', () => {
   })
 
   test('a broken body fails with a reason and a time', () => {
-    // Nothing but actuators at full stroke, posts against chords: bays fold.
-    const genome = founder(1)
-    const outcome = problem.simulate(
-      {
-        ...genome,
-        bays: Int32Array.of(8),
-        struts: genome.struts.map(() => actuator),
-        group: genome.group.map((_, slot) => (slot + Math.floor(slot / 5)) % 4),
-        amplitude: genome.amplitude.map(() => numbers.strainMost),
-        phase: Float64Array.of(0, 0.5, 0.25, 0.75),
-        frequency: Float64Array.of(0.7),
-      },
-      [situation(0)],
-    )[0]!
-    expect(outcome).toMatchObject({ failed: expect.stringMatching(/^\w.* at \d\.\d\d s$/) })
+    const genome = inchworm(0.15)
+    const broken = (alter: (nodes: Float64Array) => void) => {
+      const trial = startTrial(genome, buildBody(genome), condition(0))
+      if ('reason' in trial) throw new Error(trial.reason)
+      alter(trial.lattice.nodes)
+      return advanceFrame(trial)
+    }
+    expect(broken(() => {})).toBeUndefined()
+    // The upper node of column 1 thrown far ahead; a node without a place.
+    expect(broken((nodes) => nodes.set([0.5, 0.3, 0, 0], stride))?.reason).toMatch(
+      /collapsed|% of its length/,
+    )
+    const fault = broken((nodes) => nodes.set([Number.NaN], stride))
+    expect(fault?.reason).toMatch(/no finite position/)
+    expect(fault?.seconds).toBeCloseTo(numbers.settleSeconds + 0.01, 3)
   })
 
   test('random bodies hardly move', () => {
