@@ -129,8 +129,6 @@ export function integrate(
   friction: Float64Array,
   nodes: Float64Array,
 ): void {
-  const gx = gravity[0]!
-  const gy = gravity[1]!
   const firstX = terrain[0]!
   const perSpacing = terrain[1]!
   const top = terrain[2]!
@@ -168,8 +166,8 @@ export function integrate(
         }
       }
     }
-    let vx = vx0 + stepSeconds * (fx * perKg + gx)
-    let vy = vy0 + stepSeconds * (fy * perKg + gy)
+    let vx = vx0 + stepSeconds * (fx * perKg + gravity[0]!)
+    let vy = vy0 + stepSeconds * (fy * perKg + gravity[1]!)
     if (normalN > 0) {
       const perLength = 1 / (1 + slope * slope)
       // v* along the ground is (vx + slope vy) / sqrt(1 + slope^2).
