@@ -36,7 +36,7 @@ export const retestReplicates = 24
 const firstFreshReplicate = limits.replicatesMost
 const retestWaitMs = 250
 
-/** Simulates the individual on fresh conditions; undefined when that fails or is interrupted. */
+/** Simulates the individual on fresh conditions; undefined when the work is lost or interrupted. Failed simulations are a result. */
 export async function retest(
   search: Search,
   best: Individual,
@@ -62,7 +62,7 @@ export async function retest(
   while (!signal.aborted) {
     for (const fact of await dispatcher.facts(retestWaitMs)) {
       if (fact.item.island !== 0) continue
-      return fact.kind === 'result' && fact.result.failures.length === 0 ? fact.result : undefined
+      return fact.kind === 'result' ? fact.result : undefined
     }
   }
   return undefined
@@ -73,12 +73,14 @@ export function writeFinish(
   folder: string,
   search: Search,
   problem: AnyProblem,
-  retested: EvaluationResult | undefined,
+  tested: EvaluationResult | undefined,
 ): Finish {
+  // A mean over the simulations that did not fail would flatter: the failures are told instead.
+  const retested = tested?.failures.length === 0 ? tested : undefined
   const { plan } = search
   const best = bestOf(search.islands.filter((island) => !island.isControl))
   if (!best) return { summary: ['No machine has been simulated without failure yet.'], files: [] }
-  const facts = factsOf(search, problem, best, retested)
+  const facts = { ...factsOf(search, problem, best, retested), ...failedOf(plan, tested) }
   const summary = summaryOf(search, best, facts, retested)
   const files = [write(folder, 'summary.txt', 'this summary', `${summary.join('\n')}\n`)]
   const { frames } = problem
@@ -128,6 +130,13 @@ function factsOf(
       `Seed ${plan.seed}, rules ${plan.semantics}`,
     ],
   }
+}
+
+function failedOf(plan: SearchPlan, tested: EvaluationResult | undefined): Pick<PictureFacts, 'failed'> {
+  const first = tested?.failures[0]
+  if (!tested || !first) return {}
+  const of = retestReplicates * Math.max(1, plan.problem.cases.length)
+  return { failed: { simulations: tested.failures.length, of, because: first.reason } }
 }
 
 function retestEstimates(plan: SearchPlan, retested: EvaluationResult): PictureFacts['results'] {
@@ -183,7 +192,7 @@ function controlLines(search: Search): string[] {
     const [first] = toResults(search.plan, best)
     const value = first ? `${first.name} ${Number(first.value.toPrecision(3))} ${first.unit}` : ''
     return [
-      `  Control ${island.tools.island.method} after ${island.counters.committedSimulations} simulations: best ${nameOf(best.id)}, ${value} when it was chosen`,
+      `  Control ${island.tools.island.method} after ${island.counters.committedSimulations} simulations: best ${nameOf(best.id)}, ${value} when it was chosen, on ${best.replicates} ${best.replicates === 1 ? 'replicate' : 'replicates'}`,
     ]
   })
 }

@@ -21,6 +21,8 @@ export interface PictureFacts {
   readonly shown: string
   /** True when the numbers were used to choose this machine; false for a retest on fresh conditions. */
   readonly selected: boolean
+  /** Fresh tests in which it gave no result; absent when there were none. */
+  readonly failed?: { readonly simulations: number; readonly of: number; readonly because: string }
   /** How to build it, line by line. */
   readonly description: readonly string[]
   readonly cautions: readonly Caution[]
@@ -60,7 +62,12 @@ export function resultSentence(facts: PictureFacts): string {
   const trust = facts.selected
     ? 'Chosen for being the best: fresh tests will on average be worse.'
     : 'Measured on conditions it was not chosen on.'
-  return `${numbers} (${sample}). ${trust}`
+  return `${numbers} (${sample}). ${trust}${failedSentence(facts)}`
+}
+
+function failedSentence({ failed }: PictureFacts): string {
+  if (!failed) return ''
+  return ` It failed in ${failed.simulations} of ${failed.of} fresh simulations, first because: ${failed.because}.`
 }
 
 export function cautionText({ hazard, because, consult }: Caution): string {

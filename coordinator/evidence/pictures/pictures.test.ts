@@ -115,6 +115,13 @@ describe('the picture', () => {
       expect(svg, words).toContain(`>${words}`)
     }
   })
+  it('says in how many fresh simulations the machine failed, and why', () => {
+    const failed = { simulations: 9, of: 72, because: 'the gauge sags' }
+    for (const one of [bestSvg(frames, { ...facts, failed }), replayHtml(frames, { ...facts, failed })]) {
+      const words = one.replace(/<\/text><text[^>]*>|<\/text>\n<text[^>]*>/g, ' ')
+      expect(words).toContain('It failed in 9 of 72 fresh simulations, first because: the gauge sags.')
+    }
+  })
   it('carries every caution in full, and one where the problem names none', () => {
     const unwrapped = (text: string) => text.replace(/<\/text><text[^>]*>/g, ' ')
     for (const one of [svg, bestSvg(frames, { ...facts, cautions: [] })])
