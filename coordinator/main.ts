@@ -43,7 +43,8 @@ const toolsOf = (plan: SearchPlan, problem: AnyProblem): SearchTools =>
 /** Starts the search of a file, or goes on where its record stands. */
 export async function runSearch(options: RunOptions): Promise<RunEnd> {
   const opened = await openSearch(options.file, searchTables(), Date.now())
-  if (opened.warnings.length > 0) options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
+  if (opened.warnings.length > 0)
+    options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
   for (const warning of opened.bundle.warnings) options.tell({ kind: 'said', sentence: warning })
   const folder = options.record ?? join('records', opened.plan.name)
   const record = openRecord(folder, {
@@ -109,7 +110,10 @@ function noteStart(engine: Engine, record: OpenRecord, replayed: number, options
   options.tell({ kind: 'said', sentence })
   engine.note('continued', sentence)
   if (record.loss) {
-    engine.note('end-of-record-lost', `The last ${record.loss.appends} appends were missing and are simulated again.`)
+    engine.note(
+      'end-of-record-lost',
+      `The last ${record.loss.appends} appends were missing and are simulated again.`,
+    )
   }
 }
 
@@ -154,7 +158,12 @@ function dispatcherOf({ record, folder, cores }: Driven): Dispatcher {
   const { seed, replicates } = record.plan
   return localDispatcher((events) =>
     createPool(
-      { pluginFile: resolve(recordFolder(folder).plugin), seed, sharedConditions: replicates.shared, threads: cores },
+      {
+        pluginFile: resolve(recordFolder(folder).plugin),
+        seed,
+        sharedConditions: replicates.shared,
+        threads: cores,
+      },
       events,
     ),
   )
@@ -281,7 +290,9 @@ export async function rederive(options: RederiveOptions): Promise<RederiveReport
       fromStart: true,
       onCommit: (island, ticket) => sample.offer(island, ticket),
     })
-    options.tell(`${replay.commits} commits derived again, ${replay.digestsCompared} recorded digests compared and equal.`)
+    options.tell(
+      `${replay.commits} commits derived again, ${replay.digestsCompared} recorded digests compared and equal.`,
+    )
     const resimulated = resimulate(record.plan, problem, record.reader, sample, options.signal)
     return {
       islands: search.islands.map((island) => ({

@@ -1,8 +1,8 @@
 // One place that builds plans, engines and results for tests of the search itself; a test sets only what it is
 // about. The physics here is arithmetic: a noisy sphere with a second objective, costs that differ ten-fold.
 
-import { columnsOf, simulationsPerReplicate } from '../coordinator/evolution/estimate.js'
 import { searchTools } from '../coordinator/evolution/build.js'
+import { columnsOf, simulationsPerReplicate } from '../coordinator/evolution/estimate.js'
 import { methodNamed } from '../coordinator/evolution/methods/index.js'
 import { defaultOperators } from '../coordinator/evolution/operators/index.js'
 import type { IslandPlan, ProblemPlan, SearchPlan } from '../coordinator/evolution/plan.js'

@@ -18,7 +18,9 @@ export interface LoopWorld {
   readonly onStep: (state: LoopState) => void
 }
 
-export type LoopState = { readonly kind: 'searching' } | { readonly kind: 'paused'; readonly refusal: Refusal }
+export type LoopState =
+  | { readonly kind: 'searching' }
+  | { readonly kind: 'paused'; readonly refusal: Refusal }
 
 export type LoopEnd = 'finished' | 'rested' | 'interrupted'
 

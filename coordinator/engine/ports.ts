@@ -97,7 +97,10 @@ export interface RecordReader {
   /** Newest snapshot of the island at or before `atMost` whose checksum holds. */
   snapshot(island: number, atMost?: number): SnapshotRow | undefined
   /** Commits after `after`, ascending. Only the last of each stored segment carries the digest. */
-  commits(island: number, after: number): Iterable<{ readonly commit: number; readonly evaluation: number; readonly digest?: Uint8Array }>
+  commits(
+    island: number,
+    after: number,
+  ): Iterable<{ readonly commit: number; readonly evaluation: number; readonly digest?: Uint8Array }>
   lastCommit(island: number): { readonly commit: number; readonly digest: Uint8Array } | undefined
   arrival(island: number, evaluation: number): ArrivalRow | undefined
   mail(island: number, epoch: number): MailRow | undefined

@@ -24,7 +24,10 @@ export interface Recovered {
 export function replayRecord(
   tools: SearchTools,
   reader: RecordReader,
-  { fromStart = false, onCommit }: { fromStart?: boolean; onCommit?: (island: Island, ticket: Ticket) => void } = {},
+  {
+    fromStart = false,
+    onCommit,
+  }: { fromStart?: boolean; onCommit?: (island: Island, ticket: Ticket) => void } = {},
 ): Recovered {
   const states = fromStart ? new Map() : readStates(tools.plan, reader)
   const search = new Search(tools, states, (island, epoch) => reader.mail(island, epoch))

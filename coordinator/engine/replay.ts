@@ -9,7 +9,7 @@ import type { Gate, Mail, Outcome, Search } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
 import type { RecordReader } from './ports.js'
 import { sameBytes } from './votes.js'
-import { apply, type Schedule } from './world-facts.js'
+import { apply, type Schedule, type Stage } from './world-facts.js'
 
 type RecordedCommit = { readonly commit: number; readonly evaluation: number; readonly digest?: Uint8Array }
 
@@ -27,7 +27,10 @@ export class ReplayGate implements Gate {
   readonly #search: Search
   readonly #reader: RecordReader
   readonly #schedule: Schedule
-  readonly #journals = new Map<number, { readonly rows: Iterator<RecordedCommit>; next: RecordedCommit | undefined }>()
+  readonly #journals = new Map<
+    number,
+    { readonly rows: Iterator<RecordedCommit>; next: RecordedCommit | undefined }
+  >()
   readonly #onCommit: ((island: Island, ticket: Ticket) => void) | undefined
 
   constructor(
@@ -131,10 +134,16 @@ export class ReplayGate implements Gate {
     return fact !== undefined
   }
   factsBeforeSending(island: Island, epoch: number): void {
-    for (const fact of this.#schedule.take(island.number, 'sending', epoch)) apply(this.#search, island, fact)
+    this.#enterAll(island, 'sending', epoch)
   }
   factsAtEpoch(island: Island, epoch: number): void {
-    for (const fact of this.#schedule.take(island.number, 'epoch', epoch)) apply(this.#search, island, fact)
+    this.#enterAll(island, 'epoch', epoch)
+  }
+  #enterAll(island: Island, stage: Stage, at: number): void {
+    for (let fact = this.#schedule.next(island.number, stage, at); fact; ) {
+      apply(this.#search, island, fact)
+      fact = this.#schedule.next(island.number, stage, at)
+    }
   }
 }
 

@@ -5,7 +5,16 @@ import type { SearchPlan } from '../evolution/plan.js'
 import type { Mail } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
 import type { Individual } from '../evolution/types.js'
-import type { Append, ArrivalRow, BirthRow, CommitRow, ConfirmationRow, EventRow, MailRow, SnapshotRow } from './ports.js'
+import type {
+  Append,
+  ArrivalRow,
+  BirthRow,
+  CommitRow,
+  ConfirmationRow,
+  EventRow,
+  MailRow,
+  SnapshotRow,
+} from './ports.js'
 
 export class Rows {
   readonly #policy: SearchPlan['genomes']
@@ -115,4 +124,9 @@ export class Rows {
       genome: island.bytesOf(individual.genome),
     })
   }
+}
+
+/** An event with the fields that most events leave at nothing. */
+export function eventRow(of: Pick<EventRow, 'kind' | 'sentence'> & Partial<EventRow>): EventRow {
+  return { island: 0, atCommit: 0, epoch: 0, changesSearch: false, data: null, ...of }
 }

@@ -1,7 +1,7 @@
 // Snapshots read back: structured data from the record, checked as far as a wrong shape could do harm. A snapshot
 // that does not fit is no loss: the journal leads to the same state.
 
-import type { IslandState } from '../evolution/island.js'
+import type { IslandState } from '../evolution/island-state.js'
 import type { SearchPlan } from '../evolution/plan.js'
 import type { RecordReader } from './ports.js'
 

@@ -29,7 +29,11 @@ export function verdictOf(votes: readonly Vote[]): Verdict {
   for (const vote of votes) {
     const agreeing = votes.filter((other) => sameBytes(other.digest, vote.digest))
     if (agreeing.length >= 2) {
-      return { kind: 'confirmed', vote, wrong: votes.filter((other) => !sameBytes(other.digest, vote.digest)) }
+      return {
+        kind: 'confirmed',
+        vote,
+        wrong: votes.filter((other) => !sameBytes(other.digest, vote.digest)),
+      }
     }
   }
   return { kind: 'disputed' }
@@ -37,7 +41,8 @@ export function verdictOf(votes: readonly Vote[]): Verdict {
 
 /** How many different answers there are. */
 export function answersOf(votes: readonly Vote[]): number {
-  return votes.filter((vote, at) => votes.findIndex((other) => sameBytes(other.digest, vote.digest)) === at).length
+  return votes.filter((vote, at) => votes.findIndex((other) => sameBytes(other.digest, vote.digest)) === at)
+    .length
 }
 
 export function sameBytes(a: Uint8Array, b: Uint8Array): boolean {

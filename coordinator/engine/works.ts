@@ -1,17 +1,16 @@
 // The pieces of work in hand: every outstanding evaluation of every island, and every second simulation that was
 // asked for. The coordinator owns retries, deadlines and blame; a dispatcher only carries.
 //
-//   waiting --work()--> submitted --result--> arrived --gate--> (committed: forgotten)
+//   waiting --take()--> submitted --result--> (answered) --gate--> committed: forgotten
 //      ^                   |
-//      +------- lost ------+--(died too often)--> set aside: arrived as failed
+//      +------- lost ------+--(died too often)--> set aside: answered as failed
 //
 // Losing an agent or a lease never counts against an evaluation. Deaths in a shared process count until it runs
 // alone; only deaths there can have it set aside.
 
 import { check } from '../../shared/check.js'
-import { idOf } from '../../shared/ids.js'
 import { limits } from '../../shared/limits.js'
-import type { DispatchFact, LossCause, WorkItem } from '../../shared/result.js'
+import type { LossCause, WorkItem } from '../../shared/result.js'
 import type { Vote } from './votes.js'
 
 export interface Work {
@@ -30,10 +29,11 @@ export interface Work {
   confirmed: boolean
   /** The vote whose result stands in the record: what a replay would commit. */
   recorded: Vote | undefined
-  /** Chosen by hash for a second simulation; undefined until asked. */
+  /** Must be simulated a second time whatever it gave; undefined until asked. */
   spotCheck: boolean | undefined
-  /** Lanes: the first simulation, and a second one for confirmation. */
-  readonly lanes: { readonly evaluate: Lane; readonly confirm: Lane }
+  /** The first simulation, and further ones for confirmation. */
+  readonly evaluate: Lane
+  readonly confirm: Lane
   sharedDeaths: number
   aloneDeaths: number
 }
@@ -45,6 +45,18 @@ export interface Lane {
 }
 
 export type Purpose = WorkItem['purpose']
+export type WorkDescription = Pick<
+  Work,
+  | 'island'
+  | 'evaluation'
+  | 'individual'
+  | 'firstReplicate'
+  | 'replicates'
+  | 'simulations'
+  | 'expectedCost'
+  | 'genome'
+  | 'kind'
+>
 
 /** What a loss means for its evaluation. */
 export type LossVerdict = 'again' | 'set-aside'
@@ -58,9 +70,7 @@ const countsAsDeath: Record<LossCause, boolean> = {
 }
 
 /** A piece of work nobody has begun. */
-export function newWork(
-  from: Omit<Work, 'votes' | 'confirmed' | 'recorded' | 'spotCheck' | 'lanes' | 'sharedDeaths' | 'aloneDeaths'>,
-): Work {
+export function newWork(from: WorkDescription): Work {
   // Spelt out, not spread: one is made for every evaluation, and a spread costs ten times as much.
   return {
     island: from.island,
@@ -76,14 +86,11 @@ export function newWork(
     confirmed: false,
     recorded: undefined,
     spotCheck: undefined,
-    lanes: { evaluate: newLane(), confirm: newLane() },
+    evaluate: { state: 'idle', attempt: 0, leaseEndsMs: Number.POSITIVE_INFINITY },
+    confirm: { state: 'idle', attempt: 0, leaseEndsMs: Number.POSITIVE_INFINITY },
     sharedDeaths: 0,
     aloneDeaths: 0,
   }
-}
-
-function newLane(): Lane {
-  return { state: 'idle', attempt: 0, leaseEndsMs: Infinity }
 }
 
 /** Counts a loss and says what follows. */
@@ -94,20 +101,14 @@ export function blame(work: Work, cause: LossCause, isolation: WorkItem['isolati
   return work.aloneDeaths >= limits.attemptsAlone ? 'set-aside' : 'again'
 }
 
-export function isolationOf(work: Work): WorkItem['isolation'] {
-  return work.sharedDeaths >= limits.attemptsBeforeIsolation ? 'alone' : 'shared'
-}
-
 /** All work in hand, with two queues: confirmations first, because islands wait for them; then by proposal. */
 export class Works {
-  readonly #works = new Map<number, Work>()
+  // Keyed by two small numbers: one large key would be a heap number, and slow to look up.
+  readonly #byIsland = new Map<number, Map<number, Work>>()
   readonly #confirmQueue = new Queue()
   readonly #evaluateQueue = new Queue()
   #submitted = 0
 
-  get size(): number {
-    return this.#works.size
-  }
   get submitted(): number {
     return this.#submitted
   }
@@ -116,55 +117,61 @@ export class Works {
   }
 
   find(island: number, evaluation: number): Work | undefined {
-    return this.#works.get(idOf(island, evaluation))
+    return this.#byIsland.get(island)?.get(evaluation)
   }
-  all(): IterableIterator<Work> {
-    return this.#works.values()
+  *all(): Iterable<Work> {
+    for (const works of this.#byIsland.values()) yield* works.values()
+  }
+  of(island: number): Work[] {
+    return [...(this.#byIsland.get(island)?.values() ?? [])]
   }
 
   add(work: Work): void {
-    const key = idOf(work.island, work.evaluation)
-    check(!this.#works.has(key), 'an evaluation is in hand once')
-    this.#works.set(key, work)
+    let works = this.#byIsland.get(work.island)
+    if (!works) this.#byIsland.set(work.island, (works = new Map()))
+    check(!works.has(work.evaluation), 'an evaluation is in hand once')
+    works.set(work.evaluation, work)
   }
 
   forget(work: Work): void {
-    for (const purpose of purposes) this.#leave(work.lanes[purpose])
-    this.#works.delete(idOf(work.island, work.evaluation))
+    this.settle(work, 'evaluate')
+    this.settle(work, 'confirm')
+    this.#byIsland.get(work.island)?.delete(work.evaluation)
   }
 
   /** Puts a lane of the work in its queue, unless it is there or under way. */
   want(work: Work, purpose: Purpose): void {
-    const lane = work.lanes[purpose]
+    const lane = work[purpose]
     if (lane.state !== 'idle') return
     lane.state = 'waiting'
-    const queue = purpose === 'confirm' ? this.#confirmQueue : this.#evaluateQueue
-    queue.push(work)
+    if (purpose === 'confirm') this.#confirmQueue.push(work)
+    else this.#evaluateQueue.push(work)
   }
 
   /** The answer to a submitted lane is in, or it is given up. */
   settle(work: Work, purpose: Purpose): void {
-    this.#leave(work.lanes[purpose])
-  }
-
-  #leave(lane: Lane): void {
+    const lane = work[purpose]
     if (lane.state === 'submitted') this.#submitted--
     lane.state = 'idle'
-    lane.leaseEndsMs = Infinity
+    lane.leaseEndsMs = Number.POSITIVE_INFINITY
   }
 
   /** The next items to submit, at most `count`; `allowed` may hold evaluations back. */
-  take(count: number, leaseEndsMs: number, allowed: (work: Work) => boolean, shutOut: ReadonlySet<string>): WorkItem[] {
+  take(
+    count: number,
+    leaseEndsMs: number,
+    allowed: (work: Work) => boolean,
+    shutOut: ReadonlySet<string>,
+  ): WorkItem[] {
     const items: WorkItem[] = []
-    for (const purpose of purposes) {
+    for (const purpose of ['confirm', 'evaluate'] as const) {
       const queue = purpose === 'confirm' ? this.#confirmQueue : this.#evaluateQueue
       const held: Work[] = []
       while (items.length < count) {
         const work = queue.shift()
         if (!work) break
-        const lane = work.lanes[purpose]
-        const isCurrent = lane.state === 'waiting' && this.#works.get(idOf(work.island, work.evaluation)) === work
-        if (!isCurrent) continue
+        const lane = work[purpose]
+        if (lane.state !== 'waiting' || this.find(work.island, work.evaluation) !== work) continue
         if (!allowed(work)) {
           held.push(work)
           continue
@@ -183,17 +190,13 @@ export class Works {
   /** Submitted lanes whose lease has run out. */
   overdue(nowMs: number): { readonly work: Work; readonly purpose: Purpose }[] {
     const late: { readonly work: Work; readonly purpose: Purpose }[] = []
-    for (const work of this.#works.values()) {
-      for (const purpose of purposes) {
-        const lane = work.lanes[purpose]
-        if (lane.state === 'submitted' && lane.leaseEndsMs <= nowMs) late.push({ work, purpose })
-      }
+    for (const work of this.all()) {
+      if (work.evaluate.leaseEndsMs <= nowMs) late.push({ work, purpose: 'evaluate' })
+      if (work.confirm.leaseEndsMs <= nowMs) late.push({ work, purpose: 'confirm' })
     }
     return late
   }
 }
-
-const purposes = ['confirm', 'evaluate'] as const
 
 function itemOf(work: Work, purpose: Purpose, attempt: number, shutOut: ReadonlySet<string>): WorkItem {
   return {
@@ -206,7 +209,7 @@ function itemOf(work: Work, purpose: Purpose, attempt: number, shutOut: Readonly
     expectedCost: work.expectedCost,
     attempt,
     purpose,
-    isolation: isolationOf(work),
+    isolation: work.sharedDeaths >= limits.attemptsBeforeIsolation ? 'alone' : 'shared',
     avoid:
       work.votes.length === 0 && shutOut.size === 0
         ? nobody
@@ -242,9 +245,4 @@ class Queue {
     this.#items = [...works, ...this.#items.slice(this.#head)]
     this.#head = 0
   }
-}
-
-/** True when the fact answers a try that is not the present one: it may still carry a good result. */
-export function isStale(work: Work, fact: DispatchFact): boolean {
-  return work.lanes[fact.item.purpose].attempt !== fact.item.attempt
 }

@@ -16,7 +16,12 @@ const resultSchema = z.object({
   failures: z.array(z.object({ simulation: z.number(), reason: z.string() })),
 })
 const factSchema = z.discriminatedUnion('fact', [
-  z.object({ fact: z.literal('amend'), individual: z.number(), firstReplicate: z.number(), result: resultSchema }),
+  z.object({
+    fact: z.literal('amend'),
+    individual: z.number(),
+    firstReplicate: z.number(),
+    result: resultSchema,
+  }),
   z.object({ fact: z.literal('finish'), epoch: z.number() }),
   /** `silentFrom` > 0: the island had ended and sent nothing from that epoch on; it goes on after `epoch`. */
   z.object({ fact: z.literal('budget'), simulations: z.number(), epoch: z.number(), silentFrom: z.number() }),
@@ -59,15 +64,6 @@ export class Schedule {
     const fact = facts?.shift()
     if (facts?.length === 0) this.#facts.delete(key)
     return fact
-  }
-
-  /** Everything that enters here, once: it is taken off the schedule. */
-  take(island: number, stage: Stage, at: number): readonly WorldFact[] {
-    if (this.#facts.size === 0) return []
-    const key = keyOf(island, stage, at)
-    const facts = this.#facts.get(key) ?? []
-    this.#facts.delete(key)
-    return facts
   }
 
   /** The epoch this island is ordered to finish with, if any. */

@@ -28,7 +28,8 @@ function next(shares: readonly number[], quotas: readonly number[]): number {
   let best = 0
   for (let island = 1; island < shares.length; island++) {
     const ahead =
-      BigInt(shares[island]!) * BigInt(quotas[best]! + 1) > BigInt(shares[best]!) * BigInt(quotas[island]! + 1)
+      BigInt(shares[island]!) * BigInt(quotas[best]! + 1) >
+      BigInt(shares[best]!) * BigInt(quotas[island]! + 1)
     if (ahead) best = island
   }
   return best

@@ -8,7 +8,7 @@
 
 import { ByteWriter } from '../../shared/bytes.js'
 import { resultDigest } from '../../shared/digests.js'
-import type { Amendment } from './island.js'
+import type { Amendment } from './island-state.js'
 import type { Ticket } from './tickets.js'
 import type { Individual } from './types.js'
 
@@ -16,11 +16,7 @@ const kinds = { commit: 1, receive: 2, send: 3, amendment: 4 } as const
 const writer = new ByteWriter(4096)
 
 /** Valid until the next entry is written. */
-export function commitEntry(
-  commit: number,
-  ticket: Ticket,
-  resultDigestBytes: Uint8Array,
-): Uint8Array {
+export function commitEntry(commit: number, ticket: Ticket, resultDigestBytes: Uint8Array): Uint8Array {
   writer
     .reset()
     .u8(kinds.commit)
@@ -52,7 +48,10 @@ function travellers(kind: number, epoch: number, individuals: readonly Individua
   return writer.peek()
 }
 
-export function amendmentEntry(commits: number, { individual, firstReplicate, result }: Amendment): Uint8Array {
+export function amendmentEntry(
+  commits: number,
+  { individual, firstReplicate, result }: Amendment,
+): Uint8Array {
   return writer
     .reset()
     .u8(kinds.amendment)

@@ -21,11 +21,14 @@ export function columnsOf(problem: ProblemPlan): number {
  */
 export function scoreOf(problem: ProblemPlan, values: Float64Array, failedSimulations: number): Float64Array {
   const score = new Float64Array(problem.objectives.length)
-  if (failedSimulations > 0 || values.length === 0) return score.fill(Infinity)
-  problem.objectives.forEach((objective, column) => {
-    const estimate = estimateOf(problem, objective, column, values)
+  if (failedSimulations > 0 || values.length === 0) return score.fill(Number.POSITIVE_INFINITY)
+  // One row needs no reducing: mean, median, worst and every quantile of one number are that number.
+  const single = values.length === columnsOf(problem)
+  for (let column = 0; column < score.length; column++) {
+    const objective = problem.objectives[column]!
+    const estimate = single ? values[column]! : estimateOf(problem, objective, column, values)
     score[column] = objective.direction === 'maximise' ? 0 - estimate : estimate
-  })
+  }
   return score
 }
 
@@ -75,7 +78,10 @@ export function reduce(reduction: Reduction, direction: Direction, values: Float
   return reductions[reduction](values, direction)
 }
 
-const reductions: Record<'mean' | 'median' | 'worst', (values: Float64Array, direction: Direction) => number> = {
+const reductions: Record<
+  'mean' | 'median' | 'worst',
+  (values: Float64Array, direction: Direction) => number
+> = {
   mean: (values) => {
     let sum = 0
     for (let i = 0; i < values.length; i++) sum += values[i]!

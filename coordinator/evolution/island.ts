@@ -14,6 +14,8 @@ import type { EvaluationResult } from '../../shared/result.js'
 import { stream } from '../../shared/streams.js'
 import { amendmentEntry, commitEntry, receiveEntry, sendEntry } from './entries.js'
 import { columnsOf, scoreOf, simulationsPerReplicate } from './estimate.js'
+import { type Amendment, type Counters, type IslandState, newCounters, Positions } from './island-state.js'
+import { Leader, wouldBeat } from './leader.js'
 import type { IslandPlan, SearchPlan } from './plan.js'
 import { Outstanding, type Ticket } from './tickets.js'
 import type { Individual, Method, MethodContext, MethodMachine, Variation } from './types.js'
@@ -27,54 +29,6 @@ export interface IslandTools {
   readonly method: Method
   readonly variation: Variation
   readonly expectedCost: (genome: Genome) => number
-}
-
-/** Numbers of an island that change with commits and proposals; plain data. */
-interface Counters {
-  births: number
-  evaluations: number
-  proposedSimulations: number
-  commits: number
-  committedSimulations: number
-  /** Sum of expected costs of the commits; divided by the lookahead it is the island's time in rounds. */
-  costCommitted: number
-  /** Virtual time of the last commit (order 'cost'). */
-  virtualTime: number
-  /** Last epoch whose work is done. */
-  epochsPassed: number
-  /** Island cost at the start of epoch 1; moves only when an ended island is set going again. */
-  epochOriginCost: number
-  /** Last epoch whose emigrants were taken in; at most one ahead of epochsPassed. */
-  epochsReceived: number
-  failedSimulations: number
-  topUps: number
-  /** Island cost at which the present best became the best. */
-  bestSinceCost: number
-}
-
-/** A result that turned out wrong after it was committed, put right from a stated commit on. */
-export interface Amendment {
-  readonly individual: number
-  readonly firstReplicate: number
-  readonly result: EvaluationResult
-}
-
-export interface IslandState {
-  readonly counters: Counters
-  readonly digest: Uint8Array
-  readonly quota: number
-  readonly mostReplicates: number
-  readonly ended: boolean
-  readonly finishAfterEpoch: number
-  readonly individuals: readonly Individual[]
-  /** Positions in `individuals`. */
-  readonly held: readonly number[]
-  readonly best: number
-  readonly topUpQueue: readonly number[]
-  readonly tickets: readonly (Omit<Ticket, 'individual'> & { readonly individual: number })[]
-  readonly amendments: readonly Amendment[]
-  readonly bestScores: Float64Array
-  readonly machine: unknown
 }
 
 const noEpoch = Number.MAX_SAFE_INTEGER
@@ -94,9 +48,7 @@ export class Island {
   #mostReplicates: number
   #ended: boolean
   #finishAfterEpoch: number
-  #best: Individual | undefined
-  /** Smallest score seen at a commit, per objective: what a would-be best must beat. */
-  readonly #bestScores: Float64Array
+  readonly #leader: Leader
 
   constructor(tools: IslandTools, state?: IslandState) {
     this.tools = tools
@@ -116,9 +68,9 @@ export class Island {
       state?.tickets.map((ticket) => ({ ...ticket, individual: byPosition(ticket.individual) })),
     )
     this.#topUpQueue = state?.topUpQueue.map(byPosition) ?? []
-    this.#best = state && state.best >= 0 ? byPosition(state.best) : undefined
     this.#amendments = [...(state?.amendments ?? [])]
-    this.#bestScores = state?.bestScores.slice() ?? new Float64Array(tools.plan.problem.objectives.length).fill(Infinity)
+    const best = state && state.best >= 0 ? byPosition(state.best) : undefined
+    this.#leader = new Leader(tools.plan.problem.objectives.length, best, state?.bestScores)
     const held = new Map(state?.held.map((position) => [byPosition(position).id, byPosition(position)]))
     this.#machine = state
       ? tools.method.restore(contextOf(tools), state.machine, (id) => {
@@ -146,10 +98,7 @@ export class Island {
     return this.#quota
   }
   get best(): Individual | undefined {
-    return this.#best
-  }
-  get bestScores(): Float64Array {
-    return this.#bestScores
+    return this.#leader.best
   }
   get isControl(): boolean {
     return this.number >= firstControl
@@ -220,7 +169,7 @@ export class Island {
       values: new Float64Array(0),
       replicates: 0,
       failedSimulations: 0,
-      score: new Float64Array(this.#bestScores.length).fill(Infinity),
+      score: this.#leader.noScore,
       age: birth.age,
     }
     return this.#newTicket(individual, first, birth.origin === 'founder')
@@ -262,11 +211,13 @@ export class Island {
     return this.tools.island.order === 'proposal' ? this.#outstanding.oldest() : undefined
   }
 
-  /** The score the individual would have with this result: for the question whether it would be the best. */
-  scoreWith(ticket: Ticket, result: EvaluationResult): Float64Array {
+  /** True when this result would make a new best value of some objective on this island. */
+  wouldBeBest(ticket: Ticket, result: EvaluationResult): boolean {
     const { individual } = ticket
+    const failed = individual.failedSimulations + result.failures.length
+    if (failed > 0) return false
     const values = joined(individual.values, result.values)
-    return scoreOf(this.tools.plan.problem, values, individual.failedSimulations + result.failures.length)
+    return wouldBeat(this.tools.plan.problem, values, this.#leader.bestScores)
   }
 
   /** Takes a result in. `resultDigest` is 32 bytes over the result's canonical bytes. */
@@ -287,7 +238,8 @@ export class Island {
     counters.costCommitted += ticket.expectedCost
     counters.virtualTime = Math.max(counters.virtualTime, ticket.virtualFinish)
     counters.failedSimulations += result.failures.length
-    if (firstBlock) this.#machine.commit(individual, stream(plan.seed, 'commit', this.number, counters.commits))
+    if (firstBlock)
+      this.#machine.commit(individual, stream(plan.seed, 'commit', this.number, counters.commits))
     else this.#machine.reconsider(individual)
     this.#noteBest(individual)
     this.#queueTopUp()
@@ -312,19 +264,13 @@ export class Island {
   }
 
   #noteBest(individual: Individual): void {
-    individual.score.forEach((score, objective) => {
-      if (score < this.#bestScores[objective]!) this.#bestScores[objective] = score
-    })
-    const before = this.#best
-    // The best's own estimate may have become worse: then another member may be the best.
-    if (individual === before) this.#best = [before, ...this.#machine.members()].reduce(better)
-    else this.#best = before ? better(before, individual) : individual
-    if (this.#best !== before) this.#counters.bestSinceCost = this.#counters.costCommitted
+    if (this.#leader.note(individual, this.#machine))
+      this.#counters.bestSinceCost = this.#counters.costCommitted
   }
 
   /** Top-ups go to the island's best until it has the most replicates: the estimate that is shown and bred from. */
   #queueTopUp(): void {
-    const best = this.#best
+    const { best } = this.#leader
     if (!best || this.tools.plan.replicates.topUp === 0) return
     if (best.replicates >= this.#mostReplicates || best.failedSimulations > 0) return
     const asked =
@@ -348,7 +294,10 @@ export class Island {
 
   /** Takes in the emigrants that are due at the end of `epoch`, group by group in the order of sources. */
   receive(epoch: number, groups: readonly (readonly Individual[])[]): void {
-    check(epoch === this.#counters.epochsPassed + 1 && !this.hasReceived, 'epochs are received once, in order')
+    check(
+      epoch === this.#counters.epochsPassed + 1 && !this.hasReceived,
+      'epochs are received once, in order',
+    )
     this.#counters.epochsReceived = epoch
     const arrivals = groups.flat().map((individual) => this.#amended({ ...individual }))
     const placement = this.tools.plan.migration?.arrive
@@ -372,13 +321,18 @@ export class Island {
 
   /** Ends the epoch after its emigrants are on their way. */
   pass(epoch: number, sent: readonly Individual[]): void {
-    check(this.hasReceived && epoch === this.#counters.epochsReceived, 'an epoch is passed after it was received')
+    check(
+      this.hasReceived && epoch === this.#counters.epochsReceived,
+      'an epoch is passed after it was received',
+    )
     this.#counters.epochsPassed = epoch
     if (sent.length > 0) this.#digest = chain(this.#digest, sendEntry(epoch, sent))
     const { stagnationRounds } = this.tools.plan.budget
     const stale = this.#counters.costCommitted - this.#counters.bestSinceCost
     const stagnant =
-      stagnationRounds !== undefined && !this.isControl && stale >= stagnationRounds * this.tools.island.lookahead
+      stagnationRounds !== undefined &&
+      !this.isControl &&
+      stale >= stagnationRounds * this.tools.island.lookahead
     if (epoch >= this.#finishAfterEpoch || stagnant) this.#end()
   }
 
@@ -424,27 +378,20 @@ export class Island {
   /** Puts a wrong result right in everybody alive here, and in everybody who arrives later. */
   amend(amendment: Amendment): void {
     this.#amendments.push(amendment)
-    const touched = new Set([...this.#machine.held(), ...(this.#best ? [this.#best] : []), ...this.#topUpQueue])
+    const touched = new Set([
+      ...this.#machine.held(),
+      ...(this.#leader.best ? [this.#leader.best] : []),
+      ...this.#topUpQueue,
+    ])
     for (const ticket of this.#outstanding.all()) touched.add(ticket.individual)
     for (const individual of touched) {
       if (individual.id !== amendment.individual) continue
       Object.assign(individual, this.#amended({ ...individual }))
       this.#machine.reconsider(individual)
     }
-    this.#recountBest()
+    // A false best must not stand in the way of true ones.
+    this.#leader.recount(this.#machine)
     this.#digest = chain(this.#digest, amendmentEntry(this.#counters.commits, amendment))
-  }
-
-  /** A false best must not stand in the way of true ones. */
-  #recountBest(): void {
-    const candidates = [...(this.#best ? [this.#best] : []), ...this.#machine.members()]
-    this.#best = candidates.length > 0 ? candidates.reduce(better) : undefined
-    this.#bestScores.fill(Infinity)
-    for (const { score } of candidates) {
-      score.forEach((value, objective) => {
-        if (value < this.#bestScores[objective]!) this.#bestScores[objective] = value
-      })
-    }
   }
 
   #amended(individual: Individual): Individual {
@@ -460,7 +407,10 @@ export class Island {
           ? { ...block, failedSimulations: result.failures.length }
           : block,
       )
-      individual.failedSimulations = individual.blocks.reduce((sum, block) => sum + block.failedSimulations, 0)
+      individual.failedSimulations = individual.blocks.reduce(
+        (sum, block) => sum + block.failedSimulations,
+        0,
+      )
       individual.score = scoreOf(this.tools.plan.problem, values, individual.failedSimulations)
     }
     return individual
@@ -470,14 +420,9 @@ export class Island {
 
   /** Everything needed to go on from here, structured-cloneable. Shares memory with the island. */
   save(): IslandState {
-    const individuals: Individual[] = []
-    const positions = new Map<Individual, number>()
-    const positionOf = (individual: Individual): number => {
-      const known = positions.get(individual)
-      if (known !== undefined) return known
-      positions.set(individual, individuals.length)
-      return individuals.push(individual) - 1
-    }
+    const positions = new Positions()
+    const positionOf = (individual: Individual) => positions.of(individual)
+    const { best, bestScores } = this.#leader
     return {
       counters: { ...this.#counters },
       digest: this.#digest,
@@ -486,15 +431,15 @@ export class Island {
       ended: this.#ended,
       finishAfterEpoch: this.#finishAfterEpoch,
       held: this.#machine.held().map(positionOf),
-      best: this.#best ? positionOf(this.#best) : -1,
+      best: best ? positionOf(best) : -1,
       topUpQueue: this.#topUpQueue.map(positionOf),
       tickets: this.#outstanding
         .all()
         .map((ticket) => ({ ...ticket, individual: positionOf(ticket.individual) })),
       amendments: this.#amendments,
-      bestScores: this.#bestScores.slice(),
+      bestScores: bestScores.slice(),
       machine: this.#machine.save(),
-      individuals,
+      individuals: positions.individuals,
     }
   }
 
@@ -502,12 +447,6 @@ export class Island {
   bytesOf(genome: Genome): Uint8Array {
     return genomeBytes(this.tools.plan.problem.spec, genome)
   }
-}
-
-/** The better of two by the first objective; ties go to the older. */
-function better(a: Individual, b: Individual): Individual {
-  if (a.score[0]! !== b.score[0]!) return a.score[0]! < b.score[0]! ? a : b
-  return a.id <= b.id ? a : b
 }
 
 function joined(a: Float64Array, b: Float64Array): Float64Array {
@@ -525,23 +464,5 @@ function contextOf(tools: IslandTools): MethodContext {
     population: tools.island.population,
     settings: tools.island.settings,
     variation: tools.variation,
-  }
-}
-
-function newCounters(): Counters {
-  return {
-    births: 0,
-    evaluations: 0,
-    proposedSimulations: 0,
-    commits: 0,
-    committedSimulations: 0,
-    costCommitted: 0,
-    virtualTime: 0,
-    epochsPassed: 0,
-    epochOriginCost: 0,
-    epochsReceived: 0,
-    failedSimulations: 0,
-    topUps: 0,
-    bestSinceCost: 0,
   }
 }

@@ -14,8 +14,7 @@ export interface TopologyRow {
   readonly diameter: (islands: number) => number | undefined
 }
 
-const atLeastTwo = (islands: number) =>
-  islands < 2 ? 'migration needs at least 2 islands' : undefined
+const atLeastTwo = (islands: number) => (islands < 2 ? 'migration needs at least 2 islands' : undefined)
 
 export const topologies: Record<Topology, TopologyRow> = {
   ring: {

@@ -1,8 +1,8 @@
 // A search, decided: what the search file says once defaults are filled in and everything is checked.
 // evolution and engine read this and never the file. Plain data, structured-cloneable.
 
-import type { CaseCombination, Direction, Reduction } from '../../shared/problem.js'
 import type { GenomeSpec } from '../../shared/genome.js'
+import type { CaseCombination, Direction, Reduction } from '../../shared/problem.js'
 import type { Placement, Settings } from './types.js'
 
 export interface ObjectivePlan {
@@ -21,7 +21,12 @@ export interface ProblemPlan {
   readonly digest: string
   readonly spec: GenomeSpec
   readonly objectives: readonly ObjectivePlan[]
-  readonly measures: readonly { readonly name: string; readonly low: number; readonly high: number; readonly unit: string }[]
+  readonly measures: readonly {
+    readonly name: string
+    readonly low: number
+    readonly high: number
+    readonly unit: string
+  }[]
   readonly cases: readonly string[]
 }
 

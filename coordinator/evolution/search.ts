@@ -9,7 +9,8 @@ import { chain, emptyChain } from '../../shared/digests.js'
 import { firstControl } from '../../shared/ids.js'
 import type { EvaluationResult } from '../../shared/result.js'
 import { splitBudget } from './budget.js'
-import { Island, type IslandState, type IslandTools } from './island.js'
+import { Island, type IslandTools } from './island.js'
+import type { IslandState } from './island-state.js'
 import { topologies } from './migration.js'
 import type { SearchPlan } from './plan.js'
 import type { Ticket } from './tickets.js'
@@ -151,7 +152,10 @@ export class Search {
       if (emigrants.length > 0 && !gate.maySend(island, epoch, emigrants)) return 'confirmation'
       island.pass(epoch, emigrants)
       if (this.#migrating.includes(island.number)) {
-        this.#send({ island: island.number, epoch, atCommit: island.counters.commits, ended: false, emigrants }, gate)
+        this.#send(
+          { island: island.number, epoch, atCommit: island.counters.commits, ended: false, emigrants },
+          gate,
+        )
       }
       gate.factsAtEpoch(island, epoch)
     }
@@ -164,7 +168,12 @@ export class Search {
     if (!migration || position < 0 || epoch <= migration.lag) return []
     const sentEpoch = epoch - migration.lag
     const groups: (readonly Individual[])[] = []
-    for (const source of topologies[migration.topology].sources(this.#migrating.length, position, sentEpoch, seed)) {
+    for (const source of topologies[migration.topology].sources(
+      this.#migrating.length,
+      position,
+      sentEpoch,
+      seed,
+    )) {
       const letters = this.#post.find(this.#migrating[source]!, sentEpoch)
       if (!letters) return undefined
       groups.push(letters)
@@ -176,7 +185,10 @@ export class Search {
     const isNews = this.#migrating.includes(island.number) && !this.#post.hasEnded(island.number)
     if (isNews) {
       const epoch = island.counters.epochsPassed + 1
-      this.#send({ island: island.number, epoch, atCommit: island.counters.commits, ended: true, emigrants: [] }, gate)
+      this.#send(
+        { island: island.number, epoch, atCommit: island.counters.commits, ended: true, emigrants: [] },
+        gate,
+      )
     }
     return 'ended'
   }

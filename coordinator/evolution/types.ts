@@ -57,9 +57,26 @@ export interface Variation {
 
 /** A setting of a method or operator in the search file: a row of a table, so that help, schema and check agree. */
 export type SettingRow =
-  | { readonly kind: 'number'; readonly default: number; readonly low: number; readonly high: number; readonly help: string }
-  | { readonly kind: 'integer'; readonly default: number; readonly low: number; readonly high: number; readonly help: string }
-  | { readonly kind: 'choice'; readonly default: string; readonly options: readonly string[]; readonly help: string }
+  | {
+      readonly kind: 'number'
+      readonly default: number
+      readonly low: number
+      readonly high: number
+      readonly help: string
+    }
+  | {
+      readonly kind: 'integer'
+      readonly default: number
+      readonly low: number
+      readonly high: number
+      readonly help: string
+    }
+  | {
+      readonly kind: 'choice'
+      readonly default: string
+      readonly options: readonly string[]
+      readonly help: string
+    }
 export type SettingTable = { readonly [name: string]: SettingRow }
 /** Checked values of a SettingTable: every row present. */
 export type Settings = { readonly [name: string]: number | string }
@@ -112,5 +129,9 @@ export interface Method {
   readonly objectives: 'one' | 'any'
   readonly create: (context: MethodContext) => MethodMachine
   /** The machine that save() described; `individual` finds members by id. */
-  readonly restore: (context: MethodContext, saved: unknown, individual: (id: number) => Individual) => MethodMachine
+  readonly restore: (
+    context: MethodContext,
+    saved: unknown,
+    individual: (id: number) => Individual,
+  ) => MethodMachine
 }

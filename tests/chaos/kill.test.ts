@@ -59,7 +59,10 @@ interface Life {
 }
 
 function start(...words: string[]): { readonly process: ChildProcess; readonly life: Promise<Life> } {
-  const child = spawn(process.execPath, [skerry, ...words], { cwd: folder, stdio: ['ignore', 'pipe', 'pipe'] })
+  const child = spawn(process.execPath, [skerry, ...words], {
+    cwd: folder,
+    stdio: ['ignore', 'pipe', 'pipe'],
+  })
   let out = ''
   let err = ''
   child.stdout.on('data', (text) => {
@@ -71,7 +74,8 @@ function start(...words: string[]): { readonly process: ChildProcess; readonly l
   const life = new Promise<Life>((resolve) => child.on('close', (code) => resolve({ code, out, err })))
   return { process: child, life }
 }
-const run = (record: string, ...words: string[]) => start('run', 'search.yaml', '--record', record, '--cores', '2', ...words)
+const run = (record: string, ...words: string[]) =>
+  start('run', 'search.yaml', '--record', record, '--cores', '2', ...words)
 
 interface Report {
   readonly digest: string

@@ -43,12 +43,18 @@ function finish(search: Search, gate: Gate): string {
 }
 
 const plan = mixedPlan()
-const reference = finish(new Search(fixtureTools(plan)), openGate(plan, () => false))
+const reference = finish(
+  new Search(fixtureTools(plan)),
+  openGate(plan, () => false),
+)
 
 describe('a search is a pure function of its plan', () => {
   it('commits the whole budget of every island', () => {
     const search = new Search(fixtureTools(plan))
-    finish(search, openGate(plan, () => false))
+    finish(
+      search,
+      openGate(plan, () => false),
+    )
     for (const island of search.islands) {
       expect(island.ended).toBe(true)
       expect(island.counters.committedSimulations).toBeGreaterThan(island.quota - plan.replicates.first - 2)
@@ -68,15 +74,34 @@ describe('a search is a pure function of its plan', () => {
 
   it('another seed, another digest', () => {
     const other = mixedPlan({ seed: 1 })
-    expect(finish(new Search(fixtureTools(other)), openGate(other, () => false))).not.toBe(reference)
+    expect(
+      finish(
+        new Search(fixtureTools(other)),
+        openGate(other, () => false),
+      ),
+    ).not.toBe(reference)
   })
 
   it('stopping at n, 2n, 3n equals 3n at once, and the whole budget equals the reference', () => {
     const steps = new Search(fixtureTools(plan))
     const atOnce = new Search(fixtureTools(plan))
-    for (const stop of [120, 240, 360]) finish(steps, openGate(plan, () => false, stop))
-    expect(hex(steps.digest())).toBe(finish(atOnce, openGate(plan, () => false, 360)))
-    expect(finish(steps, openGate(plan, () => false))).toBe(reference)
+    for (const stop of [120, 240, 360])
+      finish(
+        steps,
+        openGate(plan, () => false, stop),
+      )
+    expect(hex(steps.digest())).toBe(
+      finish(
+        atOnce,
+        openGate(plan, () => false, 360),
+      ),
+    )
+    expect(
+      finish(
+        steps,
+        openGate(plan, () => false),
+      ),
+    ).toBe(reference)
   })
 
   it('goes on from snapshots taken anywhere', () => {

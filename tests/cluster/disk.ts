@@ -70,14 +70,20 @@ export class Disk implements Journal, RecordReader {
     for (const row of rows.events) this.#events.push({ ...row, sequence: this.#events.length + 1 })
     if (tornSnapshots) return
     for (const row of rows.snapshots) {
-      this.#snapshots.set(row.island, [structuredClone(row), ...(this.#snapshots.get(row.island) ?? [])].slice(0, 2))
+      this.#snapshots.set(
+        row.island,
+        [structuredClone(row), ...(this.#snapshots.get(row.island) ?? [])].slice(0, 2),
+      )
     }
   }
 
   snapshot(island: number): SnapshotRow | undefined {
     return structuredClone(this.#snapshots.get(island)?.[0])
   }
-  *commits(island: number, after: number): Iterable<{ commit: number; evaluation: number; digest: Uint8Array }> {
+  *commits(
+    island: number,
+    after: number,
+  ): Iterable<{ commit: number; evaluation: number; digest: Uint8Array }> {
     yield* (this.#commits.get(island) ?? []).slice(after)
   }
   lastCommit(island: number): { commit: number; digest: Uint8Array } | undefined {

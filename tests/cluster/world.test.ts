@@ -15,13 +15,25 @@ const seeds = process.env.SKERRY_SEED
 
 /** A few plans of about 500 evaluations, so that the calm digest is computed once each. */
 function planOf(variant: number): SearchPlan {
-  const base = mixedPlan({ budget: { simulations: 700 }, controls: [islandPlan(firstControl, { method: 'drift', lookahead: 8 })] })
+  const base = mixedPlan({
+    budget: { simulations: 700 },
+    controls: [islandPlan(firstControl, { method: 'drift', lookahead: 8 })],
+  })
   if (variant === 0) return base
   if (variant === 1) {
-    return { ...base, seed: 11, migration: { ...base.migration!, topology: 'random', leave: 'random', arrive: 'random', lag: 2 } }
+    return {
+      ...base,
+      seed: 11,
+      migration: { ...base.migration!, topology: 'random', leave: 'random', arrive: 'random', lag: 2 },
+    }
   }
   if (variant === 2) return { ...base, seed: 12, replicates: { first: 1, topUp: 1, most: 3, shared: false } }
-  return { ...base, seed: 13, migration: { ...base.migration!, topology: 'complete', arrive: 'if-better' }, controls: [] }
+  return {
+    ...base,
+    seed: 13,
+    migration: { ...base.migration!, topology: 'complete', arrive: 'if-better' },
+    controls: [],
+  }
 }
 const plans = [0, 1, 2, 3].map(planOf)
 const references = plans.map((plan) => new World(plan, 1, calm).run(0))
@@ -75,7 +87,9 @@ describe('a simulated cluster under one seed', () => {
       for (const island of ending.engine.search.islands) {
         const best = island.best!
         const truth = simulated(plan, best.genome, 0, best.replicates)
-        expect([...best.values], `best of island ${island.number}, ${repeat(seed)}`).toEqual([...truth.values])
+        expect([...best.values], `best of island ${island.number}, ${repeat(seed)}`).toEqual([
+          ...truth.values,
+        ])
       }
       for (const event of ending.disk.events()) {
         if (event.kind !== 'worker-shut-out') continue
@@ -88,8 +102,13 @@ describe('a simulated cluster under one seed', () => {
 
   it('canary: a search that commits on arrival has another digest in another weather', () => {
     const base = plans[0]!
-    const plan = { ...base, islands: base.islands.map((island) => ({ ...island, order: 'arrival' as const })) }
-    const digests = new Set(seeds.slice(0, 5).map((seed) => new World(plan, seed, stormOf(seed)).run(4_000).digest))
+    const plan = {
+      ...base,
+      islands: base.islands.map((island) => ({ ...island, order: 'arrival' as const })),
+    }
+    const digests = new Set(
+      seeds.slice(0, 5).map((seed) => new World(plan, seed, stormOf(seed)).run(4_000).digest),
+    )
     if (seeds.length > 1) expect(digests.size).toBeGreaterThan(1)
   })
 })

@@ -4,11 +4,11 @@
 //
 // First comes a phase with faults, then one without that must finish.
 
-import type { SearchPlan } from '../../coordinator/evolution/plan.js'
 import type { Engine } from '../../coordinator/engine/engine.js'
 import { openEngine } from '../../coordinator/engine/recover.js'
-import { genomeFromBytes } from '../../shared/encodings.js'
+import type { SearchPlan } from '../../coordinator/evolution/plan.js'
 import { hex, resultDigest } from '../../shared/digests.js'
+import { genomeFromBytes } from '../../shared/encodings.js'
 import type { DispatchFact, EvaluationResult, WorkItem } from '../../shared/result.js'
 import { type Stream, stream } from '../../shared/streams.js'
 import { fixtureCost, fixtureTools, simulated } from '../fixture.js'

@@ -68,7 +68,7 @@ export function orderChanges(
   searchText: string,
 ): void {
   if (changes.length === 0) return
-  engine.noteData(changedKind, `The search file was changed: ${changes.map(sentenceOf).join('; ')}.`, {
+  engine.note(changedKind, `The search file was changed: ${changes.map(sentenceOf).join('; ')}.`, {
     searchText,
   })
   const touched = (field: string) => changes.some((change) => change.field.startsWith(field))

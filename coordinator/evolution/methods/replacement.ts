@@ -69,25 +69,26 @@ function victimUnlessBetter(members: readonly Individual[], child: Individual, v
 
 /** One of those that score worst, drawn evenly: the id would prefer some on a flat landscape. */
 function oneOfTheWorst(members: readonly Individual[], stream: Stream): number {
-  // Every commit comes through here: the first objective decides almost always, so it is compared by itself.
+  // Every commit comes through here. The first objective decides almost always, so it is looked at by itself.
+  const single = members[0]!.score.length === 1
   let worst = 0
   let worstFirst = members[0]!.score[0]!
   let equals = 1
   for (let index = 1; index < members.length; index++) {
     const first = members[index]!.score[0]!
     if (first < worstFirst) continue
-    const order = first > worstFirst ? 1 : compareScores(members[index]!, members[worst]!)
-    if (order < 0) continue
+    const order = first > worstFirst ? 1 : single ? 0 : compareScores(members[index]!, members[worst]!)
     if (order > 0) {
       worst = index
       worstFirst = first
       equals = 1
-    } else equals++
+    } else if (order === 0) equals++
   }
   if (equals === 1) return worst
   let skip = stream.below(equals)
   for (let index = worst; ; index++) {
-    if (compareScores(members[index]!, members[worst]!) === 0 && skip-- === 0) return index
+    if (members[index]!.score[0]! !== worstFirst) continue
+    if ((single || compareScores(members[index]!, members[worst]!) === 0) && skip-- === 0) return index
   }
 }
 
