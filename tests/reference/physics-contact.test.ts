@@ -96,6 +96,20 @@ describe('Hunt-Crossley contact', () => {
     expect(Math.abs((at(lattice, 0, y) * 1e4) / -g - 1)).toBeLessThan(1e-9)
   })
 
+  test('ground does not hold back what is torn off it', () => {
+    // k + lambda dd/dt = 1e5 (1 - 2) < 0: the law without its clip would pull.
+    const lattice = buildLattice({
+      nodes: [{ positionM: [0, -0.005], velocityMps: [0, 2], massKg: 1 }],
+      struts: [],
+      gravityMps2: [0, 0],
+      ground: { firstXM: -1, spacingM: 1, heightsM: [0, 0, 0] },
+      contact: firm,
+      stepSeconds: 1e-4,
+    })
+    advance(lattice, 100)
+    expect(at(lattice, 0, vy)).toBe(2)
+  })
+
   test('what sinks deeper than the contact allows ends the simulation with the depth', () => {
     const lattice = buildLattice({
       nodes: [{ positionM: [0, 0], massKg: 1 }],

@@ -4,7 +4,7 @@
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
 import { describe, expect, test } from 'vitest'
 import { stream } from '../../shared/streams.js'
-import { advance } from '../../sim/lattice/advance.js'
+import { addForces, advance } from '../../sim/lattice/advance.js'
 import { buildLattice, type Lattice } from '../../sim/lattice/build.js'
 import { kineticJ } from '../../sim/lattice/observe.js'
 import { chooseStep, stableStepSeconds, stepBound, stepSafety } from '../../sim/lattice/stability.js'
@@ -155,6 +155,38 @@ describe('what a step does', () => {
     const lattice = buildLattice(spec)
     advance(lattice, 100)
     expect(at(lattice, 0, y)).toBeCloseTo(-4.95405, 10)
+  })
+
+  test('drives follow strain * cos d * sin(2 pi (f t + phase) - d), tan d = 2 pi f lag, for thousands of steps', () => {
+    // Closed form of a first-order lag's steady answer; the host's sine is the second opinion.
+    const strut = { stiffnessNpm: 100, dampingNspm: 0, restM: 1 }
+    const nodes = [0, 1, 2].map((place) => ({ positionM: [place, 0], massKg: 1, pinned: true }))
+    const lattice = buildLattice({
+      nodes,
+      struts: [],
+      actuators: [
+        { a: 0, b: 1, ...strut, group: 0, strain: 0.1, phaseTurns: 0.15 },
+        { a: 1, b: 2, ...strut, group: 1, strain: 0.2, phaseTurns: 0.6 },
+      ],
+      groups: [{ frequencyHz: 1.3, lagSeconds: 0.07 }, { frequencyHz: 0.7 }],
+      drive: { startSeconds: 0.5, rampSeconds: 0.25 },
+      gravityMps2: [0, 0],
+      stepSeconds: 1e-3,
+    })
+    const commanded = (strain: number, hertz: number, phase: number, lag: number, t: number) => {
+      const d = Math.atan(2 * Math.PI * hertz * lag)
+      return strain * Math.cos(d) * Math.sin(2 * Math.PI * (hertz * t + phase) - d)
+    }
+    for (const steps of [100, 560, 710, 755, 756, 3_333, 10_001]) {
+      advance(lattice, steps - lattice.step)
+      const t = (steps - 500) * 1e-3
+      const grown = Math.min(1, Math.max(0, t / 0.25))
+      addForces(lattice)
+      // A pinned strut at its rest length pushes with k times the commanded lengthening, on its far end.
+      expect(at(lattice, 2, 4)).toBeCloseTo(100 * grown * commanded(0.2, 0.7, 0.6, 0, t), 9)
+      expect(at(lattice, 0, 4)).toBeCloseTo(-100 * grown * commanded(0.1, 1.3, 0.15, 0.07, t), 9)
+      for (let i = 0; i < 3; i++) for (const axis of [4, 5]) put(lattice, i, axis, 0)
+    }
   })
 
   test('how steps are split into calls changes no bit, drives and prescribed nodes included', () => {
