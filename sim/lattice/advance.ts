@@ -100,7 +100,6 @@ function movePrescribed({ prescribed, driven, nodes, stepSeconds }: Lattice): vo
       const next = startM[i]! + amplitudeM[i]! * swing
       nodes[offset + startM.length + i] = (next - nodes[offset + i]!) / stepSeconds
       nodes[offset + i] = next
-      nodes[offset + 2 * startM.length + i] = 0
     }
   }
 }

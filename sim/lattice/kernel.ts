@@ -138,7 +138,6 @@ export function integrate(
   const rooted = contact[2]! !== 0
   for (let i = 0; i < count; i++) {
     const perKg = inverseMass[i]!
-    if (perKg === 0) continue
     const o = i * 6
     const x = nodes[o]!
     const y = nodes[o + 1]!
@@ -146,6 +145,9 @@ export function integrate(
     const vy0 = nodes[o + 3]!
     let fx = nodes[o + 4]! - dragNspm * vx0
     let fy = nodes[o + 5]! - dragNspm * vy0
+    nodes[o + 4] = 0
+    nodes[o + 5] = 0
+    if (perKg === 0) continue
     let normalN = 0
     let slope = 0
     if (y < top) {
@@ -183,8 +185,6 @@ export function integrate(
     nodes[o + 3] = vy
     nodes[o] = x + stepSeconds * vx
     nodes[o + 1] = y + stepSeconds * vy
-    nodes[o + 4] = 0
-    nodes[o + 5] = 0
   }
 }
 
