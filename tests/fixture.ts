@@ -52,7 +52,7 @@ export function simulated(
   for (let row = 0; row < replicates * cases; row++) {
     const draw = stream(plan.seed, 'condition', 0, row % cases, firstReplicate + Math.floor(row / cases))
     const place = genome.place!
-    const squares = place.reduce((sum, value) => sum + value * value, 0)
+    const squares = Array.from(place).reduce((sum, value) => sum + value * value, 0)
     if (squares > 2.6) {
       failures.push({ simulation: row, reason: 'out of bounds' })
       continue

@@ -127,6 +127,7 @@ export class Acceptance {
       return false
     }
     work.votes.push(vote)
+    work.clearedAt = -1
     if (work.votes.length === 1 && work.kind === 'first')
       this.#arrivalOrder.get(work.island)?.push(work.evaluation)
     wake(work.island)
@@ -187,6 +188,7 @@ export class Acceptance {
     if (work.kind === 'first' && overruled) {
       // Nothing was committed with the wrong one: the right one takes its place.
       work.votes = [right, ...work.votes.filter((vote) => vote !== right)]
+      work.clearedAt = -1
       this.#keep(work)
     }
     if (work.kind === 'again') {
@@ -225,6 +227,7 @@ export class Acceptance {
       const left = other.votes.filter((vote) => vote.executor.worker !== executor.worker)
       if (left.length === other.votes.length) continue
       other.votes = left
+      other.clearedAt = -1
       this.#keep(other)
       if (left.length === 0) works.want(other, 'evaluate')
       else if (verdictOf(left).kind === 'disputed') works.want(other, 'confirm')
@@ -316,9 +319,13 @@ export class Acceptance {
       confirm.fraction > 0 &&
       stream(seed, 'confirm', work.island, work.evaluation).uniform() < confirm.fraction
     if (work.spotCheck) return true
+    // Best scores only fall, so who was no would-be best stays none.
+    if (work.clearedAt === island.bestScoresVersion) return false
     const ticket = island.ticket(work.evaluation)
     const vote = work.votes[0]
-    return ticket !== undefined && vote !== undefined && island.wouldBeBest(ticket, vote.result)
+    if (ticket && vote && island.wouldBeBest(ticket, vote.result)) return true
+    work.clearedAt = island.bestScoresVersion
+    return false
   }
 
   // --------------------------------------------------------------------- confirming what is committed

@@ -17,13 +17,14 @@ export interface ArrivalRow {
   readonly result: EvaluationResult
   readonly digest: Uint8Array
 }
-/** The commit of one evaluation on an island; `digest` is the island's chain digest after it (32 bytes). */
+/** The commit of one evaluation on an island; the last one of an island in an append carries its digest (32 bytes). */
 export interface CommitRow {
   readonly island: number
   /** 1, 2, ... */
   readonly commit: number
   readonly evaluation: number
-  readonly digest: Uint8Array
+  /** The island's running digest right after this commit. */
+  readonly digest?: Uint8Array
 }
 /** Individuals an island sent at the end of an epoch, or the word that it has ended. */
 export interface MailRow {

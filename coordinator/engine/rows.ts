@@ -22,6 +22,7 @@ export class Rows {
   #confirmations: ConfirmationRow[] = []
   #births: BirthRow[] = []
   #commits: CommitRow[] = []
+  readonly #committing = new Map<number, Island>()
   #mail: MailRow[] = []
   #events: EventRow[] = []
   #snapshots: SnapshotRow[] = []
@@ -38,6 +39,12 @@ export class Rows {
   }
 
   append(): Append {
+    // Only the last commit of an island in a transaction needs its digest: nobody works out the others.
+    for (const island of this.#committing.values()) {
+      const last = this.#commits.findLastIndex((row) => row.island === island.number)
+      this.#commits[last] = { ...this.#commits[last]!, digest: island.commitDigest }
+    }
+    this.#committing.clear()
     return {
       arrivals: this.#arrivals,
       confirmations: this.#confirmations,
@@ -86,8 +93,8 @@ export class Rows {
       island: island.number,
       commit: island.counters.commits,
       evaluation: ticket.evaluation,
-      digest: island.digest,
     })
+    this.#committing.set(island.number, island)
     if (this.#policy === 'all' && ticket.firstReplicate === 0) this.#birth(island, ticket.individual)
   }
 

@@ -31,6 +31,8 @@ export interface Work {
   recorded: Vote | undefined
   /** Must be simulated a second time whatever it gave; undefined until asked. */
   spotCheck: boolean | undefined
+  /** Version of the island's best scores at which the result was no would-be best; -1 while nobody asked. */
+  clearedAt: number
   /** The first simulation, and further ones for confirmation. */
   readonly evaluate: Lane
   readonly confirm: Lane
@@ -86,6 +88,7 @@ export function newWork(from: WorkDescription): Work {
     confirmed: false,
     recorded: undefined,
     spotCheck: undefined,
+    clearedAt: -1,
     evaluate: { state: 'idle', attempt: 0, leaseEndsMs: Number.POSITIVE_INFINITY },
     confirm: { state: 'idle', attempt: 0, leaseEndsMs: Number.POSITIVE_INFINITY },
     sharedDeaths: 0,

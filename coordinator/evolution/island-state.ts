@@ -3,6 +3,7 @@
 // resident and one that came back) may differ, so ids would not do.
 
 import type { EvaluationResult } from '../../shared/result.js'
+import type { RunningDigestState } from './running-digest.js'
 import type { Ticket } from './tickets.js'
 import type { Individual } from './types.js'
 
@@ -38,7 +39,7 @@ export interface Amendment {
 
 export interface IslandState {
   readonly counters: Counters
-  readonly digest: Uint8Array
+  readonly digest: RunningDigestState
   readonly quota: number
   readonly mostReplicates: number
   readonly ended: boolean

@@ -6,7 +6,6 @@
 // or arrival. Every change enters the island's digest, a running hash: equal digests, equal histories.
 
 import { check } from '../../shared/check.js'
-import { chain, emptyChain } from '../../shared/digests.js'
 import { genomeBytes } from '../../shared/encodings.js'
 import type { Genome } from '../../shared/genome.js'
 import { firstControl, idOf } from '../../shared/ids.js'
@@ -17,6 +16,7 @@ import { columnsOf, scoreOf, simulationsPerReplicate } from './estimate.js'
 import { type Amendment, type Counters, type IslandState, newCounters, Positions } from './island-state.js'
 import { Leader, wouldBeat } from './leader.js'
 import type { IslandPlan, SearchPlan } from './plan.js'
+import { RunningDigest } from './running-digest.js'
 import { Outstanding, type Ticket } from './tickets.js'
 import type { Individual, Method, MethodContext, MethodMachine, Variation } from './types.js'
 
@@ -43,7 +43,9 @@ export class Island {
   readonly #outstanding: Outstanding
   readonly #amendments: Amendment[]
   #topUpQueue: Individual[]
-  #digest: Uint8Array
+  readonly #digest: RunningDigest
+  /** Digest right after the last commit; undefined while nothing but that commit followed. */
+  #commitDigest: Uint8Array | undefined
   #quota: number
   #mostReplicates: number
   #ended: boolean
@@ -59,7 +61,7 @@ export class Island {
       return individual
     }
     this.#counters = state ? { ...state.counters } : newCounters()
-    this.#digest = state?.digest ?? emptyChain
+    this.#digest = new RunningDigest(state?.digest)
     this.#quota = state?.quota ?? tools.quota
     this.#mostReplicates = state?.mostReplicates ?? tools.plan.replicates.most
     this.#ended = state?.ended ?? false
@@ -85,7 +87,15 @@ export class Island {
 
   /** Running hash of everything this island has committed, received, sent and amended. */
   get digest(): Uint8Array {
-    return this.#digest
+    return this.#digest.digest
+  }
+  /** The same as it was right after the last commit. */
+  get commitDigest(): Uint8Array {
+    return this.#commitDigest ?? this.#digest.digest
+  }
+  #note(entry: Uint8Array): void {
+    this.#commitDigest ??= this.#digest.digest
+    this.#digest.add(entry)
   }
   get counters(): Readonly<Counters> {
     return this.#counters
@@ -211,6 +221,11 @@ export class Island {
     return this.tools.island.order === 'proposal' ? this.#outstanding.oldest() : undefined
   }
 
+  /** Changes whenever best scores may have risen; between changes they only fall. */
+  get bestScoresVersion(): number {
+    return this.#leader.recounts
+  }
+
   /** True when this result would make a new best value of some objective on this island. */
   wouldBeBest(ticket: Ticket, result: EvaluationResult): boolean {
     const { individual } = ticket
@@ -243,7 +258,8 @@ export class Island {
     else this.#machine.reconsider(individual)
     this.#noteBest(individual)
     this.#queueTopUp()
-    this.#digest = chain(this.#digest, commitEntry(counters.commits, ticket, resultDigest))
+    this.#digest.add(commitEntry(counters.commits, ticket, resultDigest))
+    this.#commitDigest = undefined
   }
 
   #take(individual: Individual, ticket: Ticket, result: EvaluationResult): void {
@@ -305,7 +321,7 @@ export class Island {
     this.#machine.immigrate(arrivals, placement, stream(this.tools.plan.seed, 'arrivals', this.number, epoch))
     for (const individual of arrivals) this.#noteBest(individual)
     this.#queueTopUp()
-    this.#digest = chain(this.#digest, receiveEntry(epoch, arrivals))
+    this.#note(receiveEntry(epoch, arrivals))
   }
 
   /** Who would leave at the end of `epoch`: as they are now, best first or drawn. */
@@ -326,7 +342,7 @@ export class Island {
       'an epoch is passed after it was received',
     )
     this.#counters.epochsPassed = epoch
-    if (sent.length > 0) this.#digest = chain(this.#digest, sendEntry(epoch, sent))
+    if (sent.length > 0) this.#note(sendEntry(epoch, sent))
     const { stagnationRounds } = this.tools.plan.budget
     const stale = this.#counters.costCommitted - this.#counters.bestSinceCost
     const stagnant =
@@ -391,7 +407,7 @@ export class Island {
     }
     // A false best must not stand in the way of true ones.
     this.#leader.recount(this.#machine)
-    this.#digest = chain(this.#digest, amendmentEntry(this.#counters.commits, amendment))
+    this.#note(amendmentEntry(this.#counters.commits, amendment))
   }
 
   #amended(individual: Individual): Individual {
@@ -425,7 +441,7 @@ export class Island {
     const { best, bestScores } = this.#leader
     return {
       counters: { ...this.#counters },
-      digest: this.#digest,
+      digest: this.#digest.save(),
       quota: this.#quota,
       mostReplicates: this.#mostReplicates,
       ended: this.#ended,

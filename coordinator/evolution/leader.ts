@@ -1,6 +1,6 @@
 // The best an island has, and the smallest score it has seen of every objective: what a would-be best must beat.
 
-import { scoreOf } from './estimate.js'
+import { columnsOf, scoreOf } from './estimate.js'
 import type { ProblemPlan } from './plan.js'
 import type { Individual, MethodMachine } from './types.js'
 
@@ -8,6 +8,8 @@ export class Leader {
   /** Score of whoever has none yet; shared, never written to. */
   readonly noScore: Float64Array
   readonly bestScores: Float64Array
+  /** How often best scores were counted from nothing: until then they only ever fall. */
+  recounts = 0
   #best: Individual | undefined
 
   constructor(objectives: number, best?: Individual, bestScores?: Float64Array) {
@@ -32,6 +34,7 @@ export class Leader {
 
   /** From nothing: after estimates of several were put right. */
   recount(machine: MethodMachine): void {
+    this.recounts++
     const candidates = [...(this.#best ? [this.#best] : []), ...machine.members()]
     this.#best = candidates.length > 0 ? candidates.reduce(better) : undefined
     this.bestScores.set(this.noScore)
@@ -47,9 +50,12 @@ export class Leader {
 
 /** True when these values (no failure among them) would beat a best score. */
 export function wouldBeat(problem: ProblemPlan, values: Float64Array, bestScores: Float64Array): boolean {
-  const score = scoreOf(problem, values, 0)
-  for (let objective = 0; objective < score.length; objective++) {
-    if (score[objective]! < bestScores[objective]!) return true
+  const { objectives } = problem
+  const single = values.length === columnsOf(problem)
+  const score = single ? values : scoreOf(problem, values, 0)
+  for (let objective = 0; objective < objectives.length; objective++) {
+    const turned = single && objectives[objective]!.direction === 'maximise'
+    if ((turned ? 0 - score[objective]! : score[objective]!) < bestScores[objective]!) return true
   }
   return false
 }

@@ -189,7 +189,9 @@ export class SqliteJournal implements Journal {
       })
       const evaluations = segment.map(({ evaluation }) => evaluation)
       const coded = bytesOfEvaluations(first, evaluations)
-      return [island, first, segment.length, coded, segment[segment.length - 1]!.digest]
+      const { digest } = segment[segment.length - 1]!
+      check(digest !== undefined, 'the last commit of an append carries its digest')
+      return [island, first, segment.length, coded, digest]
     })
   }
 

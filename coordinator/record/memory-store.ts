@@ -91,6 +91,7 @@ export class MemoryStore implements StoredReader {
       last.set(row.island, row)
     }
     for (const [island, row] of last) {
+      check(row.digest !== undefined, 'the last commit of an append carries its digest')
       const held = this.#island(island)
       held.lastDigest = row.digest.slice()
       held.commits[held.commits.length - 1]!.digest = held.lastDigest

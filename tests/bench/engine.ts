@@ -82,7 +82,9 @@ function once(simulations: number): EngineFigures {
   const reader: RecordReader = {
     ...emptyRecord,
     arrival: (island, evaluation) => {
-      const outcome = outcomes[ones[island - 1]![evaluation]!]!
+      const stored = ones[island - 1]![evaluation]!
+      if (stored === 0) return undefined
+      const outcome = outcomes[stored - 1]!
       return { island, evaluation, worker: 'a', host: 'bench', attempt: 1, cpuSeconds: 0, ...outcome }
     },
   }
@@ -118,7 +120,7 @@ const second = { kind: 'process', worker: 'b', host: 'bench' } as const
 function factOf(item: WorkItem, ones: Uint8Array): DispatchFact {
   let count = 0
   for (const byte of item.genome) for (let rest = byte; rest > 0; rest >>= 1) count += rest & 1
-  ones[item.evaluation] = count
+  ones[item.evaluation] = count + 1
   const { result, digest } = outcomes[count]!
   const executor = item.purpose === 'evaluate' ? first : second
   return { kind: 'result', item, result, digest, executor, cpuSeconds: 0, wallSeconds: 0 }

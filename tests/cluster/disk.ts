@@ -5,6 +5,7 @@ import type {
   Append,
   ArrivalRow,
   BirthRow,
+  CommitRow,
   EventRow,
   Journal,
   MailRow,
@@ -18,7 +19,7 @@ export class StorageFault extends Error {}
 
 export class Disk implements Journal, RecordReader {
   readonly #arrivals = new Map<string, ArrivalRow>()
-  readonly #commits = new Map<number, { commit: number; evaluation: number; digest: Uint8Array }[]>()
+  readonly #commits = new Map<number, CommitRow[]>()
   readonly #mail = new Map<string, MailRow>()
   readonly #lastMail = new Map<number, MailRow>()
   readonly #events: (EventRow & { sequence: number })[] = []
@@ -58,7 +59,7 @@ export class Disk implements Journal, RecordReader {
     for (const { island, commit, evaluation, digest } of rows.commits) {
       const journal = this.#commits.get(island) ?? []
       if (commit !== journal.length + 1) throw new Error(`commit ${commit} does not follow ${journal.length}`)
-      journal.push({ commit, evaluation, digest })
+      journal.push(digest ? { island, commit, evaluation, digest } : { island, commit, evaluation })
       this.#commits.set(island, journal)
     }
     for (const row of rows.mail) {
@@ -80,14 +81,12 @@ export class Disk implements Journal, RecordReader {
   snapshot(island: number): SnapshotRow | undefined {
     return structuredClone(this.#snapshots.get(island)?.[0])
   }
-  *commits(
-    island: number,
-    after: number,
-  ): Iterable<{ commit: number; evaluation: number; digest: Uint8Array }> {
+  *commits(island: number, after: number): Iterable<CommitRow> {
     yield* (this.#commits.get(island) ?? []).slice(after)
   }
   lastCommit(island: number): { commit: number; digest: Uint8Array } | undefined {
-    return this.#commits.get(island)?.at(-1)
+    const last = this.#commits.get(island)?.at(-1)
+    return last?.digest && { commit: last.commit, digest: last.digest }
   }
   arrival(island: number, evaluation: number): ArrivalRow | undefined {
     return this.#arrivals.get(`${island} ${evaluation}`)

@@ -76,6 +76,14 @@ export interface Ending {
   readonly status: string
 }
 
+/** Something an operator orders once: after so many looks of the coordinator, or when it is started again after the end. */
+export interface Order {
+  /** A kind of event that changes the search. */
+  readonly kind: string
+  readonly at: number | 'the end'
+  readonly give: (engine: Engine) => void
+}
+
 interface Arrival {
   readonly atMs: number
   readonly order: number
@@ -98,9 +106,12 @@ export class World {
   #simulations = 0
   #faulty = true
   readonly #snapshotCommits: number
+  readonly #operator: Order | undefined
+  #looks = 0
 
-  constructor(plan: SearchPlan, seed: number, weather: Weather) {
+  constructor(plan: SearchPlan, seed: number, weather: Weather, operator?: Order) {
     this.#plan = plan
+    this.#operator = operator
     this.#weather = weather
     this.#draw = stream(seed, 'weather', 2)
     this.#disk = new Disk(stream(seed, 'weather', 3))
@@ -145,10 +156,25 @@ export class World {
   #look(): boolean {
     this.#engine.take(this.#arrived(), this.#nowMs)
     this.#makeDurable()
+    if (this.#obeys()) return false
     if (this.#engine.status() !== 'running') return true
     const items = this.#engine.work(2 * this.#weather.workers, this.#nowMs)
     for (const item of items) this.#simulate(item)
     return false
+  }
+
+  /** Gives the operator's order when it is time and the record does not hold it yet. */
+  #obeys(): boolean {
+    const order = this.#operator
+    this.#looks++
+    if (!order || this.#engine.impurities().includes(order.kind)) return false
+    if (order.at === 'the end') {
+      if (this.#engine.status() === 'running') return false
+      this.#engine = this.#open()
+    } else if (this.#looks < order.at) return false
+    order.give(this.#engine)
+    this.#makeDurable()
+    return true
   }
 
   #makeDurable(): void {
