@@ -115,7 +115,9 @@ export class Acceptance {
   /** Counts a vote; false when this worker has voted before. */
   #vote(work: Work, vote: Vote, purpose: Purpose): boolean {
     const { works, counts, wake } = this.#parts
-    const earlier = work.votes.find((other) => other.executor.worker === vote.executor.worker)
+    const { worker } = vote.executor
+    const earlier =
+      work.votes.length > 0 ? work.votes.find((other) => other.executor.worker === worker) : undefined
     if (earlier) {
       // Whoever contradicts himself is no witness: others must say it.
       const contradicts = !sameBytes(earlier.digest, vote.digest)
@@ -354,8 +356,8 @@ export class Acceptance {
   }
 
   #remember(island: number, evaluation: number): void {
-    let known = this.#confirmed.get(island)
-    if (!known) this.#confirmed.set(island, (known = new Set()))
+    const known = this.#confirmed.get(island) ?? new Set<number>()
+    this.#confirmed.set(island, known)
     if (known.has(evaluation)) return
     known.add(evaluation)
     this.#confirmedCount++

@@ -130,8 +130,8 @@ export class Works {
   }
 
   add(work: Work): void {
-    let works = this.#byIsland.get(work.island)
-    if (!works) this.#byIsland.set(work.island, (works = new Map()))
+    const works = this.#byIsland.get(work.island) ?? new Map<number, Work>()
+    this.#byIsland.set(work.island, works)
     check(!works.has(work.evaluation), 'an evaluation is in hand once')
     works.set(work.evaluation, work)
   }

@@ -31,6 +31,8 @@ export interface IslandTools {
   readonly expectedCost: (genome: Genome) => number
 }
 
+/** Values of whoever has none yet; shared, never written to. */
+const noValues = new Float64Array(0)
 const noEpoch = Number.MAX_SAFE_INTEGER
 /** Length of an epoch where nothing migrates: budgets still end at epochs. */
 const roundsWithoutMigration = 20
@@ -176,7 +178,7 @@ export class Island {
       origin: birth.origin,
       bornAtCommit: this.#counters.commits,
       blocks: [],
-      values: new Float64Array(0),
+      values: noValues,
       replicates: 0,
       failedSimulations: 0,
       score: this.#leader.noScore,

@@ -54,6 +54,9 @@ export class Outstanding {
   }
 
   find(evaluation: number): Ticket | undefined {
+    // Mostly they follow one another without a gap.
+    const guess = this.#tickets[evaluation - (this.#tickets[0]?.evaluation ?? 0)]
+    if (guess?.evaluation === evaluation) return guess
     return this.#tickets.find((ticket) => ticket.evaluation === evaluation)
   }
 
