@@ -22,6 +22,7 @@ import type { RederiveOptions, RederiveReport, RunEnd, RunOptions } from './cli/
 import { searchTables } from './cli/search-tables.js'
 import { type OpenedSearch, openSearch } from './cli/searchfile/open.js'
 import { localDispatcher } from './dispatch/local.js'
+import { underWeather } from './dispatch/weather.js'
 import type { Engine } from './engine/engine.js'
 import { type LoopEnd, type LoopState, runLoop } from './engine/loop.js'
 import type { Dispatcher } from './engine/ports.js'
@@ -156,17 +157,13 @@ async function drive(driven: Driven): Promise<RunEnd> {
 
 function dispatcherOf({ record, folder, cores }: Driven): Dispatcher {
   const { seed, replicates } = record.plan
-  return localDispatcher((events) =>
-    createPool(
-      {
-        pluginFile: resolve(recordFolder(folder).plugin),
-        seed,
-        sharedConditions: replicates.shared,
-        threads: cores,
-      },
-      events,
-    ),
+  const pluginFile = resolve(recordFolder(folder).plugin)
+  const local = localDispatcher((events) =>
+    createPool({ pluginFile, seed, sharedConditions: replicates.shared, threads: cores }, events),
   )
+  // For tests of the promise that the order of arrival changes nothing; no option, because nobody else wants it.
+  const weather = process.env.SKERRY_TEST_WEATHER
+  return weather === undefined ? local : underWeather(local, { seed: Number(weather), baseMs: 1, oneIn: 12 })
 }
 
 const endWord: { readonly [end in LoopEnd]: RunEnd['ended'] } = {
