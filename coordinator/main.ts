@@ -96,7 +96,7 @@ async function runRecord(
     ...(options.stopAfter === undefined ? {} : { stopAfter: options.stopAfter }),
   })
   noteStart(engine, record, replay.commits, options)
-  orderChanges(engine, changes, opened.fields, opened.text)
+  orderChanges(engine, changes, opened)
   const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
   return await drive({ options, record, folder, engine, problem, cores })
 }

@@ -54,9 +54,6 @@ export class Acceptance {
 
   constructor(parts: AcceptanceParts) {
     this.#parts = parts
-    for (const { number, tools } of parts.search.islands) {
-      if (tools.island.order === 'arrival') this.#arrivalOrder.set(number, [])
-    }
     for (const event of parts.reader.events()) {
       if (event.kind === 'worker-shut-out') this.shutOut.add(shutOutSchema.parse(event.data).worker)
     }
@@ -130,10 +127,14 @@ export class Acceptance {
     }
     work.votes.push(vote)
     work.clearedAt = -1
-    if (work.votes.length === 1 && work.kind === 'first')
-      this.#arrivalOrder.get(work.island)?.push(work.evaluation)
+    if (work.votes.length === 1 && work.kind === 'first') this.#noteArrival(work)
     wake(work.island)
     return true
+  }
+
+  #noteArrival({ island, evaluation }: Work): void {
+    if (this.#parts.search.island(island).tools.island.order !== 'arrival') return
+    this.#arrivalOrder.set(island, [...(this.#arrivalOrder.get(island) ?? []), evaluation])
   }
 
   /** Writes the first vote down where the record does not have it yet. */

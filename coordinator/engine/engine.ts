@@ -11,14 +11,8 @@ import { check } from '../../shared/check.js'
 import { nameOf } from '../../shared/ids.js'
 import type { DispatchFact, WorkItem } from '../../shared/result.js'
 import type { Island } from '../evolution/island.js'
-import {
-  type Gate,
-  type Mail,
-  type Outcome,
-  quotasOf,
-  type Search,
-  type Standing,
-} from '../evolution/search.js'
+import type { IslandPlan } from '../evolution/plan.js'
+import type { Gate, Mail, Outcome, Search, Standing } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
 import type { Individual } from '../evolution/types.js'
 import { Acceptance } from './acceptance.js'
@@ -50,7 +44,7 @@ export class Engine implements Gate {
   readonly #standing = new Map<number, Standing>()
   /** Islands that may be able to move. */
   readonly #due = new Set<number>()
-  readonly #stopQuotas: ReadonlyMap<number, number> | undefined
+  #stopQuotas: ReadonlyMap<number, number> | undefined
   readonly #lastSnapshot = new Map<number, number>()
   #commitsSinceForgetting = 0
   /** Nobody can move and everything to be reported is confirmed. */
@@ -61,7 +55,7 @@ export class Engine implements Gate {
     this.search = search
     this.#options = options
     this.#rows = new Rows(search.plan)
-    this.#stopQuotas = options.stopAfter === undefined ? undefined : quotasOf(search.plan, options.stopAfter)
+    this.#stopQuotas = this.#stopQuotasOf(options.stopAfter)
     const wake = (island: number) => this.#wake(island)
     const standing = (island: number) => this.#standing.get(island)
     const parts = { search, schedule, reader, rows: this.#rows, standing, wake }
@@ -72,14 +66,20 @@ export class Engine implements Gate {
       orders: this.#orders,
       counts: this.counts,
     })
-    for (const island of search.islands) {
-      this.#due.add(island.number)
-      this.#lastSnapshot.set(island.number, island.counters.commits)
-      for (const ticket of island.outstanding()) {
-        const work = this.#addWork(island, ticket)
-        if (!this.#acceptance.resume(work)) this.#works.want(work, 'evaluate')
-      }
+    for (const island of search.islands) this.#takeUp(island)
+  }
+
+  #takeUp(island: Island): void {
+    this.#due.add(island.number)
+    this.#lastSnapshot.set(island.number, island.counters.commits)
+    for (const ticket of island.outstanding()) {
+      const work = this.#addWork(island, ticket)
+      if (!this.#acceptance.resume(work)) this.#works.want(work, 'evaluate')
     }
+  }
+
+  #stopQuotasOf(stopAfter: number | undefined): ReadonlyMap<number, number> | undefined {
+    return stopAfter === undefined ? undefined : this.search.quotas(stopAfter)
   }
 
   #addWork(island: Island, ticket: Ticket): Work {
@@ -169,9 +169,29 @@ export class Engine implements Gate {
     this.#rows.event(eventRow({ kind, sentence, data }))
   }
 
+  /** Orders a budget for all islands so far; those that have ended go on where it gives them more. */
+  orderBudget(sentence: string, simulations: number): void {
+    this.search.noteBudget(simulations)
+    const islands = this.search.islandPlans.length
+    this.orderAtEpoch('budget-changed', sentence, (epoch, island) => ({
+      fact: 'budget',
+      simulations,
+      islands,
+      epoch,
+      silentFrom: island.ended ? island.counters.epochsPassed + 1 : 0,
+    }))
+    this.#stopQuotas = this.#stopQuotasOf(this.#options.stopAfter)
+  }
+
   /** Orders a fact for the end of the first epoch that no island has passed. */
   orderAtEpoch(kind: string, sentence: string, make: (epoch: number, island: Island) => WorldFact): void {
     this.#orders.atEpoch(kind, sentence, make)
+  }
+
+  /** Orders who takes part after the first epoch that no island has passed: others are paused, new ones added. */
+  orderMembership(sentence: string, active: readonly number[], added: readonly IslandPlan[]): void {
+    for (const island of this.#orders.membership(sentence, active, added)) this.#takeUp(island)
+    this.#stopQuotas = this.#stopQuotasOf(this.#options.stopAfter)
   }
 
   // ------------------------------------------------------------------------------------- the islands
@@ -298,7 +318,7 @@ export class Engine implements Gate {
   /** 'finished' when all islands have ended, 'rested' when none can go on before more is allowed. */
   status(): 'running' | 'rested' | 'finished' {
     if (!this.#settled) return 'running'
-    return this.search.islands.every((island) => island.ended) ? 'finished' : 'rested'
+    return this.search.islands.every((island) => island.ended || island.paused) ? 'finished' : 'rested'
   }
 
   standing(island: number): Standing | undefined {

@@ -2,6 +2,7 @@
 // down with it, and let in there. Which kinds have entered is the search's purity.
 
 import type { Island } from '../evolution/island.js'
+import type { IslandPlan } from '../evolution/plan.js'
 import type { Search, Standing } from '../evolution/search.js'
 import type { RecordReader } from './ports.js'
 import { eventRow, type Rows } from './rows.js'
@@ -58,6 +59,28 @@ export class Orders {
     }
   }
 
+  /** Who takes part after the first epoch that nobody has passed. Returns the islands that are new. */
+  membership(sentence: string, active: readonly number[], added: readonly IslandPlan[]): readonly Island[] {
+    const { search } = this.#parts
+    const epoch = search.firstOpenEpoch()
+    const membership = { epoch, active: [...active], added: [...added], simulations: search.simulations }
+    const before = [...search.islands]
+    const begun = search.changeMembership(membership)
+    const islands = search.islandPlans.length
+    this.#impurities.add('islands-changed')
+    for (const island of before) {
+      const standsStill = island.ended || island.paused
+      // A control is in no epoch of the others: it takes its new quota at its own next one.
+      const next = island.isControl ? island.counters.epochsPassed + 1 : epoch
+      this.at(island, 'islands-changed', true, sentence, {
+        stage: standsStill ? 'waiting' : 'epoch',
+        at: standsStill ? island.counters.commits : next,
+        fact: { fact: 'islands', islands, ...membership },
+      })
+    }
+    return begun
+  }
+
   at(island: Island, kind: string, changesSearch: boolean, sentence: string, data: FactData): void {
     const { schedule, rows, wake } = this.#parts
     schedule.add(island.number, data)
@@ -81,7 +104,7 @@ export class Orders {
   /** Lets the next fact for this point in; false when there is none. */
   enterNext(island: Island, stage: Stage, at: number): boolean {
     const fact = this.#parts.schedule.next(island.number, stage, at)
-    if (fact) apply(this.#parts.search, island, fact)
+    if (fact) apply(this.#parts.search, island, stage, fact)
     return fact !== undefined
   }
 

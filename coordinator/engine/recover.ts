@@ -2,13 +2,13 @@
 // the same with nothing in it.
 
 import type { Island } from '../evolution/island.js'
-import { Search, type SearchTools } from '../evolution/search.js'
+import { type Membership, Search, type SearchTools } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
 import { Engine, type EngineOptions } from './engine.js'
 import type { RecordReader } from './ports.js'
 import { ReplayGate, type ReplayProgress } from './replay.js'
 import { readStates } from './states.js'
-import { Schedule } from './world-facts.js'
+import { Schedule, type WorldFact } from './world-facts.js'
 
 /** The search as the record has it, and what it took to get there. */
 export interface Recovered {
@@ -29,14 +29,20 @@ export function replayRecord(
     onCommit,
   }: { fromStart?: boolean; onCommit?: (island: Island, ticket: Ticket) => void } = {},
 ): Recovered {
-  const states = fromStart ? new Map() : readStates(tools.plan, reader)
-  const search = new Search(tools, states, (island, epoch) => reader.mail(island, epoch))
   const schedule = new Schedule()
-  for (const event of reader.events()) {
-    const fact = schedule.addRecorded(event)
-    if (fact?.fact.fact === 'budget' && fact.fact.silentFrom > 0) {
-      search.post.silence(event.island, fact.fact.silentFrom, fact.fact.epoch)
-    }
+  const facts = [...reader.events()].flatMap((event) => {
+    const data = schedule.addRecorded(event)
+    return data ? [{ island: event.island, fact: data.fact }] : []
+  })
+  const memberships = membershipsOf(facts.map(({ fact }) => fact))
+  const plans = [...tools.plan.islands, ...memberships.flatMap(({ added }) => added), ...tools.plan.controls]
+  const states = fromStart ? new Map() : readStates(plans, reader)
+  const search = new Search(tools, states, (island, epoch) => reader.mail(island, epoch))
+  for (const membership of memberships) search.changeMembership(membership)
+  for (const { island, fact } of facts) {
+    if (fact.fact !== 'budget') continue
+    search.noteBudget(fact.simulations)
+    if (fact.silentFrom > 0) search.post.silence(island, fact.silentFrom, fact.epoch)
   }
   for (const island of search.islands) {
     const last = reader.lastMail(island.number)
@@ -46,6 +52,13 @@ export function replayRecord(
   const gate = new ReplayGate(search, reader, schedule, onCommit)
   gate.run()
   return { search, schedule, replay: gate.progress }
+}
+
+/** One fact is written down for every island it concerns; a membership holds for all. */
+function membershipsOf(facts: readonly WorldFact[]): Membership[] {
+  const byEpoch = new Map<number, Membership>()
+  for (const fact of facts) if (fact.fact === 'islands') byEpoch.set(fact.epoch, fact)
+  return [...byEpoch.values()].sort((a, b) => a.epoch - b.epoch)
 }
 
 /** An engine that goes on where the record stands. */

@@ -46,6 +46,7 @@ export class ReplayGate implements Gate {
     for (const island of search.islands) {
       const rows = reader.commits(island.number, island.counters.commits)[Symbol.iterator]()
       this.#journals.set(island.number, { rows, next: nextOf(rows) })
+      schedule.skip(island)
       const finish = schedule.finishOf(island.number)
       if (finish !== undefined && finish > island.counters.epochsPassed) island.finishAfter(finish)
     }
@@ -130,7 +131,7 @@ export class ReplayGate implements Gate {
 
   factWhileWaiting(island: Island): boolean {
     const fact = this.#schedule.next(island.number, 'waiting', island.counters.commits)
-    if (fact) apply(this.#search, island, fact)
+    if (fact) apply(this.#search, island, 'waiting', fact)
     return fact !== undefined
   }
   factsBeforeSending(island: Island, epoch: number): void {
@@ -141,7 +142,7 @@ export class ReplayGate implements Gate {
   }
   #enterAll(island: Island, stage: Stage, at: number): void {
     for (let fact = this.#schedule.next(island.number, stage, at); fact; ) {
-      apply(this.#search, island, fact)
+      apply(this.#search, island, stage, fact)
       fact = this.#schedule.next(island.number, stage, at)
     }
   }

@@ -2,13 +2,13 @@
 // that does not fit is no loss: the journal leads to the same state.
 
 import type { IslandState } from '../evolution/island-state.js'
-import type { SearchPlan } from '../evolution/plan.js'
+import type { IslandPlan } from '../evolution/plan.js'
 import type { RecordReader } from './ports.js'
 
 /** The newest usable snapshot of every island. */
-export function readStates(plan: SearchPlan, reader: RecordReader): Map<number, IslandState> {
+export function readStates(plans: readonly IslandPlan[], reader: RecordReader): Map<number, IslandState> {
   const states = new Map<number, IslandState>()
-  for (const { island } of [...plan.islands, ...plan.controls]) {
+  for (const { island } of plans) {
     const snapshot = reader.snapshot(island)
     if (snapshot && isIslandState(snapshot.state) && snapshot.state.counters.commits === snapshot.commit) {
       states.set(island, snapshot.state)

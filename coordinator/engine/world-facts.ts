@@ -5,7 +5,8 @@
 import { z } from 'zod'
 import { refuse } from '../../shared/refusals.js'
 import type { Island } from '../evolution/island.js'
-import { quotasOf, type Search } from '../evolution/search.js'
+import type { IslandPlan } from '../evolution/plan.js'
+import type { Search } from '../evolution/search.js'
 import type { EventRow } from './ports.js'
 
 /** Where a fact enters: its number is a count of commits for 'waiting', an epoch for 'sending' and 'epoch'. */
@@ -24,8 +25,26 @@ const factSchema = z.discriminatedUnion('fact', [
   }),
   z.object({ fact: z.literal('finish'), epoch: z.number() }),
   /** `silentFrom` > 0: the island had ended and sent nothing from that epoch on; it goes on after `epoch`. */
-  z.object({ fact: z.literal('budget'), simulations: z.number(), epoch: z.number(), silentFrom: z.number() }),
+  z.object({
+    fact: z.literal('budget'),
+    simulations: z.number(),
+    /** How many islands there were to share it. */
+    islands: z.number(),
+    epoch: z.number(),
+    silentFrom: z.number(),
+  }),
   z.object({ fact: z.literal('most-replicates'), most: z.number() }),
+  /** Islands added, paused or continued; the plans of added ones are checked when the search file is read. */
+  z.object({
+    fact: z.literal('islands'),
+    epoch: z.number(),
+    active: z.array(z.number()),
+    simulations: z.number(),
+    islands: z.number(),
+    added: z.array(
+      z.custom<IslandPlan>((plan) => typeof plan === 'object' && plan !== null && 'island' in plan),
+    ),
+  }),
 ])
 export type WorldFact = z.infer<typeof factSchema>
 
@@ -66,6 +85,13 @@ export class Schedule {
     return fact
   }
 
+  /** Facts that a snapshot already has in it are not let in again. */
+  skip(island: Island): void {
+    const { commits, epochsPassed, factsWaiting, factsSending } = island.counters
+    for (let n = 0; n < factsWaiting; n++) this.next(island.number, 'waiting', commits)
+    for (let n = 0; n < factsSending; n++) this.next(island.number, 'sending', epochsPassed + 1)
+  }
+
   /** The epoch this island is ordered to finish with, if any. */
   finishOf(island: number): number | undefined {
     let earliest: number | undefined
@@ -83,26 +109,41 @@ function keyOf(island: number, stage: Stage, at: number): string {
   return `${island} ${stage} ${at}`
 }
 
-/** Lets a fact act on an island: the rows of what the world may change. */
-export function apply(search: Search, island: Island, fact: WorldFact): void {
-  switch (fact.fact) {
-    case 'amend':
-      island.amend({
-        individual: fact.individual,
-        firstReplicate: fact.firstReplicate,
-        result: { values: Float64Array.from(fact.result.values), failures: fact.result.failures },
-      })
-      return
-    case 'finish':
-      if (fact.epoch > island.counters.epochsPassed) island.finishAfter(fact.epoch)
-      return
-    case 'budget': {
-      const quota = quotasOf(search.plan, fact.simulations).get(island.number)
-      if (quota !== undefined) island.setQuota(quota)
-      if (island.ended) search.resume(island, fact.epoch)
-      return
-    }
-    case 'most-replicates':
-      island.setMostReplicates(fact.most)
-  }
+type Actions = {
+  readonly [Kind in WorldFact['fact']]: (
+    search: Search,
+    island: Island,
+    fact: Extract<WorldFact, { fact: Kind }>,
+  ) => void
+}
+
+/** What each kind of fact does to an island. */
+const actions: Actions = {
+  amend: (_search, island, { individual, firstReplicate, result }) =>
+    island.amend({
+      individual,
+      firstReplicate,
+      result: { values: Float64Array.from(result.values), failures: result.failures },
+    }),
+  finish: (_search, island, { epoch }) => {
+    if (epoch > island.counters.epochsPassed) island.finishAfter(epoch)
+  },
+  budget: (search, island, { simulations, islands, epoch }) => {
+    island.setQuota(search.quotas(simulations, islands).get(island.number) ?? island.quota)
+    if (island.ended) search.resume(island, epoch)
+  },
+  'most-replicates': (_search, island, { most }) => island.setMostReplicates(most),
+  islands: (search, island, { epoch, active, simulations, islands }) => {
+    island.setQuota(search.quotas(simulations, islands).get(island.number) ?? island.quota)
+    if (island.isControl) return
+    if (!active.includes(island.number)) island.pause()
+    else if (island.paused) island.continueAfter(epoch)
+  },
+}
+
+/** Lets a fact act on an island. */
+export function apply(search: Search, island: Island, stage: Stage, fact: WorldFact): void {
+  if (stage !== 'epoch') island.noteFact(stage)
+  const act = actions[fact.fact] as (search: Search, island: Island, fact: WorldFact) => void
+  act(search, island, fact)
 }

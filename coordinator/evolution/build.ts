@@ -1,7 +1,6 @@
 // Joins a plan with the tables of methods and operators and with the two functions of the problem that a
 // search calls while it proposes.
 
-import { check } from '../../shared/check.js'
 import type { Genome } from '../../shared/genome.js'
 import { methodNamed } from './methods/index.js'
 import { makeVariation } from './operators/index.js'
@@ -18,17 +17,13 @@ export interface ProblemFunctions {
 export function searchTools(plan: SearchPlan, problem: ProblemFunctions): SearchTools {
   return {
     plan,
-    toolsOf: (number, quota) => {
-      const island = [...plan.islands, ...plan.controls].find((one) => one.island === number)
-      check(island !== undefined, 'tools are asked for islands of the plan')
-      return {
-        plan,
-        island,
-        quota,
-        method: methodNamed(island.method),
-        variation: makeVariation(plan.problem.spec, island.operators, { repair: problem.repair }),
-        expectedCost: problem.expectedCost,
-      }
-    },
+    toolsOf: (island, quota) => ({
+      plan,
+      island,
+      quota,
+      method: methodNamed(island.method),
+      variation: makeVariation(plan.problem.spec, island.operators, { repair: problem.repair }),
+      expectedCost: problem.expectedCost,
+    }),
   }
 }

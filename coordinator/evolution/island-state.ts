@@ -26,6 +26,9 @@ export interface Counters {
   epochsReceived: number
   failedSimulations: number
   topUps: number
+  /** Facts of the world that entered since the last commit, and while the present epoch's end was waited for. */
+  factsWaiting: number
+  factsSending: number
   /** Island cost at which the present best became the best. */
   bestSinceCost: number
 }
@@ -43,6 +46,7 @@ export interface IslandState {
   readonly quota: number
   readonly mostReplicates: number
   readonly ended: boolean
+  readonly paused: boolean
   readonly finishAfterEpoch: number
   readonly individuals: readonly Individual[]
   /** Positions in `individuals`. */
@@ -69,6 +73,8 @@ export function newCounters(): Counters {
     epochsReceived: 0,
     failedSimulations: 0,
     topUps: 0,
+    factsWaiting: 0,
+    factsSending: 0,
     bestSinceCost: 0,
   }
 }

@@ -51,6 +51,7 @@ export class Island {
   #quota: number
   #mostReplicates: number
   #ended: boolean
+  #paused: boolean
   #finishAfterEpoch: number
   readonly #leader: Leader
 
@@ -67,6 +68,7 @@ export class Island {
     this.#quota = state?.quota ?? tools.quota
     this.#mostReplicates = state?.mostReplicates ?? tools.plan.replicates.most
     this.#ended = state?.ended ?? false
+    this.#paused = state?.paused ?? false
     this.#finishAfterEpoch = state?.finishAfterEpoch ?? noEpoch
     this.#outstanding = new Outstanding(
       state?.tickets.map((ticket) => ({ ...ticket, individual: byPosition(ticket.individual) })),
@@ -106,6 +108,10 @@ export class Island {
   get ended(): boolean {
     return this.#ended
   }
+  /** True while an order from outside keeps it from proposing and committing. */
+  get paused(): boolean {
+    return this.#paused
+  }
   get quota(): number {
     return this.#quota
   }
@@ -137,13 +143,13 @@ export class Island {
   /** Proposes while there are free slots, quota and a willing method. Returns what is new, in order. */
   fill(): Ticket[] {
     const released: Ticket[] = []
-    while (!this.#ended && this.#outstanding.size < this.tools.island.lookahead) {
+    while (!this.#ended && !this.#paused && this.#outstanding.size < this.tools.island.lookahead) {
       const ticket = this.#proposeTopUp() ?? this.#proposeBirth()
       if (!ticket) break
       this.#outstanding.add(ticket)
       released.push(ticket)
     }
-    if (this.#outstanding.size === 0 && !this.#ended) {
+    if (this.#outstanding.size === 0 && !this.#ended && !this.#paused) {
       check(!this.#affords(this.tools.plan.replicates.first), 'a method waits only for results')
       this.#ended = true
     }
@@ -240,7 +246,7 @@ export class Island {
   /** Takes a result in. `resultDigest` is 32 bytes over the result's canonical bytes. */
   commit(ticket: Ticket, result: EvaluationResult, resultDigest: Uint8Array): void {
     const { plan } = this.tools
-    check(!this.#ended, 'an ended island commits nothing')
+    check(!this.#ended && !this.#paused, 'an island that has ended or is paused commits nothing')
     check(
       result.values.length === ticket.simulations * columnsOf(plan.problem),
       'a result has a row for every simulation',
@@ -251,6 +257,7 @@ export class Island {
     this.#take(individual, ticket, result)
     const counters = this.#counters
     counters.commits++
+    counters.factsWaiting = 0
     counters.committedSimulations += ticket.simulations
     counters.costCommitted += ticket.expectedCost
     counters.virtualTime = Math.max(counters.virtualTime, ticket.virtualFinish)
@@ -344,6 +351,7 @@ export class Island {
       'an epoch is passed after it was received',
     )
     this.#counters.epochsPassed = epoch
+    this.#counters.factsSending = 0
     if (sent.length > 0) this.#note(sendEntry(epoch, sent))
     const { stagnationRounds } = this.tools.plan.budget
     const stale = this.#counters.costCommitted - this.#counters.bestSinceCost
@@ -373,10 +381,41 @@ export class Island {
     this.#quota = quota
   }
 
+  /** One more fact of the world has entered at this stage: a snapshot knows which a replay must not let in again. */
+  noteFact(stage: 'waiting' | 'sending'): void {
+    if (stage === 'waiting') this.#counters.factsWaiting++
+    else this.#counters.factsSending++
+  }
+
   /** Sets an ended island going again, as if it had just passed `epoch`. False when its quota is still used up. */
   resumeAfter(epoch: number): boolean {
     check(this.#ended, 'only an ended island is set going again')
     if (!this.#affords(this.tools.plan.replicates.first)) return false
+    this.#joinAfter(epoch)
+    this.#finishAfterEpoch = noEpoch
+    this.#ended = false
+    return true
+  }
+
+  /** An island that was added while others search: its first epoch is the one after `epoch`. */
+  beginAfter(epoch: number): void {
+    check(this.#counters.evaluations === 0, 'an island begins once')
+    this.#joinAfter(epoch)
+  }
+
+  /** Stands still from now on; what is outstanding stays so. */
+  pause(): void {
+    this.#paused = true
+  }
+
+  /** Goes on, as if it had just passed `epoch`. */
+  continueAfter(epoch: number): void {
+    check(this.#paused, 'only a paused island is continued')
+    this.#paused = false
+    this.#joinAfter(epoch)
+  }
+
+  #joinAfter(epoch: number): void {
     const counters = this.#counters
     const rounds = this.tools.plan.migration?.everyRounds ?? roundsWithoutMigration
     const passed = Math.max(epoch, counters.epochsPassed)
@@ -384,9 +423,6 @@ export class Island {
     counters.epochsPassed = passed
     counters.epochsReceived = passed
     counters.bestSinceCost = counters.costCommitted
-    this.#finishAfterEpoch = noEpoch
-    this.#ended = false
-    return true
   }
 
   setMostReplicates(most: number): void {
@@ -447,6 +483,7 @@ export class Island {
       quota: this.#quota,
       mostReplicates: this.#mostReplicates,
       ended: this.#ended,
+      paused: this.#paused,
       finishAfterEpoch: this.#finishAfterEpoch,
       held: this.#machine.held().map(positionOf),
       best: best ? positionOf(best) : -1,

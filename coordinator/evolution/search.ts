@@ -12,7 +12,7 @@ import { splitBudget } from './budget.js'
 import { Island, type IslandTools } from './island.js'
 import type { IslandState } from './island-state.js'
 import { topologies } from './migration.js'
-import type { SearchPlan } from './plan.js'
+import type { IslandPlan, SearchPlan } from './plan.js'
 import type { Ticket } from './tickets.js'
 import type { Individual } from './types.js'
 
@@ -55,21 +55,34 @@ export interface Gate {
 }
 
 /** Why an island stands still. */
-export type Standing = 'result' | 'mail' | 'confirmation' | 'resting' | 'ended'
+export type Standing = 'result' | 'mail' | 'confirmation' | 'resting' | 'paused' | 'ended'
 
 export interface SearchTools {
   readonly plan: SearchPlan
-  /** Tools of one island, made from the plan; the quota is the search's business. */
-  readonly toolsOf: (island: number, quota: number) => IslandTools
+  /** Tools of one island, of the plan or added later; the quota is the search's business. */
+  readonly toolsOf: (island: IslandPlan, quota: number) => IslandTools
+}
+
+/** From the end of an epoch on: which islands take part, and the plans of those that are new. */
+export interface Membership {
+  readonly epoch: number
+  readonly active: readonly number[]
+  readonly added: readonly IslandPlan[]
+  /** The budget that is split among all islands from then on. */
+  readonly simulations: number
 }
 
 export class Search {
   readonly plan: SearchPlan
-  readonly islands: readonly Island[]
+  readonly #tools: SearchTools
+  readonly #states: ReadonlyMap<number, IslandState>
+  readonly #plans: IslandPlan[]
+  readonly #islands: Island[]
   readonly #byNumber = new Map<number, Island>()
   readonly #post: Post
-  readonly #migrating: readonly number[]
-  readonly #restarted: Set<number>
+  /** Who migrates, by the epoch after which it holds; ascending. */
+  readonly #memberships: Membership[]
+  #simulations: number
 
   /** `states` are snapshots by island; `recordedMail` finds what was sent before them. */
   constructor(
@@ -78,16 +91,72 @@ export class Search {
     recordedMail: (island: number, epoch: number) => Mail | undefined = () => undefined,
   ) {
     this.plan = tools.plan
+    this.#tools = tools
+    this.#states = states
     this.#post = new Post(recordedMail)
-    const quotas = quotasOf(tools.plan, tools.plan.budget.simulations)
-    this.islands = [...tools.plan.islands, ...tools.plan.controls].map(({ island }) => {
-      const quota = quotas.get(island)
-      check(quota !== undefined, 'every island has a quota')
-      return new Island(tools.toolsOf(island, quota), states.get(island))
+    this.#plans = [...tools.plan.islands]
+    const { simulations } = tools.plan.budget
+    this.#simulations = simulations
+    this.#memberships = [
+      { epoch: 0, active: this.#plans.map(({ island }) => island), added: [], simulations },
+    ]
+    this.#islands = [...tools.plan.islands, ...tools.plan.controls].map((plan) =>
+      this.#make(plan, simulations),
+    )
+  }
+
+  #make(plan: IslandPlan, simulations: number): Island {
+    const quota = this.quotas(simulations).get(plan.island)
+    check(quota !== undefined && !this.#byNumber.has(plan.island), 'every island has a quota and a number')
+    const island = new Island(this.#tools.toolsOf(plan, quota), this.#states.get(plan.island))
+    this.#byNumber.set(plan.island, island)
+    return island
+  }
+
+  /** In the order of their numbers. */
+  get islands(): readonly Island[] {
+    return this.#islands
+  }
+
+  /** Plans of the islands so far, without controls, paused ones too. */
+  get islandPlans(): readonly IslandPlan[] {
+    return this.#plans
+  }
+
+  /**
+   * Quotas by island number for a budget: split by share among the first `islands` of all islands so far, paused
+   * ones too; a control has the budget for itself.
+   */
+  quotas(simulations: number, islands = this.#plans.length): Map<number, number> {
+    return quotasOf({ ...this.plan, islands: this.#plans.slice(0, islands) }, simulations)
+  }
+
+  /** A budget that was ordered: new islands get their part of it. */
+  noteBudget(simulations: number): void {
+    this.#simulations = simulations
+  }
+  get simulations(): number {
+    return this.#simulations
+  }
+
+  /** Who takes part after an epoch that nobody has passed; new islands are there at once and begin with that epoch. */
+  changeMembership(membership: Membership): readonly Island[] {
+    check(membership.epoch > this.#memberships.at(-1)!.epoch, 'memberships change in the order of epochs')
+    this.#memberships.push(membership)
+    this.#plans.push(...membership.added)
+    return membership.added.map((plan) => {
+      const island = this.#make(plan, membership.simulations)
+      if (island.counters.evaluations === 0) island.beginAfter(membership.epoch)
+      const place = this.#islands.findIndex((other) => other.number > island.number)
+      this.#islands.splice(place < 0 ? this.#islands.length : place, 0, island)
+      return island
     })
-    for (const island of this.islands) this.#byNumber.set(island.number, island)
-    this.#migrating = tools.plan.migration ? tools.plan.islands.map(({ island }) => island) : []
-    this.#restarted = new Set(states.keys())
+  }
+
+  /** Who migrates at the end of this epoch, in the order of their numbers. */
+  #migratingAt(epoch: number): readonly number[] {
+    if (!this.plan.migration) return []
+    return this.#memberships.findLast((membership) => membership.epoch < epoch)?.active ?? []
   }
 
   island(number: number): Island {
@@ -113,6 +182,7 @@ export class Search {
       const released = island.fill()
       if (released.length > 0) gate.released(island, released)
       if (gate.factWhileWaiting(island)) continue
+      if (island.paused) return 'paused'
       if (island.ended) return this.#sendEnd(island, gate)
       const ticket = nextTicket(island, gate)
       if (!ticket) return 'result'
@@ -141,7 +211,11 @@ export class Search {
   }
 
   #passEpochs(island: Island, gate: Gate): Standing | undefined {
-    for (let epoch = island.epochDue(); epoch !== undefined && !island.ended; epoch = island.epochDue()) {
+    for (
+      let epoch = island.epochDue();
+      epoch !== undefined && !island.ended && !island.paused;
+      epoch = island.epochDue()
+    ) {
       if (!island.hasReceived) {
         const groups = this.#groupsFor(island, epoch)
         if (!groups) return 'mail'
@@ -151,7 +225,7 @@ export class Search {
       const emigrants = island.emigrants(epoch)
       if (emigrants.length > 0 && !gate.maySend(island, epoch, emigrants)) return 'confirmation'
       island.pass(epoch, emigrants)
-      if (this.#migrating.includes(island.number)) {
+      if (this.#migratingAt(epoch).includes(island.number)) {
         this.#send(
           { island: island.number, epoch, atCommit: island.counters.commits, ended: false, emigrants },
           gate,
@@ -164,17 +238,15 @@ export class Search {
 
   #groupsFor(island: Island, epoch: number): (readonly Individual[])[] | undefined {
     const { migration, seed } = this.plan
-    const position = this.#migrating.indexOf(island.number)
-    if (!migration || position < 0 || epoch <= migration.lag) return []
+    if (!migration || epoch <= migration.lag) return []
     const sentEpoch = epoch - migration.lag
+    const migrating = this.#migratingAt(sentEpoch)
+    const position = migrating.indexOf(island.number)
+    if (position < 0) return []
     const groups: (readonly Individual[])[] = []
-    for (const source of topologies[migration.topology].sources(
-      this.#migrating.length,
-      position,
-      sentEpoch,
-      seed,
-    )) {
-      const letters = this.#post.find(this.#migrating[source]!, sentEpoch)
+    const { sources } = topologies[migration.topology]
+    for (const source of sources(migrating.length, position, sentEpoch, seed)) {
+      const letters = this.#post.find(migrating[source]!, sentEpoch)
       if (!letters) return undefined
       groups.push(letters)
     }
@@ -182,9 +254,8 @@ export class Search {
   }
 
   #sendEnd(island: Island, gate: Gate): Standing {
-    const isNews = this.#migrating.includes(island.number) && !this.#post.hasEnded(island.number)
-    if (isNews) {
-      const epoch = island.counters.epochsPassed + 1
+    const epoch = island.counters.epochsPassed + 1
+    if (this.#migratingAt(epoch).includes(island.number) && !this.#post.hasEnded(island.number)) {
       this.#send(
         { island: island.number, epoch, atCommit: island.counters.commits, ended: true, emigrants: [] },
         gate,
@@ -202,7 +273,7 @@ export class Search {
   forgetOldMail(): void {
     const { migration } = this.plan
     if (!migration) return
-    const waiting = this.#migrating.map((number) => this.island(number)).filter((island) => !island.ended)
+    const waiting = this.#islands.filter((island) => !island.isControl && !island.ended && !island.paused)
     const oldest = Math.min(...waiting.map((island) => island.counters.epochsPassed + 1 - migration.lag))
     if (Number.isFinite(oldest)) this.#post.forgetBefore(oldest)
   }
@@ -211,7 +282,7 @@ export class Search {
   finishEpochAfterTarget(island: Island): { readonly island: number; readonly epoch: number } {
     const epoch = island.counters.epochsPassed + 1
     const { migration } = this.plan
-    const steps = migration && topologies[migration.topology].diameter(this.#migrating.length)
+    const steps = migration && topologies[migration.topology].diameter(this.#migratingAt(epoch).length)
     // Nobody can be further ahead than the mail lets him: within `steps` hops of `lag` epochs each, so nobody
     // has passed that epoch yet. Where the way is not known, the island ends for itself.
     if (!migration || steps === undefined) return { island: island.number, epoch }
@@ -227,11 +298,6 @@ export class Search {
   /** Sets an ended island going again after `epoch`, if it has quota. */
   resume(island: Island, epoch: number): void {
     if (island.resumeAfter(epoch)) this.#post.resume(island.number, epoch)
-  }
-
-  /** True when this island was made from a snapshot and not from nothing. */
-  wasRestored(island: number): boolean {
-    return this.#restarted.has(island)
   }
 }
 

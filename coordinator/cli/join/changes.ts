@@ -2,11 +2,13 @@
 // follow for the running search.
 
 import { z } from 'zod'
+import { islandName } from '../../../shared/ids.js'
 import { refuse } from '../../../shared/refusals.js'
 import type { Engine } from '../../engine/engine.js'
 import type { RecordReader } from '../../engine/ports.js'
+import type { IslandPlan } from '../../evolution/plan.js'
 import { type ChangeRowFound, diffSearchFiles, printChanges } from '../searchfile/changes.js'
-import type { SearchFile } from '../searchfile/schema.js'
+import type { OpenedSearch } from '../searchfile/open.js'
 
 const changedSchema = z.object({ searchText: z.string() })
 const changedKind = 'search-file-changed'
@@ -64,8 +66,7 @@ export function judgeChanges(
 export function orderChanges(
   engine: Engine,
   changes: readonly ChangeRowFound[],
-  fields: SearchFile,
-  searchText: string,
+  { fields, plan, text: searchText }: Pick<OpenedSearch, 'fields' | 'plan' | 'text'>,
 ): void {
   if (changes.length === 0) return
   engine.note(changedKind, `The search file was changed: ${changes.map(sentenceOf).join('; ')}.`, {
@@ -74,17 +75,9 @@ export function orderChanges(
   const touched = (field: string) => changes.some((change) => change.field.startsWith(field))
   if (touched('budget.simulations')) {
     const { simulations } = fields.budget
-    engine.orderAtEpoch(
-      'budget-changed',
-      `The budget is ${simulations} simulations from now on.`,
-      (epoch, island) => ({
-        fact: 'budget',
-        simulations,
-        epoch,
-        silentFrom: island.ended ? island.counters.epochsPassed + 1 : 0,
-      }),
-    )
+    engine.orderBudget(`The budget is ${simulations} simulations from now on.`, simulations)
   }
+  if (touched('islands')) orderIslands(engine, plan.islands)
   if (touched('replicates.most')) {
     const most = fields.replicates.most ?? fields.replicates.first
     engine.orderAtEpoch(
@@ -96,6 +89,20 @@ export function orderChanges(
       }),
     )
   }
+}
+
+/** Islands at the end of the list that are new, gone (paused) or back. */
+function orderIslands(engine: Engine, wanted: readonly IslandPlan[]): void {
+  const known = engine.search.islandPlans.length
+  const active = wanted.map(({ island }) => island)
+  const paused = engine.search.islandPlans.filter(({ island }) => !active.includes(island))
+  const added = wanted.slice(known)
+  const parts = [
+    ...(added.length > 0 ? [`${added.map(({ island }) => islandName(island)).join(', ')} added`] : []),
+    ...(paused.length > 0 ? [`${paused.map(({ island }) => islandName(island)).join(', ')} paused`] : []),
+  ]
+  const sentence = `Islands from now on: ${active.length} take part${parts.length > 0 ? ` (${parts.join('; ')})` : ''}.`
+  engine.orderMembership(sentence, active, added)
 }
 
 function sentenceOf(change: ChangeRowFound): string {
