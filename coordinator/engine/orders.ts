@@ -62,7 +62,7 @@ export class Orders {
   /** Who takes part after the first epoch that nobody has passed. Returns the islands that are new. */
   membership(sentence: string, active: readonly number[], added: readonly IslandPlan[]): readonly Island[] {
     const { search } = this.#parts
-    const epoch = search.firstOpenEpoch()
+    const epoch = search.nextMembershipEpoch()
     const membership = { epoch, active: [...active], added: [...added], simulations: search.simulations }
     const before = [...search.islands]
     const begun = search.changeMembership(membership)

@@ -139,6 +139,11 @@ export class Search {
     return this.#simulations
   }
 
+  /** The first epoch after which memberships may change: nobody has passed it, and no earlier change holds from it. */
+  nextMembershipEpoch(): number {
+    return Math.max(this.firstOpenEpoch(), this.#memberships.at(-1)!.epoch + 1)
+  }
+
   /** Who takes part after an epoch that nobody has passed; new islands are there at once and begin with that epoch. */
   changeMembership(membership: Membership): readonly Island[] {
     check(membership.epoch > this.#memberships.at(-1)!.epoch, 'memberships change in the order of epochs')

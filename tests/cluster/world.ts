@@ -106,12 +106,14 @@ export class World {
   #simulations = 0
   #faulty = true
   readonly #snapshotCommits: number
-  readonly #operator: Order | undefined
+  readonly #orders: readonly Order[]
+  /** Given and durable; a crash in between is told by the record, where the kind is given once. */
+  readonly #obeyed = new Set<Order>()
   #looks = 0
 
-  constructor(plan: SearchPlan, seed: number, weather: Weather, operator?: Order) {
+  constructor(plan: SearchPlan, seed: number, weather: Weather, ...orders: readonly Order[]) {
     this.#plan = plan
-    this.#operator = operator
+    this.#orders = orders
     this.#weather = weather
     this.#draw = stream(seed, 'weather', 2)
     this.#disk = new Disk(stream(seed, 'weather', 3))
@@ -163,18 +165,25 @@ export class World {
     return false
   }
 
-  /** Gives the operator's order when it is time and the record does not hold it yet. */
+  /** Gives the operator's next order when it is time and the record does not hold it yet. */
   #obeys(): boolean {
-    const order = this.#operator
     this.#looks++
-    if (!order || this.#engine.impurities().includes(order.kind)) return false
+    const order = this.#orders.find((one) => !this.#isObeyed(one))
+    if (!order) return false
     if (order.at === 'the end') {
       if (this.#engine.status() === 'running') return false
       this.#engine = this.#open()
     } else if (this.#looks < order.at) return false
     order.give(this.#engine)
     this.#makeDurable()
+    this.#obeyed.add(order)
     return true
+  }
+
+  #isObeyed(order: Order): boolean {
+    if (this.#obeyed.has(order)) return true
+    const isOnlyOne = this.#orders.filter(({ kind }) => kind === order.kind).length === 1
+    return isOnlyOne && this.#engine.impurities().includes(order.kind)
   }
 
   #makeDurable(): void {
