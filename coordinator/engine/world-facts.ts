@@ -136,7 +136,7 @@ const actions: Actions = {
   islands: (search, island, { epoch, active, simulations, islands }) => {
     island.setQuota(search.quotas(simulations, islands).get(island.number) ?? island.quota)
     if (island.isControl) return
-    if (!active.includes(island.number)) island.pause()
+    if (!active.includes(island.number)) search.pause(island, epoch)
     else if (island.paused) island.continueAfter(epoch)
   },
 }

@@ -158,6 +158,17 @@ export class Search {
     })
   }
 
+  /** Pauses an island at the end of `epoch`, or only until the epoch after which a later change takes it in again. */
+  pause(island: Island, epoch: number): void {
+    island.pause()
+    const again = this.#memberships.find((one) => one.epoch > epoch && one.active.includes(island.number))
+    if (!again) return
+    const known = this.#memberships.slice(0, this.#memberships.indexOf(again) + 1)
+    const islands = this.plan.islands.length + known.reduce((sum, { added }) => sum + added.length, 0)
+    island.setQuota(this.quotas(again.simulations, islands).get(island.number) ?? island.quota)
+    island.continueAfter(again.epoch)
+  }
+
   /** Who migrates at the end of this epoch, in the order of their numbers. */
   #migratingAt(epoch: number): readonly number[] {
     if (!this.plan.migration) return []
