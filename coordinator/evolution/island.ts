@@ -12,7 +12,8 @@ import { firstControl, idOf } from '../../shared/ids.js'
 import type { EvaluationResult } from '../../shared/result.js'
 import { stream } from '../../shared/streams.js'
 import { amendmentEntry, commitEntry, receiveEntry, sendEntry } from './entries.js'
-import { columnsOf, scoreOf, simulationsPerReplicate } from './estimate.js'
+import { columnsOf, simulationsPerReplicate } from './estimate.js'
+import { addBlock, amended, joined, newborn } from './individuals.js'
 import { type Amendment, type Counters, type IslandState, newCounters, Positions } from './island-state.js'
 import { Leader, wouldBeat } from './leader.js'
 import type { IslandPlan, SearchPlan } from './plan.js'
@@ -31,8 +32,6 @@ export interface IslandTools {
   readonly expectedCost: (genome: Genome) => number
 }
 
-/** Values of whoever has none yet; shared, never written to. */
-const noValues = new Float64Array(0)
 const noEpoch = Number.MAX_SAFE_INTEGER
 /** Length of an epoch where nothing migrates: budgets still end at epochs. */
 const roundsWithoutMigration = 20
@@ -177,19 +176,8 @@ export class Island {
     const birth = this.#machine.propose(stream(this.tools.plan.seed, 'birth', this.number, number))
     if (birth === 'wait') return undefined
     this.#counters.births = number
-    const individual: Individual = {
-      id: idOf(this.number, number),
-      genome: birth.genome,
-      parents: birth.parents,
-      origin: birth.origin,
-      bornAtCommit: this.#counters.commits,
-      blocks: [],
-      values: noValues,
-      replicates: 0,
-      failedSimulations: 0,
-      score: this.#leader.noScore,
-      age: birth.age,
-    }
+    const id = idOf(this.number, number)
+    const individual = newborn(id, birth, this.#counters.commits, this.#leader.noScore)
     return this.#newTicket(individual, first, birth.origin === 'founder')
   }
 
@@ -254,7 +242,13 @@ export class Island {
     this.#outstanding.remove(ticket)
     const { individual } = ticket
     const firstBlock = individual.replicates === 0
-    this.#take(individual, ticket, result)
+    addBlock(plan.problem, individual, result, {
+      island: this.number,
+      evaluation: ticket.evaluation,
+      firstReplicate: ticket.firstReplicate,
+      replicates: ticket.replicates,
+      failedSimulations: result.failures.length,
+    })
     const counters = this.#counters
     counters.commits++
     counters.factsWaiting = 0
@@ -269,23 +263,6 @@ export class Island {
     this.#queueTopUp()
     this.#digest.add(commitEntry(counters.commits, ticket, resultDigest))
     this.#commitDigest = undefined
-  }
-
-  #take(individual: Individual, ticket: Ticket, result: EvaluationResult): void {
-    individual.values = joined(individual.values, result.values)
-    individual.replicates += ticket.replicates
-    individual.failedSimulations += result.failures.length
-    individual.blocks = [
-      ...individual.blocks,
-      {
-        island: this.number,
-        evaluation: ticket.evaluation,
-        firstReplicate: ticket.firstReplicate,
-        replicates: ticket.replicates,
-        failedSimulations: result.failures.length,
-      },
-    ]
-    individual.score = scoreOf(this.tools.plan.problem, individual.values, individual.failedSimulations)
   }
 
   #noteBest(individual: Individual): void {
@@ -449,25 +426,10 @@ export class Island {
   }
 
   #amended(individual: Individual): Individual {
-    const perReplicate = columnsOf(this.tools.plan.problem) * simulationsPerReplicate(this.tools.plan.problem)
-    for (const { individual: id, firstReplicate, result } of this.#amendments) {
-      const start = firstReplicate * perReplicate
-      if (id !== individual.id || individual.values.length < start + result.values.length) continue
-      const values = individual.values.slice()
-      values.set(result.values, start)
-      individual.values = values
-      individual.blocks = individual.blocks.map((block) =>
-        block.firstReplicate === firstReplicate
-          ? { ...block, failedSimulations: result.failures.length }
-          : block,
-      )
-      individual.failedSimulations = individual.blocks.reduce(
-        (sum, block) => sum + block.failedSimulations,
-        0,
-      )
-      individual.score = scoreOf(this.tools.plan.problem, values, individual.failedSimulations)
-    }
-    return individual
+    return this.#amendments.reduce(
+      (one, amendment) => amended(this.tools.plan.problem, one, amendment),
+      individual,
+    )
   }
 
   // ------------------------------------------------------------------------------------ snapshots
@@ -502,14 +464,6 @@ export class Island {
   bytesOf(genome: Genome): Uint8Array {
     return genomeBytes(this.tools.plan.problem.spec, genome)
   }
-}
-
-function joined(a: Float64Array, b: Float64Array): Float64Array {
-  if (a.length === 0) return b
-  const both = new Float64Array(a.length + b.length)
-  both.set(a)
-  both.set(b, a.length)
-  return both
 }
 
 function contextOf(tools: IslandTools): MethodContext {

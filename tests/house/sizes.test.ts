@@ -14,7 +14,6 @@ function entries(): string[] {
 
 /** Adapters of ports that only tests use, beside the ports' own folders. */
 const forTests = [
-  'coordinator/dispatch/weather.ts',
   'coordinator/record/faulty.ts',
   'coordinator/record/memory.ts',
   'coordinator/record/memory-store.ts',
