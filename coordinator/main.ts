@@ -12,11 +12,12 @@ import type { AnyProblem } from '../shared/problem.js'
 import { refuse } from '../shared/refusals.js'
 import { loadPlugin } from '../worker/plugin/load.js'
 import { createPool } from '../worker/pool.js'
+import { Alarms } from './cli/join/alarms.js'
 import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
-import { type Finish, retest, write, writeFinish } from './cli/join/finish.js'
+import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
 import { Meter } from './cli/join/meter.js'
 import { resimulate, Sample } from './cli/join/resimulate.js'
-import { bestOf, progressView } from './cli/join/view.js'
+import { progressView } from './cli/join/view.js'
 import type { ProgressView } from './cli/progress-view.js'
 import type { RederiveOptions, RederiveReport, RunEnd, RunOptions } from './cli/run-options.js'
 import { searchTables } from './cli/search-tables.js'
@@ -131,6 +132,7 @@ async function drive(driven: Driven): Promise<RunEnd> {
   const { options, record, folder, engine, cores } = driven
   const dispatcher = dispatcherOf(driven)
   const meter = new Meter(cores, () => performance.now())
+  const alarms = new Alarms(engine.search, record.reader, () => performance.now())
   const beat = setInterval(() => record.beat(), beatSeconds * 1000)
   try {
     await dispatcher.start()
@@ -142,13 +144,13 @@ async function drive(driven: Driven): Promise<RunEnd> {
       signal: options.signal,
       onStep: (state) => {
         orderBudgetEnds(driven)
-        if (meter.isDue(progressSeconds)) tellProgress(driven, meter, state)
+        if (meter.isDue(progressSeconds)) tellProgress(driven, meter, alarms, state)
       },
     })
     const finish = await finishRun(driven, end, dispatcher)
     const view = progressView({ search: engine.search, reader: record.reader, folder, ...stateOf(end) })
     write(folder, progressFile, 'progress', JSON.stringify(view))
-    return { ended: endWord[end], view, summary: finish.summary, files: finish.files }
+    return { ended: endWord[end], view, ...finish }
   } finally {
     clearInterval(beat)
     await dispatcher.close()
@@ -178,14 +180,18 @@ function stateOf(end: LoopEnd): { readonly state: ProgressView['state']; readonl
 }
 
 async function finishRun(driven: Driven, end: LoopEnd, dispatcher: Dispatcher): Promise<Finish> {
-  const { engine, options, folder, problem } = driven
-  if (end === 'interrupted') return { summary: [], files: [] }
-  const best = bestOf(engine.search.islands.filter((island) => !island.isControl))
-  const retested = best && (await retest(engine.search, best, dispatcher, options.signal))
-  return writeFinish(folder, engine.search, problem, retested)
+  const { engine, options, folder, problem, record } = driven
+  if (end === 'interrupted') return { summary: [], brief: [], files: [] }
+  const tests = await retest(engine.search, toRetest(engine.search), dispatcher, options.signal)
+  return writeFinish(folder, engine.search, problem, tests, record.reader)
 }
 
-function tellProgress({ options, record, folder, engine }: Driven, meter: Meter, state: LoopState): void {
+function tellProgress(
+  { options, record, folder, engine }: Driven,
+  meter: Meter,
+  alarms: Alarms,
+  state: LoopState,
+): void {
   const simulations = engine.search.islands.reduce((sum, one) => sum + one.counters.committedSimulations, 0)
   const left = engine.search.islands.reduce((sum, one) => sum + (one.ended ? 0 : one.quota), 0) - simulations
   const rate = meter.rate(simulations, record.reader.totals().cpuSeconds, Math.max(0, left))
@@ -199,6 +205,7 @@ function tellProgress({ options, record, folder, engine }: Driven, meter: Meter,
     rate,
   })
   options.tell({ kind: 'progress', view })
+  for (const sentence of alarms.look(view)) options.tell({ kind: 'said', sentence })
   if (state.kind === 'searching') write(folder, progressFile, 'progress', JSON.stringify(view))
 }
 

@@ -41,7 +41,9 @@ export function counted(count: number, one: string, many = `${one}s`): string {
 /** value ± standard error with its unit, to the digits that the error supports. */
 export function estimate(value: number, unit: string, standardError?: number): string {
   const shownUnit = unit === '1' || unit === '' ? '' : ` ${unit}`
-  if (standardError === undefined || !(standardError > 0)) return `${short(value)}${shownUnit}`
+  // Less is what rounding leaves of equal numbers.
+  if (standardError === undefined || !(standardError > 1e-9 * Math.abs(value)))
+    return `${short(value)}${shownUnit}`
   const decimals = Math.min(9, Math.max(0, 1 - Math.floor(Math.log10(standardError))))
   return `${value.toFixed(decimals)} ± ${standardError.toFixed(decimals)}${shownUnit}`
 }

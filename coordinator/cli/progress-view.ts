@@ -34,12 +34,29 @@ export interface IslandView {
   /** Simulations. */
   readonly quota: number
   readonly epoch: number
-  readonly state: 'searching' | 'waiting' | 'ended'
+  readonly state: 'searching' | 'waiting' | 'paused' | 'ended'
   /** Why it waits, such as 'for emigrants of i2', or how it ended. */
   readonly because?: string
   readonly best?: BestView
-  /** 0 (all alike) to 1. */
-  readonly diversity?: number
+  /** Of those who may breed now; absent with fewer than two. */
+  readonly population?: PopulationView
+}
+
+/** Statistics of a population. */
+export interface PopulationView {
+  readonly members: number
+  /** Members that have a failed simulation; they are left out of the quantiles. */
+  readonly failed: number
+  /** In the objective's own direction and unit: least, quartile, median, quartile, greatest. */
+  readonly objectives: readonly {
+    readonly name: string
+    readonly unit: string
+    readonly quantiles: readonly [number, number, number, number, number]
+  }[]
+  /** Mean distance of two members, 0 (all alike) to 1, over the genome and for every part. */
+  readonly diversity: { readonly mean: number; readonly parts: { readonly [part: string]: number } }
+  /** Commits of the island since they were proposed, of those born here; absent when nobody was. */
+  readonly ageCommits?: { readonly median: number; readonly oldest: number }
 }
 
 export interface ProgressView {

@@ -37,6 +37,8 @@ export interface RunEnd {
   readonly view: ProgressView
   /** Lines for a person; the same as in the record's summary.txt. */
   readonly summary: readonly string[]
+  /** The summary without what a terminal has no room for. */
+  readonly brief: readonly string[]
   /** Written files, with what each is: 'picture of the best machine'. */
   readonly files: readonly { readonly what: string; readonly path: string }[]
 }

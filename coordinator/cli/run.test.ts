@@ -74,7 +74,8 @@ function searching(ended: RunEnd['ended'], heard: RunOptions[] = []): Partial<Ho
       return {
         ended,
         view: { ...view, state: 'finished' },
-        summary: ['Best machine: i1-00001'],
+        summary: ['Best machine: i1-00001', '  strut 1: 3 mm'],
+        brief: ['Best machine: i1-00001'],
         files: [{ what: 'picture', path: 'records/mount/best.svg' }],
       }
     },
@@ -116,6 +117,7 @@ describe('run', () => {
     expect(out).toContain('A thread was replaced.')
     expect(out).toMatch(/^\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d {2}searching: 40 of 400 simulations$/m)
     expect(out).toContain('Best machine: i1-00001')
+    expect(out).not.toContain('strut 1')
     expect(out).toContain('records/mount/best.svg')
     expect(out).not.toContain('\u001b')
     expect(notes).toContain('s.yaml:3:7  warning: seed')

@@ -96,7 +96,7 @@ function reportEnd(output: Output, end: RunEnd): void {
   }
   const say = (line: string) => output.print(output.isTerminal ? fitted(line, output.columns - 1) : line)
   output.print('')
-  for (const line of end.summary) say(line)
+  for (const line of end.brief) say(line)
   const width = Math.max(0, ...end.files.map(({ what }) => what.length))
   for (const { what, path } of end.files) output.print(`  ${what.padEnd(width)}  ${path}`)
   say(endWords[end.ended])

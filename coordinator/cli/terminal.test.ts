@@ -95,8 +95,12 @@ describe('the live view', () => {
   })
   it('has a line for a log', () => {
     expect(logLine(view, '2026-12-01T10:00:00')).toBe(
-      '2026-12-01T10:00:00  searching: 12,480 of 200,000 simulations, 412/s, 3 h 12 min to go, best i3-01842 distance 0.812 ± 0.031 m (16 replicates)',
+      '2026-12-01T10:00:00  searching: 12,480 of 200,000 simulations, 3 failed, 412/s, 3 h 12 min to go, best i3-01842 distance 0.812 ± 0.031 m (16 replicates)',
     )
+  })
+  it('says in a log why it is paused', () => {
+    const paused = { ...view, state: 'paused' as const, because: 'the disk is full' }
+    expect(logLine(paused, 'now')).toContain('now  paused (the disk is full): 12,480 of')
   })
   it('fills the channel of a quota only when all of it is used', () => {
     expect(level(0.999, 10, false)).toBe('ooooooooo.')

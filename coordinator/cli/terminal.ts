@@ -127,7 +127,9 @@ export function logLine(view: ProgressView, time: string): string {
   const rate = view.rate ? `, ${short(view.rate.simulationsPerSecond)}/s` : ''
   const left = view.rate?.secondsLeft === undefined ? '' : `, ${duration(view.rate.secondsLeft)} to go`
   const done = `${grouped(view.simulations)} of ${grouped(view.budget)} simulations`
-  return `${time}  ${view.state}: ${done}${rate}${left}${best}`
+  const because = view.because ? ` (${view.because})` : ''
+  const failed = view.failedSimulations > 0 ? `, ${grouped(view.failedSimulations)} failed` : ''
+  return `${time}  ${view.state}${because}: ${done}${failed}${rate}${left}${best}`
 }
 
 function labelled(label: string, text: string, columns: number): string[] {

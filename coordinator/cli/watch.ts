@@ -51,12 +51,15 @@ function liveWatch(output: Output): Watch {
 
 function logWatch(output: Output): Watch {
   let lastSeconds = Number.NEGATIVE_INFINITY
+  let lastState: ProgressView['state'] | undefined
   const line = (view: ProgressView) => output.print(logLine(view, new Date().toISOString().slice(0, 19)))
   return {
     show(view) {
       const seconds = performance.now() / 1000
-      if (seconds - lastSeconds < logEverySeconds) return
+      // A pause and its end are told at once.
+      if (seconds - lastSeconds < logEverySeconds && view.state === lastState) return
       lastSeconds = seconds
+      lastState = view.state
       line(view)
     },
     say: output.print,

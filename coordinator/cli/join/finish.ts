@@ -12,22 +12,29 @@ import { nameOf } from '../../../shared/ids.js'
 import { limits } from '../../../shared/limits.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import type { EvaluationResult } from '../../../shared/result.js'
-import type { Dispatcher } from '../../engine/ports.js'
+import type { Dispatcher, RecordReader } from '../../engine/ports.js'
 import { drawPictures } from '../../evidence/pictures/draw.js'
 import {
   alwaysCaution,
   cautionText,
   type PictureFacts,
   resultSentence,
+  resultText,
 } from '../../evidence/pictures/facts.js'
 import { estimateOf, replicateValues } from '../../evolution/estimate.js'
+import type { Island } from '../../evolution/island.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Search } from '../../evolution/search.js'
 import type { Individual } from '../../evolution/types.js'
+import { compareFresh, differenceSentence } from './comparison.js'
+import { failureLines, nothingFound } from './failures.js'
 import { bestOf, estimatesOf, standardErrorOf } from './view.js'
 
 export interface Finish {
+  /** Everything, as in summary.txt. */
   readonly summary: readonly string[]
+  /** The same for a terminal: how it is built and the cautions in full stand in summary.txt. */
+  readonly brief: readonly string[]
   readonly files: readonly { readonly what: string; readonly path: string }[]
 }
 
@@ -36,36 +43,48 @@ export const retestReplicates = 24
 const firstFreshReplicate = limits.replicatesMost
 const retestWaitMs = 250
 
-/** Simulates the individual on fresh conditions; undefined when the work is lost or interrupted. Failed simulations are a result. */
+/** Fresh simulations by individual; one whose work was lost or interrupted is missing. Failed simulations are a result. */
+export type Retests = ReadonlyMap<Individual, EvaluationResult>
+
+/** Simulates the individuals on the same fresh conditions (each on its own, where the search has them so). */
 export async function retest(
   search: Search,
-  best: Individual,
+  individuals: readonly Individual[],
   dispatcher: Dispatcher,
   signal: AbortSignal,
-): Promise<EvaluationResult | undefined> {
+): Promise<Retests> {
   const island = search.islands[0]!
-  dispatcher.submit([
-    {
+  dispatcher.submit(
+    individuals.map((individual, evaluation) => ({
       island: 0,
-      evaluation: 0,
-      individual: best.id,
+      evaluation,
+      individual: individual.id,
       firstReplicate: firstFreshReplicate,
       replicates: retestReplicates,
-      genome: island.bytesOf(best.genome),
-      expectedCost: island.tools.expectedCost(best.genome),
+      genome: island.bytesOf(individual.genome),
+      expectedCost: island.tools.expectedCost(individual.genome),
       attempt: 1,
       purpose: 'evaluate',
       isolation: 'shared',
       avoid: [],
-    },
-  ])
-  while (!signal.aborted) {
+    })),
+  )
+  const tested = new Map<Individual, EvaluationResult>()
+  let answered = 0
+  while (!signal.aborted && answered < individuals.length) {
     for (const fact of await dispatcher.facts(retestWaitMs)) {
       if (fact.item.island !== 0) continue
-      return fact.kind === 'result' ? fact.result : undefined
+      answered++
+      if (fact.kind === 'result') tested.set(individuals[fact.item.evaluation]!, fact.result)
     }
   }
-  return undefined
+  return tested
+}
+
+/** Whom a finished search simulates again: its best, then the best of every control. */
+export function toRetest(search: Search): Individual[] {
+  const best = bestOf(search.islands.filter((island) => !island.isControl))
+  return best ? [best, ...controlBests(search).map(({ best: individual }) => individual)] : []
 }
 
 /** Writes picture, replay and summary of the best so far. Nothing where there is no best yet. */
@@ -73,16 +92,21 @@ export function writeFinish(
   folder: string,
   search: Search,
   problem: AnyProblem,
-  tested: EvaluationResult | undefined,
+  tests: Retests,
+  reader: Pick<RecordReader, 'arrival'>,
 ): Finish {
-  // A mean over the simulations that did not fail would flatter: the failures are told instead.
-  const retested = tested?.failures.length === 0 ? tested : undefined
   const { plan } = search
   const best = bestOf(search.islands.filter((island) => !island.isControl))
-  if (!best) return { summary: ['No machine has been simulated without failure yet.'], files: [] }
+  if (!best) {
+    const summary = nothingFound(search, reader)
+    return { summary, brief: summary, files: [] }
+  }
+  const tested = tests.get(best)
+  // A mean over the simulations that did not fail would flatter: the failures are told instead.
+  const retested = tested?.failures.length === 0 ? tested : undefined
   const facts = { ...factsOf(search, problem, best, retested), ...failedOf(plan, tested) }
-  const summary = summaryOf(search, best, facts, retested)
-  const files = [write(folder, 'summary.txt', 'this summary', `${summary.join('\n')}\n`)]
+  const { summary, brief } = summaryOf(search, best, facts, tests)
+  const files = [write(folder, summaryFile, 'this summary, in full', `${summary.join('\n')}\n`)]
   const { frames } = problem
   if (frames) {
     const condition = problem.drawCondition(
@@ -90,13 +114,13 @@ export function writeFinish(
     )
     const situation = { condition, case: plan.problem.cases[0] ?? '' }
     const drawn = drawPictures(() => frames(best.genome as never, situation), facts)
-    if ('fault' in drawn) return { summary: [...summary, drawn.fault], files }
+    if ('fault' in drawn) return { summary: [...summary, drawn.fault], brief: [...brief, drawn.fault], files }
     files.unshift(
       write(folder, 'best.svg', 'picture of the best machine', drawn.svg),
       write(folder, 'replay.html', 'replay, opens in a browser', drawn.html),
     )
   }
-  return { summary, files }
+  return { summary, brief, files }
 }
 
 function factsOf(
@@ -154,46 +178,91 @@ function retestEstimates(plan: SearchPlan, retested: EvaluationResult): PictureF
   })
 }
 
+const summaryFile = 'summary.txt'
+/** Lines on how it is built that a terminal still shows. */
+const briefLines = 6
+
 function summaryOf(
   search: Search,
   best: Individual,
   facts: PictureFacts,
-  retested: EvaluationResult | undefined,
-): string[] {
+  tests: Retests,
+): { readonly summary: string[]; readonly brief: string[] } {
   const chosen = {
     ...facts,
     results: toResults(search.plan, best),
     replicates: best.replicates,
     selected: true,
   }
-  return [
+  const { failed: _, ...chosenFacts } = chosen
+  const found = [
     `Best machine: ${facts.id}`,
-    ...(retested ? [`  On fresh conditions: ${resultSentence(facts)}`] : []),
-    `  ${retested ? 'When it was chosen' : 'Estimate'}: ${resultSentence(chosen)}`,
-    ...controlLines(search),
-    ...facts.description.map((line) => `  ${line}`),
-    `Search digest: ${hex(search.digest())}`,
-    'Cautions:',
-    ...facts.cautions.map((caution) => `  ${cautionText(caution)}`),
-    `  ${alwaysCaution}`,
+    ...(facts.selected
+      ? untested(facts, tests.get(best))
+      : [`  On fresh conditions: ${resultSentence(facts)}`]),
+    `  ${facts.selected ? 'Estimate' : 'When it was chosen'}: ${resultSentence(chosenFacts)}`,
+    ...controlLines(search, best, tests),
+    ...failureLines(search),
   ]
+  const digest = `Search digest: ${hex(search.digest())}`
+  const { description, cautions } = facts
+  const more = description.length - briefLines
+  return {
+    summary: [
+      ...found,
+      ...description.map((line) => `  ${line}`),
+      digest,
+      'Cautions:',
+      ...cautions.map((caution) => `  ${cautionText(caution)}`),
+      `  ${alwaysCaution}`,
+    ],
+    brief: [
+      ...found,
+      ...description.slice(0, more > 1 ? briefLines : briefLines + 1).map((line) => `  ${line}`),
+      ...(more > 1 ? [`  and ${more} more lines on how it is built, in ${summaryFile}`] : []),
+      digest,
+      ...(cautions.length > 0
+        ? [`Cautions, in full in ${summaryFile}: ${cautions.map(({ hazard }) => hazard).join('; ')}.`]
+        : []),
+      alwaysCaution,
+    ],
+  }
+}
+
+/** Why there are no numbers from fresh conditions. */
+function untested({ failed }: PictureFacts, tested: EvaluationResult | undefined): string[] {
+  if (failed) {
+    return [
+      `  On fresh conditions: it failed in ${failed.simulations} of ${failed.of} simulations, first because: ${failed.because}.`,
+    ]
+  }
+  return tested ? [] : ['  On fresh conditions: not simulated; the work was lost or interrupted.']
 }
 
 function toResults(plan: SearchPlan, individual: Individual): PictureFacts['results'] {
   return estimatesOf(plan, individual).map(({ objective, ...rest }) => ({ name: objective, ...rest }))
 }
 
-/** The controls' bests: what chance alone finds with as much work. */
-function controlLines(search: Search): string[] {
-  const controls = search.islands.filter((island) => island.isControl)
-  return controls.flatMap((island) => {
+function controlBests(search: Search): { readonly island: Island; readonly best: Individual }[] {
+  return search.islands.flatMap((island) => {
     const { best } = island
-    if (!best || best.failedSimulations > 0) return []
-    const [first] = toResults(search.plan, best)
-    const value = first ? `${first.name} ${Number(first.value.toPrecision(3))} ${first.unit}` : ''
-    return [
-      `  Control ${island.tools.island.method} after ${island.counters.committedSimulations} simulations: best ${nameOf(best.id)}, ${value} when it was chosen, on ${best.replicates} ${best.replicates === 1 ? 'replicate' : 'replicates'}`,
-    ]
+    return island.isControl && best && best.failedSimulations === 0 ? [{ island, best }] : []
+  })
+}
+
+/** What chance alone found with as much work, simulated on the same fresh conditions as the search's best. */
+function controlLines(search: Search, best: Individual, tests: Retests): string[] {
+  const { plan } = search
+  const objective = plan.problem.objectives[0]!
+  return controlBests(search).map(({ island, best: control }) => {
+    const who = `  Control ${island.tools.island.method} (${nameOf(control.id)}, the best of ${island.counters.committedSimulations} simulations)`
+    const difference = compareFresh(plan, tests.get(best), tests.get(control))
+    if (!difference) {
+      const [first] = toResults(plan, control)
+      return `${who}: ${first ? resultText(first) : 'no number'} when it was chosen; not compared, because not both ran through fresh conditions without failure.`
+    }
+    const theirs = resultText({ name: objective.name, unit: objective.unit, ...difference.control })
+    return `${who}: ${theirs} on fresh conditions. ${differenceSentence(objective, difference)}`
   })
 }
 

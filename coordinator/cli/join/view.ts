@@ -3,7 +3,6 @@
 import { hex } from '../../../shared/digests.js'
 import { islandName, nameOf } from '../../../shared/ids.js'
 import type { RecordReader } from '../../engine/ports.js'
-import { diversityOf } from '../../evolution/diversity.js'
 import { naturalValue, replicateValues } from '../../evolution/estimate.js'
 import type { Island } from '../../evolution/island.js'
 import type { SearchPlan } from '../../evolution/plan.js'
@@ -11,6 +10,7 @@ import type { Search, Standing } from '../../evolution/search.js'
 import type { Individual } from '../../evolution/types.js'
 import { recordVersion } from '../../record/index.js'
 import type { BestView, EstimateView, IslandView, ProgressView } from '../progress-view.js'
+import { populationView } from './population.js'
 
 export interface ViewFacts {
   readonly search: Search
@@ -21,9 +21,6 @@ export interface ViewFacts {
   readonly standing?: (island: number) => Standing | undefined
   readonly rate?: ProgressView['rate']
 }
-
-/** Members looked at for the diversity of the live view; a report looks at all. */
-const diversityMembers = 48
 
 export function progressView(facts: ViewFacts): ProgressView {
   const { search, reader, folder, state } = facts
@@ -97,7 +94,6 @@ export function standardErrorOf(values: Float64Array): number | undefined {
 function islandView(facts: ViewFacts, island: Island): IslandView {
   const { counters } = island
   const standing = facts.standing?.(island.number)
-  const members = evenly(island.members(), diversityMembers)
   return {
     name: islandName(island.number),
     method: island.tools.island.method,
@@ -106,18 +102,17 @@ function islandView(facts: ViewFacts, island: Island): IslandView {
     simulations: counters.committedSimulations,
     quota: island.quota,
     epoch: counters.epochsPassed,
-    state: island.ended ? 'ended' : standing === undefined || standing === 'result' ? 'searching' : 'waiting',
+    state: stateOf(island, standing),
     ...becauseOf(island, standing),
     ...(island.best ? { best: bestView(facts.search.plan, facts.reader, island.best) } : {}),
-    ...(members.length < 2
-      ? {}
-      : {
-          diversity: diversityOf(
-            facts.search.plan.problem.spec,
-            members.map(({ genome }) => genome),
-          ).meanDistance,
-        }),
+    ...(island.members().length < 2 ? {} : { population: populationView(facts.search.plan, island) }),
   }
+}
+
+function stateOf(island: Island, standing: Standing | undefined): IslandView['state'] {
+  if (island.ended) return 'ended'
+  if (island.paused) return 'paused'
+  return standing === undefined || standing === 'result' ? 'searching' : 'waiting'
 }
 
 const standingWords: Partial<Record<Standing, string>> = {
@@ -128,13 +123,9 @@ const standingWords: Partial<Record<Standing, string>> = {
 
 function becauseOf(island: Island, standing: Standing | undefined): { because?: string } {
   if (island.ended) return { because: 'its part of the budget is used' }
+  if (island.paused) return { because: 'by a change of the search file' }
   const words = standing && standingWords[standing]
   return words ? { because: words } : {}
-}
-
-function evenly<Item>(items: readonly Item[], most: number): readonly Item[] {
-  if (items.length <= most) return items
-  return Array.from({ length: most }, (_, at) => items[Math.floor((at * items.length) / most)]!)
 }
 
 /** Facts of the world that entered: how many of each kind, as purity tells them. */

@@ -38,10 +38,20 @@ export function titleOf(facts: PictureFacts): string {
   return `${facts.id} of the search ${facts.search}`
 }
 
+/** Below this share of the value an error is what rounding leaves of equal numbers, no spread. */
+const roundingShare = 1e-9
+
+/** The standard error, where there is one that says anything. */
+export function shownError({ value, standardError }: Omit<ResultFact, 'name' | 'unit'>): number | undefined {
+  if (standardError === undefined || !(standardError > roundingShare * Math.abs(value))) return undefined
+  return standardError
+}
+
 /** distance 0.812 ± 0.031 m */
-export function resultText({ name, unit, value, standardError }: ResultFact): string {
+export function resultText({ name, unit, value, standardError: given }: ResultFact): string {
   const ending = unit === '1' || unit === '' ? '' : ` ${unit}`
-  if (standardError === undefined || !(standardError > 0)) return `${name} ${significant(value)}${ending}`
+  const standardError = shownError({ value, ...(given === undefined ? {} : { standardError: given }) })
+  if (standardError === undefined) return `${name} ${significant(value)}${ending}`
   const decimals = Math.min(9, Math.max(0, 1 - Math.floor(Math.log10(standardError))))
   return `${name} ${value.toFixed(decimals)} ± ${standardError.toFixed(decimals)}${ending}`
 }
@@ -54,7 +64,7 @@ export function significant(value: number): string {
 /** Results with spread and sample size, and how far to trust them. */
 export function resultSentence(facts: PictureFacts): string {
   const numbers = facts.results.map(resultText).join(', ')
-  const hasError = facts.results.some(({ standardError }) => standardError !== undefined)
+  const hasError = facts.results.some((result) => shownError(result) !== undefined)
   const sample =
     facts.replicates === 1
       ? 'one replicate, so no uncertainty is known'
