@@ -10,7 +10,7 @@ import type { PopulationView } from '../progress-view.js'
 
 /** Members looked at for the diversity: the view is made every second. */
 const diversityMembers = 48
-const fifths = [0, 0.25, 0.5, 0.75, 1] as const
+const quartiles = [0, 0.25, 0.5, 0.75, 1] as const
 
 export function populationView(plan: SearchPlan, island: Island): PopulationView {
   const members = island.members()
@@ -33,7 +33,7 @@ export function populationView(plan: SearchPlan, island: Island): PopulationView
 function objectivesOf(plan: SearchPlan, working: readonly Individual[]): PopulationView['objectives'] {
   return plan.problem.objectives.map((objective, column) => {
     const values = working.map(({ score }) => naturalValue(objective, score[column]!))
-    const [least, low, middle, high, greatest] = quantiles(values, fifths)
+    const [least, low, middle, high, greatest] = quantiles(values, quartiles)
     return {
       name: objective.name,
       unit: objective.unit,
