@@ -3,7 +3,6 @@ import { describe, expect, test } from 'vitest'
 import {
   bits,
   checkGenome,
-  checkSpec,
   choice,
   genomeByteLength,
   genomeBytes,
@@ -17,6 +16,7 @@ import {
   slotsOf,
 } from './encodings.js'
 import type { Encoding, Genome, GenomeSpec } from './genome.js'
+import { checkSpec } from './genome-check.js'
 import { Refusal } from './refusals.js'
 import { stream } from './streams.js'
 

@@ -9,7 +9,7 @@ import type { AnyProblem, Situation } from '../shared/problem.js'
 import { plainText } from '../shared/refusals.js'
 import type { EvaluationResult, SimulationFailure } from '../shared/result.js'
 import type { Purpose } from '../shared/streams.js'
-import { columnsOf } from './problem.js'
+import { columnsOf } from './columns.js'
 
 /** The values as evaluate() gives them; `faults` are the failures that are the problem's doing, not the machine's. */
 export interface StrictEvaluation extends EvaluationResult {

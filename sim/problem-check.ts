@@ -1,7 +1,7 @@
 // Is this a problem? One row a field; every row says what it expects. Used on what authors write and again on
 // what a bundle exports.
 
-import { checkSpec } from '../shared/encodings.js'
+import { checkSpec } from '../shared/genome-check.js'
 import { limits } from '../shared/limits.js'
 import type { AnyProblem } from '../shared/problem.js'
 import { type RefusalCode, refuse } from '../shared/refusals.js'

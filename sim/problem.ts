@@ -20,6 +20,8 @@ import type {
 import type { Stream } from '../shared/streams.js'
 import { checkProblem } from './problem-check.js'
 
+export { columnsOf } from './columns.js'
+
 /** What an author says of an objective; `reduce` and `overCases` are 'mean' unless said. */
 export interface ObjectiveInput {
   readonly direction: Direction
@@ -89,11 +91,6 @@ export function asProblem(value: unknown): AnyProblem {
 /** Number of simulations of one replicate: one for each case, or one. */
 export function simulationsPerReplicate(problem: { readonly cases: readonly string[] }): number {
   return Math.max(1, problem.cases.length)
-}
-
-/** Columns of a result (shared/result.ts): objectives, then measures, in order of declaration. */
-export function columnsOf(problem: Pick<AnyProblem, 'objectives' | 'measures'>): readonly string[] {
-  return [...Object.keys(problem.objectives), ...Object.keys(problem.measures)]
 }
 
 /** What a search keeps of its problem, as plain data; `digest` is the hex SHA-256 of the bundled plug-in. */

@@ -1,7 +1,6 @@
 // The table of encodings: one row each, with everything that is done with a single part. Whole genomes are
 // encodings.ts, where the bytes are described.
 
-import { z } from 'zod'
 import type { ByteReader, ByteWriter } from '../bytes.js'
 import { exp, log } from '../detmath/exponential.js'
 import type {
@@ -13,7 +12,6 @@ import type {
   PartValue,
   RealEncoding,
 } from '../genome.js'
-import { limits } from '../limits.js'
 import type { Stream } from '../streams.js'
 
 /** What a specification has wrong: the field and a sentence. */
@@ -26,9 +24,7 @@ type ArrayKind = typeof Float64Array | typeof Int32Array | typeof Uint8Array
 
 /** Everything that is done with one encoding. Values handed to write, random's users and text are checked ones. */
 export interface EncodingRow<E extends Encoding, V extends PartValue> {
-  /** Shape of the specification as a plug-in gives it. */
-  readonly schema: z.ZodType
-  /** Relations between fields that the schema cannot say; only called when the shape holds. */
+  /** Relations between fields that its schema (schemas.ts) cannot say; only called when the shape holds. */
   relations(encoding: E): SpecFault | undefined
   slots(encoding: E): number
   bytes(encoding: E): number
@@ -43,15 +39,6 @@ export interface EncodingRow<E extends Encoding, V extends PartValue> {
   /** The value for a person, with its unit. */
   text(encoding: E, value: V): string
 }
-
-const lengthSchema = z.int().min(1).max(limits.genomeSlots)
-const unitSchema = z.string().max(limits.nameLength).optional()
-const int32 = z.int32()
-const optionsSchema = z
-  .array(z.string().min(1).max(limits.optionLength))
-  .min(2)
-  .max(limits.optionsMost)
-  .refine((options) => new Set(options).size === options.length, { error: 'expected options that differ' })
 
 /** high must lie above low, by an amount that is a number. */
 function boundsFault(low: number, high: number): SpecFault | undefined {
@@ -68,14 +55,6 @@ function firstFault(value: PartValue, allows: (x: number) => boolean, expected: 
 }
 
 const realRow: EncodingRow<RealEncoding, Float64Array> = {
-  schema: z.strictObject({
-    kind: z.literal('real'),
-    length: lengthSchema,
-    low: z.number(),
-    high: z.number(),
-    scale: z.enum(['linear', 'log']),
-    unit: unitSchema,
-  }),
   relations({ low, high, scale }) {
     if (scale === 'log' && !(low > 0)) {
       return { field: 'low', detail: `expected a number above 0 with scale 'log', found ${low}` }
@@ -113,13 +92,6 @@ const realRow: EncodingRow<RealEncoding, Float64Array> = {
 }
 
 const integerRow: EncodingRow<IntegerEncoding, Int32Array> = {
-  schema: z.strictObject({
-    kind: z.literal('integer'),
-    length: lengthSchema,
-    low: int32,
-    high: int32,
-    unit: unitSchema,
-  }),
   relations: ({ low, high }) => boundsFault(low, high),
   slots: ({ length }) => length,
   bytes: ({ length, low, high }) => length * widthOf(high - low),
@@ -149,7 +121,6 @@ const integerRow: EncodingRow<IntegerEncoding, Int32Array> = {
 }
 
 const choiceRow: EncodingRow<ChoiceEncoding, Int32Array> = {
-  schema: z.strictObject({ kind: z.literal('choice'), length: lengthSchema, options: optionsSchema }),
   relations: () => undefined,
   slots: ({ length }) => length,
   bytes: ({ length, options }) => length * widthOf(options.length - 1),
@@ -162,7 +133,6 @@ const choiceRow: EncodingRow<ChoiceEncoding, Int32Array> = {
 }
 
 const bitsRow: EncodingRow<BitsEncoding, Uint8Array> = {
-  schema: z.strictObject({ kind: z.literal('bits'), length: lengthSchema }),
   relations: () => undefined,
   slots: ({ length }) => length,
   bytes: ({ length }) => Math.ceil(length / 8),
@@ -197,11 +167,6 @@ const bitsRow: EncodingRow<BitsEncoding, Uint8Array> = {
 }
 
 const layoutRow: EncodingRow<LayoutEncoding, Int32Array> = {
-  schema: z.strictObject({
-    kind: z.literal('layout'),
-    size: z.array(lengthSchema).min(1).max(limits.layoutAxes),
-    options: optionsSchema,
-  }),
   relations: () => undefined,
   slots: slotsOfLayout,
   bytes: (encoding) => slotsOfLayout(encoding) * widthOf(encoding.options.length - 1),

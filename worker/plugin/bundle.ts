@@ -176,13 +176,8 @@ const ownModules: Plugin = {
       }
       return { path: resolved, sideEffects: false }
     })
-    bundler.onResolve({ filter: /^zod$/ }, ({ importer }) =>
-      importer.startsWith(emittedRoot + sep)
-        ? { path: 'zod', namespace: 'left-out', sideEffects: false }
-        : undefined,
-    )
     bundler.onLoad({ filter: /.*/, namespace: 'left-out' }, () => ({
-      contents: 'export function checkProblem() {}\nexport const z = undefined',
+      contents: 'export function checkProblem() {}',
     }))
   },
 }
