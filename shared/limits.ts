@@ -55,7 +55,7 @@ export const limits = {
   /** Times it may die alone before it is set aside. */
   attemptsAlone: 2,
   /** Evaluations that travel to a worker together. */
-  dispatchBatch: 256,
+  dispatchBatch: 1_024,
   /** Confirmations of committed evaluations that the engine remembers before it asks the record again. */
   confirmedInMemory: 100_000,
   /** Rows of one kind in one transaction of the record. */

@@ -1,15 +1,19 @@
 // Confirmation by somebody else: agents of one thread, in processes that never compute a first result. Each serves a
 // limited number of items, so that what a plug-in may keep between calls does not live long; its successor is started
-// when half of them are done, so that nobody waits for it.
+// when half of them are done, so that nobody waits for it. Where items are so cheap that starting processes would be
+// most of the work, one serves for a stated time instead.
 
 import type { Executor, WorkItem } from '../shared/result.js'
 import { AgentLane, type AgentLaneEvents } from './lane-agent.js'
+import { wallSeconds } from './simulate.js'
 import type { ThreadsOptions } from './threads.js'
 
 export interface ConfirmLaneOptions {
   readonly agent: ThreadsOptions
   /** Items one process may simulate before a fresh one takes over. */
   readonly itemsMost: number
+  /** Nor is a process replaced before it has served this long, however many items that are. */
+  readonly secondsLeast: number
 }
 
 export type ConfirmLaneEvents = Omit<AgentLaneEvents, 'ready'>
@@ -19,6 +23,8 @@ interface Serving {
   /** Items handed to it so far, and those of them that are not answered. */
   given: number
   open: number
+  /** When it was given its first item. */
+  sinceSeconds: number | undefined
 }
 
 export class ConfirmLane {
@@ -55,15 +61,33 @@ export class ConfirmLane {
 
   private serve(): void {
     if (this.closed || this.waiting.length === 0) return
-    const { itemsMost } = this.options
+    if (this.current?.open === 0) this.retireSpent(this.current)
     this.current ??= this.take()
     const { current } = this
-    const items = this.waiting.splice(0, itemsMost - current.given)
-    if (items.length === 0) return
+    if (this.isSpent(current, 1)) return
+    const { itemsMost } = this.options
+    const items = this.waiting.splice(
+      0,
+      Math.max(itemsMost - current.given, this.isOld(current, 1) ? 0 : itemsMost),
+    )
+    current.sinceSeconds ??= wallSeconds()
     current.given += items.length
     current.open += items.length
     current.lane.submit(items)
-    if (current.given * 2 >= itemsMost) this.successor ??= this.open()
+    if (this.isSpent(current, 0.5)) this.successor ??= this.open()
+    if (this.waiting.length > 0) queueMicrotask(() => this.serve())
+  }
+
+  /** Whether it has served this part of its time and of its items. */
+  private isSpent(serving: Serving, part: number): boolean {
+    return serving.given >= part * this.options.itemsMost && this.isOld(serving, part)
+  }
+  private isOld({ sinceSeconds }: Serving, part: number): boolean {
+    const { secondsLeast } = this.options
+    return (
+      secondsLeast === 0 ||
+      (sinceSeconds !== undefined && wallSeconds() - sinceSeconds >= part * secondsLeast)
+    )
   }
 
   /** The successor, or a fresh one when there is none. */
@@ -93,19 +117,24 @@ export class ConfirmLane {
       unusable: events.unusable,
       broken: events.broken,
     })
-    const serving: Serving = { lane, given: 0, open: 0 }
+    const serving: Serving = { lane, given: 0, open: 0, sinceSeconds: undefined }
     lane.start()
     return serving
   }
 
   private settled(serving: Serving): void {
     serving.open--
-    if (serving.open > 0 || serving.given < this.options.itemsMost || serving !== this.current) return
+    if (serving.open > 0 || serving !== this.current) return
+    this.retireSpent(serving)
+    this.serve()
+  }
+
+  private retireSpent(serving: Serving): void {
+    if (!this.isSpent(serving, 1)) return
     this.current = undefined
     const gone = serving.lane.stop()
     this.leaving.add(gone)
     void gone.then(() => this.leaving.delete(gone))
-    this.serve()
   }
 }
 

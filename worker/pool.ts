@@ -3,7 +3,8 @@
 //   shared items   threads of an agent process, in batches; the item that kills or hangs a thread is lost
 //   doubtful       items whose agent died, or held too much memory among others: one process, one at a time, so that
 //                  the one that did it is known; the pool's own affair, nobody outside notices
-//   confirm        an agent of one thread, fresh after 500 items: never whoever computed the first result
+//   confirm        an agent of one thread, fresh after 500 items (at most every five seconds): never whoever computed
+//                  the first result
 //   alone          a process, fresh for each item
 //
 // The coordinator's own process never runs a simulation, so nothing a plug-in does can end it.
@@ -28,7 +29,7 @@ export interface PoolOptions extends SimulatorSettings {
   readonly timeLimit?: Partial<TimeLimit>
   /** Wall seconds of one replicate at expected cost 1, where known. */
   readonly secondsPerCost?: number
-  /** Items a confirming process may simulate before a fresh one takes over; 500 unless said. */
+  /** Items a confirming process may simulate before a fresh one takes over; 500 in five seconds or more unless said. */
   readonly confirmationsPerProcess?: number
   /** This machine's name unless said. */
   readonly host?: string
@@ -58,6 +59,8 @@ export interface Pool {
 
 const closeSeconds = 3
 const itemsPerProcess = 500
+/** Starting a process costs some tenths of a second of CPU: with cheap items that would be most of the work. */
+const confirmingSecondsLeast = 5
 
 export function createPool(options: PoolOptions, events: PoolEvents): Pool {
   return new MachinePool(options, events)
@@ -84,7 +87,7 @@ class MachinePool implements Pool {
     this.pace = new Pace(timeLimit, options.secondsPerCost)
     this.agent = this.agentLane()
     this.doubtful = this.processLane(itemsPerProcess)
-    this.confirming = this.confirmLane(options.confirmationsPerProcess ?? itemsPerProcess)
+    this.confirming = this.confirmLane()
     this.alone = this.processLane(1)
   }
 
@@ -156,9 +159,14 @@ class MachinePool implements Pool {
     })
   }
 
-  private confirmLane(itemsMost: number): ConfirmLane {
+  private confirmLane(): ConfirmLane {
+    const { confirmationsPerProcess } = this.options
     return new ConfirmLane(
-      { agent: { ...threadsOptions(this.options), threads: 1 }, itemsMost },
+      {
+        agent: { ...threadsOptions(this.options), threads: 1 },
+        itemsMost: confirmationsPerProcess ?? itemsPerProcess,
+        secondsLeast: confirmationsPerProcess === undefined ? confirmingSecondsLeast : 0,
+      },
       {
         answered: (item, simulated, executor) => this.answered(item, simulated, executor),
         lost: (loss, executor) => this.events.fact(lostFact(loss, executor)),
