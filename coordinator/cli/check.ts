@@ -12,16 +12,19 @@ import {
   spreadOf,
 } from './check/advice.js'
 import { tryFresh } from './check/fresh.js'
-import { type ProblemFault, type TrialPlan, type Trials, tryProblem } from './check/trials.js'
+import type { ProblemFault, TrialPlan } from './check/trials.js'
+import { type ProcessTrials, tryInProcess } from './check/trials-process.js'
 import type { Command, CommandInput, Output } from './command.js'
 import { counted, duration, grouped, percent, short } from './numbers.js'
 import { searchTables } from './search-tables.js'
 import { type Finding, printFindings } from './searchfile/finding.js'
 import { type OpenedSearch, openSearch } from './searchfile/open.js'
+import { quotas } from './searchfile/relations.js'
 import { wrap } from './terminal.js'
 
 const machinesTried = 8
 const secondsMost = 20
+const waitSeconds = 120
 
 export const checkCommand: Command = {
   name: 'check',
@@ -41,6 +44,12 @@ export const checkCommand: Command = {
       kind: 'count',
       help: `begin no further machine after this time (default ${secondsMost})`,
     },
+    {
+      flag: '--wait',
+      value: 'N',
+      kind: 'count',
+      help: `seconds for one evaluation before it is called hanging (default ${waitSeconds})`,
+    },
   ],
   examples: ['skerry check search.yaml', 'skerry check search.yaml --machines 20 --json'],
   run,
@@ -57,6 +66,12 @@ export interface CheckReport {
   readonly failedBecause?: string
   /** Why the fresh process did not run; absent when it did. */
   readonly freshNotRun?: string
+  /** Absent where the trials found a mistake: numbers of a broken problem would mislead. */
+  readonly measured?: Measured
+}
+
+/** What the trials measured, and what follows from it. */
+export interface Measured {
   readonly secondsPerSimulation: Spread
   /** Spread of time divided by expected cost. */
   readonly aroundCost: Spread
@@ -66,10 +81,30 @@ export interface CheckReport {
     readonly confirmation: number
     readonly total: number
   }
+  readonly memory: {
+    /** Largest resident size of the trial process. */
+    readonly peakBytes?: number
+    /** Of that, beyond the process before its first simulation. */
+    readonly addedBytes?: number
+    /** Held after a full collection, more than before. */
+    readonly keptBytesPerSimulation?: number
+  }
+  /** Absent without migration. */
+  readonly epoch?: EpochMeaning
   readonly workers: number
   readonly lookahead: number
   readonly recommendation: Recommendation
   readonly drift?: DriftExpectation
+}
+
+/** What `every: N rounds` is for this problem. */
+export interface EpochMeaning {
+  readonly rounds: number
+  /** Mean expected cost of an evaluation. */
+  readonly meanCost: number
+  readonly evaluationsPerSlot: number
+  /** Whole search, of the island that has the fewest. */
+  readonly epochs: number
 }
 
 async function run(input: CommandInput): Promise<number> {
@@ -78,6 +113,7 @@ async function run(input: CommandInput): Promise<number> {
   const report = await checkSearch(opened, {
     machines: input.counts['--machines'] ?? machinesTried,
     secondsMost: input.counts['--seconds'] ?? secondsMost,
+    waitSeconds: input.counts['--wait'] ?? waitSeconds,
   })
   if (output.json) output.print(JSON.stringify(report, undefined, 2))
   else printReport(output, opened, report)
@@ -87,19 +123,27 @@ async function run(input: CommandInput): Promise<number> {
 /** All trials of an opened search; prints nothing. */
 export async function checkSearch(
   opened: OpenedSearch,
-  effort: Pick<TrialPlan, 'machines' | 'secondsMost'>,
+  effort: Pick<TrialPlan, 'machines' | 'secondsMost'> & { readonly waitSeconds?: number },
 ): Promise<CheckReport> {
   const { plan, problem } = opened
   const trialPlan: TrialPlan = {
     seed: plan.seed,
     shared: plan.replicates.shared,
     replicates: plan.replicates.first,
-    ...effort,
+    machines: effort.machines,
+    secondsMost: effort.secondsMost,
   }
-  const trials = tryProblem(problem, trialPlan, cpuSeconds)
+  const patience = effort.waitSeconds ?? waitSeconds
+  const trials = await tryInProcess(problem, opened.bundle.code, trialPlan, patience)
   const isSound = trials.faults.length === 0
   const fresh = isSound
-    ? await tryFresh(problem, opened.bundle.code, trialPlan, trials.machines)
+    ? await tryFresh(
+        problem,
+        opened.bundle.code,
+        trialPlan,
+        trials.machines,
+        patience * (trials.machines.length + 1),
+      )
     : { faults: [], notRun: 'the trials in this process have already failed' }
   // A problem that promises less than bits may differ; that is said, not refused.
   const faults = [...trials.faults, ...fresh.faults]
@@ -114,30 +158,20 @@ export async function checkSearch(
     failedSimulations: trials.failed,
     ...(trials.failedBecause === undefined ? {} : { failedBecause: trials.failedBecause }),
     ...(fresh.notRun === undefined ? {} : { freshNotRun: fresh.notRun }),
-    ...costAndAdvice(opened, trials),
+    ...(binding.length === 0 ? { measured: measure(opened, trials) } : {}),
   }
-}
-
-/** CPU time of this process: what else the machine does then hardly counts. */
-function cpuSeconds(): number {
-  const { user, system } = process.cpuUsage()
-  return (user + system) / 1e6
 }
 
 function isExact(exactness: string): boolean {
   return exactness === 'bits' || exactness === 'bits-per-processor'
 }
 
-function costAndAdvice(opened: OpenedSearch, { machines }: Trials) {
+function measure(opened: OpenedSearch, trials: ProcessTrials): Measured {
   const { plan, fields } = opened
-  const times = machines.map(({ secondsPerSimulation }) => secondsPerSimulation)
-  const perCost = machines.map(
-    ({ secondsPerSimulation, expectedCost }) => secondsPerSimulation / expectedCost,
-  )
-  const secondsPerSimulation = spreadOf(times.length > 0 ? times : [0])
-  const aroundCost = spreadOf(perCost.length > 0 ? perCost : [0])
+  const { machines, memory, keptBytesPerSimulation } = trials
+  const secondsPerSimulation = spreadOf(machines.map((machine) => machine.secondsPerSimulation))
+  const aroundCost = spreadOf(machines.map((machine) => machine.secondsPerSimulation / machine.expectedCost))
   const workers = fields.workersExpected ?? fields.cores ?? availableParallelism()
-  const lookahead = plan.islands.reduce((sum, island) => sum + island.lookahead, 0)
   const search = (plan.budget.simulations * secondsPerSimulation.mean) / 3600
   const controls = search * plan.controls.length
   const confirmation = search * plan.confirm.fraction
@@ -145,14 +179,32 @@ function costAndAdvice(opened: OpenedSearch, { machines }: Trials) {
     plan.islands,
     machines.map(({ expectedCost }) => expectedCost),
   )
+  const epoch = epochOf(opened)
   return {
     secondsPerSimulation,
     aroundCost,
     coreHours: { search, controls, confirmation, total: search + controls + confirmation },
+    memory: { ...memory, ...(keptBytesPerSimulation === undefined ? {} : { keptBytesPerSimulation }) },
+    ...(epoch === undefined ? {} : { epoch }),
     workers,
-    lookahead,
+    lookahead: plan.islands.reduce((sum, island) => sum + island.lookahead, 0),
     recommendation: recommend(secondsPerSimulation, aroundCost, workers),
     ...(drift === undefined ? {} : { drift }),
+  }
+}
+
+function epochOf({ plan, fields, meanCost }: OpenedSearch): EpochMeaning | undefined {
+  if (!plan.migration || plan.islands.length < 2) return undefined
+  const { everyRounds } = plan.migration
+  const block = plan.replicates.first * Math.max(1, plan.problem.cases.length)
+  const rounds = quotas(fields).map(
+    (quota, group) => ((quota / block) * meanCost) / fields.islands[group]!.lookahead,
+  )
+  return {
+    rounds: everyRounds,
+    meanCost,
+    evaluationsPerSlot: everyRounds / meanCost,
+    epochs: Math.floor(Math.min(...rounds) / everyRounds),
   }
 }
 
@@ -175,7 +227,8 @@ function printReport(output: Output, opened: OpenedSearch, report: CheckReport):
   )
   output.print('')
   for (const line of faultLines(report, problem.exactness)) say(line)
-  for (const line of [...timeLines(report), ...costLines(report), ...adviceLines(report, opened)]) say(line)
+  const { measured } = report
+  if (measured) for (const line of measuredLines(measured, report, opened)) say(line)
   output.print('')
   say(
     report.ok
@@ -202,17 +255,44 @@ function faultLines(report: CheckReport, exactness: string): string[] {
   return lines
 }
 
-function timeLines({ secondsPerSimulation, aroundCost, machines }: CheckReport): string[] {
-  const milliseconds = `${short(secondsPerSimulation.mean * 1000)} ms`
+function measuredLines(measured: Measured, report: CheckReport, opened: OpenedSearch): string[] {
   return [
-    `A simulation takes ${milliseconds} on this machine (${counted(machines, 'machine')}, spread between them ${short(secondsPerSimulation.cv)} of the mean; divided by expected cost ${short(aroundCost.cv)}).`,
+    timeLine(measured, report),
+    memoryLine(measured.memory),
+    costLine(measured),
+    ...epochLines(measured.epoch),
+    ...adviceLines(measured, opened),
   ]
 }
 
-function costLines({ coreHours }: CheckReport): string[] {
+function timeLine({ secondsPerSimulation, aroundCost }: Measured, { machines }: CheckReport): string {
+  const milliseconds = `${short(secondsPerSimulation.mean * 1000)} ms`
+  return `A simulation takes ${milliseconds} of one core on this machine (mean of ${counted(machines, 'random machine')}; standard deviation between them ${percent(secondsPerSimulation.cv)} of the mean, ${percent(aroundCost.cv)} once divided by expected cost).`
+}
+
+const megabyte = 1e6
+/** What a simulation may keep before it is called a leak; less is what caches and compiled code make. */
+const leakBytes = 20_000
+
+function memoryLine({ peakBytes, addedBytes, keptBytesPerSimulation: kept }: Measured['memory']): string {
+  if (peakBytes === undefined) return 'Memory was not measured.'
+  const peak = `A process that simulates holds ${short(peakBytes / megabyte)} MB at most, ${short((addedBytes ?? 0) / megabyte)} MB of it since its first simulation`
+  if (kept === undefined) return `${peak}.`
+  return kept > leakBytes
+    ? `${peak}. Memory LEAKS: each simulation keeps about ${short(kept / 1000)} kB for ever; look for lists and caches that only grow.`
+    : `${peak}; simulations keep nothing that would grow (${short(kept / 1000)} kB each).`
+}
+
+function costLine({ coreHours }: Measured): string {
   const extra = coreHours.controls + coreHours.confirmation
+  return `The whole budget costs about ${hours(coreHours.total)}: search ${hours(coreHours.search)}, controls ${hours(coreHours.controls)}, confirmation ${hours(coreHours.confirmation)}${extra > 0 ? ' and more for every new best' : ' (none)'}. Evolved machines may take longer than random ones.`
+}
+
+function epochLines(epoch: EpochMeaning | undefined): string[] {
+  if (!epoch) return []
+  const { rounds, meanCost, evaluationsPerSlot, epochs } = epoch
   return [
-    `The whole budget costs about ${hours(coreHours.total)}: search ${hours(coreHours.search)}, controls ${hours(coreHours.controls)}, confirmation ${hours(coreHours.confirmation)}${extra > 0 ? '' : ' (none)'}. Evolved machines may take longer than random ones.`,
+    `Migration every ${rounds} rounds: an evaluation costs ${short(meanCost)} on average (expectedCost, 64 random machines), so that is about ${short(evaluationsPerSlot)} evaluations for each slot of the lookahead, and about ${counted(epochs, 'time')} in the search.`,
   ]
 }
 
@@ -221,7 +301,7 @@ function hours(coreHours: number): string {
 }
 
 function adviceLines(
-  { workers, lookahead, recommendation, drift }: CheckReport,
+  { workers, lookahead, recommendation, drift }: Measured,
   { plan }: OpenedSearch,
 ): string[] {
   const { order, busy, because } = recommendation

@@ -20,7 +20,7 @@ replicates: { first: 2, topUp: 2, most: 8 }
 islands:
   - { count: 2, method: nsga-ii, population: 48, lookahead: 12 }
   - { count: 1, method: age-fitness-pareto, population: 48, lookahead: 12 }
-migration: { every: 10 rounds, emigrants: 2, topology: ring, lag: 1 }
+migration: { every: 240 rounds, emigrants: 2, topology: ring, lag: 1 }
 control: none
 `
 

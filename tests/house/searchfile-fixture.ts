@@ -116,5 +116,5 @@ export function edited(piece: string, by: string): string {
 }
 
 export function plan(text: string, of: ProblemPlan = problem, nowMs?: number): PlannedSearch {
-  return planSearch(readSearchFile(text, tables), of, tables, nowMs)
+  return planSearch(readSearchFile(text, tables), of, tables, nowMs === undefined ? {} : { nowMs })
 }

@@ -44,7 +44,54 @@ describe('what `skerry new` writes', () => {
     expect(report.faults).toEqual([])
     expect(report.freshNotRun).toBeUndefined()
     expect(report.ok).toBe(true)
-    expect(report.coreHours.total).toBeGreaterThan(report.coreHours.search)
+    const { coreHours, memory } = report.measured!
+    expect(coreHours.total).toBeGreaterThan(coreHours.search)
+    expect(memory.peakBytes).toBeGreaterThan(10e6)
+    expect(memory.keptBytesPerSimulation).toBeLessThan(20_000)
+  })
+})
+
+describe('a problem that takes its process along', () => {
+  const rest = (inSimulate: string) => `
+import { defineProblem, real } from 'skerry'
+export default defineProblem({
+  name: 'probe', version: '1', summary: 'a problem that does what the test is about',
+  genome: { x: real({ length: 1, low: 0, high: 1 }) },
+  objectives: { shaking: { direction: 'minimise', unit: 'm/s2' } },
+  drawCondition: () => 0,
+  simulate: (genome, situations) => {
+    ${inSimulate}
+    return situations.map(() => ({ objectives: { shaking: genome.x[0] } }))
+  },
+})
+`
+  const faultOf = async (inSimulate: string, waitSeconds = 60) => {
+    const opened = await openSearch(folderWith(rest(inSimulate)), searchTables())
+    const report = await checkSearch(opened, { machines: 3, secondsMost: 10, waitSeconds })
+    expect(report.ok).toBe(false)
+    expect(report.measured).toBeUndefined()
+    return report.faults[0]!.sentence
+  }
+  it('by ending it is named with the exit code and the machine', async () => {
+    expect(await faultOf('process.exit(3)')).toBe(
+      'it ended its process (exit code 3) while machine 1 was being simulated.',
+    )
+  })
+  it('by hanging is given up after the time that was asked for', async () => {
+    expect(await faultOf('for (;;);', 3)).toBe(
+      'it was not done after 3 s (--wait N waits longer), while machine 1 was being simulated.',
+    )
+  })
+  it('by looping while it is loaded is refused', async () => {
+    const loops = `process.exit(7)\n${rest('')}`
+    expect(renderRefusal(await refusal(folderWith(loops)))).toContain('it ended the process with exit code 7')
+  })
+  it('by keeping memory is found out', async () => {
+    const leak = rest('kept.push(new Float64Array(20_000))').replace('export', 'const kept = []\nexport')
+    const opened = await openSearch(folderWith(leak), searchTables())
+    const { measured } = await checkSearch(opened, { machines: 2, secondsMost: 10 })
+    // Three cases of the fixture would share an array; this problem has none: 160 kB for two replicates.
+    expect(measured!.memory.keptBytesPerSimulation).toBeGreaterThan(60_000)
   })
 })
 

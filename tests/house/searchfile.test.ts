@@ -3,7 +3,7 @@
 
 import { describe, expect, it } from 'vitest'
 import { printFinding, printFindings, refusalOf } from '../../coordinator/cli/searchfile/finding.js'
-import { readSearchFile } from '../../coordinator/cli/searchfile/read.js'
+import { planSearch, readSearchFile } from '../../coordinator/cli/searchfile/read.js'
 import { renderRefusal } from '../../shared/refusals.js'
 import { edited, goodFile, plan, problem, tables, twoObjectives } from './searchfile-fixture.js'
 
@@ -22,6 +22,20 @@ function warned(text: string, nowMs?: number) {
   expect(planned).toBeDefined()
   return findings[0]!
 }
+
+describe('many mistakes', () => {
+  it('are one where a field is misspelt: its absence is not told as well', () => {
+    const found = refused(edited('population: 40, lookahead: 6 }', 'population: 40, lookahed: 6 }'))
+    expect(found).toMatchObject({ code: 'unknown-field', advice: 'Did you mean "lookahead"?' })
+  })
+  it('of one kind are counted, not repeated', () => {
+    const bomb = ['a: &a [x]', ...Array.from({ length: 8 }, (_, i) => `b${i}: [*a, *a]`)].join('\n')
+    const findings = plan(bomb).findings
+    const { detail } = refusalOf('search.yaml', findings)!
+    expect(detail.split('refused:').length - 1).toBeLessThanOrEqual(6)
+    expect(detail).toMatch(/and \d+ more of the kinds above/)
+  })
+})
 
 describe('a good search file', () => {
   it('becomes a plan without a word', () => {
@@ -341,6 +355,24 @@ describe('a poor value', () => {
   })
   it('is a warning: migration that comes after the end', () => {
     expect(warned(edited('every: 20 rounds', 'every: 2000 rounds')).field).toBe('migration.every')
+  })
+  it('is a warning: migration more often than an island evaluates anything', () => {
+    const costly = planSearch(readSearchFile(goodFile, tables), problem, tables, { meanCost: 24.3 })
+    expect(costly.findings).toHaveLength(1)
+    expect(costly.findings[0]).toMatchObject({ severity: 'warning', field: 'migration.every' })
+    expect(costly.findings[0]!.expected).toContain('240 rounds')
+    expect(costly.findings[0]!.advice).toContain('an evaluation costs about 24.3')
+    const cheap = planSearch(readSearchFile(goodFile, tables), problem, tables, { meanCost: 20 })
+    expect(cheap.findings).toEqual([])
+  })
+  it('is a warning: an island that would work on alone at the end', () => {
+    const shares = goodFile
+      .replace('lookahead: 6 }', 'lookahead: 6, share: 1 }')
+      .replace('    lookahead: 6\n', '    lookahead: 6\n    share: 3\n')
+    const late = warned(shares)
+    expect(late.field).toBe('islands[1]')
+    expect(late.advice).toContain('only 6 evaluations would be under way')
+    expect(plan(shares.replace('share: 3', 'share: 2')).findings).toEqual([])
   })
   it('is a warning: several islands without a word about migration', () => {
     expect(

@@ -5,6 +5,7 @@ import { genomeFromBytes } from '../../../shared/encodings.js'
 import { loadPlugin } from '../../../worker/plugin/load.js'
 import type { FreshOrder } from './fresh.js'
 import { evaluateOnce } from './trials.js'
+import { packValues } from './trials-wire.js'
 
 console.log = console.error
 console.info = console.error
@@ -20,8 +21,6 @@ const answer = order.machines.map(({ number, genome }) => {
     genomeFromBytes(problem.genome, bytes),
     number,
   )
-  const doubles = Buffer.alloc(8 * values.length)
-  for (const [index, value] of values.entries()) doubles.writeDoubleLE(value, 8 * index)
-  return { number, values: doubles.toString('base64'), failures }
+  return { number, values: packValues(values), failures }
 })
 process.stdout.write(JSON.stringify(answer))

@@ -11,6 +11,7 @@ import type { AnyProblem } from '../../../shared/problem.js'
 import { Refusal } from '../../../shared/refusals.js'
 import { emittedFile } from '../../../worker/entry.js'
 import { differences, type Machine, type ProblemFault, type TrialPlan } from './trials.js'
+import { failureList, unpackValues } from './trials-wire.js'
 
 /** What the child is asked and what it answers, as JSON on its standard input and output. */
 export interface FreshOrder {
@@ -23,7 +24,7 @@ export const freshAnswer = z.array(
     number: z.number().int(),
     /** Doubles, little-endian, base64. */
     values: z.string(),
-    failures: z.array(z.strictObject({ simulation: z.number().int(), reason: z.string() })),
+    failures: failureList,
   }),
 )
 
@@ -41,6 +42,7 @@ export async function tryFresh(
   code: string,
   plan: TrialPlan,
   machines: readonly Machine[],
+  waitSeconds: number,
 ): Promise<FreshOutcome> {
   let child: string
   try {
@@ -61,7 +63,7 @@ export async function tryFresh(
         genome: Buffer.from(genomeBytes(problem.genome, genome)).toString('base64'),
       })),
     }
-    return compare(problem, machines, await askChild(child, JSON.stringify(order)))
+    return compare(problem, machines, await askChild(child, JSON.stringify(order), waitSeconds))
   } finally {
     rmSync(folder, { recursive: true, force: true })
   }
@@ -82,10 +84,7 @@ function compare(problem: AnyProblem, machines: readonly Machine[], answer: stri
   const faults = machines.flatMap((machine) => {
     const other = parsed.data.find(({ number }) => number === machine.number)
     if (!other) return []
-    const bytes = Buffer.from(other.values, 'base64')
-    const values = Float64Array.from({ length: bytes.length / 8 }, (_, index) =>
-      bytes.readDoubleLE(8 * index),
-    )
+    const values = unpackValues(other.values)
     return differences(
       problem,
       machine,
@@ -105,9 +104,13 @@ function parseJson(text: string): unknown {
   }
 }
 
-function askChild(file: string, order: string): Promise<string> {
+function askChild(file: string, order: string, waitSeconds: number): Promise<string> {
   return new Promise((resolve) => {
-    const child = spawn(process.execPath, [file], { stdio: ['pipe', 'pipe', 'pipe'] })
+    const child = spawn(process.execPath, [file], {
+      stdio: ['pipe', 'pipe', 'pipe'],
+      timeout: waitSeconds * 1000,
+      killSignal: 'SIGKILL',
+    })
     let answer = ''
     let complaint = ''
     child.stdout.on('data', (chunk: Buffer) => {
@@ -118,7 +121,13 @@ function askChild(file: string, order: string): Promise<string> {
     })
     child.stdin.on('error', () => {})
     child.on('error', (error) => resolve(error.message))
-    child.on('close', (code) => resolve(code === 0 ? answer : complaint || `it ended with code ${code}`))
+    child.on('close', (code) =>
+      resolve(
+        code === 0
+          ? answer
+          : complaint || (code === null ? 'it was not done in time' : `it ended with exit code ${code}`),
+      ),
+    )
     child.stdin.end(order)
   })
 }

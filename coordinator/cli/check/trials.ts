@@ -47,16 +47,34 @@ export interface Trials {
   readonly simulations: number
   /** The reason of the first of them. */
   readonly failedBecause: string | undefined
+  /** Growth of what the process holds, over the second and third runs; absent where nothing measured it. */
+  readonly keptBytesPerSimulation?: number
+}
+
+/** The world around the trials. */
+export interface TrialWatch {
+  /** An evaluation of the machine begins; `run` is 1, 2 or 3. */
+  readonly begin: (machine: number, run: number) => void
+  /** Bytes held after a full collection. */
+  readonly keptBytes?: () => number
 }
 
 type Evaluate = (genome: Genome, machine: number) => StrictEvaluation
 
 /** Runs all trials in this process; `clockSeconds` is monotonic. */
-export function tryProblem(problem: AnyProblem, plan: TrialPlan, clockSeconds: () => number): Trials {
+export function tryProblem(
+  problem: AnyProblem,
+  plan: TrialPlan,
+  clockSeconds: () => number,
+  watch: TrialWatch = { begin: () => {} },
+): Trials {
   const run: Evaluate = (genome, machine) => evaluateOnce(problem, plan, genome, machine)
   const faults: ProblemFault[] = []
-  const machines = firstRuns(problem, plan, run, clockSeconds, faults)
-  faults.push(...secondRuns(problem, machines, run, clockSeconds))
+  const machines = firstRuns(problem, plan, run, clockSeconds, watch, faults)
+  const keptBefore = watch.keptBytes?.()
+  const second = secondRuns(problem, machines, run, clockSeconds, watch)
+  faults.push(...second.faults)
+  const grown = keptBefore === undefined ? undefined : watch.keptBytes!() - keptBefore
   const failures = machines.flatMap(({ first }) =>
     first.failures.filter((failure) => !isFault(first, failure.simulation)),
   )
@@ -66,6 +84,9 @@ export function tryProblem(problem: AnyProblem, plan: TrialPlan, clockSeconds: (
     failed: failures.length,
     simulations: machines.length * plan.replicates * simulationsPerReplicate(problem),
     failedBecause: failures[0]?.reason,
+    ...(grown === undefined || second.simulations === 0
+      ? {}
+      : { keptBytesPerSimulation: Math.max(0, grown / second.simulations) }),
   }
 }
 
@@ -93,11 +114,13 @@ function firstRuns(
   plan: TrialPlan,
   run: Evaluate,
   clockSeconds: () => number,
+  watch: TrialWatch,
   faults: ProblemFault[],
 ): Machine[] {
   const machines: Machine[] = []
   const began = clockSeconds()
   for (let number = 1; number <= plan.machines; number++) {
+    watch.begin(number, 1)
     const made = makeMachine(problem, plan.seed, number)
     if ('sentence' in made) {
       faults.push(made)
@@ -112,20 +135,35 @@ function firstRuns(
   return machines
 }
 
+/** A machine is timed over at least this long, unless it takes more runs than the most. */
+const timedSecondsLeast = 0.02
+const timedRunsMost = 100
+
 /** Again in reverse order, so that anything kept from one simulation to the next shows. */
 function secondRuns(
   problem: AnyProblem,
   machines: readonly Machine[],
   run: Evaluate,
   clockSeconds: () => number,
-): ProblemFault[] {
+  watch: TrialWatch,
+): { readonly faults: ProblemFault[]; readonly simulations: number } {
   const faults: ProblemFault[] = []
+  let simulations = 0
   for (const machine of [...machines].reverse()) {
+    watch.begin(machine.number, 2)
     const again = run(machine.genome, machine.number)
-    // Timed after the first runs, which also warm the compiler up.
+    watch.begin(machine.number, 3)
+    const rows = rowsOf(problem, again)
+    // Timed after the first runs, which also warm the compiler up; short simulations are timed over several.
     const start = clockSeconds()
     const alone = run(machine.genome, machine.number)
-    machine.secondsPerSimulation = (clockSeconds() - start) / rowsOf(problem, alone)
+    let runs = 1
+    while (runs < timedRunsMost && clockSeconds() - start < timedSecondsLeast) {
+      run(machine.genome, machine.number)
+      runs++
+    }
+    machine.secondsPerSimulation = (clockSeconds() - start) / (runs * rows)
+    simulations += (1 + runs) * rows
     const repeated = differences(problem, machine, again, alone, 'when it was simulated twice in a row')
     faults.push(...repeated)
     if (repeated.length === 0) {
@@ -140,7 +178,7 @@ function secondRuns(
       )
     }
   }
-  return faults
+  return { faults, simulations }
 }
 
 function makeMachine(

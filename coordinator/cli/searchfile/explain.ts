@@ -58,6 +58,10 @@ function unknownField(subject: Subject, path: FieldPath, key: string): Finding {
   })
 }
 
+export function meantAdvice(name: string): string {
+  return `Did you mean "${name}"?`
+}
+
 /** An unknown field, part, setting or option at `path`, whose last step is the name that was found. */
 export function unknownName(facts: {
   readonly located: LocatedText
@@ -74,7 +78,7 @@ export function unknownName(facts: {
     field: fieldName(facts.path),
     found: `the unknown ${facts.what} "${plainText(name)}"`,
     expected: facts.known.length === 0 ? `no ${facts.what} here` : eitherOf(facts.known),
-    advice: meant ? `Did you mean "${meant}"?` : `Delete it, or use one of the names above.`,
+    advice: meant ? meantAdvice(meant) : `Delete it, or use one of the names above.`,
   }
 }
 
@@ -83,7 +87,7 @@ function wrongValue(subject: Subject, path: FieldPath, issue: Issue): Finding {
   const found = valueAt(subject.value, path)
   const options = issue.code === 'invalid_value' ? issue.values.map(String) : []
   const meant = typeof found === 'string' ? nearestName(found, options) : undefined
-  const advice = meant ? `Did you mean "${meant}"?` : found === undefined ? 'Add the field.' : undefined
+  const advice = meant ? meantAdvice(meant) : found === undefined ? 'Add the field.' : undefined
   return {
     severity: 'refused',
     code: codeOf(issue, found),

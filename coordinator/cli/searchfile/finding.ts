@@ -65,13 +65,25 @@ export function describeValue(value: unknown): string {
   return `${kind ?? 'the value'} ${short}`
 }
 
-/** The refusal that shows every finding that was refused; undefined when none was. */
+/** So many problems of one kind are shown; somebody who made a mistake twenty times need not read it twenty times. */
+const alikeMost = 3
+
+/** How many problems of the same kind come before this one. */
+function before(findings: readonly Finding[], finding: Finding): number {
+  const alike = (other: Finding) => other.code === finding.code && other.expected === finding.expected
+  return findings.slice(0, findings.indexOf(finding)).filter(alike).length
+}
+
+/** The refusal that shows what was refused, of many alike the first ones; undefined when nothing was. */
 export function refusalOf(file: string, findings: readonly Finding[]): Refusal | undefined {
   const refused = sortFindings(findings).filter((finding) => finding.severity === 'refused')
   const first = refused[0]
   if (!first) return undefined
   if (refused.length > 1) {
-    const detail = `the first of ${refused.length} problems of ${file}\n${printFindings(file, refused)}`
+    const shown = refused.filter((finding) => before(refused, finding) < alikeMost)
+    const more = refused.length - shown.length
+    const rest = more > 0 ? `\n    and ${more} more of the kinds above` : ''
+    const detail = `the first of ${refused.length} problems of ${file}\n${printFindings(file, shown)}${rest}`
     return refuse(first.code, {
       detail,
       cure: 'Mend the lines above; `skerry check` tries the file without starting a search.',

@@ -4,8 +4,10 @@
 import { readFileSync } from 'node:fs'
 import { dirname, resolve } from 'node:path'
 import { check } from '../../../shared/check.js'
+import { randomGenome } from '../../../shared/encodings.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import { Refusal, refuse } from '../../../shared/refusals.js'
+import { stream } from '../../../shared/streams.js'
 import { problemPlan } from '../../../sim/problem.js'
 import { bundlePlugin, type PluginBundle } from '../../../worker/plugin/bundle.js'
 import { loadPlugin } from '../../../worker/plugin/load.js'
@@ -14,6 +16,7 @@ import { type Finding, refusalOf } from './finding.js'
 import { planSearch, type ReadFile, readSearchFile } from './read.js'
 import type { SearchFile } from './schema.js'
 import type { SearchTables } from './tables.js'
+import { tryLoad } from './try-load.js'
 
 export interface OpenedSearch {
   readonly file: string
@@ -24,6 +27,8 @@ export interface OpenedSearch {
   readonly warnings: readonly Finding[]
   readonly bundle: PluginBundle
   readonly problem: AnyProblem
+  /** Mean expected cost of a founder's evaluation, in units of island time. */
+  readonly meanCost: number
 }
 
 /** Reads, bundles, loads and plans. Refusals: those of the table under "Search file" and "Problem". */
@@ -36,7 +41,7 @@ export async function openSearch(file: string, tables: SearchTables, nowMs?: num
     read,
     found && problemPlan(found.problem, found.bundle.digest),
     tables,
-    nowMs,
+    { ...(nowMs === undefined ? {} : { nowMs }), ...(found ? { meanCost: meanCostOf(found.problem) } : {}) },
   )
   const refused = findings.filter(({ severity }) => severity === 'refused')
   if (loaded instanceof Refusal) {
@@ -47,7 +52,8 @@ export async function openSearch(file: string, tables: SearchTables, nowMs?: num
     found !== undefined && plan !== undefined && read.file !== undefined,
     'a search without a plan has a reason',
   )
-  return { file, text, fields: read.file, plan, warnings: findings, ...found }
+  const meanCost = meanCostOf(found.problem)
+  return { file, text, fields: read.file, plan, warnings: findings, meanCost, ...found }
 }
 
 /** A problem that could not be loaded, among other mistakes of the file that names it. */
@@ -85,12 +91,35 @@ async function loadProblem(
   const plugin = resolve(dirname(file), path)
   try {
     const bundle = await bundlePlugin(plugin)
+    await tryLoad(bundle.code)
     return { bundle, problem: await loadPlugin({ code: bundle.code }) }
   } catch (error) {
     if (!(error instanceof Refusal)) throw error
     if (error.code !== 'problem-not-found') return atPlugin(error, plugin)
     const where = { file, ...read.located.placeOf(['problem']), field: 'problem' }
     return refuse(error.code, { detail: error.detail, where, cure: error.cure, cause: error })
+  }
+}
+
+const founderSample = 64
+
+/**
+ * Mean expected cost of an evaluation of founders, which tells how long a round is; 1 where it cannot be asked. Always the
+ * same sample: warnings do not depend on the seed.
+ */
+export function meanCostOf(problem: AnyProblem): number {
+  try {
+    let sum = 0
+    for (let founder = 0; founder < founderSample; founder++) {
+      sum += problem.expectedCost(
+        problem.repair(randomGenome(problem.genome, stream(0, 'check', 3, founder))),
+      )
+    }
+    const mean = sum / founderSample
+    return mean >= 1 && Number.isFinite(mean) ? mean : 1
+  } catch {
+    // check and run say what it throws.
+    return 1
   }
 }
 

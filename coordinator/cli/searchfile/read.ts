@@ -5,7 +5,7 @@
 import type { GenomeSpec } from '../../../shared/genome.js'
 import { firstControl } from '../../../shared/ids.js'
 import type { IslandPlan, ProblemPlan, SearchPlan } from '../../evolution/plan.js'
-import { explainIssues, unknownName } from './explain.js'
+import { explainIssues, meantAdvice, unknownName } from './explain.js'
 import { type Finding, isRefused, sortFindings } from './finding.js'
 import { operatorsOf, rowNamed, settingFindings, settingsOf } from './names.js'
 import { impossible, methodOf, poor, populationOf, type Rule, type Subject, shareOf } from './relations.js'
@@ -29,8 +29,21 @@ export function readSearchFile(text: string, tables: SearchTables): ReadFile {
     return { partial: {}, file: undefined, findings: located.findings, located }
   const { partial, findings } = readFields(located)
   findings.push(...unlike(findings, nameFindings(located, tables)))
-  const sorted = sortFindings(findings)
+  const sorted = sortFindings(withoutMisspelt(findings))
   return { partial, file: isRefused(sorted) ? undefined : (partial as SearchFile), findings: sorted, located }
+}
+
+/** A misspelt field is one mistake: that the right name is missing beside it needs no word. */
+function withoutMisspelt(findings: readonly Finding[]): Finding[] {
+  const parent = (field: string) => field.replace(/\.?[^.]*$/, '')
+  const isMeant = (missing: Finding) =>
+    findings.some(
+      (one) =>
+        one.code === 'unknown-field' &&
+        parent(one.field) === parent(missing.field) &&
+        one.advice === meantAdvice(missing.field.replace(/^.*\./, '')),
+    )
+  return findings.filter((finding) => finding.code !== 'missing-field' || !isMeant(finding))
 }
 
 /** Of `more`, those about fields that have no finding yet: what is no number needs no word about its size. */
@@ -113,13 +126,13 @@ export interface PlannedSearch {
 
 /**
  * Step two: the checked plan, with the findings of step one among its own. Without a problem (it could not be loaded), or with a
- * file that was refused, there is no plan, but what can be said of the rest is said. `nowMs` only serves the warning about a date that is past.
+ * file that was refused, there is no plan, but what can be said of the rest is said. `known` only serves warnings.
  */
 export function planSearch(
   read: ReadFile,
   problem: ProblemPlan | undefined,
   tables: SearchTables,
-  nowMs?: number,
+  known: Pick<Subject, 'nowMs' | 'meanCost'> = {},
 ): PlannedSearch {
   const { file, located } = read
   const subject: Subject = {
@@ -128,7 +141,7 @@ export function planSearch(
     tables,
     casesPerReplicate: Math.max(1, problem?.cases.length ?? 1),
     objectives: problem?.objectives.length,
-    ...(nowMs === undefined ? {} : { nowMs }),
+    ...known,
   }
   const related = relationFindings(located, subject, soundFields(read))
   if (!file || !problem) return { plan: undefined, findings: sortFindings([...read.findings, ...related]) }

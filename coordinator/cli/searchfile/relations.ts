@@ -22,6 +22,8 @@ export interface Subject {
   readonly objectives: number | undefined
   /** Time now in milliseconds, for `until`; absent where there is no clock. */
   readonly nowMs?: number
+  /** Mean expected cost of an evaluation; absent where the problem could not be asked. */
+  readonly meanCost?: number
 }
 
 export type Complaint = Pick<Finding, 'found' | 'expected'> & {
@@ -224,6 +226,24 @@ export const impossible: { readonly [rule: string]: Rule } = {
   }),
 }
 
+/** How much longer than all others an island may last before it is called late. Common practice, no source. */
+const lateFactor = 2
+
+/** How many rounds an island of each group lasts, if every individual is simulated `first` times. */
+function roundsOfGroups({ file, casesPerReplicate, meanCost }: Subject): number[] {
+  return quotas(file).map(
+    (quota, index) =>
+      (quota * (meanCost ?? 1)) /
+      (file.replicates.first * casesPerReplicate * file.islands[index]!.lookahead),
+  )
+}
+
+function roundWords({ meanCost }: Subject): string {
+  const round = 'In a round each slot of the lookahead works off one unit of expected cost'
+  if (meanCost === undefined || meanCost === 1) return `${round}, here one evaluation`
+  return `${round}; an evaluation costs about ${Number(meanCost.toPrecision(3))}`
+}
+
 export const poor: { readonly [rule: string]: Rule } = {
   lookaheadAbovePopulation: rule(['islands'], (subject) =>
     eachGroup(subject, (group, path) => {
@@ -270,29 +290,53 @@ export const poor: { readonly [rule: string]: Rule } = {
     })
   }),
 
-  migrationNeverHappens: rule(
-    ['islands', 'budget', 'replicates', 'migration'],
-    ({ file, casesPerReplicate }) => {
-      const migration = file.migration
-      if (migration === undefined || migration === 'none' || islandCount(file) < 2) return []
-      const rounds = quotas(file).map(
-        (quota, index) =>
-          quota / (file.replicates.first * casesPerReplicate * file.islands[index]!.lookahead),
-      )
-      const fewest = Math.min(...rounds)
-      const needed = migration.every * (migration.lag + 1)
-      if (fewest >= needed) return []
-      return [
-        {
-          path: ['migration', 'every'],
-          found: `every ${migration.every} rounds with lag ${migration.lag}, but an island lasts about ${Math.floor(fewest)} rounds`,
-          expected: `${needed} rounds or more, so that somebody arrives`,
-          advice:
-            "A round is one evaluation for each of an island's L slots: use a shorter interval or a larger budget.",
-        },
-      ]
-    },
-  ),
+  migrationNeverHappens: rule(['islands', 'budget', 'replicates', 'migration'], (subject) => {
+    const { migration } = subject.file
+    if (migration === undefined || migration === 'none' || islandCount(subject.file) < 2) return []
+    const fewest = Math.min(...roundsOfGroups(subject))
+    const needed = migration.every * (migration.lag + 1)
+    if (fewest >= needed) return []
+    return [
+      {
+        path: ['migration', 'every'],
+        found: `every ${migration.every} rounds with lag ${migration.lag}, but an island lasts about ${Math.floor(fewest)} rounds`,
+        expected: `at most ${Math.max(1, Math.floor(fewest / (migration.lag + 1)))} rounds, so that somebody arrives`,
+        advice: `${roundWords(subject)}: use a shorter interval or a larger budget.`,
+      },
+    ]
+  }),
+
+  epochBelowOneEvaluation: rule(['islands', 'migration'], (subject) => {
+    const { migration } = subject.file
+    if (migration === undefined || migration === 'none' || islandCount(subject.file) < 2) return []
+    const { meanCost } = subject
+    if (meanCost === undefined || migration.every >= meanCost) return []
+    return [
+      {
+        path: ['migration', 'every'],
+        found: `every ${migration.every} rounds, which is less than one evaluation for each slot of the lookahead`,
+        expected: `${Number((10 * meanCost).toPrecision(2))} rounds or so: ten evaluations for each slot`,
+        advice: `${roundWords(subject)}. Islands that trade all the time become one population.`,
+      },
+    ]
+  }),
+
+  lateIsland: rule(['islands', 'budget', 'replicates'], (subject) => {
+    if (subject.file.islands.length < 2) return []
+    const rounds = roundsOfGroups(subject)
+    const longest = rounds.indexOf(Math.max(...rounds))
+    const others = Math.max(...rounds.filter((_, group) => group !== longest))
+    if (!(rounds[longest]! > lateFactor * others)) return []
+    const { count, lookahead } = subject.file.islands[longest]!
+    return [
+      {
+        path: ['islands', longest],
+        found: `about ${Math.round(rounds[longest]!)} rounds of work, the other islands at most ${Math.round(others)}`,
+        expected: 'quotas (share) in proportion to lookahead, so that islands end at about the same time',
+        advice: `At the end only ${count * lookahead} evaluations would be under way: give these islands more lookahead or less share.`,
+      },
+    ]
+  }),
 
   migrationOfOne: rule(['islands', 'migration'], ({ file }) => {
     if (file.migration === undefined || file.migration === 'none' || islandCount(file) > 1) return []
