@@ -3,6 +3,7 @@
 
 import { equalBytes } from '../../shared/digests.js'
 import { islandName } from '../../shared/ids.js'
+import { Refusal } from '../../shared/refusals.js'
 import {
   type AppendedKeys,
   type AppendedRows,
@@ -107,7 +108,7 @@ export class ChainChecker {
         return 'its digest does not match its rows'
       return undefined
     } catch (error) {
-      return error instanceof Error ? error.message : String(error)
+      return damageIn(error)
     }
   }
 
@@ -215,7 +216,7 @@ function walkChain(checker: ChainChecker, progress: ((appends: number) => void) 
       if (append.sequence % chunkAppends === 0) progress?.(append.sequence)
     }
   } catch (error) {
-    const reason = error instanceof Error ? error.message : String(error)
+    const reason = damageIn(error)
     firstBad ??= {
       append: previous ? previous.sequence + 1 : 0,
       atMs: 0,
@@ -251,9 +252,16 @@ function countDamagedSnapshots(database: GuardedDatabase): number {
       const [digest, checksum, state] = [bytesAt(row, 0), bytesAt(row, 1), bytesAt(row, 2)]
       return !openSnapshot({ island: Number(island), commit: Number(commit), digest, checksum, state })
     }).length
-  } catch {
+  } catch (error) {
+    damageIn(error)
     return 1
   }
+}
+
+/** What is damaged, in words. A disk that cannot be read now says nothing about what it holds: that is thrown on. */
+function damageIn(error: unknown): string {
+  if (error instanceof Refusal && error.code !== 'record-corrupted' && error.code !== 'bytes-malformed') throw error
+  return error instanceof Error ? error.message : String(error)
 }
 
 function wordsFor(found: Omit<Verification, 'sentences'>): string[] {
