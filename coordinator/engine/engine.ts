@@ -292,13 +292,21 @@ export class Engine implements Gate {
 
   sent(mail: Mail): void {
     this.#rows.mail(mail)
-    // Whoever waited for it may go on.
+    this.#wakeWhoWaitsForMail()
+  }
+  #wakeWhoWaitsForMail(): void {
     for (const [number, standing] of this.#standing) if (standing === 'mail') this.#due.add(number)
   }
 
   factWhileWaiting(island: Island): boolean {
-    if (this.#orders.enterNext(island, 'waiting', island.counters.commits)) return true
-    if (island.ended) this.#dropWorkOf(island)
+    if (this.#orders.enterNext(island, 'waiting', island.counters.commits)) {
+      // Whoever waited for the mail of an island that goes on later waits no more.
+      this.#wakeWhoWaitsForMail()
+      return true
+    }
+    if (!island.ended) return false
+    if (this.#orders.stateAgain(island)) return this.factWhileWaiting(island)
+    this.#dropWorkOf(island)
     return false
   }
   /** An ended island's unfinished work is of no use any more. */

@@ -83,10 +83,7 @@ export class Orders {
 
   at(island: Island, kind: string, changesSearch: boolean, sentence: string, data: FactData): void {
     const { schedule, rows, wake } = this.#parts
-    schedule.add(island.number, data)
-    if (data.fact.fact === 'finish' && data.fact.epoch > island.counters.epochsPassed) {
-      island.finishAfter(data.fact.epoch)
-    }
+    schedule.add(island.number, data, { kind, sentence })
     rows.event(
       eventRow({
         kind,
@@ -99,6 +96,22 @@ export class Orders {
       }),
     )
     wake(island.number)
+  }
+
+  /**
+   * An island that has ended never comes to the epochs for which something was ordered while it searched: stated
+   * again, it enters now. False when there is nothing.
+   */
+  stateAgain(island: Island): boolean {
+    const { commits, epochsPassed } = island.counters
+    const overtaken = this.#parts.schedule
+      .takeAfter(island.number, epochsPassed)
+      .filter(({ fact }) => fact.fact !== 'finish')
+    for (const { kind, sentence, fact } of overtaken) {
+      const entering = fact.fact === 'budget' ? { ...fact, silentFrom: epochsPassed + 1 } : fact
+      this.at(island, kind, true, sentence, { stage: 'waiting', at: commits, fact: entering })
+    }
+    return overtaken.length > 0
   }
 
   /** Lets the next fact for this point in; false when there is none. */

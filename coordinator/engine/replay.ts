@@ -47,8 +47,6 @@ export class ReplayGate implements Gate {
       const rows = reader.commits(island.number, island.counters.commits)[Symbol.iterator]()
       this.#journals.set(island.number, { rows, next: nextOf(rows) })
       schedule.skip(island)
-      const finish = schedule.finishOf(island.number)
-      if (finish !== undefined && finish > island.counters.epochsPassed) island.finishAfter(finish)
     }
   }
 

@@ -55,9 +55,16 @@ const dataSchema = z.object({
 })
 export type FactData = z.infer<typeof dataSchema>
 
+/** A fact with how it is told. */
+export interface StatedFact {
+  readonly fact: WorldFact
+  readonly kind: string
+  readonly sentence: string
+}
+
 /** The facts known for one search, by the point at which they enter. */
 export class Schedule {
-  readonly #facts = new Map<string, WorldFact[]>()
+  readonly #facts = new Map<string, StatedFact[]>()
 
   /** Adds what an event of the record says; events without a fact are only news. */
   addRecorded(event: EventRow): FactData | undefined {
@@ -66,13 +73,17 @@ export class Schedule {
     if (!parsed.success) {
       throw refuse('record-corrupted', { detail: `event "${event.kind}" has data this version cannot read` })
     }
-    this.add(event.island, parsed.data)
+    this.add(event.island, parsed.data, event)
     return parsed.data
   }
 
-  add(island: number, { stage, at, fact }: FactData): void {
+  add(
+    island: number,
+    { stage, at, fact }: FactData,
+    { kind, sentence }: Pick<EventRow, 'kind' | 'sentence'>,
+  ): void {
     const key = keyOf(island, stage, at)
-    this.#facts.set(key, [...(this.#facts.get(key) ?? []), fact])
+    this.#facts.set(key, [...(this.#facts.get(key) ?? []), { fact, kind, sentence }])
   }
 
   /** The next fact that enters here, in the order they were stated; it is taken off the schedule. */
@@ -80,9 +91,9 @@ export class Schedule {
     if (this.#facts.size === 0) return undefined
     const key = keyOf(island, stage, at)
     const facts = this.#facts.get(key)
-    const fact = facts?.shift()
+    const stated = facts?.shift()
     if (facts?.length === 0) this.#facts.delete(key)
-    return fact
+    return stated?.fact
   }
 
   /** Facts that a snapshot already has in it are not let in again. */
@@ -92,16 +103,17 @@ export class Schedule {
     for (let n = 0; n < factsSending; n++) this.next(island.number, 'sending', epochsPassed + 1)
   }
 
-  /** The epoch this island is ordered to finish with, if any. */
-  finishOf(island: number): number | undefined {
-    let earliest: number | undefined
-    for (const [key, facts] of this.#facts) {
-      if (!key.startsWith(`${island} epoch `)) continue
-      for (const fact of facts) {
-        if (fact.fact === 'finish') earliest = Math.min(earliest ?? Infinity, fact.epoch)
-      }
-    }
-    return earliest
+  /** Takes off the schedule what was stated for ends of epochs after this one, by epoch. */
+  takeAfter(island: number, epoch: number): StatedFact[] {
+    const epochOf = (key: string) =>
+      key.startsWith(`${island} epoch `) ? Number(key.slice(`${island} epoch `.length)) : 0
+    const keys = [...this.#facts.keys()].filter((key) => epochOf(key) > epoch)
+    keys.sort((a, b) => epochOf(a) - epochOf(b))
+    return keys.flatMap((key) => {
+      const facts = this.#facts.get(key)!
+      this.#facts.delete(key)
+      return facts
+    })
   }
 }
 
@@ -126,7 +138,7 @@ const actions: Actions = {
       result: { values: Float64Array.from(result.values), failures: result.failures },
     }),
   finish: (_search, island, { epoch }) => {
-    if (epoch > island.counters.epochsPassed) island.finishAfter(epoch)
+    if (epoch === island.counters.epochsPassed) island.end()
   },
   budget: (search, island, { simulations, islands, epoch }) => {
     island.setQuota(search.quotas(simulations, islands).get(island.number) ?? island.quota)

@@ -47,7 +47,6 @@ export interface IslandState {
   readonly mostReplicates: number
   readonly ended: boolean
   readonly paused: boolean
-  readonly finishAfterEpoch: number
   readonly individuals: readonly Individual[]
   /** Positions in `individuals`. */
   readonly held: readonly number[]

@@ -32,7 +32,6 @@ export interface IslandTools {
   readonly expectedCost: (genome: Genome) => number
 }
 
-const noEpoch = Number.MAX_SAFE_INTEGER
 /** Length of an epoch where nothing migrates: budgets still end at epochs. */
 const roundsWithoutMigration = 20
 
@@ -51,7 +50,8 @@ export class Island {
   #mostReplicates: number
   #ended: boolean
   #paused: boolean
-  #finishAfterEpoch: number
+  /** Set going again: what was outstanding when it ended is to be handed out once more. */
+  #handsOutAgain = false
   readonly #leader: Leader
 
   constructor(tools: IslandTools, state?: IslandState) {
@@ -68,7 +68,6 @@ export class Island {
     this.#mostReplicates = state?.mostReplicates ?? tools.plan.replicates.most
     this.#ended = state?.ended ?? false
     this.#paused = state?.paused ?? false
-    this.#finishAfterEpoch = state?.finishAfterEpoch ?? noEpoch
     this.#outstanding = new Outstanding(
       state?.tickets.map((ticket) => ({ ...ticket, individual: byPosition(ticket.individual) })),
     )
@@ -130,8 +129,9 @@ export class Island {
   ranked(): readonly Individual[] {
     return this.#machine.ranked()
   }
+  /** None once the island has ended: what it had proposed waits until it is set going again. */
   outstanding(): readonly Ticket[] {
-    return this.#outstanding.all()
+    return this.#ended ? [] : this.#outstanding.all()
   }
   ticket(evaluation: number): Ticket | undefined {
     return this.#outstanding.find(evaluation)
@@ -141,7 +141,8 @@ export class Island {
 
   /** Proposes while there are free slots, quota and a willing method. Returns what is new, in order. */
   fill(): Ticket[] {
-    const released: Ticket[] = []
+    const released = this.#handsOutAgain ? [...this.#outstanding.all()] : []
+    this.#handsOutAgain = false
     while (!this.#ended && !this.#paused && this.#outstanding.size < this.tools.island.lookahead) {
       const ticket = this.#proposeTopUp() ?? this.#proposeBirth()
       if (!ticket) break
@@ -336,22 +337,15 @@ export class Island {
       stagnationRounds !== undefined &&
       !this.isControl &&
       stale >= stagnationRounds * this.tools.island.lookahead
-    if (epoch >= this.#finishAfterEpoch || stagnant) this.#end()
+    if (stagnant) this.end()
   }
 
-  #end(): void {
+  /** Commits nothing more. What is outstanding is kept: a method may wait for it when the island goes on one day. */
+  end(): void {
     this.#ended = true
-    this.#outstanding.clear()
-    this.#topUpQueue = []
   }
 
   // ------------------------------------------------------------------------ facts of the world
-
-  /** The island ends with this epoch (or at once where it has already passed it: callers must not). */
-  finishAfter(epoch: number): void {
-    check(epoch > this.#counters.epochsPassed, 'a finish is ordered for an epoch to come')
-    this.#finishAfterEpoch = Math.min(this.#finishAfterEpoch, epoch)
-  }
 
   /** A new quota from now on. */
   setQuota(quota: number): void {
@@ -369,8 +363,8 @@ export class Island {
     check(this.#ended, 'only an ended island is set going again')
     if (!this.#affords(this.tools.plan.replicates.first)) return false
     this.#joinAfter(epoch)
-    this.#finishAfterEpoch = noEpoch
     this.#ended = false
+    this.#handsOutAgain = true
     return true
   }
 
@@ -446,7 +440,6 @@ export class Island {
       mostReplicates: this.#mostReplicates,
       ended: this.#ended,
       paused: this.#paused,
-      finishAfterEpoch: this.#finishAfterEpoch,
       held: this.#machine.held().map(positionOf),
       best: best ? positionOf(best) : -1,
       topUpQueue: this.#topUpQueue.map(positionOf),

@@ -233,6 +233,7 @@ export class Search {
       epoch = island.epochDue()
     ) {
       if (!island.hasReceived) {
+        if (!island.isControl && !this.#othersAreNear(epoch)) return 'mail'
         const groups = this.#groupsFor(island, epoch)
         if (!groups) return 'mail'
         island.receive(epoch, groups)
@@ -250,6 +251,28 @@ export class Search {
       gate.factsAtEpoch(island, epoch)
     }
     return undefined
+  }
+
+  /**
+   * With a target all islands finish with one epoch, so nobody may have passed it when somebody reaches the target.
+   * Mail alone would not see to that: whoever is behind an island that has ended waits for nobody.
+   */
+  #othersAreNear(epoch: number): boolean {
+    if (this.plan.budget.target === undefined) return true
+    for (let reached = epoch - 1; reached > 0; reached--) {
+      const steps = this.#finishSteps(reached)
+      if (steps === undefined) return true
+      if (reached + steps > epoch) continue
+      return this.#migratingAt(reached).every((number) => this.#post.find(number, reached) !== undefined)
+    }
+    return true
+  }
+
+  /** Epochs from the one in which the target is reached to the one all finish with; undefined where each is alone. */
+  #finishSteps(epoch: number): number | undefined {
+    const { migration } = this.plan
+    const steps = migration && topologies[migration.topology].diameter(this.#migratingAt(epoch).length)
+    return migration && steps !== undefined ? Math.max(1, steps * migration.lag) : undefined
   }
 
   #groupsFor(island: Island, epoch: number): (readonly Individual[])[] | undefined {
@@ -290,19 +313,21 @@ export class Search {
     const { migration } = this.plan
     if (!migration) return
     const waiting = this.#islands.filter((island) => !island.isControl && !island.ended && !island.paused)
-    const oldest = Math.min(...waiting.map((island) => island.counters.epochsPassed + 1 - migration.lag))
+    const oldest = Math.min(
+      ...waiting.map(({ counters: { epochsPassed } }) => {
+        const steps = this.plan.budget.target === undefined ? 0 : (this.#finishSteps(epochsPassed + 1) ?? 0)
+        return epochsPassed + 1 - Math.max(migration.lag, steps)
+      }),
+    )
     if (Number.isFinite(oldest)) this.#post.forgetBefore(oldest)
   }
 
   /** The epoch all migrating islands end with when this island reaches the target in its present epoch. */
   finishEpochAfterTarget(island: Island): { readonly island: number; readonly epoch: number } {
     const epoch = island.counters.epochsPassed + 1
-    const { migration } = this.plan
-    const steps = migration && topologies[migration.topology].diameter(this.#migratingAt(epoch).length)
-    // Nobody can be further ahead than the mail lets him: within `steps` hops of `lag` epochs each, so nobody
-    // has passed that epoch yet. Where the way is not known, the island ends for itself.
-    if (!migration || steps === undefined) return { island: island.number, epoch }
-    return { island: 0, epoch: epoch + steps * migration.lag }
+    const steps = this.#finishSteps(epoch)
+    // Where the way to the others is not known, the island ends for itself.
+    return steps === undefined ? { island: island.number, epoch } : { island: 0, epoch: epoch + steps }
   }
 
   /** The first epoch that no migrating island has passed: when an order from outside takes effect. */
@@ -313,7 +338,10 @@ export class Search {
 
   /** Sets an ended island going again after `epoch`, if it has quota. */
   resume(island: Island, epoch: number): void {
-    if (island.resumeAfter(epoch)) this.#post.resume(island.number, epoch)
+    const silentFrom = island.counters.epochsPassed + 1
+    if (!island.resumeAfter(epoch)) return
+    this.#post.resume(island.number, epoch)
+    this.#post.silence(island.number, silentFrom, epoch)
   }
 }
 
