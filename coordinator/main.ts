@@ -26,7 +26,7 @@ import { localDispatcher } from './dispatch/local.js'
 import { underWeather } from './dispatch/weather.js'
 import type { Engine } from './engine/engine.js'
 import { type LoopEnd, type LoopState, runLoop } from './engine/loop.js'
-import type { Dispatcher } from './engine/ports.js'
+import type { Dispatcher, RecordReader } from './engine/ports.js'
 import { openEngine, replayRecord } from './engine/recover.js'
 import { searchTools } from './evolution/build.js'
 import type { SearchPlan } from './evolution/plan.js'
@@ -99,7 +99,9 @@ async function runRecord(
   noteStart(engine, record, replay.commits, options)
   orderChanges(engine, changes, opened)
   const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
-  return await drive({ options, record, folder, engine, problem, cores })
+  // Hours and date as the file says now: what differs from the record's copy was accepted above.
+  const { coreHours, until } = opened.fields.budget
+  return await drive({ options, record, folder, engine, problem, cores, ends: { coreHours, until } })
 }
 
 function noteStart(engine: Engine, record: OpenRecord, replayed: number, options: RunOptions): void {
@@ -126,6 +128,7 @@ interface Driven {
   readonly engine: Engine
   readonly problem: AnyProblem
   readonly cores: number
+  readonly ends: { readonly coreHours: number | undefined; readonly until: string | undefined }
 }
 
 async function drive(driven: Driven): Promise<RunEnd> {
@@ -148,7 +151,12 @@ async function drive(driven: Driven): Promise<RunEnd> {
       },
     })
     const finish = await finishRun(driven, end, dispatcher)
-    const view = progressView({ search: engine.search, reader: record.reader, folder, ...stateOf(end) })
+    const view = progressView({
+      search: engine.search,
+      reader: record.reader,
+      folder,
+      ...stateOf(end, record.reader),
+    })
     write(folder, progressFile, 'progress', JSON.stringify(view))
     return { ended: endWord[end], view, ...finish }
   } finally {
@@ -174,9 +182,20 @@ const endWord: { readonly [end in LoopEnd]: RunEnd['ended'] } = {
   interrupted: 'interrupted',
 }
 
-function stateOf(end: LoopEnd): { readonly state: ProgressView['state']; readonly because?: string } {
-  if (end === 'finished') return { state: 'finished' }
+type Stated = { readonly state: ProgressView['state']; readonly because?: string }
+
+function stateOf(end: LoopEnd, reader: RecordReader): Stated {
+  if (end === 'finished') return { state: 'finished', ...finishedBecause(reader) }
   return { state: 'stopped', because: end === 'rested' ? 'because --stop-after asked for it' : 'by a signal' }
+}
+
+/** Why it ended before its simulations were used, where that was an event. */
+function finishedBecause(reader: RecordReader): { readonly because?: string } {
+  let because: string | undefined
+  for (const { kind, sentence } of reader.events()) {
+    if (kind === 'target-reached' || kind === 'budget-used') because = sentence.replace(/\.$/, '')
+  }
+  return because === undefined ? {} : { because }
 }
 
 async function finishRun(driven: Driven, end: LoopEnd, dispatcher: Dispatcher): Promise<Finish> {
@@ -210,8 +229,8 @@ function tellProgress(
 }
 
 /** Budgets of hours and of a date end the search at the next epoch, once. */
-function orderBudgetEnds({ engine, record }: Driven): void {
-  const { coreHours, until } = record.plan.budget
+function orderBudgetEnds({ engine, record, ends }: Driven): void {
+  const { coreHours, until } = ends
   if (engine.impurities().includes('budget-used')) return
   const usedHours = coreHours === undefined ? 0 : record.reader.totals().cpuSeconds / 3600
   const because =
@@ -261,7 +280,7 @@ export async function readProgress(folder: string): Promise<ProgressView> {
       reader: record.reader,
       folder,
       state: ended ? 'finished' : begun ? 'stopped' : 'new',
-      ...(begun && !ended ? { because: 'no coordinator runs it' } : {}),
+      ...(ended ? finishedBecause(record.reader) : begun ? { because: 'no coordinator runs it' } : {}),
     })
   } finally {
     record.close()

@@ -17,7 +17,7 @@ export const rederiveCommand: Command = {
       flag: '--resimulate',
       value: 'N',
       kind: 'count',
-      help: 'also run N of its simulations again, evenly chosen',
+      help: 'also simulate N of its evaluations again, evenly chosen',
     },
     {
       flag: '--cores',
@@ -59,7 +59,9 @@ async function run(input: CommandInput): Promise<number> {
       report.exactness === 'bits'
         ? 'to the last bit'
         : `as exactly as the problem promises (${report.exactness})`
-    output.print(`${counted(report.resimulated, 'simulation')} run again gave the recorded numbers ${how}.`)
+    output.print(
+      `${counted(report.resimulated, 'evaluation')} simulated again gave the recorded numbers ${how}.`,
+    )
   }
   return exitCodes.done
 }

@@ -45,7 +45,7 @@ export interface RunEnd {
 
 export interface RederiveOptions {
   readonly record: string
-  /** How many simulations are run again. */
+  /** How many evaluations are simulated again. */
   readonly resimulate: number
   readonly cores?: number
   readonly tell: (sentence: string) => void

@@ -172,7 +172,7 @@ describe('rederive', () => {
     const { out } = await said(['rederive', 'records/mount', '--resimulate', '5'])
     expect(out).toMatch(/^i1 +40 +cdcdcdcdcdcdcdcd$/m)
     expect(out).toContain(`search digest ${'ef'.repeat(32)}`)
-    expect(out).toContain('5 simulations run again gave the recorded numbers to the last bit')
+    expect(out).toContain('5 evaluations simulated again gave the recorded numbers to the last bit')
   })
 })
 

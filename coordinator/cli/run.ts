@@ -84,7 +84,7 @@ function hear(event: RunEvent, shown: Watch, output: Output): void {
 }
 
 const endWords: { readonly [ended in RunEnd['ended']]: string } = {
-  finished: 'The search has used its budget.',
+  finished: 'The search is finished; the same command shows this again.',
   'stop-after': 'Stopped where --stop-after asked for; the same command without it goes on from here.',
   interrupted: 'Interrupted; nothing is lost. The same command goes on from here.',
 }
@@ -99,5 +99,6 @@ function reportEnd(output: Output, end: RunEnd): void {
   for (const line of end.brief) say(line)
   const width = Math.max(0, ...end.files.map(({ what }) => what.length))
   for (const { what, path } of end.files) output.print(`  ${what.padEnd(width)}  ${path}`)
+  if (end.view.purity !== 'none') for (const fact of end.view.purity) say(`Entered from outside: ${fact}`)
   say(endWords[end.ended])
 }

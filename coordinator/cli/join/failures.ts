@@ -3,6 +3,7 @@
 import type { RecordReader } from '../../engine/ports.js'
 import type { Island } from '../../evolution/island.js'
 import type { Search } from '../../evolution/search.js'
+import { grouped } from '../numbers.js'
 
 /** How many failed; nothing where none did. */
 export function failureLines(search: Search): string[] {
@@ -11,7 +12,9 @@ export function failureLines(search: Search): string[] {
   const failed = sum((island) => island.counters.failedSimulations)
   if (failed === 0) return []
   const all = sum((island) => island.counters.committedSimulations)
-  return [`  ${failed} of the ${all} simulations of the search failed; machines that fail rank last.`]
+  return [
+    `  ${grouped(failed)} of the ${grouped(all)} simulations of the search failed; machines that fail rank last.`,
+  ]
 }
 
 /** The summary of a search in which every machine failed. */

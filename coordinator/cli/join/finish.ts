@@ -26,6 +26,7 @@ import type { Island } from '../../evolution/island.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Search } from '../../evolution/search.js'
 import type { Individual } from '../../evolution/types.js'
+import { grouped } from '../numbers.js'
 import { compareFresh, differenceSentence } from './comparison.js'
 import { failureLines, nothingFound } from './failures.js'
 import { bestOf, estimatesOf, standardErrorOf } from './view.js'
@@ -255,7 +256,7 @@ function controlLines(search: Search, best: Individual, tests: Retests): string[
   const { plan } = search
   const objective = plan.problem.objectives[0]!
   return controlBests(search).map(({ island, best: control }) => {
-    const who = `  Control ${island.tools.island.method} (${nameOf(control.id)}, the best of ${island.counters.committedSimulations} simulations)`
+    const who = `  Control ${island.tools.island.method} (${nameOf(control.id)}, the best of ${grouped(island.counters.committedSimulations)} simulations)`
     const difference = compareFresh(plan, tests.get(best), tests.get(control))
     if (!difference) {
       const [first] = toResults(plan, control)

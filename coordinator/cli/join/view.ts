@@ -3,7 +3,7 @@
 import { hex } from '../../../shared/digests.js'
 import { islandName, nameOf } from '../../../shared/ids.js'
 import type { RecordReader } from '../../engine/ports.js'
-import { naturalValue, replicateValues } from '../../evolution/estimate.js'
+import { naturalValue, replicateValues, simulationsPerReplicate } from '../../evolution/estimate.js'
 import type { Island } from '../../evolution/island.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Search, Standing } from '../../evolution/search.js'
@@ -103,7 +103,7 @@ function islandView(facts: ViewFacts, island: Island): IslandView {
     quota: island.quota,
     epoch: counters.epochsPassed,
     state: stateOf(island, standing),
-    ...becauseOf(island, standing),
+    ...becauseOf(facts, island, standing),
     ...(island.best ? { best: bestView(facts.search.plan, facts.reader, island.best) } : {}),
     ...(island.members().length < 2 ? {} : { population: populationView(facts.search.plan, island) }),
   }
@@ -121,11 +121,18 @@ const standingWords: Partial<Record<Standing, string>> = {
   resting: 'because --stop-after asked for it',
 }
 
-function becauseOf(island: Island, standing: Standing | undefined): { because?: string } {
-  if (island.ended) return { because: 'its part of the budget is used' }
+function becauseOf(facts: ViewFacts, island: Island, standing: Standing | undefined): { because?: string } {
+  if (island.ended) return { because: endedWords(facts.search.plan, island) }
   if (island.paused) return { because: 'by a change of the search file' }
   const words = standing && standingWords[standing]
   return words ? { because: words } : {}
+}
+
+/** An island may also end by target, stagnation, hours or date. */
+function endedWords({ problem, replicates }: SearchPlan, island: Island): string {
+  const block = replicates.first * simulationsPerReplicate(problem)
+  const left = island.quota - island.counters.committedSimulations
+  return left < block ? 'its part of the budget is used' : 'it ended before its part of the budget was used'
 }
 
 /** Facts of the world that entered: how many of each kind, as purity tells them. */

@@ -20,6 +20,8 @@ export const changeTable: { readonly [field: string]: ChangeRow } = {
   seed: { kind: 'branch', because: 'every random number follows from it' },
   workersExpected: { kind: 'free', because: 'only warnings depend on it' },
   budget: { kind: 'next-epoch', because: 'islands may end earlier or later' },
+  'budget.target': { kind: 'branch', because: 'every island has judged its results by it from the start' },
+  'budget.stagnation': { kind: 'branch', because: 'every island has counted rounds by it from the start' },
   replicates: { kind: 'branch', because: 'results so far were estimated under other rules' },
   'replicates.most': { kind: 'next-epoch', because: 'top-ups from then on follow it' },
   islands: { kind: 'branch', because: 'it changes how an island searches' },
