@@ -21,7 +21,7 @@ import type { Orders } from './orders.js'
 import type { RecordReader } from './ports.js'
 import { eventRow, type Rows } from './rows.js'
 import { answersOf, answersTolerated, sameBytes, type Vote, verdictOf } from './votes.js'
-import { newWork, type Purpose, type Work, type Works } from './works.js'
+import { isNeeded, newWork, type Purpose, type Work, type Works } from './works.js'
 
 type ResultFact = Extract<DispatchFact, { kind: 'result' }>
 type LossFact = Extract<DispatchFact, { kind: 'lost' }>
@@ -29,6 +29,7 @@ type LossFact = Extract<DispatchFact, { kind: 'lost' }>
 /** Stands in the record where a worker's name would: nobody simulated this, it was given up. */
 export const setAsideWorker = 'set-aside'
 const shutOutSchema = z.object({ worker: z.string() })
+const correctionSchema = z.object({ fact: z.object({ individual: z.number(), firstReplicate: z.number() }) })
 
 export interface AcceptanceParts {
   readonly search: Search
@@ -47,6 +48,8 @@ export class Acceptance {
   /** Committed evaluations of the living that a second worker confirmed, by island. */
   readonly #confirmed = new Map<number, Set<number>>()
   #confirmedCount = 0
+  /** Blocks that were put right after their commit: two workers agreed on what stands there now. */
+  readonly #corrected = new Set<string>()
   /** Workers whose earlier results are to be looked at again once the record has them all. */
   readonly #suspects: string[] = []
   /** Islands of order 'arrival': evaluations whose first result is in, in order. */
@@ -56,6 +59,7 @@ export class Acceptance {
     this.#parts = parts
     for (const event of parts.reader.events()) {
       if (event.kind === 'worker-shut-out') this.shutOut.add(shutOutSchema.parse(event.data).worker)
+      if (event.kind === 'correction') this.#corrected.add(keyOf(correctionSchema.parse(event.data).fact))
     }
     this.#suspects.push(...this.shutOut)
   }
@@ -69,6 +73,9 @@ export class Acceptance {
     const executor = { kind: 'thread', worker: arrival.worker, host: arrival.host } as const
     work.recorded = { result: arrival.result, digest: arrival.digest, executor }
     work.confirmed = confirmed || arrival.worker === setAsideWorker
+    // Somebody contradicted it, and who was right is not known yet.
+    const disputed = reader.confirmations(work.island, work.evaluation).some(({ agrees }) => !agrees)
+    if (disputed) work.spotCheck = true
     this.#vote(work, work.recorded, 'evaluate')
     return true
   }
@@ -80,7 +87,12 @@ export class Acceptance {
     if (work[fact.item.purpose].attempt === fact.item.attempt) works.settle(work, fact.item.purpose)
     if (this.shutOut.has(fact.executor.worker)) {
       counts.late++
-      works.want(work, fact.item.purpose)
+      if (isNeeded(work, fact.item.purpose)) works.want(work, fact.item.purpose)
+      return
+    }
+    if (isSetAside(work)) {
+      // Given up is given up: the record may say so already.
+      counts.late++
       return
     }
     check(
@@ -207,6 +219,7 @@ export class Acceptance {
   #correct(work: Work, right: Vote): void {
     const { counts, search, orders } = this.#parts
     counts.corrections++
+    this.#corrected.add(keyOf(work))
     const sentence = `The result of ${nameOf(work.individual)} (evaluation ${work.evaluation} of ${islandName(work.island)}) was wrong and was corrected.`
     for (const island of search.islands) {
       orders.now(island, 'correction', sentence, {
@@ -339,8 +352,7 @@ export class Acceptance {
     let offset = 0
     for (const block of individual.blocks) {
       const length = (individual.values.length / individual.replicates) * block.replicates
-      if (!this.#blockConfirmed(block)) {
-        this.#simulateAgain(individual, block, length)
+      if (!this.#blockConfirmed(individual.id, block) && this.#simulateAgain(individual, block, length)) {
         all = false
       }
       offset += length
@@ -349,7 +361,8 @@ export class Acceptance {
     return all
   }
 
-  #blockConfirmed({ island, evaluation }: Block): boolean {
+  #blockConfirmed(individual: number, { island, evaluation, firstReplicate }: Block): boolean {
+    if (this.#corrected.has(keyOf({ individual, firstReplicate }))) return true
     if (this.#confirmed.get(island)?.has(evaluation)) return true
     if (!this.#parts.reader.isConfirmed(island, evaluation)) return false
     this.#remember(island, evaluation)
@@ -371,12 +384,14 @@ export class Acceptance {
     this.#confirmedCount = 0
   }
 
-  #simulateAgain(individual: Individual, block: Block, values: number): void {
+  /** False for what was set aside: nobody simulated that, and nobody is asked to. */
+  #simulateAgain(individual: Individual, block: Block, values: number): boolean {
     const { works, search, rows, reader } = this.#parts
-    if (works.find(block.island, block.evaluation)) return
+    if (works.find(block.island, block.evaluation)) return true
     const recorded =
       rows.findArrival(block.island, block.evaluation) ?? reader.arrival(block.island, block.evaluation)
     check(recorded !== undefined, 'a committed result is in the record')
+    if (recorded.worker === setAsideWorker) return false
     const work = newWork({
       island: block.island,
       evaluation: block.evaluation,
@@ -392,6 +407,7 @@ export class Acceptance {
     work.votes.push({ result: recorded.result, digest: recorded.digest, executor })
     works.add(work)
     works.want(work, 'confirm')
+    return true
   }
 
   /** Looks again at everything alive that a convicted worker has simulated and nobody confirmed. */
@@ -400,7 +416,7 @@ export class Acceptance {
     const { search, reader } = this.#parts
     const suspects = new Set(this.#suspects.splice(0))
     for (const island of search.islands) {
-      for (const individual of [...island.members(), ...(island.best ? [island.best] : [])]) {
+      for (const individual of island.living()) {
         const suspected = individual.blocks.some((block) => {
           const arrival = reader.arrival(block.island, block.evaluation)
           return arrival !== undefined && suspects.has(arrival.worker)
@@ -409,6 +425,14 @@ export class Acceptance {
       }
     }
   }
+}
+
+function isSetAside(work: Work): boolean {
+  return work.votes[0]?.executor.worker === setAsideWorker
+}
+
+function keyOf({ individual, firstReplicate }: { individual: number; firstReplicate: number }): string {
+  return `${individual} ${firstReplicate}`
 }
 
 function notRepeatable(work: Work): Error {

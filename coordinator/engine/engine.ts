@@ -21,7 +21,7 @@ import { Orders } from './orders.js'
 import type { Append, RecordReader } from './ports.js'
 import { eventRow, Rows } from './rows.js'
 import { targetReached } from './targets.js'
-import { blame, newWork, type Work, Works } from './works.js'
+import { blame, isNeeded, newWork, type Work, Works } from './works.js'
 import type { Schedule, WorldFact } from './world-facts.js'
 
 export interface EngineOptions {
@@ -71,7 +71,8 @@ export class Engine implements Gate {
 
   #takeUp(island: Island): void {
     this.#due.add(island.number)
-    this.#lastSnapshot.set(island.number, island.counters.commits)
+    // What was derived again counts: where every life is short, replays would grow with the search.
+    this.#lastSnapshot.set(island.number, this.search.commitsRestored(island.number))
     for (const ticket of island.outstanding()) {
       const work = this.#addWork(island, ticket)
       if (!this.#acceptance.resume(work)) this.#works.want(work, 'evaluate')
@@ -129,14 +130,16 @@ export class Engine implements Gate {
     if (lane.attempt !== fact.item.attempt || lane.state !== 'submitted') return
     this.counts.losses++
     this.#works.settle(work, fact.item.purpose)
+    if (!isNeeded(work, fact.item.purpose)) return
     if (blame(work, fact.cause, fact.item.isolation) === 'again') this.#works.want(work, fact.item.purpose)
     else this.#acceptance.setAside(work, fact)
   }
 
   #sendOverdueAgain(nowMs: number): void {
     for (const { work, purpose } of this.#works.overdue(nowMs)) {
-      this.counts.resent++
       this.#works.settle(work, purpose)
+      if (!isNeeded(work, purpose)) continue
+      this.counts.resent++
       this.#works.want(work, purpose)
     }
   }

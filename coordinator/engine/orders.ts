@@ -46,15 +46,16 @@ export class Orders {
     this.at(island, kind, true, sentence, data)
   }
 
-  /** Enters at the end of the first epoch that no island has passed; where an island has ended, at once. */
+  /** Enters at the end of the first epoch that no island has passed; where an island stands still, at once. */
   atEpoch(kind: string, sentence: string, make: (epoch: number, island: Island) => WorldFact): void {
     this.#impurities.add(kind)
     const { search } = this.#parts
     const shared = search.firstOpenEpoch()
     for (const island of search.islands) {
       const epoch = island.isControl ? island.counters.epochsPassed + 1 : shared
-      const stage = island.ended ? 'waiting' : 'epoch'
-      const at = island.ended ? island.counters.commits : epoch
+      const standsStill = island.ended || island.paused
+      const stage = standsStill ? 'waiting' : 'epoch'
+      const at = standsStill ? island.counters.commits : epoch
       this.at(island, kind, true, sentence, { stage, at, fact: make(epoch, island) })
     }
   }

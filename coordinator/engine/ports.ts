@@ -108,6 +108,8 @@ export interface RecordReader {
   lastMail(island: number): MailRow | undefined
   events(): Iterable<EventRow & { readonly sequence: number }>
   isConfirmed(island: number, evaluation: number): boolean
+  /** Every second simulation of an evaluation, in order of arrival. */
+  confirmations(island: number, evaluation: number): readonly ConfirmationRow[]
   arrivalsOf(worker: string): Iterable<{ readonly island: number; readonly evaluation: number }>
   birth(id: number): BirthRow | undefined
   /** Sums over everything that arrived. */

@@ -11,7 +11,7 @@ export function targetReached(plan: SearchPlan, island: Island): boolean {
   const best = island.best
   const objective = plan.problem.objectives[0]
   if (target === undefined || !best || !objective || best.failedSimulations > 0) return false
-  const needed = plan.replicates.topUp > 0 ? plan.replicates.most : plan.replicates.first
+  const needed = plan.replicates.topUp > 0 ? island.mostReplicates : plan.replicates.first
   if (best.replicates < needed) return false
   const value = naturalValue(objective, best.score[0]!)
   return objective.direction === 'maximise' ? value >= target : value <= target

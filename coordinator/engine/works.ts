@@ -96,6 +96,11 @@ export function newWork(from: WorkDescription): Work {
   }
 }
 
+/** False when a lane's answer would tell nothing new: a late one of an earlier try has come in meanwhile. */
+export function isNeeded(work: Work, purpose: Purpose): boolean {
+  return purpose === 'evaluate' ? work.votes.length === 0 : !work.confirmed
+}
+
 /** Counts a loss and says what follows. */
 export function blame(work: Work, cause: LossCause, isolation: WorkItem['isolation']): LossVerdict {
   if (!countsAsDeath[cause]) return 'again'

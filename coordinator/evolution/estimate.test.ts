@@ -155,6 +155,23 @@ describe('the score', () => {
     expect(Object.is(naturalValue(problem.objectives[0]!, 0), 0)).toBe(true)
   })
 
+  test('is the worst there is when finite numbers have an estimate that is not', () => {
+    const infinite = [Number.POSITIVE_INFINITY, Number.POSITIVE_INFINITY]
+    for (const reduction of ['mean', 'median', { quantile: 0.9 }] as const) {
+      for (const values of [
+        Float64Array.of(1e308, 0, 1e308, 0, 1e308, 0),
+        Float64Array.of(-1.7e308, 0, 1.7e308, 0),
+      ]) {
+        const score = scoreOf(problemOf([{ reduce: reduction, direction: 'maximise' }]), values, 0)
+        expect(Number.isNaN(score[0])).toBe(false)
+        expect(score[0]).not.toBe(Number.NEGATIVE_INFINITY)
+      }
+    }
+    const sum = Float64Array.of(1e308, 1, 0, 1e308, 1, 0)
+    const overflowing = problemOf([{ direction: 'maximise', reduce: 'mean' }, { reduce: 'median' }])
+    expect([...scoreOf(overflowing, sum, 0)]).toEqual(infinite)
+  })
+
   test('is the worst there is when a simulation failed or none was made', () => {
     const infinite = [Number.POSITIVE_INFINITY, Number.POSITIVE_INFINITY]
     expect([...scoreOf(problem, Float64Array.of(5, 1, 0), 1)]).toEqual(infinite)

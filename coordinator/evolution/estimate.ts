@@ -17,7 +17,8 @@ export function columnsOf(problem: ProblemPlan): number {
 
 /**
  * The score of an individual: one number an objective, to be minimised. +Infinity on every objective when any
- * of its simulations failed: a machine that sometimes cannot be simulated is no candidate.
+ * of its simulations failed (a machine that sometimes cannot be simulated is no candidate) and when an estimate
+ * is beyond the largest number.
  */
 export function scoreOf(problem: ProblemPlan, values: Float64Array, failedSimulations: number): Float64Array {
   const score = new Float64Array(problem.objectives.length)
@@ -27,6 +28,8 @@ export function scoreOf(problem: ProblemPlan, values: Float64Array, failedSimula
   for (let column = 0; column < score.length; column++) {
     const objective = problem.objectives[column]!
     const estimate = single ? values[column]! : estimateOf(problem, objective, column, values)
+    // Finite numbers can have a sum that is not: what cannot be ranked is no candidate either.
+    if (!Number.isFinite(estimate)) return score.fill(Number.POSITIVE_INFINITY)
     score[column] = objective.direction === 'maximise' ? 0 - estimate : estimate
   }
   return score

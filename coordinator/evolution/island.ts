@@ -123,6 +123,14 @@ export class Island {
   get rounds(): number {
     return this.#counters.costCommitted / this.tools.island.lookahead
   }
+  /** Replicates the best may get. */
+  get mostReplicates(): number {
+    return this.#mostReplicates
+  }
+  /** Everybody alive: members, those committed but not yet members, and the best. */
+  living(): ReadonlySet<Individual> {
+    return new Set([...this.#machine.held(), ...(this.#leader.best ? [this.#leader.best] : [])])
+  }
   members(): readonly Individual[] {
     return this.#machine.members()
   }
@@ -403,11 +411,7 @@ export class Island {
   /** Puts a wrong result right in everybody alive here, and in everybody who arrives later. */
   amend(amendment: Amendment): void {
     this.#amendments.push(amendment)
-    const touched = new Set([
-      ...this.#machine.held(),
-      ...(this.#leader.best ? [this.#leader.best] : []),
-      ...this.#topUpQueue,
-    ])
+    const touched = new Set([...this.living(), ...this.#topUpQueue])
     for (const ticket of this.#outstanding.all()) touched.add(ticket.individual)
     for (const individual of touched) {
       if (individual.id !== amendment.individual) continue

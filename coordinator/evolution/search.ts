@@ -175,6 +175,11 @@ export class Search {
     return this.#memberships.findLast((membership) => membership.epoch < epoch)?.active ?? []
   }
 
+  /** Commits of an island in the snapshot it was made from; 0 where there was none. */
+  commitsRestored(island: number): number {
+    return this.#states.get(island)?.counters.commits ?? 0
+  }
+
   island(number: number): Island {
     const island = this.#byNumber.get(number)
     check(island !== undefined, 'islands are asked for by their numbers')
@@ -201,7 +206,9 @@ export class Search {
       if (island.paused) return 'paused'
       if (island.ended) return this.#sendEnd(island, gate)
       const ticket = nextTicket(island, gate)
-      if (!ticket) return 'result'
+      // With order 'arrival' nothing more may come in: what would exceed the quota of a rest is not begun.
+      if (!ticket)
+        return island.outstanding().some((one) => gate.mayCommit(island, one)) ? 'result' : 'resting'
       if (!gate.mayCommit(island, ticket)) return 'resting'
       const outcome = gate.outcome(island, ticket)
       if (!outcome) return 'result'

@@ -51,7 +51,6 @@ export type CommitRead = {
 export interface StoredReader extends RecordReader {
   /** Arrivals of an island in order of evaluation: several times faster than asking one by one. */
   arrivals(island: number, fromEvaluation?: number): Iterable<ArrivalRow>
-  confirmations(island: number, evaluation: number): readonly ConfirmationRow[]
   /** Islands that have a commit, ascending. */
   islands(): readonly number[]
   totals(): Totals

@@ -64,6 +64,7 @@ const emptyRecord: RecordReader = {
   lastMail: () => undefined,
   events: () => [],
   isConfirmed: () => false,
+  confirmations: () => [],
   arrivalsOf: () => [],
   birth: () => undefined,
   totals: () => ({ arrivals: 0, cpuSeconds: 0 }),

@@ -6,6 +6,7 @@ import type {
   ArrivalRow,
   BirthRow,
   CommitRow,
+  ConfirmationRow,
   EventRow,
   Journal,
   MailRow,
@@ -23,7 +24,7 @@ export class Disk implements Journal, RecordReader {
   readonly #mail = new Map<string, MailRow>()
   readonly #lastMail = new Map<number, MailRow>()
   readonly #events: (EventRow & { sequence: number })[] = []
-  readonly #confirmed = new Set<string>()
+  readonly #confirmations = new Map<string, ConfirmationRow[]>()
   readonly #births = new Map<number, BirthRow>()
   readonly #snapshots = new Map<number, SnapshotRow[]>()
   readonly #draw: Stream
@@ -53,7 +54,8 @@ export class Disk implements Journal, RecordReader {
   #write(rows: Append, tornSnapshots: boolean): void {
     for (const row of rows.arrivals) this.#arrivals.set(`${row.island} ${row.evaluation}`, row)
     for (const row of rows.confirmations) {
-      if (row.agrees) this.#confirmed.add(`${row.island} ${row.evaluation}`)
+      const key = `${row.island} ${row.evaluation}`
+      this.#confirmations.set(key, [...(this.#confirmations.get(key) ?? []), row])
     }
     for (const row of rows.births) this.#births.set(row.id, row)
     for (const { island, commit, evaluation, digest } of rows.commits) {
@@ -101,7 +103,10 @@ export class Disk implements Journal, RecordReader {
     return this.#events
   }
   isConfirmed(island: number, evaluation: number): boolean {
-    return this.#confirmed.has(`${island} ${evaluation}`)
+    return this.confirmations(island, evaluation).some(({ agrees }) => agrees)
+  }
+  confirmations(island: number, evaluation: number): readonly ConfirmationRow[] {
+    return this.#confirmations.get(`${island} ${evaluation}`) ?? []
   }
   *arrivalsOf(worker: string): Iterable<{ island: number; evaluation: number }> {
     for (const row of this.#arrivals.values()) if (row.worker === worker) yield row

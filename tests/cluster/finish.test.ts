@@ -156,6 +156,15 @@ describe('a target value', () => {
   })
 })
 
+describe('a target when fewer replicates were ordered', () => {
+  it('is met on all that the best may still get', () => {
+    const plan = smallPlan({ budget: { simulations: 4_000, target }, controls: [] })
+    const { engine, disk } = new World(plan, 1, calm, mostReplicates(1, 4)).run(0)
+    expect([...disk.events()].map(({ kind }) => kind)).toContain('target-reached')
+    expect(engine.search.islands.some((island) => usedUp(island, plan))).toBe(false)
+  })
+})
+
 describe('standing still', () => {
   it('ends an island after so many rounds without a better best, in every storm', () => {
     const plan = smallPlan({ budget: { simulations: 1_600, stagnationRounds: 8 } })
