@@ -187,7 +187,9 @@ export class Island {
     this.#counters.births = number
     const id = idOf(this.number, number)
     const individual = newborn(id, birth, this.#counters.commits, this.#leader.noScore)
-    return this.#newTicket(individual, first, birth.origin === 'founder')
+    // Fresh individuals that come later are no founders: nobody waits for them.
+    const founder = birth.origin === 'founder' && number <= this.tools.island.population
+    return this.#newTicket(individual, first, founder)
   }
 
   #newTicket(individual: Individual, replicates: number, founder: boolean): Ticket {
