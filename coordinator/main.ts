@@ -9,7 +9,7 @@ import { z } from 'zod'
 import { hex } from '../shared/digests.js'
 import { islandName } from '../shared/ids.js'
 import type { AnyProblem } from '../shared/problem.js'
-import { refuse } from '../shared/refusals.js'
+import { Refusal, refuse } from '../shared/refusals.js'
 import { loadPlugin } from '../worker/plugin/load.js'
 import { createPool } from '../worker/pool.js'
 import { Alarms } from './cli/join/alarms.js'
@@ -31,10 +31,18 @@ import { openEngine, replayRecord } from './engine/recover.js'
 import { searchTools } from './evolution/build.js'
 import type { SearchPlan } from './evolution/plan.js'
 import type { SearchTools } from './evolution/search.js'
-import { type OpenRecord, openRecord, readRecord, recordFolder, thisProcess } from './record/index.js'
+import {
+  type OpenRecord,
+  openRecord,
+  readRecord,
+  recordFolder,
+  type Takeover,
+  thisProcess,
+  watchHolder,
+} from './record/index.js'
 
 /** Commits of an island between two snapshots: a restart replays at most as many. */
-const snapshotCommits = 20_000
+const snapshotCommits = 10_000
 const beatSeconds = 2
 const progressSeconds = 1
 const progressFile = 'progress.json'
@@ -49,19 +57,48 @@ export async function runSearch(options: RunOptions): Promise<RunEnd> {
     options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
   for (const warning of opened.bundle.warnings) options.tell({ kind: 'said', sentence: warning })
   const folder = options.record ?? join('records', opened.plan.name)
-  const record = openRecord(folder, {
-    create: {
-      plan: opened.plan,
-      searchText: opened.text,
-      pluginCode: new TextEncoder().encode(opened.bundle.code),
-    },
-    holder: thisProcess(),
-    nonce: randomBytes(16).toString('hex'),
-    clock: Date.now,
-    ...(options.force ? { takeover: 'force' } : {}),
-  })
+  const record = await openAlone(options, opened, folder)
   try {
     return await runRecord(options, opened, record, folder)
+  } finally {
+    record.close()
+  }
+}
+
+/** Seconds without a sign of life after which a coordinator on another machine counts as gone. */
+const silenceSeconds = 15
+
+/** The record, held by nobody else. A holder on another machine is watched first: its node may have been preempted. */
+async function openAlone(options: RunOptions, opened: OpenedSearch, folder: string): Promise<OpenRecord> {
+  const open = (takeover: Takeover) =>
+    openRecord(folder, {
+      create: {
+        plan: opened.plan,
+        searchText: opened.text,
+        pluginCode: new TextEncoder().encode(opened.bundle.code),
+      },
+      holder: thisProcess(),
+      nonce: randomBytes(16).toString('hex'),
+      clock: Date.now,
+      takeover,
+    })
+  try {
+    return open(options.force ? 'force' : 'if-dead')
+  } catch (fault) {
+    if (!(fault instanceof Refusal) || fault.code !== 'record-in-use' || !isHeldElsewhere(folder)) throw fault
+    const sentence = `The record is held on another machine; waiting ${silenceSeconds} s for a sign of life from there.`
+    options.tell({ kind: 'said', sentence })
+    const seen = await watchHolder(folder, silenceSeconds, (ms) => pause(ms, options.signal))
+    if (!seen || options.signal.aborted) throw fault
+    return open(seen)
+  }
+}
+
+function isHeldElsewhere(folder: string): boolean {
+  const record = readRecord(folder, { me: thisProcess() })
+  try {
+    const holder = record.holder()
+    return holder !== undefined && holder.running === undefined
   } finally {
     record.close()
   }
