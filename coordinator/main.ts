@@ -17,6 +17,7 @@ import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
 import { Meter } from './cli/join/meter.js'
 import { resimulate, Sample } from './cli/join/resimulate.js'
+import { withSilence } from './cli/join/silence.js'
 import { progressView } from './cli/join/view.js'
 import type { ProgressView } from './cli/progress-view.js'
 import type { RederiveOptions, RederiveReport, RunEnd, RunOptions } from './cli/run-options.js'
@@ -328,8 +329,10 @@ function shownProgress(folder: string): ProgressView | undefined {
   const path = join(folder, progressFile)
   if (!existsSync(path) || statSync(path).size === 0) return undefined
   const parsed = shownSchema.safeParse(JSON.parse(readFileSync(path, 'utf8')))
+  if (!parsed.success) return undefined
   // Written by a coordinator of this version or another: its own shape is the interface.
-  return parsed.success ? (parsed.data as unknown as ProgressView) : undefined
+  const shown = parsed.data as unknown as ProgressView
+  return withSilence(shown, (Date.now() - statSync(path).mtimeMs) / 1000)
 }
 
 /** Derives a search again from its journal, compares every digest, and simulates a sample again. */

@@ -71,7 +71,8 @@ function write(folder: string, files: readonly { readonly path: string; readonly
     const kind =
       code === 'ENOSPC'
         ? 'disk-full'
-        : code === 'EROFS' || code === 'EACCES'
+        : // Node answers ENOENT where a folder cannot be made on a read-only file system.
+          code === 'EROFS' || code === 'EACCES' || code === 'EPERM' || code === 'ENOENT'
           ? 'disk-read-only'
           : 'disk-error'
     const text = error instanceof Error ? error.message : String(error)

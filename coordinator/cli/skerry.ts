@@ -7,6 +7,9 @@ import { emittedRoot } from '../../worker/entry.js'
 import type { Output } from './command.js'
 import { runCommandLine } from './table.js'
 
+// Standard output is the program's own: what a problem prints where it is loaded here goes to standard error.
+console.log = console.info = console.debug = console.error
+
 const stopping = new AbortController()
 let signals = 0
 for (const name of ['SIGINT', 'SIGTERM'] as const) {

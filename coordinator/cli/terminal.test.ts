@@ -101,6 +101,7 @@ describe('the live view', () => {
   it('says in a log why it is paused', () => {
     const paused = { ...view, state: 'paused' as const, because: 'the disk is full' }
     expect(logLine(paused, 'now')).toContain('now  paused (the disk is full): 12,480 of')
+    expect(logLine(paused, 'now')).not.toContain('to go')
   })
   it('fills the channel of a quota only when all of it is used', () => {
     expect(level(0.999, 10, false)).toBe('ooooooooo.')

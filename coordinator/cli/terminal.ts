@@ -82,7 +82,9 @@ function islandNote(island: IslandView): string {
   if (island.state === 'ended') return island.because ?? 'ended'
   if (island.state === 'waiting') return island.because ? `waits ${island.because}` : 'waits'
   const first = island.best?.estimates[0]
-  return first ? `best ${estimate(first.value, first.unit)}` : 'no result yet'
+  return first
+    ? `best ${estimate(first.value, first.unit, first.standardError)} (n ${island.best!.replicates})`
+    : 'no result yet'
 }
 
 /** A filled channel: how far a quota is used. */
@@ -124,8 +126,10 @@ export function logLine(view: ProgressView, time: string): string {
   const best = first
     ? `, best ${view.best!.id} ${first.objective} ${estimate(first.value, first.unit, first.standardError)} (${view.best!.replicates} replicates)`
     : ''
-  const rate = view.rate ? `, ${short(view.rate.simulationsPerSecond)}/s` : ''
-  const left = view.rate?.secondsLeft === undefined ? '' : `, ${duration(view.rate.secondsLeft)} to go`
+  const isMoving = view.state === 'searching'
+  const rate = view.rate && isMoving ? `, ${short(view.rate.simulationsPerSecond)}/s` : ''
+  const left =
+    view.rate?.secondsLeft === undefined || !isMoving ? '' : `, ${duration(view.rate.secondsLeft)} to go`
   const done = `${grouped(view.simulations)} of ${grouped(view.budget)} simulations`
   const because = view.because ? ` (${view.because})` : ''
   const failed = view.failedSimulations > 0 ? `, ${grouped(view.failedSimulations)} failed` : ''

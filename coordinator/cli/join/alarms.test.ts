@@ -6,6 +6,7 @@ import { Search } from '../../evolution/search.js'
 import type { ProgressView } from '../progress-view.js'
 import { Alarms } from './alarms.js'
 import { nothingFound } from './failures.js'
+import { withSilence } from './silence.js'
 
 const search = new Search(fixtureTools(mixedPlan()))
 const failing = {
@@ -55,6 +56,15 @@ describe('a running search says without being asked', () => {
     expect([lookAt(0), lookAt(59), lookAt(61), lookAt(90)]).toEqual([0, 0, 1, 0])
     world.arrivals = 6
     expect([lookAt(100), lookAt(159), lookAt(161)]).toEqual([0, 0, 1])
+  })
+})
+
+describe('what a coordinator showed a while ago', () => {
+  it('is shown with its age, and promises no end', () => {
+    const shown = view({ rate: { simulationsPerSecond: 9, busyFraction: 1, cores: 2, secondsLeft: 60 } })
+    expect(withSilence(shown, 3)).toBe(shown)
+    expect(withSilence(shown, 75).because).toContain('as of 1 min 15 s ago; nothing was written since')
+    expect(withSilence(shown, 75).rate).toBeUndefined()
   })
 })
 

@@ -69,7 +69,7 @@ export function bestSvg(frames: Frames, facts: PictureFacts): string {
   }
   const heightPx = Math.ceil(y + marginPx / 2)
   const alternative = `${titleOf(facts)}: ${resultSentence(facts)} Shown: ${facts.shown}, at ${moments.map((frame) => `${secondsAt(frames, frame).toFixed(1)} s`).join(', ')}.`
-  return `<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${widthPx} ${heightPx}" width="${widthPx}" height="${heightPx}" role="img" aria-labelledby="title description" font-family="${escaped(fontFamily)}">
+  return `<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${widthPx} ${heightPx}" width="${widthPx}" height="${heightPx}" style="max-width:100%;height:auto" role="img" aria-labelledby="title description" font-family="${escaped(fontFamily)}">
 <title id="title">${escaped(titleOf(facts))}</title>
 <desc id="description">${escaped(alternative)}</desc>
 <rect width="${widthPx}" height="${heightPx}" fill="${theme.paper}"/>

@@ -100,6 +100,11 @@ describe('the picture', () => {
     )
     expect(resultSentence({ ...facts, selected: false })).not.toContain('Chosen')
   })
+  it('shrinks with a narrow window instead of running out of it', () => {
+    expect(bestSvg(frames, facts)).toMatch(
+      /^<svg [^>]*viewBox="0 0 1200 \d+"[^>]*style="max-width:100%;height:auto"/,
+    )
+  })
   it('shows several moments with their times, all kinds, the marker, an axis and a scale bar with units', () => {
     for (const words of [
       '0.0 s',
