@@ -269,7 +269,11 @@ export class Engine implements Gate {
   }
 
   released(island: Island, tickets: readonly Ticket[]): void {
-    for (const ticket of tickets) this.#works.want(this.#addWork(island, ticket), 'evaluate')
+    for (const ticket of tickets) {
+      // An island that ended and goes on at once hands out again what is still in hand.
+      if (this.#works.find(island.number, ticket.evaluation)) continue
+      this.#works.want(this.#addWork(island, ticket), 'evaluate')
+    }
   }
 
   committed(island: Island, ticket: Ticket): void {
