@@ -43,7 +43,7 @@ islands:                    # sub-populations; several groups may have different
     #   wire: { crossover: sbx, mutation: { operator: gaussian } }
 
 migration:
-  every: 20 rounds          # a round is one evaluation for each place of the lookahead
+  every: 20 rounds          # a round: each place of the lookahead does one unit of expectedCost (here 1 an evaluation)
   emigrants: 2
   topology: ring            # ring, two-way-ring, torus-4, torus-8, complete, random
   lag: 1

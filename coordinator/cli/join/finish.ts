@@ -106,7 +106,7 @@ export function writeFinish(
   // A mean over the simulations that did not fail would flatter: the failures are told instead.
   const retested = tested?.failures.length === 0 ? tested : undefined
   const facts = { ...factsOf(search, problem, best, retested), ...failedOf(plan, tested) }
-  const { summary, brief } = summaryOf(search, best, facts, tests)
+  const { summary, brief } = summaryOf(search, problem, best, facts, tests)
   const files = [write(folder, summaryFile, 'this summary, in full', `${summary.join('\n')}\n`)]
   const { frames } = problem
   if (frames) {
@@ -185,6 +185,7 @@ const briefLines = 6
 
 function summaryOf(
   search: Search,
+  problem: Pick<AnyProblem, 'exactness'>,
   best: Individual,
   facts: PictureFacts,
   tests: Retests,
@@ -204,6 +205,7 @@ function summaryOf(
     `  ${facts.selected ? 'Estimate' : 'When it was chosen'}: ${resultSentence(chosenFacts)}`,
     ...controlLines(search, best, tests),
     ...failureLines(search),
+    ...repeatLines(search.plan, problem.exactness),
   ]
   const digest = `Search digest: ${hex(search.digest())}`
   const { description, cautions } = facts
@@ -228,6 +230,23 @@ function summaryOf(
       alwaysCaution,
     ],
   }
+}
+
+/** What cannot be repeated to the bit, and why. */
+export function repeatLines(plan: SearchPlan, exactness: AnyProblem['exactness']): string[] {
+  const byArrival = plan.islands.some(({ order }) => order === 'arrival')
+  return [
+    ...(byArrival
+      ? [
+          '  Results were taken in the order of arrival: `skerry rederive` can check this search, its file alone cannot repeat it.',
+        ]
+      : []),
+    ...(exactness === 'bits'
+      ? []
+      : [
+          `  The problem promises "${exactness}", not the same bits: another machine may find something else.`,
+        ]),
+  ]
 }
 
 /** Why there are no numbers from fresh conditions. */
