@@ -59,6 +59,8 @@ export interface Pool {
 
 const closeSeconds = 3
 const itemsPerProcess = 500
+/** Items a slot has ahead, however long they last: so that results can be taken in by the handful. */
+const aheadLeast = 8
 /** Starting a process costs some tenths of a second of CPU: with cheap items that would be most of the work. */
 const confirmingSecondsLeast = 5
 
@@ -115,7 +117,7 @@ class MachinePool implements Pool {
   status(): PoolStatus {
     const slots = this.options.threads
     const apart = this.doubtful.load + this.confirming.load + this.alone.load
-    const depth = 2 * slots * this.pace.usualBatchLength()
+    const depth = slots * Math.max(2 * this.pace.usualBatchLength(), aheadLeast)
     return {
       slots,
       outstanding: this.sharedOutstanding + apart,
