@@ -8,6 +8,8 @@ import { trivialSearch } from './whole-path.js'
 export interface Continuing {
   /** From the start of the process until the first work was handed to a pool that was ready. */
   readonly seconds: number
+  /** CPU of the coordinator in that time. */
+  readonly cpuSeconds: number
   readonly replayedCommits: number
   readonly peakBytes: number
 }
@@ -24,12 +26,15 @@ export async function continueRecord(options: {
   await parts.dispatcher.start()
   return new Promise((resolve, reject) => {
     const { dispatcher } = parts
-    dispatcher.submit = () =>
+    dispatcher.submit = () => {
+      const { user, system } = process.cpuUsage()
       resolve({
         seconds: performance.now() / 1000,
+        cpuSeconds: (user + system) / 1e6,
         replayedCommits: parts.replayed,
         peakBytes: peakBytes(),
       })
+    }
     parts.run().catch(reject)
   })
 }

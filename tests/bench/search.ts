@@ -35,7 +35,7 @@ export interface SearchParts {
 }
 
 /** The same as in coordinator/main.ts. */
-export const snapshotCommits = 20_000
+export const snapshotCommits = 10_000
 
 /** Writes the files and opens or continues the record `folder`/record; the pool has not been started. */
 export async function openBenchSearch(

@@ -29,6 +29,8 @@ export interface WholePath {
 export interface MemoryReading {
   readonly evaluations: number
   readonly residentBytes: number
+  /** What the heap held just after a collection; only at the first reading and the last, because collecting disturbs. */
+  readonly liveBytes: number | undefined
 }
 
 const islands = 8
@@ -73,7 +75,7 @@ export async function runWholePath(options: WholePathOptions): Promise<WholePath
     const onStep = () => {
       const done = committedSimulations(parts.engine)
       if (done >= next) {
-        memory.push({ evaluations: done, residentBytes: process.memoryUsage.rss() })
+        memory.push(readMemory(done, memory.length === 0 || done >= evaluations))
         next += sampleEvery
       }
       if (done < evaluations || enough.signal.aborted) return
@@ -83,6 +85,12 @@ export async function runWholePath(options: WholePathOptions): Promise<WholePath
     parts.run(onStep, enough.signal).then(() => parts.close(), reject)
   })
   return reached
+}
+
+function readMemory(evaluations: number, collects: boolean): MemoryReading {
+  const residentBytes = process.memoryUsage.rss()
+  if (collects) globalThis.gc?.()
+  return { evaluations, residentBytes, liveBytes: collects ? process.memoryUsage().heapUsed : undefined }
 }
 
 /** Starts now; the function returned reads it. */
