@@ -204,7 +204,10 @@ export class Engine implements Gate {
       this.#due.delete(number)
       const island = this.search.island(number)
       this.#standing.set(number, this.search.advance(island, this))
-      const last = this.#lastSnapshot.get(number) ?? 0
+    }
+    // Only now: a snapshot shares memory with its island, and an island may have been woken more than once.
+    for (const island of this.search.islands) {
+      const last = this.#lastSnapshot.get(island.number) ?? 0
       if (island.counters.commits - last >= this.#options.snapshotCommits) this.snapshot(island)
     }
   }

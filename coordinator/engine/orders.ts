@@ -105,12 +105,11 @@ export class Orders {
    */
   stateAgain(island: Island): boolean {
     const { commits, epochsPassed } = island.counters
-    const overtaken = this.#parts.schedule
-      .takeAfter(island.number, epochsPassed)
-      .filter(({ fact }) => fact.fact !== 'finish')
+    const overtaken = this.#parts.schedule.takeAfter(island.number, epochsPassed)
     for (const { kind, sentence, fact } of overtaken) {
       const entering = fact.fact === 'budget' ? { ...fact, silentFrom: epochsPassed + 1 } : fact
-      this.at(island, kind, true, sentence, { stage: 'waiting', at: commits, fact: entering })
+      const data: FactData = { stage: 'waiting', at: commits, fact: entering, endedWith: epochsPassed }
+      this.at(island, kind, true, sentence, data)
     }
     return overtaken.length > 0
   }

@@ -52,6 +52,8 @@ const dataSchema = z.object({
   stage: z.enum(['waiting', 'sending', 'epoch']),
   at: z.number(),
   fact: factSchema,
+  /** Stated again by an island that had ended with this epoch: what was stated for later ones is void. */
+  endedWith: z.number().optional(),
 })
 export type FactData = z.infer<typeof dataSchema>
 
@@ -73,6 +75,8 @@ export class Schedule {
     if (!parsed.success) {
       throw refuse('record-corrupted', { detail: `event "${event.kind}" has data this version cannot read` })
     }
+    const { endedWith } = parsed.data
+    if (endedWith !== undefined) this.takeAfter(event.island, endedWith)
     this.add(event.island, parsed.data, event)
     return parsed.data
   }
@@ -103,17 +107,22 @@ export class Schedule {
     for (let n = 0; n < factsSending; n++) this.next(island.number, 'sending', epochsPassed + 1)
   }
 
-  /** Takes off the schedule what was stated for ends of epochs after this one, by epoch. */
+  /** Takes off the schedule what was stated for ends of epochs after this one, by epoch; finishes stay. */
   takeAfter(island: number, epoch: number): StatedFact[] {
-    const epochOf = (key: string) =>
-      key.startsWith(`${island} epoch `) ? Number(key.slice(`${island} epoch `.length)) : 0
-    const keys = [...this.#facts.keys()].filter((key) => epochOf(key) > epoch)
-    keys.sort((a, b) => epochOf(a) - epochOf(b))
-    return keys.flatMap((key) => {
-      const facts = this.#facts.get(key)!
-      this.#facts.delete(key)
-      return facts
-    })
+    const prefix = `${island} epoch `
+    const epochs = [...this.#facts.keys()]
+      .filter((key) => key.startsWith(prefix) && Number(key.slice(prefix.length)) > epoch)
+      .map((key) => Number(key.slice(prefix.length)))
+    return epochs
+      .sort((a, b) => a - b)
+      .flatMap((at) => {
+        const key = keyOf(island, 'epoch', at)
+        const facts = this.#facts.get(key)!
+        const finishes = facts.filter(({ fact }) => fact.fact === 'finish')
+        if (finishes.length > 0) this.#facts.set(key, finishes)
+        else this.#facts.delete(key)
+        return facts.filter(({ fact }) => fact.fact !== 'finish')
+      })
   }
 }
 

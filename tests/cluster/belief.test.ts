@@ -4,7 +4,7 @@
 import { describe, expect, it } from 'vitest'
 import { setAsideWorker } from '../../coordinator/engine/acceptance.js'
 import type { Engine } from '../../coordinator/engine/engine.js'
-import { openEngine } from '../../coordinator/engine/recover.js'
+import { openEngine, replayRecord } from '../../coordinator/engine/recover.js'
 import type { SearchPlan } from '../../coordinator/evolution/plan.js'
 import { resultDigest } from '../../shared/digests.js'
 import { genomeFromBytes } from '../../shared/encodings.js'
@@ -250,4 +250,32 @@ describe('--stop-after', () => {
       }
     })
   }
+})
+
+describe('a snapshot', () => {
+  it('is of one moment, also when its island goes on before it is written', () => {
+    const { controls: _, ...base } = mixedPlan()
+    const plan = {
+      ...base,
+      controls: [],
+      islands: [1, 2].map((island) => islandPlan(island, { lookahead: 6, population: 4 })),
+      migration: { ...base.migration!, everyRounds: 1, topology: 'ring' as const },
+      budget: { simulations: 300 },
+    }
+    // All results come in together: each island goes as far as the mail of the other lets it, wakes it, and is woken.
+    const desk = new Desk(plan, { snapshotCommits: 3 })
+    for (let round = 0; round < 40; round++) {
+      desk.look()
+      desk.look(desk.work().map((item) => factOf(item, desk.honest(item))))
+      const again = replayRecord(fixtureTools(plan), desk.disk)
+      expect(again.search.digest()).toEqual(desk.engine.search.digest())
+      for (const island of again.search.islands) {
+        const living = desk.engine.search.island(island.number)
+        expect(island.outstanding().map(({ individual }) => individual.replicates)).toEqual(
+          living.outstanding().map(({ individual }) => individual.replicates),
+        )
+      }
+    }
+    expect(desk.engine.search.island(2).counters.commits).toBeGreaterThan(40)
+  })
 })
