@@ -136,6 +136,14 @@ async function runRecord(
   })
   noteStart(engine, record, replay.commits, options)
   orderChanges(engine, changes, opened)
+  const isLate = changes.some(({ field }) => field === 'budget.coreHours' || field === 'budget.until')
+  if (isLate && engine.impurities().includes('budget-used')) {
+    options.tell({
+      kind: 'said',
+      sentence:
+        'Hours or a date have already ended this search, and that is not taken back. To search on with the new budget, begin another record with --record.',
+    })
+  }
   const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
   // Hours and date as the file says now: what differs from the record's copy was accepted above.
   const { coreHours, until } = opened.fields.budget

@@ -91,7 +91,9 @@ const endWords: { readonly [ended in RunEnd['ended']]: string } = {
 
 function reportEnd(output: Output, end: RunEnd): void {
   if (output.json) {
-    output.print(JSON.stringify({ ended: end.ended, ...end.view, files: end.files }, undefined, 2))
+    output.print(
+      JSON.stringify({ ended: end.ended, ...end.view, summary: end.summary, files: end.files }, undefined, 2),
+    )
     return
   }
   const say = (line: string) => output.print(output.isTerminal ? fitted(line, output.columns - 1) : line)
