@@ -203,8 +203,9 @@ export class Search {
       const released = island.fill()
       if (released.length > 0) gate.released(island, released)
       if (gate.factWhileWaiting(island)) continue
-      if (island.paused) return 'paused'
+      // Paused or not: whoever has ended says so, or others would wait for the mail of epochs it never reached.
       if (island.ended) return this.#sendEnd(island, gate)
+      if (island.paused) return 'paused'
       const ticket = nextTicket(island, gate)
       // With order 'arrival' nothing more may come in: what would exceed the quota of a rest is not begun.
       if (!ticket)

@@ -16,6 +16,8 @@ import type {
 import type { Stream } from '../../shared/streams.js'
 
 export class PowerCut extends Error {}
+/** Another writer has taken over. */
+export class Fenced extends Error {}
 export class StorageFault extends Error {}
 
 export class Disk implements Journal, RecordReader {
@@ -33,9 +35,21 @@ export class Disk implements Journal, RecordReader {
   /** Fails this call and, when `forEver`, all after it; counted over the life of the disk. */
   failAt: { readonly call: number; readonly forEver: boolean; readonly after: boolean } | undefined
   calls = 0
+  #writer = 0
 
   constructor(draw: Stream) {
     this.#draw = draw
+  }
+
+  /** The write side from now on; every earlier one is fenced. */
+  takeOver(): Journal {
+    const token = ++this.#writer
+    return {
+      append: (rows) => {
+        if (token !== this.#writer) throw new Fenced('another coordinator has taken over')
+        this.append(rows)
+      },
+    }
   }
 
   append(rows: Append): void {

@@ -5,6 +5,7 @@
 // First comes a phase with faults, then one without that must finish.
 
 import type { Engine } from '../../coordinator/engine/engine.js'
+import type { Journal } from '../../coordinator/engine/ports.js'
 import { openEngine } from '../../coordinator/engine/recover.js'
 import type { SearchPlan } from '../../coordinator/evolution/plan.js'
 import { hex, resultDigest } from '../../shared/digests.js'
@@ -12,7 +13,7 @@ import { genomeFromBytes } from '../../shared/encodings.js'
 import type { DispatchFact, EvaluationResult, WorkItem } from '../../shared/result.js'
 import { type Stream, stream } from '../../shared/streams.js'
 import { fixtureCost, fixtureTools, simulated } from '../fixture.js'
-import { Disk, PowerCut } from './disk.js'
+import { Disk, Fenced, PowerCut } from './disk.js'
 
 export interface Weather {
   readonly workers: number
@@ -22,10 +23,21 @@ export interface Weather {
   readonly duplicates: number
   readonly late: number
   readonly handsBack: number
+  /** Takes its whole process down once or more, never when it runs alone: no fault of the genome. */
+  readonly deadly: number
+  /** Delivered to two workers. */
+  readonly twice: number
+  /** Answered under the number of another try. */
+  readonly misnumbered: number
   /** A result held back by up to 1000 times its duration. */
   readonly delayed: number
   /** Chances in 1000 per append. */
   readonly crashes: number
+  /** Chances in 1000 per look: stopped by a signal and started again; replaced while it still believes to be the one. */
+  readonly stopped: number
+  readonly replaced: number
+  /** The search is told to rest after so many simulations, then after the next number, then to finish. */
+  readonly rests: readonly number[]
   /** Workers that give wrong results, and their chance in 1000. */
   readonly liars: number
   readonly lies: number
@@ -41,7 +53,13 @@ export const calm: Weather = {
   late: 0,
   handsBack: 0,
   delayed: 0,
+  deadly: 0,
+  twice: 0,
+  misnumbered: 0,
   crashes: 0,
+  stopped: 0,
+  replaced: 0,
+  rests: [],
   liars: 0,
   lies: 0,
   poisonSize: 0,
@@ -59,7 +77,13 @@ export function stormOf(seed: number): Weather {
     late: some(100),
     handsBack: some(100),
     delayed: some(200),
+    deadly: some(60),
+    twice: some(100),
+    misnumbered: some(100),
     crashes: some(20),
+    stopped: some(10),
+    replaced: some(10),
+    rests: [],
     liars: 0,
     lies: 0,
     poisonSize: 0,
@@ -71,6 +95,8 @@ export interface Ending {
   readonly engine: Engine
   readonly disk: Disk
   readonly crashes: number
+  /** Appends of a coordinator that had been replaced, all of them refused. */
+  readonly fenced: number
   readonly simulations: number
   readonly liars: readonly string[]
   readonly status: string
@@ -100,6 +126,11 @@ export class World {
   readonly #inFlight: Arrival[] = []
   readonly #busyUntilMs: number[]
   #engine: Engine
+  #journal: Journal
+  /** A coordinator that has been replaced and does not know it yet. */
+  #replaced: { readonly engine: Engine; readonly journal: Journal } | undefined
+  #rests: readonly number[]
+  #fenced = 0
   #nowMs = 0
   #order = 0
   #crashes = 0
@@ -119,13 +150,18 @@ export class World {
     this.#disk = new Disk(stream(seed, 'weather', 3))
     this.#busyUntilMs = new Array<number>(weather.workers).fill(0)
     this.#snapshotCommits = 10 + this.#draw.below(190)
+    this.#rests = weather.rests
+    this.#journal = this.#disk.takeOver()
     this.#engine = this.#open()
   }
 
   #open(): Engine {
+    this.#journal = this.#disk.takeOver()
+    const [stopAfter] = this.#rests
     const { engine } = openEngine(fixtureTools(this.#plan), this.#disk, {
       leaseMs,
       snapshotCommits: this.#snapshotCommits,
+      ...(stopAfter === undefined ? {} : { stopAfter }),
     })
     return engine
   }
@@ -148,6 +184,7 @@ export class World {
       engine: this.#engine,
       disk: this.#disk,
       crashes: this.#crashes,
+      fenced: this.#fenced,
       simulations: this.#simulations,
       liars: Array.from({ length: this.#weather.liars }, (_, worker) => nameOf(worker)),
       status: this.#engine.status(),
@@ -156,13 +193,55 @@ export class World {
 
   /** One look of the coordinator; true when there is nothing left to do. */
   #look(): boolean {
-    this.#engine.take(this.#arrived(), this.#nowMs)
+    const facts = this.#arrived()
+    this.#letReplacedTry(facts)
+    this.#engine.take(facts, this.#nowMs)
     this.#makeDurable()
     if (this.#obeys()) return false
+    if (this.#engine.status() === 'rested' && this.#rests.length > 0) {
+      this.#rests = this.#rests.slice(1)
+      this.#stopAndStart()
+      return false
+    }
     if (this.#engine.status() !== 'running') return true
+    if (this.#happens(this.#weather.stopped)) this.#stopAndStart()
+    if (this.#happens(this.#weather.replaced)) {
+      this.#replaced = { engine: this.#engine, journal: this.#journal }
+      this.#engine = this.#open()
+    }
+    // A coordinator that has just been started has nothing to hand out before it has looked.
+    this.#makeDurable()
     const items = this.#engine.work(2 * this.#weather.workers, this.#nowMs)
-    for (const item of items) this.#simulate(item)
+    for (const item of items) {
+      this.#simulate(item)
+      if (this.#happens(this.#weather.twice)) this.#simulate(item)
+    }
     return false
+  }
+
+  /** As a signal stops it: snapshots of everything, then a new life. */
+  #stopAndStart(): void {
+    this.#engine.snapshotAll()
+    this.#makeDurable()
+    this.#engine = this.#open()
+  }
+
+  /** Frozen and thawed again: it sees the same results and may write nothing of what it makes of them. */
+  #letReplacedTry(facts: readonly DispatchFact[]): void {
+    if (!this.#replaced) return
+    const { engine, journal } = this.#replaced
+    engine.take(facts, this.#nowMs)
+    const rows = engine.rows()
+    if (!rows) return
+    this.#replaced = undefined
+    try {
+      journal.append(rows)
+    } catch (fault) {
+      if (!(fault instanceof Fenced)) throw fault
+      this.#fenced++
+      return
+    }
+    throw new Error('a coordinator that was replaced has written')
   }
 
   /** Gives the operator's next order when it is time and the record does not hold it yet. */
@@ -188,7 +267,7 @@ export class World {
 
   #makeDurable(): void {
     for (let rows = this.#engine.rows(); rows; rows = this.#engine.rows()) {
-      this.#disk.append(rows)
+      this.#journal.append(rows)
       this.#engine.appended()
     }
   }
@@ -221,15 +300,29 @@ export class World {
       return
     }
     if (this.#happens(this.#weather.stalls)) return
-    if (this.#happens(this.#weather.dies) || this.#happens(this.#weather.handsBack)) {
-      this.#arrive(endMs, { kind: 'lost', item, cause: 'agent-lost', detail: 'preempted', executor })
+    if (item.isolation === 'shared' && this.#happens(this.#weather.deadly)) {
+      this.#arrive(endMs, {
+        kind: 'lost',
+        item,
+        cause: 'died',
+        detail: 'crashed with its neighbour',
+        executor,
+      })
+      return
+    }
+    const handsBack = this.#happens(this.#weather.handsBack)
+    if (handsBack || this.#happens(this.#weather.dies)) {
+      const cause = handsBack ? 'handed-back' : 'agent-lost'
+      this.#arrive(endMs, { kind: 'lost', item, cause, detail: 'preempted', executor })
       if (!this.#happens(this.#weather.late)) return
     }
     this.#simulations++
     const result = this.#resultOf(item, genome, worker)
     const fact = {
       kind: 'result',
-      item,
+      item: this.#happens(this.#weather.misnumbered)
+        ? { ...item, attempt: this.#draw.below(item.attempt + 2) }
+        : item,
       result,
       digest: resultDigest(result),
       executor,
