@@ -15,6 +15,7 @@ import {
   nodeAt,
   nodeCount,
   roundStep,
+  roundStepUp,
   secondsAt,
 } from './geometry.js'
 import { colourOf, fontFamily, type LinkStyle, light, linkStyles } from './style.js'
@@ -26,6 +27,8 @@ const timePx = 76
 const momentsByColumns = [5, 4, 6] as const
 const gapPx = 28
 const rowHeightMostPx = 210
+/** Least distance between ticks: room for their numbers. */
+const tickPx = 60
 const theme = light
 
 interface Scale {
@@ -201,7 +204,7 @@ function pathPart(frames: Frames, node: number, last: number, at: At): string {
 /** Horizontal axis with ticks in metres, and faint lines up through all rows. */
 function axis(scale: Scale, topPx: number, y: number): string {
   const { left, right } = scale.extent
-  const step = roundStep(Math.max(((right - left) * 72) / scale.plotPx, (right - left) / 12))
+  const step = roundStepUp(Math.max(((right - left) * tickPx) / scale.plotPx, (right - left) / 12))
   const decimals = Math.max(0, -Math.floor(Math.log10(step) + 1e-9))
   const parts = [
     `<path d="M${px(scale.leftPx)},${px(y)}H${px(scale.leftPx + scale.plotPx)}" stroke="${theme.faint}"/>`,

@@ -115,6 +115,13 @@ export function roundStep(most: number): number {
   return ([5, 2, 1].find((factor) => factor * power <= most * (1 + 1e-9)) ?? 1) * power
 }
 
+/** A round number at least `least`: ticks no nearer than that, so that their numbers do not touch. */
+export function roundStepUp(least: number): number {
+  check(least > 0 && Number.isFinite(least), 'a step has a size')
+  const power = 10 ** Math.floor(Math.log10(least))
+  return ([1, 2, 5].find((factor) => factor * power >= least * (1 - 1e-9)) ?? 10) * power
+}
+
 /** A length as a person writes it: 20 mm, 0.5 m. */
 export function lengthText(metres: number): string {
   if (metres < 0.001) return `${Number((metres * 1e6).toPrecision(3))} µm`

@@ -6,7 +6,7 @@ import type { Frames } from '../../../shared/problem.js'
 import { bestSvg, clipped } from './best-svg.js'
 import { drawPictures } from './draw.js'
 import { alwaysCaution, escaped, type PictureFacts, resultSentence } from './facts.js'
-import { extentOf, framesFault, kindsOf, lengthText, momentsOf, roundStep } from './geometry.js'
+import { extentOf, framesFault, kindsOf, lengthText, momentsOf, roundStep, roundStepUp } from './geometry.js'
 import { packed, replayHtml } from './replay.js'
 import { dark, light, linkStyles, type Theme } from './style.js'
 
@@ -99,6 +99,19 @@ describe('the picture', () => {
       'no uncertainty is known',
     )
     expect(resultSentence({ ...facts, selected: false })).not.toContain('Chosen')
+  })
+  it('keeps the numbers of its axis apart, however far the machine goes', () => {
+    for (const stretch of [0.2, 0.5, 1, 1.4, 2, 3, 7]) {
+      const positions = frames.positions.map((frame) => frame.map((x, i) => (i % 2 === 0 ? x * stretch : x)))
+      const ground = frames.ground.map(([x, y]) => [x * stretch, y] as const)
+      const svg = bestSvg({ ...frames, positions, ground }, facts)
+      const ticks = [...svg.matchAll(/<text x="([\d.]+)" y="([\d.]+)"[^>]*text-anchor="middle"[^>]*>/g)]
+      const lowest = Math.max(...ticks.map(([, , y]) => Number(y)))
+      const along = ticks.filter(([, , y]) => Number(y) === lowest).map(([, x]) => Number(x))
+      const gaps = along.slice(1).map((x, i) => x - along[i]!)
+      expect(along.length, `stretched ${stretch} times`).toBeGreaterThan(1)
+      for (const gap of gaps) expect(gap, `stretched ${stretch} times`).toBeGreaterThan(48)
+    }
   })
   it('shrinks with a narrow window instead of running out of it', () => {
     expect(bestSvg(frames, facts)).toMatch(
@@ -251,6 +264,9 @@ describe('geometry', () => {
     ])
     expect(extentOf(frames, [0])).toEqual({ left: -0.01, right: 0.11, bottom: 0, top: 0.11 })
     expect([roundStep(0.07), roundStep(9), roundStep(1), roundStep(0.2)]).toEqual([0.05, 5, 1, 0.2])
+    expect([roundStepUp(0.07), roundStepUp(9), roundStepUp(1), roundStepUp(0.021)]).toEqual([
+      0.1, 10, 1, 0.05,
+    ])
     expect([lengthText(0.02), lengthText(0.5), lengthText(0.00005)]).toEqual(['20 mm', '0.5 m', '50 µm'])
   })
 })
