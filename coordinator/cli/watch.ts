@@ -2,7 +2,7 @@
 
 import type { Output } from './command.js'
 import type { ProgressView } from './progress-view.js'
-import { drawProgress, LiveBlock, logLine } from './terminal.js'
+import { drawProgress, fitted, LiveBlock, logLine } from './terminal.js'
 
 const logEverySeconds = 10
 /** Lines left for what was printed above the block. */
@@ -40,7 +40,7 @@ function liveWatch(output: Output): Watch {
     },
     say(sentence) {
       block.clear()
-      output.print(sentence)
+      for (const line of sentence.split('\n')) output.print(fitted(line, output.columns - 1))
       if (last) draw(last)
     },
     end(view) {
