@@ -15,7 +15,7 @@ import { createPool } from '../worker/pool.js'
 import { Alarms } from './cli/join/alarms.js'
 import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
-import { Meter } from './cli/join/meter.js'
+import { Meter, simulationsLeft } from './cli/join/meter.js'
 import { resimulate, Sample } from './cli/join/resimulate.js'
 import { withSilence } from './cli/join/silence.js'
 import { progressView } from './cli/join/view.js'
@@ -258,8 +258,8 @@ function tellProgress(
   state: LoopState,
 ): void {
   const simulations = engine.search.islands.reduce((sum, one) => sum + one.counters.committedSimulations, 0)
-  const left = engine.search.islands.reduce((sum, one) => sum + (one.ended ? 0 : one.quota), 0) - simulations
-  const rate = meter.rate(simulations, record.reader.totals().cpuSeconds, Math.max(0, left))
+  const left = simulationsLeft(engine.search.islands)
+  const rate = meter.rate(simulations, record.reader.totals().cpuSeconds, left)
   const view = progressView({
     search: engine.search,
     reader: record.reader,

@@ -1,6 +1,20 @@
 // How fast a running search is: simulations a second and how busy its cores are, over the last half minute.
 
+import type { Island } from '../../evolution/island.js'
 import type { ProgressView } from '../progress-view.js'
+
+/** Simulations that are still to do: an island that has ended or is paused has none left, whatever its quota. */
+export function simulationsLeft(
+  islands: readonly (Pick<Island, 'ended' | 'paused' | 'quota'> & {
+    readonly counters: Pick<Island['counters'], 'committedSimulations'>
+  })[],
+): number {
+  return islands.reduce(
+    (sum, { ended, paused, quota, counters }) =>
+      sum + (ended || paused ? 0 : Math.max(0, quota - counters.committedSimulations)),
+    0,
+  )
+}
 
 interface Reading {
   readonly atMs: number
