@@ -260,7 +260,8 @@ function countDamagedSnapshots(database: GuardedDatabase): number {
 
 /** What is damaged, in words. A disk that cannot be read now says nothing about what it holds: that is thrown on. */
 function damageIn(error: unknown): string {
-  if (error instanceof Refusal && error.code !== 'record-corrupted' && error.code !== 'bytes-malformed') throw error
+  if (error instanceof Refusal && error.code !== 'record-corrupted' && error.code !== 'bytes-malformed')
+    throw error
   return error instanceof Error ? error.message : String(error)
 }
 
