@@ -47,8 +47,9 @@ describe.each(documents)('%s', (file) => {
     expect(inCode.filter((name) => !known.includes(name))).toEqual([])
   })
 
-  test('names only options that the commands or the test runner have', () => {
-    const runner = readFileSync(join(root, 'tests/tools/run-tests.mjs'), 'utf8')
+  test('names only options that the commands, the test runner or the benchmark have', () => {
+    const tools = ['tests/tools/run-tests.mjs', 'tests/bench/main.ts']
+    const runner = tools.map((path) => readFileSync(join(root, path), 'utf8')).join('\n')
     const known = new Set(commands.flatMap((command) => command.options.map((option) => option.flag)))
     const named = [...text.matchAll(/(?<![\w-])--([a-z][a-z-]+)/g)].map((match) => match[1]!)
     const usual = ['help', 'json', 'version']
