@@ -8,11 +8,13 @@ import { join, resolve } from 'node:path'
 import { z } from 'zod'
 import { hex } from '../shared/digests.js'
 import { islandName } from '../shared/ids.js'
+import { limits } from '../shared/limits.js'
 import type { AnyProblem } from '../shared/problem.js'
 import { Refusal, refuse } from '../shared/refusals.js'
 import { loadPlugin } from '../worker/plugin/load.js'
 import { createPool } from '../worker/pool.js'
 import { Alarms } from './cli/join/alarms.js'
+import { type BudgetEnds, finishedBecause, orderBudgetEnds, resumeEnds } from './cli/join/budget-ends.js'
 import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
 import { Meter, simulationsLeft } from './cli/join/meter.js'
@@ -53,6 +55,11 @@ const toolsOf = (plan: SearchPlan, problem: AnyProblem): SearchTools =>
 
 /** Starts the search of a file, or goes on where its record stands. */
 export async function runSearch(options: RunOptions): Promise<RunEnd> {
+  if ((options.cores ?? 1) > limits.threadsMost) {
+    throw refuse('usage', {
+      detail: `--cores ${options.cores}; expected at most ${limits.threadsMost}, usually the cores of this machine (${availableParallelism()})`,
+    })
+  }
   const opened = await openSearch(options.file, searchTables(), Date.now())
   if (opened.warnings.length > 0)
     options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
@@ -136,18 +143,9 @@ async function runRecord(
   })
   noteStart(engine, record, replay.commits, options)
   orderChanges(engine, changes, opened)
-  const isLate = changes.some(({ field }) => field === 'budget.coreHours' || field === 'budget.until')
-  if (isLate && engine.impurities().includes('budget-used')) {
-    options.tell({
-      kind: 'said',
-      sentence:
-        'Hours or a date have already ended this search, and that is not taken back. To search on with the new budget, begin another record with --record.',
-    })
-  }
+  const ends = resumeEnds(engine, record.reader, changes, opened.fields.budget)
   const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
-  // Hours and date as the file says now: what differs from the record's copy was accepted above.
-  const { coreHours, until } = opened.fields.budget
-  return await drive({ options, record, folder, engine, problem, cores, ends: { coreHours, until } })
+  return await drive({ options, record, folder, engine, problem, cores, ends })
 }
 
 function noteStart(engine: Engine, record: OpenRecord, replayed: number, options: RunOptions): void {
@@ -174,7 +172,7 @@ interface Driven {
   readonly engine: Engine
   readonly problem: AnyProblem
   readonly cores: number
-  readonly ends: { readonly coreHours: number | undefined; readonly until: string | undefined }
+  readonly ends: BudgetEnds
 }
 
 async function drive(driven: Driven): Promise<RunEnd> {
@@ -192,7 +190,7 @@ async function drive(driven: Driven): Promise<RunEnd> {
       pause: (ms) => pause(ms, options.signal),
       signal: options.signal,
       onStep: (state) => {
-        orderBudgetEnds(driven)
+        orderBudgetEnds(engine, record.reader, driven.ends, Date.now())
         if (meter.isDue(progressSeconds)) tellProgress(driven, meter, alarms, state)
       },
     })
@@ -235,15 +233,6 @@ function stateOf(end: LoopEnd, reader: RecordReader): Stated {
   return { state: 'stopped', because: end === 'rested' ? 'because --stop-after asked for it' : 'by a signal' }
 }
 
-/** Why it ended before its simulations were used, where that was an event. */
-function finishedBecause(reader: RecordReader): { readonly because?: string } {
-  let because: string | undefined
-  for (const { kind, sentence } of reader.events()) {
-    if (kind === 'target-reached' || kind === 'budget-used') because = sentence.replace(/\.$/, '')
-  }
-  return because === undefined ? {} : { because }
-}
-
 async function finishRun(driven: Driven, end: LoopEnd, dispatcher: Dispatcher): Promise<Finish> {
   const { engine, options, folder, problem, record } = driven
   if (end === 'interrupted') return { summary: [], brief: [], files: [] }
@@ -272,24 +261,6 @@ function tellProgress(
   options.tell({ kind: 'progress', view })
   for (const sentence of alarms.look(view)) options.tell({ kind: 'said', sentence })
   if (state.kind === 'searching') write(folder, progressFile, 'progress', JSON.stringify(view))
-}
-
-/** Budgets of hours and of a date end the search at the next epoch, once. */
-function orderBudgetEnds({ engine, record, ends }: Driven): void {
-  const { coreHours, until } = ends
-  if (engine.impurities().includes('budget-used')) return
-  const usedHours = coreHours === undefined ? 0 : record.reader.totals().cpuSeconds / 3600
-  const because =
-    coreHours !== undefined && usedHours >= coreHours
-      ? `${coreHours} core-hours are used`
-      : until !== undefined && Date.now() >= Date.parse(until)
-        ? `it is ${until}`
-        : undefined
-  if (because === undefined) return
-  engine.orderAtEpoch('budget-used', `The search finishes with the epoch, because ${because}.`, (epoch) => ({
-    fact: 'finish',
-    epoch,
-  }))
 }
 
 function pause(ms: number, signal: AbortSignal): Promise<void> {

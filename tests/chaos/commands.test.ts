@@ -62,17 +62,18 @@ it('a date ends the search at an epoch, and says which', () => {
   expect(out).toContain(`The search finishes with the epoch, because it is ${until}`)
 })
 
-it('hours follow the accepted file; raised after they ended the search they bring nothing back, and that is said', () => {
+it('hours follow the accepted file; raised after they ended the search it goes on, until the new ones end it', () => {
   const run = bench()
-  run('simulations: 100000, coreHours: 10', '--stop-after', '40')
-  const refused = run('simulations: 100000, coreHours: 0.000001')
+  run('simulations: 400, coreHours: 10', '--stop-after', '40')
+  const refused = run('simulations: 400, coreHours: 0.000001')
   expect(refused.exitCode).toBe(78)
   expect(refused.err).toContain('--accept-changes')
-  const ended = run('simulations: 100000, coreHours: 0.000001', '--accept-changes')
+  const ended = run('simulations: 400, coreHours: 0.000001', '--accept-changes')
   expect(ended.exitCode).toBe(0)
   expect(ended.out).toContain('because 0.000001 core-hours are used')
-  const raised = run('simulations: 100000, coreHours: 10', '--accept-changes')
-  expect(raised.out).toContain('have already ended this search, and that is not taken back')
+  const raised = run('simulations: 400, coreHours: 10', '--accept-changes')
+  expect(raised.exitCode).toBe(0)
+  expect(raised.out).toMatch(/finished: (39\d|400) of 400 simulations/)
 })
 
 it('--json stays one object when the problem prints, and holds the comparison with the control', () => {
@@ -91,4 +92,10 @@ it('a search in which everything fails says why, while it runs and at the end', 
   expect(exitCode).toBe(0)
   expect(out).toContain('No machine has been simulated without failure yet.')
   expect(out).toContain('The first failed because: the problem threw: no stiffness given.')
+})
+
+it('more cores than any machine has are refused in words', () => {
+  const { exitCode, err } = bench()('simulations: 120', '--cores', '9999')
+  expect(exitCode).toBe(64)
+  expect(err).toContain('--cores 9999; expected at most')
 })
