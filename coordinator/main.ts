@@ -24,7 +24,7 @@ import { progressView } from './cli/join/view.js'
 import type { ProgressView } from './cli/progress-view.js'
 import type { RederiveOptions, RederiveReport, RunEnd, RunOptions } from './cli/run-options.js'
 import { searchTables } from './cli/search-tables.js'
-import { type OpenedSearch, openSearch } from './cli/searchfile/open.js'
+import { type OpenedSearch, openSearch, peekName } from './cli/searchfile/open.js'
 import { localDispatcher } from './dispatch/local.js'
 import { underWeather } from './dispatch/weather.js'
 import type { Engine } from './engine/engine.js'
@@ -35,6 +35,7 @@ import { searchTools } from './evolution/build.js'
 import type { SearchPlan } from './evolution/plan.js'
 import type { SearchTools } from './evolution/search.js'
 import {
+  nameHolder,
   type OpenRecord,
   openRecord,
   readRecord,
@@ -60,6 +61,8 @@ export async function runSearch(options: RunOptions): Promise<RunEnd> {
       detail: `--cores ${options.cores}; expected at most ${limits.threadsMost}, usually the cores of this machine (${availableParallelism()})`,
     })
   }
+  const name = peekName(options.file, searchTables())
+  if (!options.force && name !== undefined) refuseIfHeldHere(options.record ?? join('records', name))
   const opened = await openSearch(options.file, searchTables(), Date.now())
   if (opened.warnings.length > 0)
     options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
@@ -99,6 +102,20 @@ async function openAlone(options: RunOptions, opened: OpenedSearch, folder: stri
     const seen = await watchHolder(folder, silenceSeconds, (ms) => pause(ms, options.signal))
     if (!seen || options.signal.aborted) throw fault
     return open(seen)
+  }
+}
+
+/** A second coordinator on this machine is told at once, before its problem is bundled. */
+function refuseIfHeldHere(folder: string): void {
+  if (!existsSync(recordFolder(folder).database)) return
+  const record = readRecord(folder, { me: thisProcess() })
+  try {
+    const holder = record.holder()
+    if (!holder?.running) return
+    const cure = `Wait for it to end, or stop it: kill ${holder.pid}`
+    throw refuse('record-in-use', { detail: nameHolder(holder), cure })
+  } finally {
+    record.close()
   }
 }
 

@@ -69,6 +69,15 @@ function findingOf(refusal: Refusal, read: ReadFile): Finding {
   }
 }
 
+/** The name a search file gives, where it can be read at all: what is wrong with it is for openSearch to say. */
+export function peekName(file: string, tables: SearchTables): string | undefined {
+  try {
+    return readSearchFile(readText(file), tables).partial.name
+  } catch {
+    return undefined
+  }
+}
+
 function readText(file: string): string {
   try {
     return readFileSync(file, 'utf8')
