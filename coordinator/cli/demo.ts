@@ -9,18 +9,17 @@ import { runAndReport, runOptionRows } from './run.js'
 const folder = join('records', 'demo-files')
 const record = join('records', 'demo')
 
-/** Small enough for a minute or so on two cores; two islands that trade, one that starts afresh all the time. */
+/** Small enough for a minute or so on two cores: three islands that trade often. */
 export const demoSearchText = `# The search that \`skerry demo\` runs. Copy it, or begin with \`skerry new DIR\`.
 name: demo
 problem: ./problem.js
 seed: 20261201
 workersExpected: 4
 budget: { simulations: 10000 }
-replicates: { first: 2, topUp: 2, most: 8 }
+replicates: { first: 1, topUp: 1, most: 6 }
 islands:
-  - { count: 2, method: nsga-ii, population: 48, lookahead: 12 }
-  - { count: 1, method: age-fitness-pareto, population: 48, lookahead: 12 }
-migration: { every: 240 rounds, emigrants: 2, topology: ring, lag: 1 }
+  - { count: 3, method: nsga-ii, population: 24, lookahead: 8 }
+migration: { every: 60 rounds, emigrants: 2, topology: ring, lag: 1 }
 control: none
 `
 

@@ -107,7 +107,7 @@ export const figures: readonly Figure[] = [
     takes: 'median',
     dependsOnTime: true,
     async run({ quick, folder }) {
-      const run = await runTask('crawler', { folder, simulations: quick ? 300 : 1500, threads })
+      const run = await runTask('crawler', { folder, simulations: quick ? 300 : 8000, threads })
       const plain = await plainLoops(folder)
       const remark = `${plain.cpuSeconds.toFixed(2)} s for ${plain.simulations} simulations`
       const goal = { atLeast: 0.97 }
@@ -186,7 +186,7 @@ export const figures: readonly Figure[] = [
     async run({ quick, folder, say }) {
       const seeds: ContestSeed[] = []
       for (let seed = 1; seed <= (quick ? 2 : 10); seed++) {
-        const options = { folder: `${folder}/${seed}`, seed, simulations: quick ? 300 : 5000, threads }
+        const options = { folder: `${folder}/${seed}`, seed, simulations: quick ? 300 : 3000, threads }
         const { result } = await runTask('contest', options)
         const { search, drift, randomSampling } = result.metres
         say(
