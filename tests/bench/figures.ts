@@ -103,7 +103,7 @@ export const figures: readonly Figure[] = [
   {
     name: 'crawler-share',
     what: 'CPU in simulation / CPU in all, a real search of the crawler',
-    rounds: { full: 3, quick: 1 },
+    rounds: { full: 1, quick: 1 },
     takes: 'median',
     dependsOnTime: true,
     async run({ quick, folder }) {
