@@ -23,7 +23,7 @@ describe('worked examples', () => {
       'South Carolina': 206_236,
       'New Jersey': 179_570,
       'New Hampshire': 141_822,
-      Vermont: 85_533,
+      'the fourteenth state': 85_533,
       Georgia: 70_835,
       Kentucky: 68_705,
       'Rhode Island': 68_446,

@@ -37,7 +37,7 @@ export const oneBitMutation: MutationRow = {
   title: 'One-bit mutation',
   summary: 'exactly one bit flips, each with the same chance',
   source:
-    'randomised local search, as in Neumann and Wegener, Randomized local search, evolutionary algorithms, and the minimum spanning tree problem, 2004 (from memory)',
+    'Randomized local search, evolutionary algorithms, and the minimum spanning tree problem, 2004 (from memory)',
   encodings: ['bits'],
   settings: {},
   build: (encoding) => {
