@@ -5,7 +5,7 @@
 
 import { z } from 'zod'
 import { check } from '../../shared/check.js'
-import { resultDigest } from '../../shared/digests.js'
+import { equalBytes, resultDigest } from '../../shared/digests.js'
 import { islandName, nameOf } from '../../shared/ids.js'
 import { limits } from '../../shared/limits.js'
 import { refuse } from '../../shared/refusals.js'
@@ -20,7 +20,7 @@ import type { EngineCounts } from './counts.js'
 import type { Orders } from './orders.js'
 import type { RecordReader } from './ports.js'
 import { eventRow, type Rows } from './rows.js'
-import { answersOf, answersTolerated, sameBytes, type Vote, verdictOf } from './votes.js'
+import { answersOf, answersTolerated, type Vote, verdictOf } from './votes.js'
 import { isNeeded, newWork, type Purpose, type Work, type Works } from './works.js'
 
 type ResultFact = Extract<DispatchFact, { kind: 'result' }>
@@ -115,7 +115,7 @@ export class Acceptance {
     const { counts, reader, rows } = this.#parts
     counts.late++
     const known = reader.arrival(fact.item.island, fact.item.evaluation)
-    if (!known || sameBytes(known.digest, fact.digest)) return
+    if (!known || equalBytes(known.digest, fact.digest)) return
     counts.disagreements++
     const sentence = `A late result of evaluation ${fact.item.evaluation} of ${islandName(fact.item.island)} by ${fact.executor.worker} differs from the one that was used, by ${known.worker}.`
     rows.event(eventRow({ kind: 'late-result-differs', sentence }))
@@ -129,7 +129,7 @@ export class Acceptance {
       work.votes.length > 0 ? work.votes.find((other) => other.executor.worker === worker) : undefined
     if (earlier) {
       // Whoever contradicts himself is no witness: others must say it.
-      const contradicts = !sameBytes(earlier.digest, vote.digest)
+      const contradicts = !equalBytes(earlier.digest, vote.digest)
       if (contradicts) {
         counts.disagreements++
         work.spotCheck = true
@@ -176,7 +176,7 @@ export class Acceptance {
       host: vote.executor.host,
       by: vote.executor.host === first.executor.host ? 'process' : 'host',
       digest: vote.digest,
-      agrees: sameBytes(vote.digest, first.digest),
+      agrees: equalBytes(vote.digest, first.digest),
     })
   }
 
@@ -199,7 +199,7 @@ export class Acceptance {
   #settle(work: Work, right: Vote, wrong: readonly Vote[]): void {
     const { works, wake } = this.#parts
     work.confirmed = true
-    const overruled = !sameBytes(work.votes[0]!.digest, right.digest)
+    const overruled = !equalBytes(work.votes[0]!.digest, right.digest)
     if (work.kind === 'first' && overruled) {
       // Nothing was committed with the wrong one: the right one takes its place.
       work.votes = [right, ...work.votes.filter((vote) => vote !== right)]

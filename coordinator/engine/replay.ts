@@ -1,14 +1,14 @@
 // A gate that knows only the record: it moves islands exactly as far as their commit journals go, compares every
 // recorded digest and stops. Recovery hands over to the engine from there; rederive starts it from nothing.
 
-import { hex } from '../../shared/digests.js'
+import { equalBytes, hex } from '../../shared/digests.js'
 import { islandName } from '../../shared/ids.js'
 import { refuse } from '../../shared/refusals.js'
 import type { Island } from '../evolution/island.js'
-import type { Gate, Mail, Outcome, Search } from '../evolution/search.js'
+import type { Mail } from '../evolution/post.js'
+import type { Gate, Outcome, Search } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
 import type { RecordReader } from './ports.js'
-import { sameBytes } from './votes.js'
 import { apply, type Schedule, type Stage } from './world-facts.js'
 
 type RecordedCommit = { readonly commit: number; readonly evaluation: number; readonly digest?: Uint8Array }
@@ -92,7 +92,7 @@ export class ReplayGate implements Gate {
     const journal = this.#journals.get(island.number)!
     const digest = journal.next?.digest
     if (digest) {
-      if (!sameBytes(digest, island.digest)) {
+      if (!equalBytes(digest, island.digest)) {
         throw refuse('record-differs', {
           detail: `${islandName(island.number)} at commit ${island.counters.commits}: derived digest ${hex(island.digest).slice(0, 16)}, recorded ${hex(digest).slice(0, 16)}`,
         })

@@ -2,7 +2,7 @@
 
 import type { Island } from '../evolution/island.js'
 import type { SearchPlan } from '../evolution/plan.js'
-import type { Mail } from '../evolution/search.js'
+import type { Mail } from '../evolution/post.js'
 import type { Ticket } from '../evolution/tickets.js'
 import type { Individual } from '../evolution/types.js'
 import type {

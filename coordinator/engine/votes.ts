@@ -3,6 +3,7 @@
 //
 // One vote a worker. `needed` agreeing workers settle it; a disagreement always needs two.
 
+import { equalBytes } from '../../shared/digests.js'
 import type { EvaluationResult, Executor } from '../../shared/result.js'
 
 export interface Vote {
@@ -27,12 +28,12 @@ export function verdictOf(votes: readonly Vote[]): Verdict {
   if (!first) return { kind: 'open' }
   if (votes.length === 1) return { kind: 'unconfirmed', vote: first }
   for (const vote of votes) {
-    const agreeing = votes.filter((other) => sameBytes(other.digest, vote.digest))
+    const agreeing = votes.filter((other) => equalBytes(other.digest, vote.digest))
     if (agreeing.length >= 2) {
       return {
         kind: 'confirmed',
         vote,
-        wrong: votes.filter((other) => !sameBytes(other.digest, vote.digest)),
+        wrong: votes.filter((other) => !equalBytes(other.digest, vote.digest)),
       }
     }
   }
@@ -41,12 +42,6 @@ export function verdictOf(votes: readonly Vote[]): Verdict {
 
 /** How many different answers there are. */
 export function answersOf(votes: readonly Vote[]): number {
-  return votes.filter((vote, at) => votes.findIndex((other) => sameBytes(other.digest, vote.digest)) === at)
+  return votes.filter((vote, at) => votes.findIndex((other) => equalBytes(other.digest, vote.digest)) === at)
     .length
-}
-
-export function sameBytes(a: Uint8Array, b: Uint8Array): boolean {
-  if (a.length !== b.length) return false
-  for (let i = 0; i < a.length; i++) if (a[i] !== b[i]) return false
-  return true
 }
