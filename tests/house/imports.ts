@@ -33,10 +33,14 @@ export const importTable: readonly FolderRule[] = [
 
 /** One owner folder a package: elsewhere it is reached through the owner. zod guards every border. */
 export const packageOwners: { readonly [name: string]: string | 'everywhere' } = {
+  '@dimforge/rapier2d-deterministic-compat': 'sim/rigid',
+  '@dimforge/rapier3d-deterministic-compat': 'sim/rigid',
   '@noble/hashes': 'shared',
   'better-sqlite3': 'coordinator/record',
   commander: 'coordinator/cli',
   esbuild: 'worker/plugin',
+  'fft.js': 'sim/measure',
+  'ml-matrix': 'sim/measure',
   yaml: 'coordinator/cli',
   zod: 'everywhere',
 }
