@@ -6,8 +6,9 @@
 
 import { Worker } from 'node:worker_threads'
 import { BrokenPromise } from '../shared/check.js'
+import { processCpuSeconds } from './cpu.js'
 import { leaveWithFolder } from './leave.js'
-import { createSimulator, processCpuSeconds, type Simulator } from './simulate.js'
+import { createSimulator, type Simulator } from './simulate.js'
 import {
   type BatchMessage,
   packDone,
@@ -32,7 +33,7 @@ process.on('message', (order: ChildOrder) => {
 
 async function load(settings: SimulatorSettings): Promise<void> {
   try {
-    simulator = await createSimulator(settings, processCpuSeconds)
+    simulator = await createSimulator(settings)
     say({ kind: 'ready' })
   } catch (error) {
     say({ kind: 'unusable', reason: error instanceof Error ? error.message : String(error) })
@@ -42,7 +43,9 @@ async function load(settings: SimulatorSettings): Promise<void> {
 function run(message: BatchMessage): void {
   try {
     if (simulator === undefined) throw new BrokenPromise('items come after the bundle has been loaded')
-    say(packDone(message.batch, 0, [simulator(unpackItem(message, 0))]))
+    const start = processCpuSeconds()
+    const simulated = simulator(unpackItem(message, 0))
+    say(packDone(message.batch, 0, [{ ...simulated, cpuSeconds: processCpuSeconds() - start }]))
   } catch (error) {
     say({ kind: 'broken', promise: error instanceof Error ? error.message : String(error) })
   }

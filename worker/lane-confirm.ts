@@ -4,8 +4,8 @@
 // most of the work, one serves for a stated time instead.
 
 import type { Executor, WorkItem } from '../shared/result.js'
+import { wallSeconds } from './cpu.js'
 import { AgentLane, type AgentLaneEvents } from './lane-agent.js'
-import { wallSeconds } from './simulate.js'
 import type { ThreadsOptions } from './threads.js'
 
 export interface ConfirmLaneOptions {

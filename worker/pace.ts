@@ -23,7 +23,7 @@ export const defaultTimeLimit: TimeLimit = {
 }
 
 /** A message to a thread should last about this long: long against sending it, short against a person's patience. */
-const batchSeconds = 0.075
+const batchSeconds = 0.2
 const memory = 0.99
 
 export class Pace {

@@ -1,17 +1,17 @@
 // The code inside a simulating thread: loads the pinned bundle once, then batch after batch.
 //
 // Everything between two messages is synchronous. Before each item the black box notes which one it is, so that the
-// pool knows whom to ask when this thread dies or hangs; results leave about every 50 ms.
+// pool knows whom to ask when this thread dies or hangs; results leave about five times a second.
 
 import { parentPort, workerData } from 'node:worker_threads'
 import { BrokenPromise, check } from '../shared/check.js'
-import { createSimulator, type Simulator, threadCpuSeconds, wallSeconds } from './simulate.js'
+import { CpuSplit, threadCpuClock, wallSeconds } from './cpu.js'
+import { createSimulator, type Simulator } from './simulate.js'
 import { Blackbox, captureOutput } from './tail.js'
 import {
   type BatchMessage,
   batchLength,
   packDone,
-  type Simulated,
   type SimulatorMessage,
   type SimulatorSettings,
   transferable,
@@ -22,18 +22,19 @@ export interface ThreadSettings extends SimulatorSettings {
   readonly blackbox: SharedArrayBuffer
 }
 
-const flushSeconds = 0.05
+const flushSeconds = 0.2
 
 const port = parentPort
 check(port !== null, 'thread code runs in a thread')
 const settings = workerData as ThreadSettings
 const box = new Blackbox(settings.blackbox)
+const split = new CpuSplit(threadCpuClock())
 captureOutput(box)
 // A plug-in may leave a promise or a timer behind that throws later; results are made before that and stay good.
 process.on('uncaughtException', (error) => console.error('after a simulation:', error))
 
 try {
-  const simulator = await createSimulator(settings, threadCpuSeconds)
+  const simulator = await createSimulator(settings)
   port.on('message', (message: BatchMessage) => runBatch(message, simulator))
   say({ kind: 'ready' })
 } catch (error) {
@@ -41,8 +42,9 @@ try {
 }
 
 function runBatch(message: BatchMessage, simulator: Simulator): void {
-  let done: Simulated[] = []
+  let done: ReturnType<Simulator>[] = []
   let flushed = wallSeconds()
+  split.start()
   const length = batchLength(message)
   for (let i = 0; i < length; i++) {
     box.begin(message.batch, i)
@@ -56,7 +58,9 @@ function runBatch(message: BatchMessage, simulator: Simulator): void {
     }
     if (i === length - 1) box.rest()
     if (i === length - 1 || wallSeconds() - flushed > flushSeconds) {
-      say(packDone(message.batch, i + 1 - done.length, done))
+      const rate = split.rate()
+      const priced = done.map((one) => ({ ...one, cpuSeconds: rate * one.wallSeconds }))
+      say(packDone(message.batch, i + 1 - done.length, priced))
       done = []
       flushed = wallSeconds()
     }

@@ -13,9 +13,9 @@ export interface LocalPool {
   close(): Promise<void>
 }
 /** How long facts() waits for company of the first fact, at most. */
-const lingerMs = 250
+const lingerMs = 500
 /** Part of what is out that it need not wait beyond. */
-const lingerPart = 0.25
+const lingerPart = 0.5
 
 export interface LocalPoolEvents {
   fact(fact: DispatchFact): void
@@ -89,7 +89,7 @@ class LocalDispatcher implements Dispatcher {
   }
 
   /**
-   * How many facts are worth an append, which costs as much CPU as a small simulation: a quarter of what is out, as
+   * How many facts are worth an append, which costs as much CPU as a small simulation: half of what is out, as
    * long as every slot has something left to do meanwhile.
    */
   private enoughFacts(): number {
