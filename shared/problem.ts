@@ -5,8 +5,11 @@
 // and, where the problem names cases, one of its cases. A *replicate* is all cases under one condition, so
 // a replicate costs max(1, cases) simulations.
 
+import type { Frames } from './frames.js'
 import type { Genome, GenomeOf, GenomeSpec } from './genome.js'
 import type { Stream } from './streams.js'
+
+export type { FrameBody, FrameGroundGrid, FrameLink, Frames, FrameWall } from './frames.js'
 
 export type Direction = 'maximise' | 'minimise'
 /** How the replicates of an individual become one number. 'worst' is the worst for the objective's direction. */
@@ -44,28 +47,6 @@ export interface FailedSimulation {
   readonly failed: string
 }
 export type SimulationOutcome = Measured | FailedSimulation
-
-/** What a replay shows: node positions over time, the links between nodes and what they are. SI units. */
-export interface Frames {
-  readonly dimensions: 2 | 3
-  readonly secondsPerFrame: number
-  /** Each frame: x0, y0[, z0], x1, ... in metres. */
-  readonly positions: readonly Float64Array[]
-  readonly links: readonly FrameLink[]
-  readonly nodeRadiiM: readonly number[]
-  /** Outline of the ground as points x, y in metres, left to right. */
-  readonly ground: readonly (readonly [number, number])[]
-  /** Fixed or carried things to draw, e.g. the puck: follows a node. */
-  readonly markers: readonly { readonly node: number; readonly label: string; readonly radiusM: number }[]
-  /** Drive of each active link per frame, -1 to 1; links without drive are absent. */
-  readonly drive: readonly { readonly link: number; readonly values: Float64Array }[]
-}
-export interface FrameLink {
-  readonly a: number
-  readonly b: number
-  /** Short word such as 'soft', 'stiff', 'actuator 1'; used for the legend. */
-  readonly kind: string
-}
 
 /** A caution that leaves with every picture, replay and sheet of the machine. */
 export interface Caution {
