@@ -7,6 +7,7 @@
 
 import type { Frames } from './frames.js'
 import type { Genome, GenomeOf, GenomeSpec } from './genome.js'
+import type { noMachine, Parts, Process, Use } from './making/types.js'
 import type { Stream } from './streams.js'
 
 export type { FrameBody, FrameGroundGrid, FrameLink, Frames, FrameWall } from './frames.js'
@@ -48,6 +49,9 @@ export interface FailedSimulation {
 }
 export type SimulationOutcome = Measured | FailedSimulation
 
+/** What a machine is used for; a function where it depends on the genome. */
+export type UseOf<S extends GenomeSpec> = Use | typeof noMachine | ((genome: GenomeOf<S>) => Use)
+
 /** A caution that leaves with every picture, replay and sheet of the machine. */
 export interface Caution {
   readonly hazard: string
@@ -76,7 +80,14 @@ export interface Problem<S extends GenomeSpec = GenomeSpec, Condition = unknown>
   readonly frames?: (genome: GenomeOf<S>, situation: Situation<Condition>) => Frames
   /** Lines for a person: part by part, with units. */
   readonly describe?: (genome: GenomeOf<S>) => readonly string[]
+  /** Beyond those that follow from `use` and `process` (shared/making/cautions.ts). */
   readonly cautions?: (genome: GenomeOf<S>) => readonly Caution[]
+  /** What the workshop can make, and of what. */
+  readonly process?: Process
+  /** What the genome describes, to compare with `process`; what cannot be made fails when it is simulated. */
+  readonly parts?: (genome: GenomeOf<S>) => Parts
+  /** Energy, place and touch, from which the cautions follow; what is not declared counts as unknown. */
+  readonly use?: UseOf<S>
 }
 
 /** A problem whose genome is known only at run time; what coordinator and worker handle. */

@@ -3,6 +3,7 @@
 
 import { checkSpec } from '../shared/genome-check.js'
 import { limits } from '../shared/limits.js'
+import { checkProcess, checkUse } from '../shared/making/declare.js'
 import type { AnyProblem } from '../shared/problem.js'
 import { type RefusalCode, refuse } from '../shared/refusals.js'
 
@@ -86,6 +87,9 @@ const fields: { readonly [field: string]: FieldCheck } = {
   frames: perhapsAFunction,
   describe: perhapsAFunction,
   cautions: perhapsAFunction,
+  process: checkProcess,
+  parts: perhapsAFunction,
+  use: checkUse,
 }
 
 function checkNames(value: unknown, field: string, least: number, most: number): asserts value is Bag {

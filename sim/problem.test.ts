@@ -13,6 +13,28 @@ const whole = {
   simulate: () => [],
 } as const
 
+const row = {
+  name: 'strip 0.2 mm',
+  form: 'strip',
+  material: {
+    name: 'spring steel',
+    youngPa: 206e9,
+    youngSpread: 0.02,
+    poissonRatio: 0.3,
+    densityKgpm3: 7850,
+    strainMost: 0.002,
+    relaxationSeconds: 0,
+    source: 'assumed',
+  },
+  wallM: 0.0002,
+  areaM2: 2e-6,
+  lengthLeastM: 0.02,
+  lengthMostM: 2,
+  wallToleranceM: 1e-5,
+  source: 'assumed',
+} as const
+const process = { name: 'bench', methods: ['sheet-metal-cutting'], stock: [row], actuators: [] } as const
+
 /** The refusal that an altered problem meets. */
 function refusalOf(change: object): Refusal {
   try {
@@ -87,12 +109,72 @@ describe('defineProblem', () => {
     ['an unknown field', { fitness: 1 }, 'fitness', /one of name, version/],
     ['a genome part without bounds', { genome: { a: { kind: 'real', length: 1 } } }, 'genome.a.low', /./],
     ['an empty genome', { genome: {} }, 'genome', /parts/],
+    [
+      'a process without methods',
+      { process: { name: 'a', stock: [], actuators: [] } },
+      'process.methods',
+      /nothing/,
+    ],
+    ['a wall of nothing', { process: { ...process, wallLeastM: 0 } }, 'process.wallLeastM', /found 0/],
+    ['a NaN mass', { process: { ...process, massMostKg: Number.NaN } }, 'process.massMostKg', /NaN/],
+    [
+      'a stock row upside down',
+      { process: { ...process, stock: [{ ...row, lengthMostM: 0.01 }] } },
+      'process.stock',
+      /./,
+    ],
+    [
+      'two stock rows of one name',
+      { process: { ...process, stock: [row, row] } },
+      'process.stock',
+      /different names/,
+    ],
+    [
+      'a stock row without a source',
+      { process: { ...process, stock: [{ ...row, source: '' }] } },
+      'process.stock[0].source',
+      /found ''/,
+    ],
+    ['parts that are no function', { parts: {} }, 'parts', /a function or nothing/],
+    ['an unknown use', { use: { temperatureC: 20 } }, 'use', /temperatureC/],
+    ['a negative pressure', { use: { gasPressurePa: -1 } }, 'use.gasPressurePa', /found -1/],
+    ['an unknown place', { use: { places: ['bench', 'moon'] } }, 'use.places[1]', /moon/],
+    ['a use that is a word', { use: 'harmless' }, 'use', /harmless/],
   ]
   test.each(rows)('refuses %s and names the field', (_, change, field, detail) => {
     const refusal = refusalOf(change)
     expect(refusal.where?.field).toBe(field)
     expect(refusal.detail).toMatch(detail)
     expect(refusal.exitCode).toBe(78)
+  })
+})
+
+describe('a machine that the declared process cannot make', () => {
+  const situations = [
+    { condition: null, case: '' },
+    { condition: null, case: '' },
+  ]
+  const measured = { objectives: { travel: 1 } }
+  const mount = (lengthM: number) =>
+    defineProblem({
+      ...whole,
+      simulate: (_, asked) => asked.map(() => measured),
+      process,
+      parts: () => ({ struts: [{ name: 'leaf 1', stock: row.name, lengthM }] }),
+    })
+  const genome = { stiffness: Float64Array.of(1.5) }
+
+  test('fails in every situation without being simulated, with the part and the rule', () => {
+    const failed =
+      'cannot be made: leaf 1: length of stock: found 5 mm, expected 20 mm to 2 m of strip 0.2 mm'
+    expect(mount(0.005).simulate(genome, situations)).toEqual([{ failed }, { failed }])
+    expect(mount(Number.NaN).simulate(genome, situations)[0]).toHaveProperty('failed')
+  })
+
+  test('is simulated when it can be made, or when nothing was declared to compare with', () => {
+    expect(mount(0.02).simulate(genome, situations)).toEqual([measured, measured])
+    const simulate = () => [measured]
+    expect(defineProblem({ ...whole, simulate, process }).simulate).toBe(simulate)
   })
 })
 

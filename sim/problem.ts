@@ -3,6 +3,7 @@
 // carries this file with it, so it stays small and needs no other package.
 
 import type { GenomeOf, GenomeSpec } from '../shared/genome.js'
+import type { Parts, Process } from '../shared/making/types.js'
 import type {
   AnyProblem,
   CaseCombination,
@@ -16,8 +17,10 @@ import type {
   Reduction,
   SimulationOutcome,
   Situation,
+  UseOf,
 } from '../shared/problem.js'
 import type { Stream } from '../shared/streams.js'
+import { unmakeable } from './making-guard.js'
 import { checkProblem } from './problem-check.js'
 
 export { columnsOf } from './columns.js'
@@ -52,6 +55,11 @@ export interface ProblemInput<S extends GenomeSpec, Condition> {
   readonly frames?: (genome: GenomeOf<S>, situation: Situation<Condition>) => Frames
   readonly describe?: (genome: GenomeOf<S>) => readonly string[]
   readonly cautions?: (genome: GenomeOf<S>) => readonly Caution[]
+  /** Not limited unless said. */
+  readonly process?: Process
+  readonly parts?: (genome: GenomeOf<S>) => Parts
+  /** Not declared unless said: then every caution is shown. */
+  readonly use?: UseOf<S>
 }
 
 /**
@@ -74,9 +82,21 @@ export function defineProblem<const S extends GenomeSpec, Condition>(
     exactness: input.exactness ?? 'bits',
     expectedCost: input.expectedCost ?? (() => 1),
     repair: input.repair ?? ((genome) => genome),
+    simulate: onlyMakeable(input),
   }
   checkProblem(problem)
   return problem
+}
+
+/** The author's simulate, except that what the declared process cannot make fails without being simulated. */
+function onlyMakeable<S extends GenomeSpec, Condition>(
+  input: ProblemInput<S, Condition>,
+): Problem<S, Condition>['simulate'] {
+  if (input.process === undefined || input.parts === undefined) return input.simulate
+  return (genome, situations) => {
+    const failed = unmakeable(input, genome)
+    return failed ? situations.map(() => failed) : input.simulate(genome, situations)
+  }
 }
 
 /**
