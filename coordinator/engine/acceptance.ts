@@ -15,19 +15,17 @@ import { columnsOf } from '../evolution/estimate.js'
 import type { Island } from '../evolution/island.js'
 import type { Outcome, Search } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
-import type { Block, Individual } from '../evolution/types.js'
+import { Confirmed, setAsideWorker } from './confirmed.js'
 import type { EngineCounts } from './counts.js'
 import type { Orders } from './orders.js'
 import type { RecordReader } from './ports.js'
 import { eventRow, type Rows } from './rows.js'
 import { answersOf, answersTolerated, type Vote, verdictOf } from './votes.js'
-import { isNeeded, newWork, type Purpose, type Work, type Works } from './works.js'
+import { isNeeded, type Purpose, type Work, type Works } from './works.js'
 
 type ResultFact = Extract<DispatchFact, { kind: 'result' }>
 type LossFact = Extract<DispatchFact, { kind: 'lost' }>
 
-/** Stands in the record where a worker's name would: nobody simulated this, it was given up. */
-export const setAsideWorker = 'set-aside'
 const shutOutSchema = z.object({ worker: z.string() })
 const correctionSchema = z.object({ fact: z.object({ individual: z.number(), firstReplicate: z.number() }) })
 
@@ -45,11 +43,8 @@ export interface AcceptanceParts {
 export class Acceptance {
   readonly shutOut = new Set<string>()
   readonly #parts: AcceptanceParts
-  /** Committed evaluations of the living that a second worker confirmed, by island. */
-  readonly #confirmed = new Map<number, Set<number>>()
-  #confirmedCount = 0
-  /** Blocks that were put right after their commit: two workers agreed on what stands there now. */
-  readonly #corrected = new Set<string>()
+  /** What is known of committed results. */
+  readonly confirmed: Confirmed
   /** Workers whose earlier results are to be looked at again once the record has them all. */
   readonly #suspects: string[] = []
   /** Islands of order 'arrival': evaluations whose first result is in, in order. */
@@ -57,9 +52,10 @@ export class Acceptance {
 
   constructor(parts: AcceptanceParts) {
     this.#parts = parts
+    this.confirmed = new Confirmed(parts)
     for (const event of parts.reader.events()) {
       if (event.kind === 'worker-shut-out') this.shutOut.add(shutOutSchema.parse(event.data).worker)
-      if (event.kind === 'correction') this.#corrected.add(keyOf(correctionSchema.parse(event.data).fact))
+      if (event.kind === 'correction') this.confirmed.noteCorrected(correctionSchema.parse(event.data).fact)
     }
     this.#suspects.push(...this.shutOut)
   }
@@ -207,7 +203,7 @@ export class Acceptance {
       this.#keep(work)
     }
     if (work.kind === 'again') {
-      this.#remember(work.island, work.evaluation)
+      this.confirmed.remember(work.island, work.evaluation)
       if (overruled) this.#correct(work, right)
       works.forget(work)
       wake(0)
@@ -219,7 +215,7 @@ export class Acceptance {
   #correct(work: Work, right: Vote): void {
     const { counts, search, orders } = this.#parts
     counts.corrections++
-    this.#corrected.add(keyOf(work))
+    this.confirmed.noteCorrected(work)
     const sentence = `The result of ${nameOf(work.individual)} (evaluation ${work.evaluation} of ${islandName(work.island)}) was wrong and was corrected.`
     for (const island of search.islands) {
       orders.now(island, 'correction', sentence, {
@@ -259,7 +255,7 @@ export class Acceptance {
       // It was simulated once and only its confirmation dies: the result stands, unconfirmed, and that is said.
       work.confirmed = true
       if (work.kind === 'again') {
-        this.#remember(work.island, work.evaluation)
+        this.confirmed.remember(work.island, work.evaluation)
         works.forget(work)
       }
       const sentence = `The confirmation of ${nameOf(work.individual)} died ${limits.attemptsAlone} times (${fact.cause}); its first result stands unconfirmed.`
@@ -316,7 +312,7 @@ export class Acceptance {
 
   committed(work: Work): void {
     check(work.recorded === work.votes[0], 'what is committed is what the record holds')
-    if (work.confirmed) this.#remember(work.island, work.evaluation)
+    if (work.confirmed) this.confirmed.remember(work.island, work.evaluation)
     this.#parts.works.forget(work)
     const order = this.#arrivalOrder.get(work.island)
     if (order) {
@@ -346,70 +342,6 @@ export class Acceptance {
 
   // --------------------------------------------------------------------- confirming what is committed
 
-  /** True when every result of the individual was confirmed; asks for what is missing. */
-  isConfirmed(individual: Individual): boolean {
-    let all = true
-    let offset = 0
-    for (const block of individual.blocks) {
-      const length = (individual.values.length / individual.replicates) * block.replicates
-      if (!this.#blockConfirmed(individual.id, block) && this.#simulateAgain(individual, block, length)) {
-        all = false
-      }
-      offset += length
-    }
-    check(offset === individual.values.length, 'blocks cover the values of an individual')
-    return all
-  }
-
-  #blockConfirmed(individual: number, { island, evaluation, firstReplicate }: Block): boolean {
-    if (this.#corrected.has(keyOf({ individual, firstReplicate }))) return true
-    if (this.#confirmed.get(island)?.has(evaluation)) return true
-    if (!this.#parts.reader.isConfirmed(island, evaluation)) return false
-    this.#remember(island, evaluation)
-    return true
-  }
-
-  #remember(island: number, evaluation: number): void {
-    const known = this.#confirmed.get(island) ?? new Set<number>()
-    this.#confirmed.set(island, known)
-    if (known.has(evaluation)) return
-    known.add(evaluation)
-    this.#confirmedCount++
-  }
-
-  /** Confirmations of the dead are in the record; memory keeps a bounded number. */
-  prune(): void {
-    if (this.#confirmedCount < limits.confirmedInMemory) return
-    this.#confirmed.clear()
-    this.#confirmedCount = 0
-  }
-
-  /** False for what was set aside: nobody simulated that, and nobody is asked to. */
-  #simulateAgain(individual: Individual, block: Block, values: number): boolean {
-    const { works, search, rows, reader } = this.#parts
-    if (works.find(block.island, block.evaluation)) return true
-    const recorded =
-      rows.findArrival(block.island, block.evaluation) ?? reader.arrival(block.island, block.evaluation)
-    check(recorded !== undefined, 'a committed result is in the record')
-    if (recorded.worker === setAsideWorker) return false
-    const work = newWork({
-      island: block.island,
-      evaluation: block.evaluation,
-      individual: individual.id,
-      firstReplicate: block.firstReplicate,
-      replicates: block.replicates,
-      simulations: values / columnsOf(search.plan.problem),
-      expectedCost: 1,
-      genome: search.island(block.island).bytesOf(individual.genome),
-      kind: 'again',
-    })
-    const executor = { kind: 'thread', worker: recorded.worker, host: recorded.host } as const
-    work.votes.push({ result: recorded.result, digest: recorded.digest, executor })
-    works.add(work)
-    works.want(work, 'confirm')
-    return true
-  }
-
   /** Looks again at everything alive that a convicted worker has simulated and nobody confirmed. */
   lookAtSuspects(): void {
     if (this.#suspects.length === 0) return
@@ -421,7 +353,7 @@ export class Acceptance {
           const arrival = reader.arrival(block.island, block.evaluation)
           return arrival !== undefined && suspects.has(arrival.worker)
         })
-        if (suspected) this.isConfirmed(individual)
+        if (suspected) this.confirmed.isConfirmed(individual)
       }
     }
   }
@@ -429,10 +361,6 @@ export class Acceptance {
 
 function isSetAside(work: Work): boolean {
   return work.votes[0]?.executor.worker === setAsideWorker
-}
-
-function keyOf({ individual, firstReplicate }: { individual: number; firstReplicate: number }): string {
-  return `${individual} ${firstReplicate}`
 }
 
 function notRepeatable(work: Work): Error {

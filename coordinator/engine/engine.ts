@@ -225,7 +225,7 @@ export class Engine implements Gate {
     return this.search.islands
       .flatMap((island) => island.best ?? [])
       .filter((best) => best.failedSimulations === 0)
-      .map((best) => this.#acceptance.isConfirmed(best))
+      .map((best) => this.#acceptance.confirmed.isConfirmed(best))
       .every(Boolean)
   }
 
@@ -233,7 +233,7 @@ export class Engine implements Gate {
   snapshot(island: Island): void {
     this.#lastSnapshot.set(island.number, island.counters.commits)
     this.#rows.snapshot(island)
-    this.#acceptance.prune()
+    this.#acceptance.confirmed.prune()
   }
 
   snapshotAll(): void {
@@ -269,7 +269,7 @@ export class Engine implements Gate {
 
   maySend(_island: Island, _epoch: number, emigrants: readonly Individual[]): boolean {
     // Every emigrant is asked about, so that missing confirmations run side by side.
-    return emigrants.map((emigrant) => this.#acceptance.isConfirmed(emigrant)).every(Boolean)
+    return emigrants.map((emigrant) => this.#acceptance.confirmed.isConfirmed(emigrant)).every(Boolean)
   }
 
   released(island: Island, tickets: readonly Ticket[]): void {

@@ -12,10 +12,12 @@ import { firstControl, idOf } from '../../shared/ids.js'
 import type { EvaluationResult } from '../../shared/result.js'
 import { stream } from '../../shared/streams.js'
 import { amendmentEntry, commitEntry, receiveEntry, sendEntry } from './entries.js'
+import { EpochClock } from './epoch-clock.js'
 import { columnsOf, simulationsPerReplicate } from './estimate.js'
 import { addBlock, amended, joined, newborn } from './individuals.js'
 import { type Amendment, type Counters, type IslandState, newCounters, Positions } from './island-state.js'
 import { Leader, wouldBeat } from './leader.js'
+import { chooseEmigrants } from './migration.js'
 import type { IslandPlan, SearchPlan } from './plan.js'
 import { RunningDigest } from './running-digest.js'
 import { Outstanding, type Ticket } from './tickets.js'
@@ -32,14 +34,12 @@ export interface IslandTools {
   readonly expectedCost: (genome: Genome) => number
 }
 
-/** Length of an epoch where nothing migrates: budgets still end at epochs. */
-const roundsWithoutMigration = 20
-
 export class Island {
   readonly tools: IslandTools
   readonly number: number
   readonly #machine: MethodMachine
   readonly #counters: Counters
+  readonly #clock: EpochClock
   readonly #outstanding: Outstanding
   readonly #amendments: Amendment[]
   #topUpQueue: Individual[]
@@ -63,6 +63,7 @@ export class Island {
       return individual
     }
     this.#counters = state ? { ...state.counters } : newCounters()
+    this.#clock = new EpochClock(this.#counters, tools.plan.migration?.everyRounds, tools.island.lookahead)
     this.#digest = new RunningDigest(state?.digest)
     this.#quota = state?.quota ?? tools.quota
     this.#mostReplicates = state?.mostReplicates ?? tools.plan.replicates.most
@@ -295,14 +296,11 @@ export class Island {
 
   /** The epoch that has ended and whose work is not done, or undefined. */
   epochDue(): number | undefined {
-    const rounds = this.tools.plan.migration?.everyRounds ?? roundsWithoutMigration
-    const epoch = this.#counters.epochsPassed + 1
-    const endCost = this.#counters.epochOriginCost + epoch * rounds * this.tools.island.lookahead
-    return this.#counters.costCommitted >= endCost ? epoch : undefined
+    return this.#clock.due()
   }
 
   get hasReceived(): boolean {
-    return this.#counters.epochsReceived > this.#counters.epochsPassed
+    return this.#clock.hasReceived
   }
 
   /** Takes in the emigrants that are due at the end of `epoch`, group by group in the order of sources. */
@@ -325,11 +323,7 @@ export class Island {
   emigrants(epoch: number): Individual[] {
     const { migration, seed } = this.tools.plan
     if (!migration || this.isControl) return []
-    const ranked = this.#machine.ranked().filter((individual) => individual.failedSimulations === 0)
-    const count = Math.min(migration.emigrants, ranked.length)
-    if (migration.leave === 'best') return ranked.slice(0, count).map((individual) => ({ ...individual }))
-    const order = stream(seed, 'emigrants', this.number, epoch).permutation(ranked.length)
-    return [...order.subarray(0, count)].map((position) => ({ ...ranked[position]! }))
+    return chooseEmigrants(migration, this.#machine.ranked(), stream(seed, 'emigrants', this.number, epoch))
   }
 
   /** Ends the epoch after its emigrants are on their way. */
@@ -372,7 +366,7 @@ export class Island {
   resumeAfter(epoch: number): boolean {
     check(this.#ended, 'only an ended island is set going again')
     if (!this.#affords(this.tools.plan.replicates.first)) return false
-    this.#joinAfter(epoch)
+    this.#clock.joinAfter(epoch)
     this.#ended = false
     this.#handsOutAgain = true
     return true
@@ -381,7 +375,7 @@ export class Island {
   /** An island that was added while others search: its first epoch is the one after `epoch`. */
   beginAfter(epoch: number): void {
     check(this.#counters.evaluations === 0, 'an island begins once')
-    this.#joinAfter(epoch)
+    this.#clock.joinAfter(epoch)
   }
 
   /** Stands still from now on; what is outstanding stays so. */
@@ -393,17 +387,7 @@ export class Island {
   continueAfter(epoch: number): void {
     check(this.#paused, 'only a paused island is continued')
     this.#paused = false
-    this.#joinAfter(epoch)
-  }
-
-  #joinAfter(epoch: number): void {
-    const counters = this.#counters
-    const rounds = this.tools.plan.migration?.everyRounds ?? roundsWithoutMigration
-    const passed = Math.max(epoch, counters.epochsPassed)
-    counters.epochOriginCost = counters.costCommitted - passed * rounds * this.tools.island.lookahead
-    counters.epochsPassed = passed
-    counters.epochsReceived = passed
-    counters.bestSinceCost = counters.costCommitted
+    this.#clock.joinAfter(epoch)
   }
 
   setMostReplicates(most: number): void {

@@ -2,8 +2,9 @@
 // are not in it), ascending, without the island itself and without repeats.
 
 import { check } from '../../shared/check.js'
-import { stream } from '../../shared/streams.js'
-import type { Topology } from './plan.js'
+import { type Stream, stream } from '../../shared/streams.js'
+import type { MigrationPlan, Topology } from './plan.js'
+import type { Individual } from './types.js'
 
 export interface TopologyRow {
   readonly help: string
@@ -107,4 +108,17 @@ function tidy(positions: readonly number[], islands: number, self: number): numb
   const wrapped = new Set(positions.map((position) => position % islands))
   wrapped.delete(self)
   return [...wrapped].sort((a, b) => a - b)
+}
+
+/** Who leaves, copies of the `ranked` (best first) as they are now: the best, or some drawn; nobody that ever failed. */
+export function chooseEmigrants(
+  { emigrants, leave }: Pick<MigrationPlan, 'emigrants' | 'leave'>,
+  ranked: readonly Individual[],
+  draw: Stream,
+): Individual[] {
+  const sound = ranked.filter((individual) => individual.failedSimulations === 0)
+  const count = Math.min(emigrants, sound.length)
+  if (leave === 'best') return sound.slice(0, count).map((individual) => ({ ...individual }))
+  const order = draw.permutation(sound.length)
+  return [...order.subarray(0, count)].map((position) => ({ ...sound[position]! }))
 }

@@ -2,7 +2,7 @@
 // a test plays the workers by hand: who answers what, truly or not, and when the coordinator is started again.
 
 import { describe, expect, it } from 'vitest'
-import { setAsideWorker } from '../../coordinator/engine/acceptance.js'
+import { setAsideWorker } from '../../coordinator/engine/confirmed.js'
 import type { Engine } from '../../coordinator/engine/engine.js'
 import { openEngine, replayRecord } from '../../coordinator/engine/recover.js'
 import type { SearchPlan } from '../../coordinator/evolution/plan.js'
