@@ -13,13 +13,14 @@ import type { EvaluationResult } from '../../shared/result.js'
 import { stream } from '../../shared/streams.js'
 import { amendmentEntry, commitEntry, receiveEntry, sendEntry } from './entries.js'
 import { EpochClock } from './epoch-clock.js'
-import { columnsOf, simulationsPerReplicate } from './estimate.js'
+import { columnsOf } from './estimate.js'
 import { addBlock, amended, joined, newborn } from './individuals.js'
 import { type Amendment, type Counters, type IslandState, newCounters, Positions } from './island-state.js'
 import { Leader, wouldBeat } from './leader.js'
 import { chooseEmigrants } from './migration.js'
 import type { IslandPlan, SearchPlan } from './plan.js'
 import { RunningDigest } from './running-digest.js'
+import { TicketOffice } from './ticket-office.js'
 import { Outstanding, type Ticket } from './tickets.js'
 import type { Individual, Method, MethodContext, MethodMachine, Variation } from './types.js'
 
@@ -40,6 +41,7 @@ export class Island {
   readonly #machine: MethodMachine
   readonly #counters: Counters
   readonly #clock: EpochClock
+  readonly #office: TicketOffice
   readonly #outstanding: Outstanding
   readonly #amendments: Amendment[]
   #topUpQueue: Individual[]
@@ -63,6 +65,7 @@ export class Island {
       return individual
     }
     this.#counters = state ? { ...state.counters } : newCounters()
+    this.#office = new TicketOffice(tools, this.#counters)
     this.#clock = new EpochClock(this.#counters, tools.plan.migration?.everyRounds, tools.island.lookahead)
     this.#digest = new RunningDigest(state?.digest)
     this.#quota = state?.quota ?? tools.quota
@@ -176,7 +179,7 @@ export class Island {
     }
     this.#topUpQueue.shift()
     this.#counters.topUps++
-    return this.#newTicket(individual, replicates, false)
+    return this.#office.issue(individual, replicates, false)
   }
 
   #proposeBirth(): Ticket | undefined {
@@ -190,35 +193,11 @@ export class Island {
     const individual = newborn(id, birth, this.#counters.commits, this.#leader.noScore)
     // Fresh individuals that come later are no founders: nobody waits for them.
     const founder = birth.origin === 'founder' && number <= this.tools.island.population
-    return this.#newTicket(individual, first, founder)
-  }
-
-  #newTicket(individual: Individual, replicates: number, founder: boolean): Ticket {
-    const { plan, expectedCost } = this.tools
-    const counters = this.#counters
-    const cost = expectedCost(individual.genome)
-    check(Number.isSafeInteger(cost) && cost > 0, 'an expected cost is a positive whole number')
-    const expected = Math.max(1, Math.round((cost * replicates) / plan.replicates.first))
-    const simulations = replicates * simulationsPerReplicate(plan.problem)
-    const before = counters.proposedSimulations
-    counters.proposedSimulations += simulations
-    return {
-      evaluation: ++counters.evaluations,
-      individual,
-      genome: this.bytesOf(individual.genome),
-      firstReplicate: individual.replicates,
-      replicates,
-      simulations,
-      simulationsBefore: before,
-      expectedCost: expected,
-      virtualFinish: counters.virtualTime + expected,
-      founder,
-    }
+    return this.#office.issue(individual, first, founder)
   }
 
   #affords(replicates: number): boolean {
-    const simulations = replicates * simulationsPerReplicate(this.tools.plan.problem)
-    return this.#counters.proposedSimulations + simulations <= this.#quota
+    return this.#office.affords(replicates, this.#quota)
   }
 
   // ---------------------------------------------------------------------------------- committing
