@@ -10,6 +10,7 @@ import { conditionStream } from '../../../shared/conditions.js'
 import { hex } from '../../../shared/digests.js'
 import { nameOf } from '../../../shared/ids.js'
 import { limits } from '../../../shared/limits.js'
+import { cautionsOf } from '../../../shared/making/cautions.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import type { EvaluationResult } from '../../../shared/result.js'
 import type { Dispatcher, RecordReader } from '../../engine/ports.js'
@@ -148,7 +149,7 @@ function factsOf(
     shown: `the first fresh condition${firstCase ? `, case ${firstCase}` : ''}`,
     selected: retested === undefined,
     description: problem.describe?.(best.genome as never) ?? [],
-    cautions: problem.cautions?.(best.genome as never) ?? [],
+    cautions: cautionsOf(problem, best.genome),
     provenance: [
       `Search digest ${hex(search.digest())}`,
       `Problem ${plan.problem.name} version ${plan.problem.version}, digest ${plan.problem.digest.slice(0, 16)}`,

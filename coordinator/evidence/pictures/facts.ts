@@ -3,6 +3,8 @@
 
 import type { Caution } from '../../../shared/problem.js'
 
+export { alwaysCaution } from '../../../shared/making/cautions.js'
+
 export interface ResultFact {
   readonly name: string
   readonly unit: string
@@ -29,10 +31,6 @@ export interface PictureFacts {
   /** Where it came from: digest, versions. */
   readonly provenance: readonly string[]
 }
-
-/** A caution that stands even where the problem names none. */
-export const alwaysCaution =
-  'A simulation is no certificate. A machine found by a search works at the edge of its model: test it behind a guard, and follow local codes and licensed practice.'
 
 export function titleOf(facts: PictureFacts): string {
   return `${facts.id} of the search ${facts.search}`

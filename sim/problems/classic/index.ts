@@ -3,6 +3,7 @@
 
 import { bits, real } from '../../../shared/encodings.js'
 import type { Genome, GenomeSpec } from '../../../shared/genome.js'
+import { noMachine } from '../../../shared/making/types.js'
 import type { AnyProblem, Direction, Problem } from '../../../shared/problem.js'
 import { refuse } from '../../../shared/refusals.js'
 import { defineProblem } from '../../problem.js'
@@ -201,5 +202,6 @@ export function classicProblem(name: ClassicName, size?: number): AnyProblem {
         const values = row.values(genome, condition)
         return { objectives: Object.fromEntries(row.objectives.map((o, i) => [o, values[i]!])) }
       }),
+    use: noMachine,
   })
 }
