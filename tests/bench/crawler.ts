@@ -1,25 +1,26 @@
-// How much of the CPU of a real search goes into simulation: the demo's search of the culvert crawler, through the
-// record and the local dispatcher. CPU in simulation is that of the same simulations, the second ones of confirmation
-// included, in plain loops in processes that do nothing else: as many side by side as there were threads, because two
-// threads of one core slow each other down.
+// How much of the CPU of a real search goes into simulation: the culvert crawler with a population, a lookahead and
+// replicates as a search of weeks has them, through the record and the local dispatcher. CPU in simulation is what the
+// threads tell of it, confirmations included. A third of the run is let pass first: starting processes and compiling
+// are over by then, and a search of weeks has them once. (The same simulations in plain loops beside it would be no
+// better measure: compiled anew in each process, one loop takes up to 1.4 times as long as another.)
 
-import { readFileSync, writeFileSync } from 'node:fs'
-import { join } from 'node:path'
 import { demoProblemText, demoSearchText } from '../../coordinator/cli/demo.js'
-import { recordFolder } from '../../coordinator/record/index.js'
-import { fromHex, hex } from '../../shared/digests.js'
-import { genomeFromBytes } from '../../shared/encodings.js'
-import type { WorkItem } from '../../shared/result.js'
-import { evaluate } from '../../sim/evaluate.js'
-import { loadPlugin } from '../../worker/plugin/load.js'
 import { cpuSecondsOfFamily } from './processes.js'
 import { committedSimulations, openBenchSearch, type SearchText } from './search.js'
 
+/** CPU seconds of one stretch of a run. */
+export interface CpuPart {
+  readonly simulationSeconds: number
+  /** Of all processes. */
+  readonly allSeconds: number
+}
+
 export interface CrawlerRun {
   readonly simulations: number
-  /** Of all processes, from the moment the first thread was ready until the last commit. */
-  readonly cpuSecondsAfterStart: number
-  readonly wallSeconds: number
+  /** From the moment the first thread was ready. */
+  readonly whole: CpuPart
+  /** After a third of the simulations. */
+  readonly later: CpuPart
 }
 
 /**
@@ -39,8 +40,16 @@ export function demoSearch(simulations: number, seed: number, further = 'control
 }
 
 const seed = 20261201
-type Item = Pick<WorkItem, 'individual' | 'firstReplicate' | 'replicates'> & { readonly genome: string }
-const itemsFile = (folder: string) => join(folder, 'items.json')
+
+function longSearch(simulations: number): SearchText {
+  const { search, problem } = demoSearch(simulations, seed)
+  return {
+    problem,
+    search: search
+      .replace(/^replicates: .*$/m, 'replicates: { first: 4, topUp: 4, most: 16 }')
+      .replace(/population: \d+, lookahead: \d+/, 'population: 60, lookahead: 24'),
+  }
+}
 
 export async function runCrawler(options: {
   readonly folder: string
@@ -48,55 +57,37 @@ export async function runCrawler(options: {
   readonly threads: number
 }): Promise<CrawlerRun> {
   const { folder, simulations, threads } = options
-  const parts = await openBenchSearch(folder, demoSearch(simulations, seed), { threads })
+  const parts = await openBenchSearch(folder, longSearch(simulations), { threads })
   const { dispatcher } = parts
-  const items: Item[] = []
-  const submit = dispatcher.submit.bind(dispatcher)
-  dispatcher.submit = (list) => {
-    for (const { individual, firstReplicate, replicates, genome } of list) {
-      items.push({ individual, firstReplicate, replicates, genome: hex(genome) })
-    }
-    submit(list)
+  let simulationSeconds = 0
+  const facts = dispatcher.facts.bind(dispatcher)
+  dispatcher.facts = async (waitMs) => {
+    const list = await facts(waitMs)
+    for (const fact of list) if (fact.kind === 'result') simulationSeconds += fact.cpuSeconds
+    return list
   }
   try {
     await dispatcher.start()
-    const startMs = performance.now()
-    const cpu = cpuSecondsOfFamily()
-    await parts.run()
-    const run = {
+    const now = (): CpuPart => ({ simulationSeconds, allSeconds: cpuSecondsOfFamily() })
+    const start = now()
+    let third: CpuPart | undefined
+    await parts.run(() => {
+      if (third === undefined && committedSimulations(parts.engine) >= simulations / 3) third = now()
+    })
+    const end = now()
+    return {
       simulations: committedSimulations(parts.engine),
-      cpuSecondsAfterStart: cpuSecondsOfFamily() - cpu,
-      wallSeconds: (performance.now() - startMs) / 1000,
+      whole: between(start, end),
+      later: between(third ?? start, end),
     }
-    writeFileSync(itemsFile(folder), JSON.stringify(items))
-    return run
   } finally {
     await parts.close()
   }
 }
 
-export interface PlainLoop {
-  readonly simulations: number
-  readonly cpuSeconds: number
-}
-
-/** Every `step`th item that runCrawler handed out, in a plain loop. */
-export async function simulateAgain(options: {
-  readonly folder: string
-  readonly first: number
-  readonly step: number
-}): Promise<PlainLoop> {
-  const { folder, first, step } = options
-  const problem = await loadPlugin({ file: recordFolder(join(folder, 'record')).plugin })
-  const all = JSON.parse(readFileSync(itemsFile(folder), 'utf8')) as Item[]
-  const items = all.filter((_, i) => i % step === first)
-  const start = process.cpuUsage()
-  let simulations = 0
-  for (const { individual, firstReplicate, replicates, genome } of items) {
-    const body = genomeFromBytes(problem.genome, fromHex(genome)!)
-    evaluate(problem, body, seed, true, individual, firstReplicate, replicates)
-    simulations += replicates
+function between(start: CpuPart, end: CpuPart): CpuPart {
+  return {
+    simulationSeconds: end.simulationSeconds - start.simulationSeconds,
+    allSeconds: end.allSeconds - start.allSeconds,
   }
-  const { user, system } = process.cpuUsage(start)
-  return { simulations, cpuSeconds: (user + system) / 1e6 }
 }

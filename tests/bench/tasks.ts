@@ -5,7 +5,7 @@ import { fork } from 'node:child_process'
 import { fileURLToPath } from 'node:url'
 import { runContest } from './contest.js'
 import { continueRecord } from './continuing.js'
-import { runCrawler, simulateAgain } from './crawler.js'
+import { runCrawler } from './crawler.js'
 import { benchDispatch } from './dispatch.js'
 import { benchEngine } from './engine.js'
 import { cpuSecondsOfEnded } from './processes.js'
@@ -20,7 +20,6 @@ export const tasks = {
   wholePath: runWholePath,
   continuing: continueRecord,
   crawler: runCrawler,
-  plainLoop: simulateAgain,
   contest: runContest,
 }
 export type TaskName = keyof typeof tasks
