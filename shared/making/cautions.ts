@@ -13,7 +13,7 @@ import { noMachine, type Use } from './types.js'
 
 /** Stands under every machine, whatever is declared. */
 export const alwaysCaution =
-  'A simulation is no certificate. A machine found by a search works at the edge of its model: run it first at reduced amplitude, behind a guard and with nobody in reach, and follow local codes, data sheets of the makers and licensed practice.'
+  'A simulation is no certificate. A machine found by a search works at the edge of its model: run it first at reduced amplitude, behind a guard and with nobody in reach, and follow local codes, the data sheets of the makers and licensed practice.'
 
 type Declaring = Pick<AnyProblem, 'use' | 'process' | 'parts' | 'cautions'>
 
