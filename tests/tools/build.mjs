@@ -23,7 +23,7 @@ const stamp = join(dist, '.built')
 const folders = ['shared', 'sim', 'worker', 'coordinator']
 /** Copied as they are; anything else that is not TypeScript stays out of the package. */
 const copied = new Set(['.html', '.css', '.svg', '.wasm', '.yaml', '.js', '.mjs'])
-const notShipped = /\.test\.ts$|coordinator[\\/]setup[\\/]|[\\/]examples[\\/]/
+const notShipped = /\.test\.ts$|coordinator[\\/]setup[\\/]|[\\/]examples[\\/]|lattice[\\/]wasm[\\/]/
 
 function* filesBelow(folder) {
   if (!existsSync(folder)) return

@@ -1,0 +1,69 @@
+// The step of a node in the plane that is lower than the highest ground in some lane (../reference/plane-nodes.ts).
+// `o` is the node's record plus `lane`, the offset of the vector in hand.
+
+import {
+  contactDampingAt, contactStiffnessAt, dragAt, firstXAt, gravityAt, lastColumnAt, lowColumnAt, oneAt,
+  perSpacingXAt, rooted, rowsFirst, stepAt, tinyAt, topAt,
+} from '../lanes/header'
+import { frictionAt, fx, fy, material, number, vx, vy, wide, word, x, y } from './record'
+import {
+  add, anyOf, atMost, both, choose, div, floor, gather, less, mul, neg, numberBytes, only, read, sqrt, sub, Vec,
+  write,
+} from './vector'
+
+/** v + h (f / m + g) */
+@inline function driven(v: Vec, h: Vec, force: Vec, perKg: Vec, gravity: Vec): Vec {
+  return add(v, mul(h, add(mul(force, perKg), gravity)))
+}
+
+export function touchPlane(o: usize, row: usize, touching: usize, lane: usize): void {
+  const h = number(stepAt, lane)
+  const zero = sub(h, h)
+  const perKg = material(row, 0, 0, lane)
+  const vx0 = read(o, vx)
+  const vy0 = read(o, vy)
+  const drag = number(dragAt, lane)
+  let forceX = sub(read(o, fx), mul(drag, vx0))
+  let forceY = sub(read(o, fy), mul(drag, vy0))
+  write(o, fx, zero)
+  write(o, fy, zero)
+
+  const perSpacing = number(perSpacingXAt, lane)
+  const along = mul(sub(read(o, x), number(firstXAt, lane)), perSpacing)
+  const low = number(lowColumnAt, lane)
+  const last = number(lastColumnAt, lane)
+  const cell = choose(less(low, along), choose(less(along, last), floor(along), last), low)
+  const rows = word(rowsFirst) + (lane / numberBytes) * 4
+  const left = gather(rows, cell, 0)
+  const rise = sub(gather(rows, cell, numberBytes), left)
+  const slope = mul(rise, perSpacing)
+  const depth = sub(add(left, mul(rise, sub(along, cell))), read(o, y))
+  const power = word(rooted) != 0 ? mul(depth, sqrt(depth)) : depth
+  const rate = sub(mul(slope, vx0), vy0)
+  const f = mul(power, add(number(contactStiffnessAt, lane), mul(number(contactDampingAt, lane), rate)))
+  const below = less(read(o, y), number(topAt, lane))
+  const pushed = both(both(below, less(zero, depth)), less(zero, f))
+  forceX = choose(pushed, sub(forceX, mul(f, slope)), forceX)
+  forceY = choose(pushed, add(forceY, f), forceY)
+  let v = driven(vx0, h, forceX, perKg, number(gravityAt, lane))
+  let w = driven(vy0, h, forceY, perKg, number(gravityAt + 1, lane))
+  if (touching != 0) write(touching, lane, only(pushed, number(oneAt, lane)))
+  if (anyOf(pushed)) {
+    const one = number(oneAt, lane)
+    const squared = add(one, mul(slope, slope))
+    const perLength = div(one, squared)
+    const sliding = add(v, mul(slope, w))
+    const forward = read(row + lane, frictionAt)
+    const backward = read(row + lane, frictionAt + wide)
+    const mu = choose(less(zero, sliding), forward, backward)
+    const speed = add(sqrt(mul(mul(sliding, sliding), perLength)), number(tinyAt, lane))
+    const drop = mul(mul(mul(mul(h, mu), f), sqrt(squared)), perKg)
+    const change = mul(mul(neg(atMost(div(drop, speed), one)), sliding), perLength)
+    v = choose(pushed, add(v, change), v)
+    w = choose(pushed, add(w, mul(change, slope)), w)
+  }
+  write(o, vx, v)
+  write(o, vy, w)
+  write(o, x, add(read(o, x), mul(h, v)))
+  write(o, y, add(read(o, y), mul(h, w)))
+}

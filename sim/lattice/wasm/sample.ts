@@ -1,0 +1,155 @@
+// What is kept of the present moment for whoever measures: of struts the largest tension and the shortest and longest
+// length, of driven struts the positive work since the last sample, of nodes contact and the lowest and highest place. The
+// same sums in the same order as takeSample() in ../tally.ts.
+
+import {
+  activeEnd, activeFirst, drivenSamples, guidedEnd, guidedFirst, nodesEnd, nodeSamples, nodesFirst, oneAt, passiveEnd,
+  passiveFirst, sampleSecondsAt, strutSamples, topAt,
+} from '../lanes/header'
+import { depthOf } from './ground'
+import {
+  activeBytes, activeMaterial, activeStrain, dot, drivenSampleBytes, from, guidedBytes, guidedMaterial, guidedStrain,
+  material, nodeBytes, nodeSampleBytes, number, passiveBytes, passiveMaterial, strutSampleBytes, vx, vy, vz, wide, word,
+  x, y, z,
+} from './record'
+import { dimensions, vectors } from './variant'
+import {
+  abs, add, anyOf, atLeast, atMost, choose, div, less, mul, neg, only, read, sqrt, sub, Vec, vectorBytes, write,
+} from './vector'
+
+@inline function squareOf(a: usize, b: usize, lane: usize): Vec {
+  const dx = from(a, b, x, lane)
+  const dy = from(a, b, y, lane)
+  const dz = dimensions == 3 ? from(a, b, z, lane) : dx
+  return dot(dx, dy, dz, dx, dy, dz)
+}
+/** d . dv */
+@inline function alongOf(a: usize, b: usize, lane: usize): Vec {
+  const dz = dimensions == 3 ? from(a, b, z, lane) : from(a, b, x, lane)
+  const dvz = dimensions == 3 ? from(a, b, vz, lane) : from(a, b, vx, lane)
+  return dot(
+    from(a, b, x, lane), from(a, b, y, lane), dz, from(a, b, vx, lane), from(a, b, vy, lane), dvz,
+  )
+}
+
+/** k - commanded / |d| + c (d . dv) / q */
+@inline function scaleOf(p: usize, first: usize, commanded: Vec, perLength: Vec, perQ: Vec, along: Vec, lane: usize): Vec {
+  const damping = material(p, first, 2, lane)
+  return add(sub(material(p, first, 0, lane), mul(commanded, perLength)), mul(mul(damping, along), perQ))
+}
+
+@inline function keep(at: usize, tension: Vec, length: Vec): void {
+  write(at, 0, atLeast(read(at, 0), tension))
+  write(at, wide, atMost(read(at, wide), length))
+  write(at, 2 * wide, atLeast(read(at, 2 * wide), length))
+}
+
+/** Adds the work of a strut whose tension is scale * |d|. */
+@inline function keepWork(at: usize, scale: Vec, along: Vec, lane: usize): void {
+  const power = mul(neg(scale), along)
+  const zero = sub(number(oneAt, lane), number(oneAt, lane))
+  write(at, 0, add(read(at, 0), mul(atLeast(power, zero), number(sampleSecondsAt, lane))))
+}
+
+function samplePassive(at: usize, lane: usize): void {
+  const end = word(passiveEnd)
+  for (let p = word(passiveFirst); p < end; p += passiveBytes) {
+    const a = word(p)
+    const b = word(p + 4)
+    const q = squareOf(a, b, lane)
+    const perQ = div(number(oneAt, lane), q)
+    const length = sqrt(q)
+    const commanded = material(p, passiveMaterial, 1, lane)
+    const scale = scaleOf(p, passiveMaterial, commanded, mul(length, perQ), perQ, alongOf(a, b, lane), lane)
+    keep(at + lane, mul(abs(scale), length), length)
+    at += strutSampleBytes
+  }
+}
+
+function sampleActive(at: usize, work: usize, lane: usize): void {
+  const end = word(activeEnd)
+  for (let p = word(activeFirst); p < end; p += activeBytes) {
+    const a = word(p)
+    const b = word(p + 4)
+    const group = word(p + 8)
+    const one = number(oneAt, lane)
+    const q = squareOf(a, b, lane)
+    const perQ = div(one, q)
+    const length = sqrt(q)
+    const perLength = mul(length, perQ)
+    const along = alongOf(a, b, lane)
+    const drive = add(
+      mul(read(group, lane), read(p, activeStrain + lane)),
+      mul(read(group, wide + lane), read(p, activeStrain + wide + lane)),
+    )
+    const commanded = mul(material(p, activeMaterial, 1, lane), add(one, drive))
+    const most = mul(material(p, activeMaterial, 3, lane), perLength)
+    const free = scaleOf(p, activeMaterial, commanded, perLength, perQ, along, lane)
+    const scale = atMost(atLeast(free, neg(most)), most)
+    keep(at + lane, mul(abs(scale), length), length)
+    keepWork(work + lane, scale, along, lane)
+    at += strutSampleBytes
+    work += drivenSampleBytes
+  }
+}
+
+function sampleGuided(at: usize, work: usize, lane: usize): void {
+  const end = word(guidedEnd)
+  for (let p = word(guidedFirst); p < end; p += guidedBytes) {
+    const a = word(p)
+    const b = word(p + 4)
+    const one = number(oneAt, lane)
+    const q = squareOf(a, b, lane)
+    const perQ = div(one, q)
+    const length = sqrt(q)
+    const perLength = mul(length, perQ)
+    const along = alongOf(a, b, lane)
+    const strain = read(p, guidedStrain + 5 * wide + lane)
+    const commanded = mul(material(p, guidedMaterial, 1, lane), add(one, strain))
+    const most = mul(material(p, guidedMaterial, 3, lane), perLength)
+    const free = scaleOf(p, guidedMaterial, commanded, perLength, perQ, along, lane)
+    const held = atMost(atLeast(free, neg(most)), most)
+    const power = mul(neg(held), along)
+    const powerMost = material(p, guidedMaterial, 4, lane)
+    const scale = choose(less(powerMost, power), mul(held, div(powerMost, power)), held)
+    keep(at + lane, mul(abs(scale), length), length)
+    keepWork(work + lane, scale, along, lane)
+    at += strutSampleBytes
+    work += drivenSampleBytes
+  }
+}
+
+function sampleNodes(lane: usize): void {
+  const end = word(nodesEnd)
+  let at = word(nodeSamples) + lane
+  for (let o = word(nodesFirst); o < end; o += nodeBytes) {
+    if (anyOf(less(read(o, y + lane), number(topAt, lane)))) {
+      const one = number(oneAt, lane)
+      write(at, 0, add(read(at, 0), only(less(sub(one, one), depthOf(o, lane)), one)))
+    }
+    const height = read(o, y + lane)
+    write(at, wide, atMost(read(at, wide), height))
+    write(at, 2 * wide, atLeast(read(at, 2 * wide), height))
+    at += nodeSampleBytes
+  }
+}
+
+@inline function count(first: usize, end: usize, bytes: usize): usize {
+  return (word(end) - word(first)) / bytes
+}
+
+@inline function sampleLane(lane: usize): void {
+  const passives = count(passiveFirst, passiveEnd, passiveBytes)
+  const actives = count(activeFirst, activeEnd, activeBytes)
+  const struts = word(strutSamples)
+  const driven = word(drivenSamples)
+  samplePassive(struts, lane)
+  sampleActive(struts + passives * strutSampleBytes, driven, lane)
+  sampleGuided(struts + (passives + actives) * strutSampleBytes, driven + actives * drivenSampleBytes, lane)
+  sampleNodes(lane)
+}
+
+export function sample(): void {
+  sampleLane(0)
+  if (vectors > 1) sampleLane(vectorBytes)
+}
