@@ -73,6 +73,15 @@ export interface Problem<S extends GenomeSpec = GenomeSpec, Condition = unknown>
   readonly drawCondition: (stream: Stream) => Condition
   /** One outcome for each situation, in order. Gets all simulations of an evaluation at once. */
   readonly simulate: (genome: GenomeOf<S>, situations: readonly Situation<Condition>[]) => SimulationOutcome[]
+  /**
+   * As simulate, with the simulator's step divided by the whole number `divide`: from it `check` tells how much the
+   * size of the step changes the results.
+   */
+  readonly simulateFiner?: (
+    genome: GenomeOf<S>,
+    situations: readonly Situation<Condition>[],
+    divide: number,
+  ) => SimulationOutcome[]
   /** Positive integer: what a simulation of this genome should cost, relative to others. */
   readonly expectedCost: (genome: GenomeOf<S>) => number
   /** Makes a freshly varied genome buildable; must be pure and idempotent. */
@@ -93,4 +102,9 @@ export interface Problem<S extends GenomeSpec = GenomeSpec, Condition = unknown>
 /** A problem whose genome is known only at run time; what coordinator and worker handle. */
 export type AnyProblem = Problem<GenomeSpec, unknown> & {
   readonly simulate: (genome: Genome, situations: readonly Situation<unknown>[]) => SimulationOutcome[]
+  readonly simulateFiner?: (
+    genome: Genome,
+    situations: readonly Situation<unknown>[],
+    divide: number,
+  ) => SimulationOutcome[]
 }

@@ -82,6 +82,7 @@ const fields: { readonly [field: string]: FieldCheck } = {
   },
   drawCondition: aFunction,
   simulate: aFunction,
+  simulateFiner: perhapsAFunction,
   expectedCost: aFunction,
   repair: aFunction,
   frames: perhapsAFunction,

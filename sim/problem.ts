@@ -48,6 +48,12 @@ export interface ProblemInput<S extends GenomeSpec, Condition> {
   readonly exactness?: Exactness
   readonly drawCondition: (stream: Stream) => Condition
   readonly simulate: (genome: GenomeOf<S>, situations: readonly Situation<Condition>[]) => SimulationOutcome[]
+  /** As simulate, with the step divided by `divide`; not judged unless given. */
+  readonly simulateFiner?: (
+    genome: GenomeOf<S>,
+    situations: readonly Situation<Condition>[],
+    divide: number,
+  ) => SimulationOutcome[]
   /** 1 unless said. */
   readonly expectedCost?: (genome: GenomeOf<S>) => number
   /** Leaves the genome as it is unless said. */

@@ -12,6 +12,8 @@ import {
   spreadOf,
 } from './check/advice.js'
 import { tryFresh } from './check/fresh.js'
+import type { StepTrial } from './check/step.js'
+import { stepLines } from './check/step-lines.js'
 import type { ProblemFault, TrialPlan } from './check/trials.js'
 import { type ProcessTrials, tryInProcess } from './check/trials-process.js'
 import type { Command, CommandInput, Output } from './command.js'
@@ -89,6 +91,8 @@ export interface Measured {
     /** Held after a full collection, more than before. */
     readonly keptBytesPerSimulation?: number
   }
+  /** Absent where the problem cannot simulate with a smaller step. */
+  readonly step?: StepTrial
   /** Absent without migration. */
   readonly epoch?: EpochMeaning
   readonly workers: number
@@ -185,6 +189,7 @@ function measure(opened: OpenedSearch, trials: ProcessTrials): Measured {
     aroundCost,
     coreHours: { search, controls, confirmation, total: search + controls + confirmation },
     memory: { ...memory, ...(keptBytesPerSimulation === undefined ? {} : { keptBytesPerSimulation }) },
+    ...(trials.step === undefined ? {} : { step: trials.step }),
     ...(epoch === undefined ? {} : { epoch }),
     workers,
     lookahead: plan.islands.reduce((sum, island) => sum + island.lookahead, 0),
@@ -270,6 +275,7 @@ function faultLines(report: CheckReport, exactness: string): string[] {
 function measuredLines(measured: Measured, report: CheckReport, opened: OpenedSearch): string[] {
   return [
     timeLine(measured, report),
+    ...stepLines(measured.step),
     memoryLine(measured.memory),
     costLine(measured),
     ...epochLines(measured.epoch),

@@ -8,6 +8,7 @@ import { join } from 'node:path'
 import { genomeFromBytes } from '../../../shared/encodings.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import { emittedFile } from '../../../worker/entry.js'
+import type { StepTrial } from './step.js'
 import type { ProblemFault, TrialPlan, Trials } from './trials.js'
 import {
   type TrialsDone,
@@ -57,6 +58,7 @@ function unpack(problem: AnyProblem, done: TrialsDone): ProcessTrials {
     ...(done.keptBytesPerSimulation === undefined
       ? {}
       : { keptBytesPerSimulation: done.keptBytesPerSimulation }),
+    ...(done.step === undefined ? {} : { step: done.step as StepTrial }),
     machines: machines.map(({ genome, values, failures, faults, ...machine }) => ({
       ...machine,
       genome: genomeFromBytes(problem.genome, new Uint8Array(Buffer.from(genome, 'base64'))),

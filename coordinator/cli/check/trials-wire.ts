@@ -46,6 +46,26 @@ const done = z.strictObject({
   simulations: z.number().int(),
   failedBecause: z.string().optional(),
   keptBytesPerSimulation: z.number().optional(),
+  step: z
+    .strictObject({
+      machines: z.number().int(),
+      simulations: z.number().int(),
+      failedAtOne: z.number().int(),
+      changes: z
+        .array(
+          z.strictObject({
+            objective: z.string(),
+            unit: z.string(),
+            mean: z.number(),
+            change: z.number(),
+            largestChange: z.number(),
+            bias: z.number(),
+            spread: z.number().optional(),
+          }),
+        )
+        .readonly(),
+    })
+    .optional(),
   /** Largest resident size of the trial process. */
   peakBytes: z.number(),
   /** Its resident size before the first simulation. */

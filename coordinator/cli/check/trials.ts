@@ -10,6 +10,7 @@ import type { AnyProblem } from '../../../shared/problem.js'
 import { stream } from '../../../shared/streams.js'
 import { evaluateStrict, type StrictEvaluation } from '../../../sim/evaluate.js'
 import { columnsOf, simulationsPerReplicate } from '../../../sim/problem.js'
+import { type StepTrial, tryStep } from './step.js'
 import { ulpDistance } from './ulp.js'
 
 export interface TrialPlan {
@@ -49,11 +50,13 @@ export interface Trials {
   readonly failedBecause: string | undefined
   /** Growth of what the process holds, over the second and third runs; absent where nothing measured it. */
   readonly keptBytesPerSimulation?: number
+  /** Absent where the problem cannot simulate with a smaller step. */
+  readonly step?: StepTrial
 }
 
 /** The world around the trials. */
 export interface TrialWatch {
-  /** An evaluation of the machine begins; `run` is 1, 2 or 3. */
+  /** An evaluation of the machine begins; `run` is 1, 2 or 3, or 4 with a smaller step. */
   readonly begin: (machine: number, run: number) => void
   /** Bytes held after a full collection. */
   readonly keptBytes?: () => number
@@ -75,6 +78,11 @@ export function tryProblem(
   const second = secondRuns(problem, machines, run, clockSeconds, watch)
   faults.push(...second.faults)
   const grown = keptBefore === undefined ? undefined : watch.keptBytes!() - keptBefore
+  // What a broken problem says at another step means nothing.
+  const step =
+    faults.length > 0
+      ? undefined
+      : tryStep(problem, plan, machines, clockSeconds, (machine) => watch.begin(machine, 4))
   const failures = machines.flatMap(({ first }) =>
     first.failures.filter((failure) => !isFault(first, failure.simulation)),
   )
@@ -87,6 +95,7 @@ export function tryProblem(
     ...(grown === undefined || second.simulations === 0
       ? {}
       : { keptBytesPerSimulation: Math.max(0, grown / second.simulations) }),
+    ...(step === undefined ? {} : { step }),
   }
 }
 
