@@ -31,6 +31,8 @@ export interface EngineWorld {
   /** World place of the centre of mass. */
   readCentre(body: number, centre: Float64Array): void
   readonly masses: readonly MassOf[]
+  /** Inverse of the inertia about the centre of mass, in world axes: 1 number in 2-D, 9 in 3-D. */
+  readInverseInertia(body: number, inverse: Float64Array): void
   /** Kinetic energy of one body, J, and its angular momentum about its own centre (one number or three). */
   kineticJ(body: number): number
   spinMomentum(body: number, momentum: Float64Array): void

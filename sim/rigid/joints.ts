@@ -94,6 +94,8 @@ const fullTurn = 2 * Math.PI
 /** Brings place and rate up to date. A hinge may turn by less than half a turn between two calls. */
 export function readJoint(joint: JointMotion, a: Held, b: Held): void {
   const { spec } = joint
+  worldPoint(b.pose, spec.onBM, joint.endB)
+  if (spec.axis) turned(a.pose, spec.axis, joint.axis)
   if (spec.kind === 'fixed') return
   if (spec.kind === 'slider') {
     readSlider(joint, a, b)
@@ -105,7 +107,6 @@ export function readJoint(joint: JointMotion, a: Held, b: Held): void {
     joint.rate = b.velocity[2]! - a.velocity[2]!
     return
   }
-  turned(a.pose, spec.axis!, joint.axis)
   joint.rate = 0
   for (let i = 0; i < 3; i++) joint.rate += (b.velocity[3 + i]! - a.velocity[3 + i]!) * joint.axis[i]!
 }
@@ -132,9 +133,7 @@ const otherScratch = [new Float64Array(2), new Float64Array(3)] as const
 
 function readSlider(joint: JointMotion, a: Held, b: Held): void {
   const { spec, axis, endA, endB } = joint
-  turned(a.pose, spec.axis!, axis)
   worldPoint(a.pose, spec.onAM, endA)
-  worldPoint(b.pose, spec.onBM, endB)
   const way = wayScratch[axis.length === 2 ? 0 : 1]
   const other = otherScratch[axis.length === 2 ? 0 : 1]
   for (let i = 0; i < way.length; i++) way[i] = endB[i]! - endA[i]!

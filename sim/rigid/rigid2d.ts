@@ -205,6 +205,9 @@ function engineOf(
       centre[0] = at.x
       centre[1] = at.y
     },
+    readInverseInertia(i, inverse) {
+      inverse[0] = 1 / masses[i]!.inertiaLeastKgm2
+    },
     kineticJ(i) {
       bodies[i]!.linvel(at)
       const spin = bodies[i]!.angvel()

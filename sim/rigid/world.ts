@@ -17,8 +17,9 @@ import { ByteWriter } from '../../shared/bytes.js'
 import { check } from '../../shared/check.js'
 import { hex, sha256 } from '../../shared/digests.js'
 import type { Contact, EngineWorld, MassOf } from './engine.js'
-import { addEffort, type Held, type JointMotion, readJoint, worldPoint } from './joints.js'
-import { bookWork, type Drive, decideEffort, startDrive } from './motors.js'
+import { type Held, type JointMotion, readJoint, worldPoint } from './joints.js'
+import { driveMechanism, type Mechanism, startMechanism } from './mechanism.js'
+import { bookWork, type Drive, startDrive } from './motors.js'
 import type { RigidSpec } from './spec.js'
 
 /** Why and when a simulation failed. */
@@ -46,6 +47,8 @@ export class RigidWorld {
   private readonly held: readonly Held[]
   private readonly joints: readonly JointMotion[]
   private readonly drives: readonly (Drive | undefined)[]
+  private readonly mechanism: Mechanism
+  /** Bodies of the mechanism that its drives move; empty without drives. */
   private readonly driven: readonly number[]
   private readonly asked: readonly Float64Array[]
   private readonly changed = new Set<number>()
@@ -74,12 +77,21 @@ export class RigidWorld {
     }))
     for (let i = 0; i < spec.bodies.length; i++) this.read(i)
     for (const joint of this.joints) readJoint(joint, this.held[joint.a]!, this.held[joint.b]!)
-    this.drives = this.joints.map((joint) => {
-      const { motor } = joint.spec
-      return motor && startDrive(motor, leastInertia(joint, this.joints, spec, engine.masses), joint.place)
+    this.drives = this.joints.map(({ spec: { motor }, place }) => motor && startDrive(motor, place))
+    const isDriven = this.drives.some((drive) => drive !== undefined)
+    const jointed = new Set(isDriven ? this.joints.flatMap(({ a, b }) => [a, b]) : [])
+    this.driven = [...jointed].filter((i) => spec.bodies[i]!.fixed !== true).sort((a, b) => a - b)
+    this.mechanism = startMechanism({
+      joints: this.joints,
+      drives: this.drives,
+      held: this.held,
+      gravity: spec.gravityMps2,
+      inverseMass: Float64Array.from(spec.bodies, (body, i) =>
+        body.fixed ? 0 : 1 / engine.masses[i]!.massKg,
+      ),
+      inverseInertia: spec.bodies.map(() => new Float64Array(dimensions === 2 ? 1 : 9)),
     })
-    const moved = this.joints.filter((joint) => joint.spec.motor).flatMap(({ a, b }) => [a, b])
-    this.driven = [...new Set(moved)].filter((i) => spec.bodies[i]!.fixed !== true).sort((a, b) => a - b)
+    for (const i of this.driven) engine.readInverseInertia(i, this.mechanism.inverseInertia[i]!)
   }
 
   /** Simulated seconds since the beginning. */
@@ -122,12 +134,7 @@ export class RigidWorld {
       for (let k = 0; k < force.length; k++) force[k] = asked[k]!
       for (let k = 0; k < torque.length; k++) torque[k] = asked[force.length + k]!
     }
-    for (const [i, drive] of this.drives.entries()) {
-      if (!drive) continue
-      const joint = this.joints[i]!
-      const effort = decideEffort(drive, joint.place, joint.rate, h)
-      addEffort(joint, effort, this.held[joint.a]!, this.held[joint.b]!)
-    }
+    if (this.driven.length > 0) driveMechanism(this.mechanism, h)
     for (const i of this.driven) engine.setLoad(i, this.held[i]!.force, this.held[i]!.torque)
     for (const i of this.changed) {
       const { force, torque } = this.held[i]!
@@ -136,13 +143,16 @@ export class RigidWorld {
     this.changed.clear()
     engine.step()
     this.steps++
-    for (const i of this.driven) this.read(i)
-    for (const [i, drive] of this.drives.entries()) {
-      if (!drive) continue
-      const joint = this.joints[i]!
+    if (this.driven.length === 0) return
+    for (const i of this.driven) {
+      this.read(i)
+      if (this.dimensions === 3) engine.readInverseInertia(i, this.mechanism.inverseInertia[i]!)
+    }
+    for (const [i, joint] of this.joints.entries()) {
       const before = joint.rate
       readJoint(joint, this.held[joint.a]!, this.held[joint.b]!)
-      bookWork(drive, before, joint.rate, h)
+      const drive = this.drives[i]
+      if (drive) bookWork(drive, before, joint.rate, h)
     }
   }
 
@@ -330,31 +340,4 @@ function emptyHeld(dimensions: 2 | 3): Held {
     force: new Float64Array(dimensions),
     torque: new Float64Array(flat ? 1 : 3),
   }
-}
-
-/** 1 / (wa + wb) of motors.ts. */
-function leastInertia(
-  joint: JointMotion,
-  joints: readonly JointMotion[],
-  spec: RigidSpec,
-  masses: readonly MassOf[],
-): number {
-  const slides = joint.spec.kind === 'slider'
-  const share = (body: number, own: readonly number[], other: number) => {
-    if (spec.bodies[body]!.fixed) return 0
-    const motors = joints.filter(({ a, b, spec: one }) => one.motor && (a === body || b === body)).length
-    const { massKg, centreM, inertiaLeastKgm2 } = masses[body]!
-    if (slides) {
-      // A force off the centre also turns the body: the inverse mass of a point grows by r^2 / I.
-      return motors * (1 / massKg + squaredDistance(own, centreM) / inertiaLeastKgm2)
-    }
-    const about = spec.bodies[other]!.fixed ? massKg * squaredDistance(own, centreM) : 0
-    return motors / (inertiaLeastKgm2 + (centreM.length === 2 ? about : 0))
-  }
-  const { a, b } = joint
-  return 1 / (share(a, joint.spec.onAM, b) + share(b, joint.spec.onBM, a))
-}
-
-function squaredDistance(a: readonly number[], b: readonly number[]): number {
-  return a.reduce((sum, x, i) => sum + (x - b[i]!) * (x - b[i]!), 0)
 }
