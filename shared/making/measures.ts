@@ -1,10 +1,12 @@
 // The standard measures of every actuator: peak force, stroke, power, duty. Problems declare them with
 // actuatorMeasures() and fill them from tallies, so that the same word means the same number everywhere.
 //
-//   peakForce   largest |force| (N) or |torque| (N m)
-//   stroke      largest minus smallest length over the rest length (share), or angle travelled between stops (rad)
-//   peakPower   largest mechanical power that it delivers, W: force times the speed with which it shortens or turns
-//   duty        share of time under load: |force| above a tenth of the class's limit (common practice, no source)
+//   peakForce  largest |force| (N) or |torque| (N m)
+//   stroke     longest minus shortest length over the rest length, or angle between the ends of travel (rad)
+//   power      mean mechanical power that it delivers (W): what it is pushed gives nothing back
+//   duty       share of time under load: |force| above a tenth of the class's limit (common practice, no source)
+//
+// ActuatorTally has the fields that a simulator's own tally of a strut can fill; addSample() fills one from samples.
 
 import { check } from '../check.js'
 import type { Measure } from '../problem.js'
@@ -15,100 +17,97 @@ export const loadedShare = 0.1
 
 export interface ActuatorTally {
   peakForce: number
-  lengthLeast: number
-  lengthMost: number
-  peakPowerW: number
+  /** Shortest and longest length, m, or ends of the angle, rad. */
+  shortest: number
+  longest: number
+  /** Delivered, without what it takes back, J. */
+  workJ: number
   loadedSamples: number
   samples: number
-  /** Delivered, without what it takes back, J. */
-  positiveWorkJ: number
 }
 
 export function startTally(): ActuatorTally {
   return {
     peakForce: 0,
-    lengthLeast: Number.POSITIVE_INFINITY,
-    lengthMost: Number.NEGATIVE_INFINITY,
-    peakPowerW: 0,
+    shortest: Number.POSITIVE_INFINITY,
+    longest: Number.NEGATIVE_INFINITY,
+    workJ: 0,
     loadedSamples: 0,
     samples: 0,
-    positiveWorkJ: 0,
   }
 }
 
+export interface ActuatorSample {
+  /** Tension positive (N); or torque in the positive sense of the angle (N m). */
+  readonly force: number
+  /** m, or rad. */
+  readonly length: number
+  /** Of the length or angle, per second. */
+  readonly speed: number
+}
+
 /**
- * Takes one sample in. `force`: tension positive (N), or torque (N m); `length`: m, or angle in rad; `speed`: of
- * lengthening (m/s), or of turning against the torque's sense (rad/s), so that power delivered is -force * speed.
+ * Takes one sample in. A linear actuator in tension delivers power while it shortens (-force * speed), a rotary one
+ * while it turns the way it pushes (force * speed).
  */
 export function addSample(
   tally: ActuatorTally,
-  force: number,
-  length: number,
-  speed: number,
+  { force, length, speed }: ActuatorSample,
+  { motion, forceMost }: Pick<ActuatorClass, 'motion' | 'forceMost'>,
   secondsPerSample: number,
-  forceMost: number,
 ): void {
-  const size = Math.abs(force)
-  const powerW = -force * speed
-  if (size > tally.peakForce) tally.peakForce = size
-  if (length < tally.lengthLeast) tally.lengthLeast = length
-  if (length > tally.lengthMost) tally.lengthMost = length
-  if (powerW > tally.peakPowerW) tally.peakPowerW = powerW
-  if (powerW > 0) tally.positiveWorkJ += powerW * secondsPerSample
-  if (size > loadedShare * forceMost) tally.loadedSamples++
+  const powerW = motion === 'linear' ? -force * speed : force * speed
+  tally.peakForce = Math.max(tally.peakForce, Math.abs(force))
+  tally.shortest = Math.min(tally.shortest, length)
+  tally.longest = Math.max(tally.longest, length)
+  tally.workJ += Math.max(0, powerW) * secondsPerSample
+  if (Math.abs(force) > loadedShare * forceMost) tally.loadedSamples++
   tally.samples++
 }
 
 export interface ActuatorFigures {
   readonly peakForce: number
   readonly stroke: number
-  readonly peakPower: number
+  readonly power: number
   readonly duty: number
 }
 
 /** The standard measures of one actuator; `rest`: rest length (m), or 1 where lengths are angles. */
-export function actuatorFigures(tally: Readonly<ActuatorTally>, rest: number): ActuatorFigures {
-  check(rest > 0, 'a rest length is positive')
-  const { samples, lengthLeast, lengthMost, peakForce, peakPowerW, loadedSamples } = tally
-  if (samples === 0) return { peakForce: 0, stroke: 0, peakPower: 0, duty: 0 }
+export function actuatorFigures(
+  { peakForce, shortest, longest, workJ, loadedSamples, samples }: Readonly<ActuatorTally>,
+  rest: number,
+  secondsPerSample: number,
+): ActuatorFigures {
+  check(rest > 0 && secondsPerSample > 0, 'rest length and time between samples are positive')
+  if (samples === 0) return { peakForce: 0, stroke: 0, power: 0, duty: 0 }
   return {
     peakForce,
-    stroke: (lengthMost - lengthLeast) / rest,
-    peakPower: peakPowerW,
+    stroke: (longest - shortest) / rest,
+    power: workJ / (samples * secondsPerSample),
     duty: loadedSamples / samples,
   }
 }
 
 /** The hardest-worked of several actuators, number by number; all 0 without any. */
 export function worstFigures(all: readonly ActuatorFigures[]): ActuatorFigures {
-  const most = (pick: (one: ActuatorFigures) => number) =>
-    all.reduce((top, one) => Math.max(top, pick(one)), 0)
-  return {
-    peakForce: most((one) => one.peakForce),
-    stroke: most((one) => one.stroke),
-    peakPower: most((one) => one.peakPower),
-    duty: most((one) => one.duty),
-  }
+  const most = (name: keyof ActuatorFigures) => all.reduce((top, one) => Math.max(top, one[name]), 0)
+  return { peakForce: most('peakForce'), stroke: most('stroke'), power: most('power'), duty: most('duty') }
 }
 
 /**
  * Declarations of the four measures for actuators of `row`, up to `lengthMostM` long; ranges are what the class can
- * do, twice its force and power (a simulated peak may overshoot a limit).
+ * do, twice its force and stroke (a simulated peak may overshoot a limit).
  */
 export function actuatorMeasures(
   row: ActuatorClass,
   lengthMostM = row.lengthMostM,
 ): { readonly [name in keyof ActuatorFigures]: Measure } {
   const isLinear = row.motion === 'linear'
-  const powerMostW = isLinear ? row.powerMost * lengthMostM : row.powerMost
+  const strokeMost = isLinear ? 4 * (row.strokeMost ?? 1) : 2 * Math.PI
   return {
     peakForce: { low: 0, high: 2 * row.forceMost, unit: isLinear ? 'N' : 'N m' },
-    stroke: {
-      low: 0,
-      high: isLinear ? 2 * (row.strokeMost ?? 1) : 2 * Math.PI,
-      unit: isLinear ? '1' : 'rad',
-    },
-    peakPower: { low: 0, high: 2 * powerMostW, unit: 'W' },
+    stroke: { low: 0, high: strokeMost, unit: isLinear ? '1' : 'rad' },
+    power: { low: 0, high: isLinear ? row.powerMost * lengthMostM : row.powerMost, unit: 'W' },
     duty: { low: 0, high: 1, unit: '1' },
   }
 }
