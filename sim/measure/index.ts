@@ -1,6 +1,10 @@
 // What authors of problems measure with. Every tool names its units, the source of its formula, and is held to
 // published values in tests/reference/measure-*.test.ts.
 
+export { type BlockModuli, blockModuli } from './block.js'
 export type * from './cell.js'
 export * from './elasticity.js'
 export { type Homogenised, homogenise } from './homogenise.js'
+export { type LinearModel, linearModel } from './linear-model.js'
+export { type Mode, type Modes, naturalModes } from './modes.js'
+export { amplitudeOf, type Harmonic, type HarmonicInput, harmonicResponse, phaseTurnsOf } from './response.js'
