@@ -156,7 +156,7 @@ export const refusals = {
   'record-corrupted': {
     exitCode: badData,
     text: 'The record is damaged',
-    cure: 'Keep a copy of the folder; restore it from a backup or continue from the last intact entry named above.',
+    cure: 'Keep the folder as it is and restore it from a backup; without one, begin the search anew in another folder: the same file and seed give the same search.',
   },
   'record-newer': {
     exitCode: protocol,

@@ -52,28 +52,34 @@ function linuxThreadClock(): CpuClock | undefined {
   }
 }
 
-/** CPU of a stretch of time, told of the pieces of work in it in proportion to their wall time. */
+/**
+ * CPU of a stretch of time, told of the pieces of work in it in proportion to their wall time. What the thread used
+ * between two stretches, to take a message in, goes with the later one: a reading lags behind by up to a scheduler tick,
+ * and what it lacks must be in the next.
+ */
 export class CpuSplit {
   private readonly clock: CpuClock
+  private readonly wallClock: () => number
   private cpu: number
   private wall: number
 
-  constructor(clock: CpuClock) {
+  constructor(clock: CpuClock, wallClock = wallSeconds) {
     this.clock = clock
+    this.wallClock = wallClock
     this.cpu = clock()
-    this.wall = wallSeconds()
+    this.wall = wallClock()
   }
 
   /** A stretch begins. */
   start(): void {
-    this.cpu = this.clock()
-    this.wall = wallSeconds()
+    this.wall = this.wallClock()
   }
 
   /** CPU seconds for one wall second of the stretch that ends here; the next one begins. */
   rate(): number {
     const { cpu, wall } = this
-    this.start()
+    this.cpu = this.clock()
+    this.wall = this.wallClock()
     return this.wall > wall ? (this.cpu - cpu) / (this.wall - wall) : 0
   }
 }

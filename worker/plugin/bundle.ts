@@ -3,7 +3,7 @@
 // names, no time, no settings of the surroundings (tsconfig) enter.
 
 import { createHash } from 'node:crypto'
-import { readdirSync, realpathSync, statSync } from 'node:fs'
+import { readdirSync, readFileSync, realpathSync, statSync } from 'node:fs'
 import { builtinModules } from 'node:module'
 import { basename, dirname, extname, join, relative, sep } from 'node:path'
 import {
@@ -46,7 +46,7 @@ export async function bundlePlugin(file: string): Promise<PluginBundle> {
     format: 'esm',
     banner: { js: openingText(await detMathCode()) },
     define: substitutions(),
-    plugins: [ownModules, pureModules],
+    plugins: [ownModules, pureModules, stoppedClock],
   })
   const inputs = Object.keys(result.metafile?.inputs ?? {})
   const used = Object.values(result.metafile?.outputs ?? {}).flatMap((output) => Object.keys(output.inputs))
@@ -154,15 +154,26 @@ function messageLine(message: Message): string {
   return place === null ? message.text : `${place.file}, line ${place.line}: ${message.text}`
 }
 
+/** Parts that carry a library with them: who does not import one does not have it in the bundle. */
+const largeParts: { readonly [part: string]: string } = {
+  rigid2d: 'sim/rigid/rigid2d',
+  rigid3d: 'sim/rigid/rigid3d',
+}
+
 /** 'skerry' and 'skerry/...' are this package's emitted files, whatever is installed beside the plug-in. */
 const ownModules: Plugin = {
   name: 'own modules',
   setup(bundler) {
     bundler.onResolve({ filter: /^skerry(\/|$)/ }, ({ path }) => {
       const inner = path.slice('skerry/'.length)
-      const module = inner === '' ? 'sim/index' : inner.startsWith('problems/') ? `sim/${inner}` : undefined
+      const module =
+        inner === '' ? 'sim/index' : inner.startsWith('problems/') ? `sim/${inner}` : largeParts[inner]
       if (module === undefined) {
-        return { errors: [{ text: `there is no '${path}': import from 'skerry' or 'skerry/problems/NAME'` }] }
+        const others = Object.keys(largeParts).map((part) => `'skerry/${part}'`)
+        const names = ["'skerry'", ...others].join(', ')
+        return {
+          errors: [{ text: `there is no '${path}': import from ${names} or 'skerry/problems/NAME'` }],
+        }
       }
       return { path: emittedFile(module), sideEffects: false }
     })
@@ -196,6 +207,24 @@ const pureModules: Plugin = {
         external: true,
         warnings: [{ text: `${text}; this ${found.kind} will fail if it runs` }],
       }
+    })
+  },
+}
+
+/**
+ * The rigid-body library asks the host's clock some thirty times a step, to be able to tell how long it took; nothing
+ * it computes depends on the answer. A plug-in has no clock, so in a bundle the answer is always 0.
+ */
+const stoppedClock: Plugin = {
+  name: 'stopped clock',
+  setup(bundler) {
+    bundler.onLoad({ filter: /@dimforge[\\/]rapier[23]d-deterministic-compat[\\/].*\.mjs$/ }, ({ path }) => {
+      const asks = /(__wbg_now_[0-9a-f]+:function\(\w+\)\{return )[^}]*\.now\(\)\}/g
+      const text = readFileSync(path, 'utf8')
+      const contents = text.replace(asks, (_, opening: string) => `${opening}0}`)
+      if (contents === text)
+        return { errors: [{ text: 'the library does not ask for the time where it used to' }] }
+      return { contents, loader: 'js' }
     })
   },
 }
