@@ -131,6 +131,11 @@ export const refusals = {
     text: 'The problem gave another result the second time',
     cure: 'Remove clocks, random numbers that are not drawn from the condition, and state kept between calls.',
   },
+  'cannot-be-made': {
+    exitCode: configuration,
+    text: 'No machine of this problem can be made',
+    cure: 'Widen the process that the problem declares, or let its repair leave only what can be made.',
+  },
   'plug-in-differs': {
     exitCode: configuration,
     text: 'The problem differs from the copy pinned in the record',

@@ -1,6 +1,7 @@
 // `skerry check FILE`: everything that can be known before a search is started.
 
 import { availableParallelism } from 'node:os'
+import { noMachine } from '../../shared/making/types.js'
 import { exitCodes } from '../../shared/refusals.js'
 import type { IslandPlan } from '../evolution/plan.js'
 import {
@@ -12,6 +13,14 @@ import {
   spreadOf,
 } from './check/advice.js'
 import { tryFresh } from './check/fresh.js'
+import {
+  cautionLines,
+  type DeclaredCautions,
+  declaredCautions,
+  type MakingTrial,
+  makingLines,
+  tryMaking,
+} from './check/making.js'
 import type { StepTrial } from './check/step.js'
 import { stepLines } from './check/step-lines.js'
 import type { ProblemFault, TrialPlan } from './check/trials.js'
@@ -68,6 +77,9 @@ export interface CheckReport {
   readonly failedBecause?: string
   /** Why the fresh process did not run; absent when it did. */
   readonly freshNotRun?: string
+  /** Absent where the problem declares no process or no parts. */
+  readonly making?: MakingTrial
+  readonly cautions: DeclaredCautions
   /** Absent where the trials found a mistake: numbers of a broken problem would mislead. */
   readonly measured?: Measured
 }
@@ -150,7 +162,8 @@ export async function checkSearch(
       )
     : { faults: [], notRun: 'the trials had failed already' }
   // A problem that promises less than bits may differ; that is said, not refused.
-  const faults = [...trials.faults, ...fresh.faults]
+  const making = tryMaking(problem, plan.seed)
+  const faults = [...trials.faults, ...fresh.faults, ...making.faults]
   const binding = faults.filter(({ kind }) => kind !== 'not-deterministic' || isExact(problem.exactness))
   return {
     ok: binding.length === 0,
@@ -162,6 +175,8 @@ export async function checkSearch(
     failedSimulations: trials.failed,
     ...(trials.failedBecause === undefined ? {} : { failedBecause: trials.failedBecause }),
     ...(fresh.notRun === undefined ? {} : { freshNotRun: fresh.notRun }),
+    ...(making.trial === undefined ? {} : { making: making.trial }),
+    cautions: declaredCautions(problem, plan.seed),
     ...(binding.length === 0 ? { measured: measure(opened, trials) } : {}),
   }
 }
@@ -243,6 +258,7 @@ function printReport(output: Output, opened: OpenedSearch, report: CheckReport):
   )
   output.print('')
   for (const line of faultLines(report, problem.exactness)) say(line)
+  for (const line of makeLines(report, problem)) say(line)
   const { measured } = report
   if (measured) for (const line of measuredLines(measured, report, opened)) say(line)
   output.print('')
@@ -270,6 +286,11 @@ function faultLines(report: CheckReport, exactness: string): string[] {
     )
   }
   return lines
+}
+
+function makeLines({ making, cautions }: CheckReport, { process, use }: OpenedSearch['problem']): string[] {
+  const lines = cautionLines(cautions)
+  return use === noMachine ? lines : [...makingLines(making, process !== undefined), ...lines]
 }
 
 function measuredLines(measured: Measured, report: CheckReport, opened: OpenedSearch): string[] {

@@ -71,6 +71,18 @@ export function cautionsOf(problem: Declaring, genome: Genome): readonly Caution
   return [...(trouble === undefined ? [] : [trouble]), ...derived, ...own]
 }
 
+/** What the problem leaves open, in words, as far as a hazard asks for it. */
+export function undeclaredOf(problem: Declaring, genome: Genome): readonly string[] {
+  if (problem.use === noMachine) return []
+  const declared = declaredOf(problem, genome, useOf(problem, genome).use)
+  const asked = new Set(
+    hazardsOf(declared)
+      .filter((row) => row.when.holds(declared) === 'unknown')
+      .flatMap((row) => row.when.fields),
+  )
+  return [...asked].filter((field) => declared[field] === undefined).map((field) => fieldWords[field])
+}
+
 function ownCautions({ cautions }: Declaring, genome: Genome): readonly Caution[] {
   try {
     return cautions?.(genome as never) ?? []

@@ -37,7 +37,7 @@ const done = z.strictObject({
   faults: z
     .array(
       z.strictObject({
-        kind: z.enum(['wrong-results', 'not-deterministic', 'problem-throws']),
+        kind: z.enum(['wrong-results', 'not-deterministic', 'problem-throws', 'cannot-be-made']),
         sentence: z.string(),
       }),
     )

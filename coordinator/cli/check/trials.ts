@@ -36,7 +36,7 @@ export interface Machine {
 
 /** Something wrong with the problem. `kind` is the code of the refusal it ends in. */
 export interface ProblemFault {
-  readonly kind: 'wrong-results' | 'not-deterministic' | 'problem-throws'
+  readonly kind: 'wrong-results' | 'not-deterministic' | 'problem-throws' | 'cannot-be-made'
   readonly sentence: string
 }
 
