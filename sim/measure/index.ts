@@ -8,3 +8,12 @@ export { type Homogenised, homogenise } from './homogenise.js'
 export { type LinearModel, linearModel } from './linear-model.js'
 export { type Mode, type Modes, naturalModes } from './modes.js'
 export { amplitudeOf, type Harmonic, type HarmonicInput, harmonicResponse, phaseTurnsOf } from './response.js'
+export { dominantTone, type Peak, type Spectrum, spectralPeaks, spectrum, type Window } from './spectrum.js'
+export { fitTones, type Tone, type TonesFit, toneAt } from './tones.js'
+export {
+  peakRatio,
+  type SweptPoint,
+  sweptTransmissibility,
+  type Transmissibility,
+  transmissibility,
+} from './transmissibility.js'

@@ -13,6 +13,8 @@ export interface Factorisation {
   readonly size: number
   /** Number of coordinates with stiffness of their own; `size - rank` is the number of zero modes. */
   readonly rank: number
+  /** The smallest pivot that counted, 1 at most: rounding errors of the solution are magnified by up to its inverse. */
+  readonly leastPivot: number
   /**
    * One solution x of A x = b, the coordinates that are free to float held at zero. Meaningful when b does no work
    * on the zero modes; `residual` says by how much it does.
@@ -40,10 +42,12 @@ export function factorise(matrix: Float64Array, size: number, floor = 1e-20): Fa
   }
   const order = Int32Array.from({ length: size }, (_, i) => i)
   const rank = eliminate(lower, size, order)
+  const last = rank === 0 ? 1 : lower[(rank - 1) * size + rank - 1]!
   const solve = (right: ArrayLike<number>) => substitute(lower, size, order, rank, scale, right)
   return {
     size,
     rank,
+    leastPivot: last * last,
     solve,
     residual: (solution, right) => residualOf(matrix, size, solution, right),
   }
