@@ -42,6 +42,13 @@ export const limits = {
   /** Expected costs are positive integers up to this. */
   expectedCostMost: 1e9,
 
+  // Lattice
+  latticeNodesMost: 10_000,
+  /** Struts, areas, volumes and pairs together. */
+  latticePartsMost: 200_000,
+  /** Heights of a ground. */
+  latticeHeightsMost: 2 ** 20,
+
   // Search
   islandsMost: 1_000,
   populationMost: 100_000,
@@ -83,6 +90,7 @@ check(
   (limits.objectivesMost + limits.measuresMost) * limits.casesMost <= limits.resultValues,
   'a replicate of every case with every column fits a result',
 )
+check(limits.latticeNodesMost * 9 <= 2 ** 31 - 1, 'offsets of node records fit signed 32-bit integers')
 check(limits.dispatchBatch <= limits.appendBatch, 'what returns together can be made durable together')
 check(limits.islandsMost < firstControl, 'island numbers stay below those of controls')
 check(limits.simulationsMost < 2 ** 32, 'every individual has random streams of its own (streams.ts)')

@@ -2,7 +2,7 @@
 
 import { addForces, advance } from '../../sim/lattice/advance.js'
 import { buildLattice, type Lattice } from '../../sim/lattice/build.js'
-import { stride } from '../../sim/lattice/kernel.js'
+import { planeStride as stride } from '../../sim/lattice/layout.js'
 import type { LatticeSpec, NodeSpec, StrutSpec } from '../../sim/lattice/spec.js'
 
 export const x = 0

@@ -125,7 +125,7 @@ describe('Hunt-Crossley contact', () => {
   })
 
   test('a bouncing and sliding mass never gains energy, over kinks of the ground included', () => {
-    // No source: the elastic part of the force is the gradient of a continuous potential (sim/lattice/kernel.ts).
+    // No source: the elastic part of the force is the gradient of a continuous potential (sim/lattice/reference/plane-nodes.ts).
     const lattice = buildLattice({
       nodes: [
         { positionM: [0, 0.3], velocityMps: [0.7, 0], massKg: 1, friction: { forward: 0.2, backward: 0.2 } },

@@ -1,7 +1,7 @@
 // The replay of one trial: where every node was, 25 times a second of simulated time.
 
 import type { Frames, Situation } from '../../../shared/problem.js'
-import { stride } from '../../lattice/kernel.js'
+import { planeStride as stride } from '../../lattice/layout.js'
 import { commandedStrain } from '../../lattice/observe.js'
 import { type Body, buildBody } from './body.js'
 import { type CulvertCondition, culvertGround } from './floor.js'

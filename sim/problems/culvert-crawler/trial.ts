@@ -4,7 +4,7 @@
 
 import { advance, type Fault, groundHeightM } from '../../lattice/advance.js'
 import { buildLattice, type Lattice } from '../../lattice/build.js'
-import { stride } from '../../lattice/kernel.js'
+import { planeStride as stride } from '../../lattice/layout.js'
 import { lengthM, lengthRateMps, tensionN } from '../../lattice/observe.js'
 import type { LatticeSpec } from '../../lattice/spec.js'
 import { chooseStep, stepBound } from '../../lattice/stability.js'
@@ -17,7 +17,11 @@ const frameSeconds = 1 / numbers.framesPerSecond
 export const framesPerTrial = numbers.trialSeconds * numbers.framesPerSecond
 
 /** The body in the culvert as a description for the lattice simulator, with the longest step that is safe. */
-export function describeLattice(genome: CrawlerGenome, body: Body, condition: CulvertCondition): LatticeSpec {
+export function describeLattice(
+  genome: CrawlerGenome,
+  body: Body,
+  condition: CulvertCondition,
+): LatticeSpec & { readonly stepSeconds: number } {
   const { floorFriction, lagSeconds, debris } = condition
   const frictionOf = (foot: keyof typeof numbers.feet) => ({
     forward: Math.min(numbers.frictionMost, floorFriction * numbers.feet[foot].forward),
