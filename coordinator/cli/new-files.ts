@@ -66,10 +66,12 @@ export const problemText = `// The mount of a pressure gauge: three coil springs
 //   springs: k = G d^4 / (8 D^3 n), wire d, coil D, n turns (close-coiled helical spring, any machine handbook)
 // Math.sin and friends are replaced by versions that give the same bits on every machine.
 
-import { choice, defineProblem, integer, real } from 'skerry'
+import { choice, defineProblem, integer, making, real } from 'skerry'
 
 const shearModulusPa = 79e9 // spring steel
 const densityKgpm3 = 7850
+// Wire that can be bought: rows of the table of stock, each with a name, a diameter and lengths it is cut to.
+const wires = making.springWires.filter(({ wallM }) => wallM >= 0.0008)
 const pads = [
   { name: 'felt', stiffnessNpm: 60, dampingNspm: 1.5 },
   { name: 'cork', stiffnessNpm: 500, dampingNspm: 4 },
@@ -140,7 +142,7 @@ export default defineProblem({
   version: '1',
   summary: 'a sprung mount that keeps a pressure gauge readable on a shaking pump pipe',
   genome: {
-    wire: real({ length: 1, low: 0.0008, high: 0.004, scale: 'log', unit: 'm' }),
+    wire: real({ length: 1, low: 0.0008, high: 0.003, scale: 'log', unit: 'm' }),
     coil: real({ length: 1, low: 0.006, high: 0.04, scale: 'log', unit: 'm' }),
     turns: integer({ length: 1, low: 3, high: 14 }),
     pad: choice({ length: 1, options: pads.map(({ name }) => name) }),
@@ -158,10 +160,27 @@ export default defineProblem({
     pipeMotionM: 0.0002 + 0.0002 * stream.uniform(),
     speedFactor: 0.97 + 0.06 * stream.uniform(),
   }),
-  // A coil that can be wound: 4 to 16 wire diameters wide.
-  repair: (genome) => ({
-    ...genome,
-    coil: genome.coil.map((coilM) => Math.min(0.04, Math.max(0.006, 4 * genome.wire[0]!, Math.min(16 * genome.wire[0]!, coilM)))),
+  // Wire that can be bought, and a coil that can be wound from it: 4 to 16 diameters wide.
+  repair: (genome) => {
+    const wireM = making.nearestRow(genome.wire[0]!, wires).wallM
+    const [leastM, mostM] = [Math.max(0.006, 4 * wireM), Math.min(0.04, 16 * wireM)]
+    return { ...genome, wire: Float64Array.of(wireM), coil: making.clamped(genome.coil, leastM, mostM) }
+  },
+  // What the workshop can make, and what a genome asks for: what cannot be made fails by name, and check counts it.
+  process: {
+    name: 'coil springs wound in the workshop, pads glued on',
+    methods: ['cutting-to-length', 'gluing'],
+    stock: wires,
+    actuators: [],
+    massMostKg: 2,
+  },
+  parts: (genome) => ({
+    struts: [1, 2, 3].map((number) => ({
+      name: 'spring ' + number,
+      stock: making.nearestRow(genome.wire[0]!, wires).name,
+      lengthM: Math.PI * genome.coil[0]! * genome.turns[0]!,
+    })),
+    massKg: heaviestKg + mountOf(genome).springKg,
   }),
   simulate: (genome, situations) =>
     situations.map(({ condition, case: name }) => {
@@ -217,16 +236,33 @@ export default defineProblem({
     'wire ' + (genome.wire[0]! * 1000).toFixed(2) + ' mm, coil ' + (genome.coil[0]! * 1000).toFixed(1) + ' mm, ' + genome.turns[0] + ' turns',
     'three springs of ' + (mountOf(genome).springNpm / 1000).toFixed(2) + ' kN/m, pads of ' + pads[genome.pad[0]!]!.name,
   ],
+  // From these numbers follow the cautions that leave with every picture, replay and summary. What is not declared is
+  // cautioned against: declare 0, 'none' or false only where you know it.
+  use: (genome) => ({
+    places: ['pump-room'],
+    wetted: 'nothing',
+    energy: ['shaken-support'],
+    gasPressurePa: 0,
+    liquidPressurePa: 600e3, // in the line that the gauge reads
+    // Springs with the heaviest gauge on them, at the end of their travel.
+    storedElasticJ: (springCount * mountOf(genome).springNpm * (sagMostM + travelMostM) ** 2) / 2,
+    suspendedKg: heaviestKg,
+    suspendedHeightM: 1.5,
+    movingParts: false,
+    rotationHz: 0,
+    voltageV: 0,
+    battery: 'none',
+    hottestC: 40,
+    onRunningMachine: true,
+    vibrationHz: 25,
+    upstreamOfPump: false,
+  }),
+  // Beyond those that follow from the above.
   cautions: () => [
     {
-      hazard: 'pressure',
-      because: 'the gauge is connected to a pump line; its hose must bear the line pressure and the motion of the mount',
-      consult: 'local codes for pressure equipment, the hose maker\\'s data sheet, and a licensed fitter',
-    },
-    {
-      hazard: 'fatigue',
-      because: 'springs that vibrate for years break, and this simulation does not count cycles',
-      consult: 'the spring maker\\'s fatigue data; check the mount at every service',
+      hazard: 'A gauge that misleads',
+      because: 'a gauge that shakes or sags can show a wrong pressure',
+      consult: 'the gauge maker\\'s data sheet, and a second gauge before anything is decided by this one',
     },
   ],
 })

@@ -44,6 +44,9 @@ describe('what `skerry new` writes', () => {
     expect(report.faults).toEqual([])
     expect(report.freshNotRun).toBeUndefined()
     expect(report.ok).toBe(true)
+    expect(report.making).toMatchObject({ founders: 64, cannot: 0 })
+    expect(report.cautions.hazards).toContain('Mount failing on a running machine')
+    expect(report.cautions.notDeclared).toEqual([])
     const { coreHours, memory } = report.measured!
     expect(coreHours.total).toBeGreaterThan(coreHours.search)
     expect(memory.peakBytes).toBeGreaterThan(10e6)
