@@ -3,6 +3,9 @@
 import { describe, expect, test } from 'vitest'
 import { conditionStream } from '../../../shared/conditions.js'
 import { checkGenome, genomesEqual, randomGenome } from '../../../shared/encodings.js'
+import { cautionsOf } from '../../../shared/making/cautions.js'
+import { makingFaults } from '../../../shared/making/makeability.js'
+import type { AnyProblem } from '../../../shared/problem.js'
 import { stream } from '../../../shared/streams.js'
 import { planeStride as stride } from '../../lattice/layout.js'
 import { contactJ, elasticJ, gravitationalJ, kineticJ } from '../../lattice/observe.js'
@@ -219,15 +222,47 @@ describe('what is told of a machine', () => {
     expect(lines.join('\n')).toMatch(/Group 1: length \+-15\.0 %/)
   })
 
-  test('cautions carry the numbers of this machine, and air only where there is some', () => {
-    const withAir = problem.cautions!(inchworm(0.15))
-    expect(withAir.find((row) => row.hazard === 'Compressed air')?.because).toMatch(
-      /3 bellows work at up to 50 kPa/,
-    )
-    for (const row of withAir) expect(row.consult.length).toBeGreaterThan(20)
+  test('cautions carry the numbers of this machine, and gas only where there is some', () => {
+    const withAir = cautionsOf(problem as unknown as AnyProblem, inchworm(0.15))
+    expect(withAir.find((row) => row.hazard === 'Compressed gas')?.because).toMatch(/up to 50 kPa gauge/)
+    expect(withAir.find((row) => row.hazard === 'Pinching and crushing')?.because).toMatch(/up to 17 N/)
+    for (const { consult, because } of withAir) {
+      expect(consult.length).toBeGreaterThan(20)
+      expect(because).not.toMatch(/not declared/)
+    }
     const passive = { ...inchworm(0), struts: new Int32Array(45) }
-    expect(problem.cautions!(passive).map((row) => row.hazard)).not.toContain('Compressed air')
-    expect(problem.cautions!(passive).map((row) => row.hazard)).toContain('Confined space')
+    const names = cautionsOf(problem as unknown as AnyProblem, passive).map((row) => row.hazard)
+    for (const gone of ['Compressed gas', 'Pinching and crushing']) expect(names).not.toContain(gone)
+    for (const kept of ['Bad air in confined spaces', 'Stuck machine blocking the flow', 'Drinking water'])
+      expect(names).toContain(kept)
+  })
+
+  test('every founder can be made, and one that is too long cannot', () => {
+    for (let i = 0; i < 100; i++) {
+      expect(makingFaults(problem.process!, problem.parts!(founder(i)))).toEqual([])
+    }
+    const parts = problem.parts!({
+      ...founder(1),
+      bays: Int32Array.of(8),
+      bayLength: new Float64Array(8).fill(0.09),
+    })
+    expect(makingFaults(problem.process!, parts).map(({ rule }) => rule)).toEqual(['envelope'])
+  })
+
+  test('stiffness classes are rows of the workshop’s stock, and have not moved by a bit', () => {
+    // Gent, 1958, to six digits: what recorded searches were run with.
+    expect(numbers.youngPa).toEqual({ soft: 0.412683e6, firm: 0.731922e6, hard: 1.142372e6 })
+    expect(numbers).toMatchObject({
+      strainMost: 0.25,
+      strainRateMost: 1.2,
+      actuatorFittingKg: 0.004,
+      rubberKgpm3: 1070,
+    })
+    expect(numbers.pressurePa * numbers.boreAreaM2).toBe(50e3 * (Math.PI * 0.006 * 0.006))
+    expect(problem.process!.stock.map(({ areaM2 }) => areaM2)).toEqual(new Array(3).fill(numbers.strutAreaM2))
+    expect(problem.process!.stock.map(({ material }) => material.youngPa)).toEqual(
+      Object.values(numbers.youngPa),
+    )
   })
 
   test('expected costs follow the work', () => {

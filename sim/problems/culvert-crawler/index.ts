@@ -6,6 +6,7 @@ import { defineProblem } from '../../problem.js'
 import { buildBody } from './body.js'
 import { type CulvertCondition, drawCulvert } from './floor.js'
 import { type CrawlerGenome, crawlerGenome, repairCrawler } from './genome.js'
+import { crawlerProcess, partsOf, useOf } from './making.js'
 import { numbers } from './numbers.js'
 import { cautionsOf, describeCrawler } from './paper.js'
 import { crawlerFrames } from './replay.js'
@@ -76,4 +77,7 @@ export default defineProblem({
   frames: crawlerFrames,
   describe: describeCrawler,
   cautions: cautionsOf,
+  process: crawlerProcess,
+  parts: partsOf,
+  use: useOf,
 })

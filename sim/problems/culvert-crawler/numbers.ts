@@ -1,14 +1,22 @@
 // The numbers of the crawler's world, each with where it comes from. SI units. The machine and the water works
 // are invented; the numbers are ordinary ones of the trade, good enough for comparing designs, not for building.
 
+import { actuatorClasses, smallBellows } from '../../../shared/making/actuators.js'
+import { silicones } from '../../../shared/making/materials.js'
+
+const { bellows } = actuatorClasses
+const rubber = silicones.a10
+
 export const numbers = {
   gravityMps2: 9.81,
 
-  // Rubber. Young's modulus from Shore A hardness after A. N. Gent, "On the relation between indentation hardness
-  // and Young's modulus" (1958): E[MPa] = 0.0981 (56 + 7.62336 S) / (0.137505 (254 - 2.54 S)) for S = 10, 20, 30.
-  youngPa: { soft: 0.412683e6, firm: 0.731922e6, hard: 1.142372e6 },
-  // Platinum-cure silicone rubber, makers' data sheets, from memory: 1030 to 1080 kg/m^3.
-  rubberKgpm3: 1070,
+  // Silicone rubber of Shore A 10, 20 and 30: rows of the workshop's materials, with their sources there.
+  youngPa: {
+    soft: rubber.youngPa,
+    firm: silicones.a20.youngPa,
+    hard: silicones.a30.youngPa,
+  },
+  rubberKgpm3: rubber.densityKgpm3,
   // A tube of 16 mm mean diameter with a wall of 1 mm, as sold or cast. A solid rod of the same area would buckle
   // under a compression of 1 to 4 %; the tube does at 5 to 36 % (Euler, pinned ends, 80 to 30 mm). Buckling is not
   // simulated.
@@ -16,19 +24,17 @@ export const numbers = {
   strutDiameterM: 0.016,
   // c/k of the struts. tan delta = c w / k is then 0.06 to 0.19 between 10 and 30 Hz, where the body's own modes
   // are; silicone rubbers at low frequency: about 0.05 to 0.2 (from memory).
-  relaxationSeconds: 1e-3,
+  relaxationSeconds: rubber.relaxationSeconds,
   // A moulded joint with its pin, or the like.
   jointKg: 0.005,
 
-  // Actuators: bellows or sleeved tubes on compressed air. Stroke of fluidic muscles is about 25 % of their length
-  // (makers' data sheets); the wall is taken as soft as the softest strut.
-  strainMost: 0.25,
-  // Gauge pressure and bore: the force limit is their product, 5.7 N.
-  pressurePa: 50e3,
-  boreAreaM2: Math.PI * 0.006 * 0.006,
-  actuatorFittingKg: 0.004,
-  // Valves and hoses limit how fast a bellows fills: the largest rate of strain, 1/s. Assumed.
-  strainRateMost: 1.2,
+  // Actuators: the small bellows of the workshop's table, on compressed air; the wall is taken as soft as the softest
+  // strut. The force limit is gauge pressure times bore, 5.7 N; valves and hoses limit the rate of strain.
+  strainMost: bellows.strokeMost,
+  pressurePa: smallBellows.pressurePa,
+  boreAreaM2: smallBellows.boreAreaM2,
+  actuatorFittingKg: bellows.fittingKg,
+  strainRateMost: bellows.rateMostPerSecond,
 
   // Feet. Rubber on wet concrete and pipe walls slides at roughly 0.3 to 1 (trade tables, wide scatter); the floor's
   // own number is drawn per simulation. Factors per foot, towards +x and towards -x. Directional pads (bristles,

@@ -1,9 +1,8 @@
-// What a person is told of a crawler: its parts with units, and the cautions that leave with it. Cautions are rows
-// keyed to this machine's own numbers. A simulation is no certificate, and a machine found by a search works at
-// the edge of its model.
+// What a person is told of a crawler: its parts with units, and the cautions that leave with it beyond those that
+// follow from its use. A simulation is no certificate, and a machine found by a search works at the edge of its model.
 
 import type { Caution } from '../../../shared/problem.js'
-import { type Body, buildBody, type Member } from './body.js'
+import { buildBody, type Member } from './body.js'
 import type { CrawlerGenome } from './genome.js'
 import { numbers } from './numbers.js'
 
@@ -56,74 +55,19 @@ function nodeName(node: number): string {
   return `${node % 2 === 0 ? 'lower' : 'upper'} ${(node >> 1) + 1}`
 }
 
-interface CautionRow {
-  readonly hazard: string
-  readonly applies: (body: Body) => boolean
-  readonly because: (body: Body) => string
-  readonly consult: string
-}
-
-const actuatorsOf = (body: Body) => body.members.length - body.passiveCount
-
-const cautionRows: readonly CautionRow[] = [
-  {
-    hazard: 'The model ends here',
-    applies: () => true,
-    because: () =>
-      'this machine was found by a search and works at the edge of a plane model without buckling, wear, water or fatigue',
-    consult: 'bench trials behind a guard, and a person licensed for such machines where it will be used',
-  },
-  {
-    hazard: 'Compressed air',
-    applies: (body) => actuatorsOf(body) > 0,
-    because: (body) =>
-      `${actuatorsOf(body)} bellows work at up to ${(numbers.pressurePa / 1000).toFixed(0)} kPa gauge; a bellows, hose ` +
-      'or fitting that lets go can strike or throw parts',
-    consult:
-      "local pressure-equipment rules, the makers' data sheets of bellows, hoses and valves; relief valve and eye protection",
-  },
-  {
-    hazard: 'Pinching',
-    applies: (body) => actuatorsOf(body) > 0,
-    because: (body) =>
-      `struts push and pull with up to ${(numbers.pressurePa * numbers.boreAreaM2).toFixed(1)} N each, several at ` +
-      `once, ${body.frequencyHz.toFixed(1)} times a second, and bays close between their nodes`,
-    consult: 'local machine-safety rules; shut off and vent before touching',
-  },
-  {
-    hazard: 'Confined space',
-    applies: () => true,
-    because: () =>
-      'culverts and pipes can hold too little oxygen, poisonous or burnable gas, and sudden water',
-    consult:
-      'local confined-space rules and an entry permit; place and fetch the machine from outside, with a line tied to it',
-  },
-  {
-    hazard: 'Electricity near water',
-    applies: () => true,
-    because: () => 'the puck and any valves on board or at the portal are powered in a wet place',
-    consult:
-      "local electrical codes, a licensed electrician, and the makers' data sheets; extra-low voltage and sealed housings",
-  },
-  {
-    hazard: 'Lost machine',
-    applies: () => true,
-    because: (body) =>
-      `${(body.massKg * 1000).toFixed(0)} g of rubber and metal left in a culvert can block a screen or reach a pump`,
-    consult: 'the operator of the culvert; a recovery line of known strength',
-  },
-  {
-    hazard: 'Drinking water',
-    applies: () => true,
-    because: () => 'rubbers, pads and lubricants touch what flows through the pipe',
-    consult: "local rules for materials in contact with drinking water, and the makers' approvals",
-  },
-]
-
-/** The cautions that apply to this machine, with its own numbers. */
+/** Beyond what follows from its use (making.ts). */
 export function cautionsOf(genome: CrawlerGenome): readonly Caution[] {
-  const body = buildBody(genome)
-  return cautionRows
-    .filter((row) => row.applies(body))
-    .map(({ hazard, because, consult }) => ({ hazard, because: because(body), consult }))
+  const { massKg } = buildBody(genome)
+  return [
+    {
+      hazard: 'The model ends here',
+      because: 'it is a plane model without buckling, wear, water, roof or hoses',
+      consult: 'bench trials behind a guard, and a person licensed for such machines where it will be used',
+    },
+    {
+      hazard: 'Lost machine',
+      because: `${grams(massKg)} of rubber and metal, with a lithium cell, may not come back`,
+      consult: 'the operator of the culvert, before it goes in; a recovery line of known strength',
+    },
+  ]
 }
