@@ -4,6 +4,30 @@
 export { type BlockModuli, blockModuli } from './block.js'
 export type * from './cell.js'
 export * from './elasticity.js'
+export {
+  type Account,
+  type BudgetReport,
+  type EnergyBudget,
+  openBudget,
+  reportBudget,
+  type StoredEnergy,
+  sampleBudget,
+  storedEnergy,
+} from './energy.js'
+export {
+  type CentreOfMass,
+  type ContactRecord,
+  centreOfMass,
+  contactRecord,
+  costOfTransport,
+  deviationOf,
+  newStatistics,
+  peakOf,
+  rmsOf,
+  type Statistics,
+  takeValue,
+  travelM,
+} from './gait.js'
 export { type Homogenised, homogenise } from './homogenise.js'
 export { type LinearModel, linearModel } from './linear-model.js'
 export { type Mode, type Modes, naturalModes } from './modes.js'
