@@ -11,6 +11,16 @@ export type { Stream } from '../shared/streams.js'
 export { advance, type Fault, timeSeconds } from './lattice/advance.js'
 export { buildLattice } from './lattice/build.js'
 export { groundHeightM } from './lattice/ground.js'
+export {
+  advanceLanes,
+  type Lanes,
+  lanePlaceM,
+  lanesMost,
+  laneTally,
+  packLanes,
+  sampleLanes,
+  unpackLane,
+} from './lattice/lanes.js'
 export type { Lattice } from './lattice/layout.js'
 export * as observe from './lattice/observe.js'
 export type * from './lattice/spec.js'

@@ -34,9 +34,24 @@ export const variants = [2, 3].flatMap((dimensions) =>
   ),
 )
 
-const options = ['--optimizeLevel', '3', '--shrinkLevel', '0', '--noAssert', '--enable', 'simd', '--runtime', 'stub']
+const options = [
+  '--optimizeLevel',
+  '3',
+  '--shrinkLevel',
+  '0',
+  '--noAssert',
+  '--enable',
+  'simd',
+  '--runtime',
+  'stub',
+]
 // Memory grows on demand from the host; the passes fold offsets into addresses once all is inlined.
-const more = ['--initialMemory', '1', '--runPasses', 'optimize-added-constants-propagate,optimize-instructions,vacuum']
+const more = [
+  '--initialMemory',
+  '1',
+  '--runPasses',
+  'optimize-added-constants-propagate,optimize-instructions,vacuum',
+]
 
 function sourceOf(variant, name) {
   if (name === 'wasm/variant.ts') {
@@ -47,7 +62,8 @@ function sourceOf(variant, name) {
       '',
     ].join('\n')
   }
-  if (name === 'wasm/vector.ts') return readFileSync(join(folder, 'wasm', `vector-${variant.vector}.ts`), 'utf8')
+  if (name === 'wasm/vector.ts')
+    return readFileSync(join(folder, 'wasm', `vector-${variant.vector}.ts`), 'utf8')
   if (!/^(wasm|lanes)\/[\w-]+\.ts$/.test(name)) return null
   try {
     return readFileSync(join(folder, ...name.split('/')), 'utf8')
@@ -60,7 +76,14 @@ function sourceOf(variant, name) {
 export async function compile(variant, { text = false } = {}) {
   const files = new Map()
   const { error, stderr } = await asc.main(
-    ['wasm/kernel.ts', ...options, ...more, '--outFile', 'kernel.wasm', ...(text ? ['--textFile', 'kernel.wat'] : [])],
+    [
+      'wasm/kernel.ts',
+      ...options,
+      ...more,
+      '--outFile',
+      'kernel.wasm',
+      ...(text ? ['--textFile', 'kernel.wat'] : []),
+    ],
     {
       readFile: (name) => sourceOf(variant, name.replaceAll('\\', '/')),
       writeFile: (name, contents) => files.set(name, contents),
