@@ -36,7 +36,7 @@ const material = z.strictObject({
 
 const stockRow = z.strictObject({
   name,
-  form: z.enum(['tube', 'rod', 'wire', 'strip', 'sheet', 'moulded']),
+  form: z.enum(['tube', 'square-tube', 'rod', 'wire', 'strip', 'sheet', 'moulded']),
   material,
   widthM: positive.optional(),
   wallM: positive,

@@ -111,6 +111,38 @@ export const stainlessTubes: readonly StockRow[] = steelTubes.map(([outsideM, wa
   }),
 )
 
+/** Side x wall of aluminium square tube, for links and frames, m (trade lists, from memory). */
+const squareSizes = [
+  [0.02, 0.002],
+  [0.03, 0.002],
+  [0.04, 0.003],
+  [0.05, 0.003],
+] as const
+export const aluminiumSquareTubes: readonly StockRow[] = squareSizes.map(([widthM, wallM]) => ({
+  name: `aluminium square tube ${mm(widthM)} x ${mm(wallM)} mm`,
+  form: 'square-tube',
+  material: metals.aluminium,
+  widthM,
+  wallM,
+  areaM2: 4 * (widthM - wallM) * wallM,
+  lengthLeastM: 0.05,
+  lengthMostM: 6,
+  // +- 0.25 mm on walls of such profiles.
+  wallToleranceM: 0.00025,
+  source: 'EN 755-9, Aluminium extruded profiles: tolerances, 2016, from memory',
+}))
+
+/** Diameters of stainless round bar, m (trade lists, from memory). */
+export const stainlessRods: readonly StockRow[] = [0.004, 0.005, 0.006, 0.008, 0.01, 0.012].map((wallM) =>
+  solid('rod', metals.stainlessSteel, wallM, wallM, {
+    name: `stainless rod ${mm(wallM)} mm`,
+    // h9: 0.030 mm up to 6 mm, 0.036 mm up to 10 mm, 0.043 mm up to 18 mm, all below the nominal size.
+    wallToleranceM: wallM <= 0.006 ? 0.00003 : wallM <= 0.01 ? 0.000036 : 0.000043,
+    lengthMostM: 3,
+    source: 'ISO 286-2, Tolerance classes, 2010, from memory (h9)',
+  }),
+)
+
 /** Thicknesses of moulded silicone walls that come out of a mould and fill, m (rule of thumb, from memory). */
 export const mouldedWallsM = [0.001, 0.0015, 0.002, 0.003, 0.004, 0.006] as const
 /** Walls of moulded silicone, 1 m wide in the table: a pad's depth scales its area. */

@@ -11,11 +11,13 @@ import {
 import { frictionRows, rubberFriction } from './friction.js'
 import { foams, gentYoungPa, hardnessSpread, metals, plastics, ruessYoungPa, silicones } from './materials.js'
 import {
+  aluminiumSquareTubes,
   axialStiffnessNpm,
   mouldedWalls,
   siliconeTubes,
   springStrips,
   springWires,
+  stainlessRods,
   stainlessTubes,
   stockRow,
 } from './stock.js'
@@ -30,6 +32,8 @@ const stock: readonly StockRow[] = [
   ...springStrips,
   ...springWires,
   ...stainlessTubes,
+  ...aluminiumSquareTubes,
+  ...stainlessRods,
   ...mouldedWalls,
 ]
 const actuators: readonly ActuatorClass[] = Object.values(actuatorClasses)
@@ -146,13 +150,22 @@ describe('stock', () => {
     // No more carries than the outline holds.
     const widthM = row.widthM!
     const outline =
-      row.form === 'tube' ? (Math.PI * widthM * widthM) / 4 : Math.max(widthM, row.wallM) * row.wallM
+      row.form === 'tube'
+        ? (Math.PI * widthM * widthM) / 4
+        : widthM * Math.max(row.wallM, row.form === 'square-tube' ? widthM : 0)
     expect(row.areaM2).toBeLessThanOrEqual(outline * (1 + 1e-12))
     if (row.form === 'tube') {
       const insideM = widthM - 2 * row.wallM
       expect(insideM).toBeGreaterThan(0)
       const ring = (Math.PI * (widthM * widthM - insideM * insideM)) / 4
       expect(Math.abs(row.areaM2 / ring - 1)).toBeLessThan(1e-12)
+    }
+  })
+
+  test('what carries of a square tube is its outer square less its inner one', () => {
+    for (const { widthM, wallM, areaM2 } of aluminiumSquareTubes) {
+      const insideM = widthM! - 2 * wallM
+      expect(Math.abs(areaM2 / (widthM! * widthM! - insideM * insideM) - 1)).toBeLessThan(1e-12)
     }
   })
 

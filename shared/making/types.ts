@@ -25,14 +25,14 @@ export interface Material {
   readonly source: Source
 }
 
-export type StockForm = 'tube' | 'rod' | 'wire' | 'strip' | 'sheet' | 'moulded'
+export type StockForm = 'tube' | 'square-tube' | 'rod' | 'wire' | 'strip' | 'sheet' | 'moulded'
 
 /** One row of a stock table: a size that can be bought or made, in one material. */
 export interface StockRow {
   readonly name: string
   readonly form: StockForm
   readonly material: Material
-  /** Outer diameter of tubes, rods and wires; width of strips; absent for sheets and moulded parts. */
+  /** Outer diameter or side of tubes, diameter of rods and wires, width of strips; absent for sheets and moulded parts. */
   readonly widthM?: number
   /** Wall of tubes, thickness of strips and sheets, diameter of rods and wires: the least dimension. */
   readonly wallM: number
