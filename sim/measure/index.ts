@@ -1,6 +1,7 @@
 // What authors of problems measure with. Every tool names its units, the source of its formula, and is held to
 // published values in tests/reference/measure-*.test.ts.
 
+export { bandRadps } from './bands.js'
 export { type BlockModuli, blockModuli } from './block.js'
 export type * from './cell.js'
 export * from './elasticity.js'
