@@ -85,7 +85,7 @@ export function packLanes(
     pen: pen!,
     origins,
     sweepEnds: sweepEnds(all),
-    moving: 2 ** lattices.length - 1,
+    moving: (1 << lattices.length) - 1,
   }
 }
 

@@ -55,25 +55,25 @@ export function settle(tenant: Tenant, write?: (engine: Engine) => void): Engine
 }
 
 /** The memory ends with zeros of its own: nothing is read before it is written. */
-function makeRoom(engine: Engine, { module, bytes }: Tenant): void {
+function makeRoom(engine: Engine, { module: name, bytes }: Tenant): void {
   const lacking = bytes - engine.memory.buffer.byteLength
   if (lacking > 0) engine.memory.grow(Math.ceil(lacking / pageBytes))
-  if (engine.words.buffer !== engine.memory.buffer) look(engine, module)
+  if (engine.words.buffer !== engine.memory.buffer) look(engine, name)
 }
 
 const pageBytes = 65_536
 
-function look(engine: Engine, module: string): void {
+function look(engine: Engine, name: string): void {
   const { buffer } = engine.memory
   engine.words = new Int32Array(buffer)
-  engine.numbers = module.includes('single') ? new Float32Array(buffer) : new Float64Array(buffer)
+  engine.numbers = name.includes('single') ? new Float32Array(buffer) : new Float64Array(buffer)
 }
 
-function engineOf(module: string): Engine {
-  const known = engines.get(module)
+function engineOf(name: string): Engine {
+  const known = engines.get(name)
   if (known) return known
-  check(Object.hasOwn(modules, module), `there is a module ${module}`)
-  const bytes = decode(modules[module as keyof typeof modules])
+  check(Object.hasOwn(modules, name), `there is a module ${name}`)
+  const bytes = decode(modules[name as keyof typeof modules])
   const kernel = new WebAssembly.Instance(new WebAssembly.Module(bytes)).exports as Kernel
   const { memory, run, look: lookAt, sample } = kernel
   const engine: Engine = {
@@ -82,8 +82,8 @@ function engineOf(module: string): Engine {
     words: new Int32Array(memory.buffer),
     resident: undefined,
   }
-  look(engine, module)
-  engines.set(module, engine)
+  look(engine, name)
+  engines.set(name, engine)
   return engine
 }
 
