@@ -20,5 +20,13 @@ export const builtInProblems: { readonly [name: string]: BuiltInProblem } = Obje
     'culvert-crawler',
     'A soft truss crawls along a culvert with debris on its floor, carrying a sensor puck.',
   ),
+  row(
+    'ramp-walker',
+    'A passive walker on two straight legs is let go on the ramp of a drained channel and walks down it.',
+  ),
+  row(
+    'seal-pad',
+    'A rubber pad of repeated cells for a hatch seal, toward a wanted Poisson ratio and stiffness.',
+  ),
   ...(Object.keys(classics) as ClassicName[]).map((name) => row(name, classics[name].summary)),
 ])
