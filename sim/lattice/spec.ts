@@ -20,7 +20,7 @@ export interface NodeSpec {
 /**
  * Coefficients of friction. In the plane `forward` counts while the node slides towards +x, `backward` towards -x.
  * In space they belong to the node's heading; in between the coefficients go along an ellipse,
- * mu = sqrt((mu_f c)^2 + mu_s^2 (1 - c^2)), c the cosine of the angle between sliding and heading.
+ * mu = sqrt((mu_f c)^2 + mu_s^2 (1 - c^2)), c the cosine of the angle between sliding and heading, seen from above.
  */
 export interface FrictionSpec {
   readonly forward: number

@@ -132,7 +132,8 @@ function touch(
  * part along the ground is v_t = v - (v . n) n, and v_t *= max(0, 1 - h mu N / (m |v_t|)).
  *
  * mu along an ellipse between the coefficients forward or backward (mu_f) and sideways (mu_s) of the node's heading,
- * c the cosine of the angle between v_t and heading: sqrt((mu_f c)^2 + mu_s^2 (1 - c^2)). Where all three coefficients
+ * c the cosine of the angle between v_t and heading as seen from above (a foot that goes up a slope straight ahead does
+ * not slide sideways): sqrt((mu_f c)^2 + mu_s^2 (1 - c^2)). Where all three coefficients
  * are equal mu is that number itself: friction does not depend on direction, to the bit. The heading is taken
  * from the other node's place as it is: with a smaller number it has moved already in this step.
  */
@@ -169,7 +170,7 @@ function rub(
       hx = dx / distance
       hz = dz / distance
     }
-    const c = (tx * hx + tz * hz) / speed
+    const c = (tx * hx + tz * hz) / (Math.sqrt(tx * tx + tz * tz) + tiny)
     const muF = c > 0 ? forward : backward
     mu = Math.sqrt(muF * c * (muF * c) + sideways * sideways * Math.max(0, 1 - c * c))
   }

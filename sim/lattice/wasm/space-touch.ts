@@ -94,7 +94,7 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
   let mu = forward
   const directed = either(differ(forward, backward), differ(forward, sideways))
   if (anyOf(directed)) {
-    mu = choose(directed, directedMu(o, row, lane, tx, tz, speed, forward, backward, sideways, one), forward)
+    mu = choose(directed, directedMu(o, row, lane, tx, tz, forward, backward, sideways, one), forward)
   }
   const drop = mul(mul(mul(number(stepAt, lane), mu), mul(f, sqrt(squared))), material(row, 0, 0, lane))
   const change = only(pushed, atMost(div(drop, speed), one))
@@ -105,7 +105,7 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
 
 /** mu between the coefficients of the node's heading. */
 @inline function directedMu(
-  o: usize, row: usize, lane: usize, tx: Vec, tz: Vec, speed: Vec, forward: Vec, backward: Vec, sideways: Vec, one: Vec,
+  o: usize, row: usize, lane: usize, tx: Vec, tz: Vec, forward: Vec, backward: Vec, sideways: Vec, one: Vec,
 ): Vec {
   const zero = sub(one, one)
   let hx = one
@@ -118,7 +118,8 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
     hx = div(dx, distance)
     hz = div(dz, distance)
   }
-  const c = div(add(mul(tx, hx), mul(tz, hz)), speed)
+  const level = add(sqrt(add(mul(tx, tx), mul(tz, tz))), number(tinyAt, lane))
+  const c = div(add(mul(tx, hx), mul(tz, hz)), level)
   const lengthwise = mul(choose(less(zero, c), forward, backward), c)
   const rest = atLeast(sub(one, mul(c, c)), zero)
   return sqrt(add(mul(lengthwise, lengthwise), mul(mul(sideways, sideways), rest)))
