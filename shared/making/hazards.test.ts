@@ -4,8 +4,8 @@ import { describe, expect, test } from 'vitest'
 import type { Caution } from '../problem.js'
 import { alwaysCaution, cautionOf, cautionsOf, fieldWords, hazardsOf } from './cautions.js'
 import { above, allOf, anyOf, type Declared, isTrue } from './conditions.js'
-import { eyeEnergyJ, gasEnergyJ, hazards } from './hazards.js'
-import { noMachine, type Use } from './types.js'
+import { gasEnergyJ, hazards } from './hazards.js'
+import { noMachine, places, type Use, wettings } from './types.js'
 
 /** Everything declared, and nothing that could hurt. */
 const harmless: Required<Declared> = {
@@ -172,9 +172,43 @@ test('energy of gas is what it does while it expands without heat to the atmosph
   expect(gasEnergyJ(0, 1)).toBe(0)
 })
 
-test('the eye bound is 0.08 J', () => {
-  // EN 71-1, Safety of toys, from memory.
-  expect(eyeEnergyJ).toBe(0.08)
+// Where a caution begins, or grows: all from memory, none read. EN 71-1, Safety of toys, 2014; IEC 60364-4-41, 2005;
+// ISO 13732-1, 2006; ISO 11228-1, 2003. The caution is hidden at the bound itself and shown just above it.
+test.each([
+  ['stored-spring-energy', 'storedElasticJ', 0.08],
+  ['electric-shock', 'voltageV', 50],
+  ['hot-actuators', 'hottestC', 43],
+  ['lifting', 'massKg', 15],
+] as const)('%s begins above %s %d', (key, field, bound) => {
+  expect(keysOf({ ...harmless, [field]: bound })).not.toContain(key)
+  expect(keysOf({ ...harmless, [field]: bound * 1.001 })).toContain(key)
+})
+
+// ISO/TS 15066, 2016 (140 N on a hand); Directive 2014/68/EU (0.5 bar); IEC 60364-7-702, 2010 (12 V AC in water);
+// liquid that is driven through skin (about 7 bar): from memory.
+test.each([
+  ['pinching', { movingParts: true }, 'peakForceN', 140, /more than the 140 N/],
+  ['compressed-gas', {}, 'gasPressurePa', 50e3, /where pressure-equipment law begins/],
+  ['electricity-in-wet-places', { wetted: 'raw-water' }, 'voltageV', 12, /more than the 12 V AC/],
+  ['liquid-pressure', {}, 'liquidPressurePa', 700e3, /driven through skin/],
+] as const)('%s says more beyond its bound', (key, given, field, bound, words) => {
+  const said = (value: number) => cautionOf(rowOf(key), { ...harmless, ...given, [field]: value }).because
+  expect(said(bound)).not.toMatch(words)
+  expect(said(bound * 1.01)).toMatch(words)
+})
+
+test('every place and water that is wet is wet for electricity, and every confined one has bad air', () => {
+  const dry = new Set(['bench', 'dry-room'])
+  const confined = new Set(['culvert', 'pipe', 'tank', 'pump-well', 'sewer'])
+  for (const place of places) {
+    const keys = keysOf({ ...harmless, voltageV: 5, places: [place] })
+    expect(keys.includes('electricity-in-wet-places')).toBe(!dry.has(place))
+    for (const key of ['bad-air', 'burnable-gas']) expect(keys.includes(key)).toBe(confined.has(place))
+  }
+  for (const wetted of wettings) {
+    const keys = keysOf({ ...harmless, voltageV: 5, wetted })
+    expect(keys.includes('electricity-in-wet-places')).toBe(wetted !== 'nothing')
+  }
 })
 
 describe('the cautions of a problem', () => {

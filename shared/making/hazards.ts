@@ -175,7 +175,8 @@ const energyRows: readonly HazardRow[] = [
       'flowing-water',
       'shaken-support',
     ]),
-    numbers: ({ energy }) => (energy && energy.length > 0 ? `driven by ${energy.join(', ')}` : undefined),
+    numbers: ({ energy }) =>
+      energy && energy.length > 0 ? `driven by ${energy.join(', ').replaceAll('-', ' ')}` : undefined,
     why: 'it can start, or go on, when nobody expects it, and energy stays in it after switching off',
     consult:
       'local lockout rules (ISO 14118); one switch that isolates and is locked, stored energy let out, then tried',
