@@ -8,6 +8,9 @@ import { commands } from '../../coordinator/cli/table.js'
 import { methods } from '../../coordinator/evolution/methods/index.js'
 import { crossoverRows, mutationRows, operatorDefaults } from '../../coordinator/evolution/operators/index.js'
 import type { SettingRow, SettingTable } from '../../coordinator/evolution/types.js'
+import { actuatorClasses } from '../../shared/making/actuators.js'
+import { hazards } from '../../shared/making/hazards.js'
+import type { ActuatorClass } from '../../shared/making/types.js'
 import { exitCodes, refusals } from '../../shared/refusals.js'
 import { phases } from '../tools/phases.mjs'
 import { root } from './source.js'
@@ -50,6 +53,14 @@ const operatorRows = (kind: 'crossover' | 'mutation', rows: typeof crossoverRows
     const fits = row.encodings.map((encoding) => (usual.includes(encoding) ? `**${encoding}**` : encoding))
     return [code(row.name), kind, fits.join(', '), row.summary]
   })
+
+function actuatorRow(row: ActuatorClass): string[] {
+  const units = row.motion === 'linear' ? ['N', 'of the length', '1/s', 'W/m'] : ['N m', 'rad', 'rad/s', 'W']
+  const limits = [row.forceMost, row.strokeMost, row.rateMostPerSecond, row.powerMost].map((limit, i) =>
+    limit === undefined ? 'unlimited' : `${Number(limit.toPrecision(3))} ${units[i]}`,
+  )
+  return [row.name, ...limits, row.source]
+}
 
 export const documentTables: readonly DocumentTable[] = [
   {
@@ -111,6 +122,18 @@ export const documentTables: readonly DocumentTable[] = [
     mark: 'sources',
     head: ['method or operator', 'source'],
     rows: [...methods, ...crossoverRows, ...mutationRows].map((row) => [code(row.name), row.source]),
+  },
+  {
+    file: 'DEVELOPERS.md',
+    mark: 'hazards',
+    head: ['hazard', 'caution begins where', 'source of the bound'],
+    rows: hazards.map((row) => [row.hazard, row.when.text, row.source]),
+  },
+  {
+    file: 'DEVELOPERS.md',
+    mark: 'actuators',
+    head: ['actuator class', 'force', 'stroke either way', 'rate', 'power', 'source'],
+    rows: Object.values<ActuatorClass>(actuatorClasses).map(actuatorRow),
   },
   {
     file: 'DEVELOPERS.md',
