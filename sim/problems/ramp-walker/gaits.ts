@@ -13,7 +13,7 @@ export interface Gait {
   /** What is left of one whole turn of the gait minus its start: how well the fixed point is found. */
   readonly residual: number
   /** d(next)/d(start), rows theta and rate. */
-  readonly derivative: readonly [number, number, number, number]
+  readonly derivative: Rows
 }
 
 type Point = readonly [theta: number, thetaRate: number]
@@ -32,13 +32,35 @@ export function strideMap(start: Point, gamma: number, steps: number, stepSecond
   return { theta, thetaRate, period }
 }
 
-/** Derivative of the stride map by differences of fourth order; nothing when a neighbour falls. */
+type Rows = readonly [number, number, number, number]
+
+/**
+ * Derivative of `steps` steps together: the product of the derivatives along the way. Nothing when it falls, or a
+ * neighbour does.
+ */
 export function strideDerivative(
-  [theta, thetaRate]: Point,
+  start: Point,
   gamma: number,
   steps: number,
   stepSeconds: number,
-): readonly [number, number, number, number] | undefined {
+): Rows | undefined {
+  let [theta, thetaRate] = start
+  let product: Rows = [1, 0, 0, 1]
+  for (let i = 0; i < steps; i++) {
+    const one = oneDerivative([theta, thetaRate], gamma, stepSeconds)
+    const end = strideMap([theta, thetaRate], gamma, 1, stepSeconds)
+    if (!one || !end) return undefined
+    const [a, b, c, d] = one
+    const [p, q, r, s] = product
+    product = [a * p + b * r, a * q + b * s, c * p + d * r, c * q + d * s]
+    theta = end.theta
+    thetaRate = end.thetaRate
+  }
+  return product
+}
+
+/** By differences of fourth order. */
+function oneDerivative([theta, thetaRate]: Point, gamma: number, stepSeconds: number): Rows | undefined {
   const spread = 2e-4 * theta
   const columns: number[][] = []
   for (const [along, rateAlong] of [
@@ -46,7 +68,7 @@ export function strideDerivative(
     [0, spread],
   ] as const) {
     const [far, near, back, farBack] = [2, 1, -1, -2].map((way) =>
-      strideMap([theta + way * along, thetaRate + way * rateAlong], gamma, steps, stepSeconds),
+      strideMap([theta + way * along, thetaRate + way * rateAlong], gamma, 1, stepSeconds),
     )
     if (!far || !near || !back || !farBack) return undefined
     columns.push(
@@ -92,7 +114,7 @@ export interface Multipliers {
 }
 
 /** Eigenvalues of a two-by-two matrix given by rows; the larger real one first. */
-export function multipliersOf([a, b, c, d]: readonly [number, number, number, number]): Multipliers {
+export function multipliersOf([a, b, c, d]: Rows): Multipliers {
   const half = (a + d) / 2
   const determinant = a * d - b * c
   const inside = half * half - determinant
