@@ -1,7 +1,8 @@
 // What a person is told of a walker: how to let it go, in units of the bench, and what its use brings with it. The
 // cautions follow from the use.
 
-import type { Use } from '../../../shared/making/types.js'
+import { aluminiumSquareTubes } from '../../../shared/making/stock.js'
+import type { Parts, Process, Use } from '../../../shared/making/types.js'
 import { numbers, timeSeconds } from './numbers.js'
 import type { Release } from './release.js'
 
@@ -19,6 +20,25 @@ export function describeWalker({ stance, gamma }: Release): readonly string[] {
     `Release: front leg turning forwards at ${perSecond(-thetaRate)}, the angle between the legs at ${perSecond(phiRate)}.`,
     `A step comes down by about ${(fallM * 1000).toFixed(1)} mm: ${(numbers.hipKg * numbers.gravityMps2 * fallM * 1000).toFixed(0)} mJ of gravity's work.`,
   ]
+}
+
+const legTube = aluminiumSquareTubes[0]!
+
+/** Legs of the lightest square tube in stock on a hinge. What is evolved is how to let it go, so every genome can be made. */
+export const walkerProcess: Process = {
+  name: 'two tubes on a hinge',
+  methods: ['cutting-to-length', 'machining', 'screwing'],
+  stock: [legTube],
+  actuators: [],
+}
+
+/** The same for every genome. The model's legs have no mass; these have an eighth of the hip's each. */
+export function partsOfWalker(): Parts {
+  const legKg = legTube.areaM2 * legTube.material.densityKgpm3 * numbers.legM
+  return {
+    struts: ['left leg', 'right leg'].map((name) => ({ name, stock: legTube.name, lengthM: numbers.legM })),
+    massKg: numbers.hipKg + 2 * legKg,
+  }
 }
 
 /** No motor, no energy but its weight; what falls is the walker itself. */
@@ -40,7 +60,6 @@ export const useOfWalker: Use = {
   voltageV: 5,
   battery: 'lithium',
   hottestC: 40,
-  massKg: numbers.hipKg,
   onRunningMachine: false,
   vibrationHz: 0,
   upstreamOfPump: true,

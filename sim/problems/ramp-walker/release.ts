@@ -8,7 +8,7 @@ import type { Situation } from '../../../shared/problem.js'
 import { defineProblem, type ObjectiveInput } from '../../problem.js'
 import { type Stance, stanceAfterStrike } from './model.js'
 import { numbers, timeSeconds } from './numbers.js'
-import { describeWalker, useOfWalker } from './paper.js'
+import { describeWalker, partsOfWalker, useOfWalker, walkerProcess } from './paper.js'
 import { walkerFrames } from './replay.js'
 import { drawRamp, multiplierAt, type Ramp, unsteadiness, walk } from './walk.js'
 
@@ -121,6 +121,8 @@ export function walkerProblem({ aim = 'steady', slope = 'given' }: WalkerOptions
     simulateFiner: simulated,
     frames: (genome, { condition }) => walkerFrames(releaseOf(genome), condition),
     describe: (genome) => describeWalker(releaseOf(genome)),
+    process: walkerProcess,
+    parts: partsOfWalker,
     use: useOfWalker,
   })
 }
