@@ -18,31 +18,58 @@ export const padProcess: Process = {
   envelopeM: [length, height, depth],
 }
 
-/** Stands still in a wet place, holds no energy but its own squeeze (N m of a pad: below a joule). */
-export const padUse: Use = {
-  places: ['wet-room'],
-  wetted: 'drinking-water',
-  energy: ['none'],
-  gasPressurePa: 0,
-  gasVolumeM3: 0,
-  liquidPressurePa: 0,
-  suspendedKg: 0,
-  suspendedHeightM: 0,
-  movingParts: false,
-  rotationHz: 0,
-  voltageV: 0,
-  battery: 'none',
-  hottestC: 25,
-  onRunningMachine: false,
-  vibrationHz: 0,
-  upstreamOfPump: false,
+/** At most this share of the pad is rubber: walls on mirror lines, and joints, are counted twice. */
+function rubberShareMost(genome: PadGenome): number {
+  const nodes = quarterNodes(genome)
+  const wallsM2 = quarterWalls(genome).reduce(
+    (sum, { a, b, kind }) => sum + distance(nodes[a]!, nodes[b]!) * thicknessOfM[kind]!,
+    0,
+  )
+  return Math.min(1, wallsM2 / (numbers.quarterWidthM * genome.height[0]!))
+}
+
+const rubberOf = (genome: PadGenome) => numbers.rubbers[genome.rubber[0]!]!
+
+function massMostKg(genome: PadGenome): number {
+  return rubberOf(genome).densityKgpm3 * rubberShareMost(genome) * length * height * depth
+}
+
+/**
+ * Stands still in a wet place and holds no energy but its own squeeze. No pad is stiffer than its share of rubber
+ * times the rubber (Voigt, 1889, from memory), so that its energy is at most half of that times strain squared and
+ * volume.
+ */
+export function padUse(genome: PadGenome): Use {
+  const modulusMostPa = rubberShareMost(genome) * rubberOf(genome).youngPa
+  const squeeze = numbers.workingSqueeze
+  return {
+    places: ['wet-room'],
+    wetted: 'drinking-water',
+    energy: ['none'],
+    gasPressurePa: 0,
+    gasVolumeM3: 0,
+    liquidPressurePa: 0,
+    storedElasticJ: 0.5 * modulusMostPa * squeeze * squeeze * length * height * depth,
+    suspendedKg: 0,
+    suspendedHeightM: 0,
+    movingParts: false,
+    peakForceN: modulusMostPa * squeeze * length * depth,
+    rotationHz: 0,
+    voltageV: 0,
+    battery: 'none',
+    hottestC: 25,
+    massKg: massMostKg(genome),
+    onRunningMachine: false,
+    vibrationHz: 0,
+    upstreamOfPump: false,
+  }
 }
 
 /** Walls of one quarter (the others mirror it) by their stock row, and the narrowest gap. */
 export function partsOf(genome: PadGenome): Parts {
   const nodes = quarterNodes(genome)
   const walls = quarterWalls(genome)
-  const rubber = numbers.rubbers[genome.rubber[0]!]!
+  const rubber = rubberOf(genome)
   const cell = cellOf(genome)
   const gap = narrowestGap(genome, walls)
   return {
@@ -58,6 +85,7 @@ export function partsOf(genome: PadGenome): Parts {
       Math.floor(height / cell.heightM + 1e-9) * cell.heightM,
       depth,
     ],
+    massKg: massMostKg(genome),
   }
 }
 
