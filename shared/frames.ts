@@ -34,7 +34,7 @@ export interface Frames {
   /** Words at places that stand still. */
   readonly labels?: readonly { readonly text: string; readonly atM: readonly number[] }[]
   /** The part of the world worth showing, where that is not the way of the machine; corners x, y[, z]. */
-  readonly window?: { readonly lowM: readonly number[]; readonly highM: readonly number[] }
+  readonly worthSeeing?: { readonly lowM: readonly number[]; readonly highM: readonly number[] }
 }
 
 export interface FrameLink {

@@ -1,11 +1,11 @@
 // Picture and replay from the frames of a plug-in, which may throw or be anything at all: then there is a sentence instead, and
 // the search ends as well as without pictures.
 
-import type { Frames } from '../../../shared/problem.js'
+import type { Frames } from '../../../shared/frames.js'
+import { framesFault } from '../../../shared/pictures/index.js'
 import { plainText } from '../../../shared/refusals.js'
 import { bestSvg } from './best-svg.js'
 import type { PictureFacts } from './facts.js'
-import { framesFault } from './geometry.js'
 import { replayHtml } from './replay.js'
 
 export type Drawn = { readonly svg: string; readonly html: string } | { readonly fault: string }

@@ -85,10 +85,3 @@ export function cautionText({ hazard, because, consult }: Caution): string {
 function capital(text: string): string {
   return text.charAt(0).toUpperCase() + text.slice(1)
 }
-
-/** Text safe inside XML and HTML, attribute values too; characters that XML 1.0 forbids are dropped. */
-export function escaped(text: string): string {
-  return text
-    .replace(/[^\t\n\r\x20-\ud7ff\ue000-\ufffd]/g, '')
-    .replace(/[&<>"']/g, (character) => `&#${character.charCodeAt(0)};`)
-}

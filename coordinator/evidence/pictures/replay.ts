@@ -1,38 +1,48 @@
-// The run of a machine as one HTML file that plays by itself in any browser: no network (its own policy forbids it), no font, no
-// library. The numbers travel as 16-bit steps between the smallest and the largest value, base64: a step is 1/65,535 of
-// the extent, far below a pixel. Replay-client.js draws them; a table says the same in text.
+// The run of a machine as one HTML file that plays by itself in any browser: no network (its own policy forbids it), no
+// font, no library. The numbers travel packed (shared/pictures/packing.ts); the script is replay-client.js bundled with
+// the drawing core. Without script the page still shows moments of the run and a table of the motion; both are printed.
 
 import { readFileSync } from 'node:fs'
 import { check } from '../../../shared/check.js'
-import type { Frames } from '../../../shared/problem.js'
+import type { Frames } from '../../../shared/frames.js'
+import {
+  dark,
+  darkStyle,
+  drawMoments,
+  escaped,
+  fontFamily,
+  framesFault,
+  type Ink,
+  keysFor,
+  legendRows,
+  light,
+  momentsOf,
+  packFrames,
+  type Scene,
+  sampleHeightPx,
+  sampleWidthPx,
+  sceneOf,
+  secondsAt,
+  speeds,
+  svgElements,
+  type Theme,
+} from '../../../shared/pictures/index.js'
 import {
   alwaysCaution,
   cautionText,
-  escaped,
   type PictureFacts,
   resultSentence,
   significant,
   titleOf,
 } from './facts.js'
-import {
-  extentOf,
-  framesFault,
-  kindsOf,
-  momentsOf,
-  nodeAt,
-  nodeCount,
-  roundStep,
-  secondsAt,
-} from './geometry.js'
-import { colourOf, dark, fontFamily, type LinkStyle, light, linkStyles, type Theme } from './style.js'
+import { replayScript } from './replay-script.js'
 
 const momentsInTable = 9
 
 /** The page as HTML text. The frames must be sound (framesFault). */
 export function replayHtml(frames: Frames, facts: PictureFacts): string {
   check(framesFault(frames) === undefined, 'frames were checked before they are drawn')
-  const styles = linkStyles(kindsOf(frames))
-  const lanes = styles.filter(({ isActive }) => isActive).length
+  const scene = sceneOf(frames)
   return `<!doctype html>
 <html lang="en">
 <head>
@@ -42,7 +52,8 @@ export function replayHtml(frames: Frames, facts: PictureFacts): string {
 <meta name="color-scheme" content="light dark">
 <title>${escaped(titleOf(facts))}</title>
 <style>
-${variables(lanes)}
+${variables()}
+${darkStyle()}
 ${asset('replay-page.css')}
 </style>
 </head>
@@ -51,15 +62,18 @@ ${asset('replay-page.css')}
 <h1>${escaped(titleOf(facts))}</h1>
 <p>${escaped(resultSentence(facts))}</p>
 <p class="faint">Shown: ${escaped(facts.shown)}.</p>
-${player(frames, styles)}
+${player(scene)}
+${legend(scene)}
+${keyTable(scene)}
 <section class="caution"><h2>Cautions</h2>${paragraphs([...facts.cautions.map(cautionText), alwaysCaution])}</section>
 ${section('Machine', facts.description)}
-${table(frames, facts)}
+${moments(scene, facts)}
+${table(scene, facts)}
 ${section('Origin', facts.provenance)}
 </main>
-<script type="application/json" id="data">${dataJson(frames, styles)}</script>
-<script type="module">
-${asset('replay-client.js')}
+<script type="application/json" id="data">${dataJson(frames)}</script>
+<script>
+${replayScript}
 </script>
 </body>
 </html>
@@ -75,56 +89,68 @@ function asset(name: string): string {
   return text
 }
 
-function variables(lanes: number): string {
+function variables(): string {
   const of = (theme: Theme) =>
-    `--paper: ${theme.paper}; --ink: ${theme.ink}; --faint: ${theme.faint}; --ground-fill: ${theme.groundFill}; --caution: ${theme.caution}; --caution-fill: ${theme.cautionFill}; --focus: ${theme.active[0]};`
-  return `:root { --font: ${fontFamily}; --lanes: ${Math.max(1, lanes)}; ${of(light)} }
-@media (prefers-color-scheme: dark) { :root { ${of(dark)} } }
-@media print { #strip, .row { display: none } }`
+    (Object.keys(theme) as Ink[]).map((ink) => `--${ink}: ${theme[ink]};`).join(' ')
+  return `:root { --font: ${fontFamily}; ${of(light)} }
+@media screen and (prefers-color-scheme: dark) { :root { ${of(dark)} } }`
 }
 
-function player(frames: Frames, styles: readonly LinkStyle[]): string {
-  const last = frames.positions.length - 1
-  const strip = styles.some(({ isActive }) => isActive)
-    ? '<canvas id="strip" role="img" aria-label="Drive of each actuator group over time; up is longer"></canvas>'
-    : '<canvas id="strip" hidden></canvas>'
-  const speeds = [0.1, 0.25, 0.5, 1, 2, 4]
+function player(scene: Scene): string {
+  const isSolid = scene.frames.dimensions === 3
+  const options = speeds
     .map(
       (speed) =>
         `<option value="${speed}"${speed === 1 ? ' selected' : ''}>${speed} times real time</option>`,
     )
     .join('')
-  return `<canvas id="stage" tabindex="0" role="img" aria-label="The machine moving over the ground. A table of its motion follows below." aria-describedby="keys"></canvas>
-<div class="row"><button id="play" type="button">Play</button>
-<input id="scrub" type="range" min="0" max="${last}" step="1" value="0" aria-label="Time">
+  const turntable = `<div class="row" role="group" aria-label="Turntable">${turnButtons
+    .map(([key, shown, label]) => button(key, shown, label))
+    .join('')}</div>`
+  return `<div id="stage"${isSolid ? ' class="solid"' : ''} tabindex="0" role="application" aria-label="The machine in motion. Moments of it and a table follow below." aria-describedby="keys"><canvas id="canvas" aria-hidden="true"></canvas></div>
+<div class="controls">
+<div class="row"><button id="play" type="button">Play</button>${button('ArrowLeft', '−1', 'One frame back')}${button('ArrowRight', '+1', 'One frame forward')}
+<input id="scrub" type="range" min="0" max="${scene.lastFrame}" step="1" value="0" aria-label="Time">
 <span id="clock"></span></div>
-<div class="row"><label>Speed <select id="speed">${speeds}</select></label>
+<div class="row"><label>Speed <select id="speed">${options}</select></label>
 <label><input id="follow" type="checkbox" checked> Follow the machine</label>
-<label><input id="trace" type="checkbox" checked> Show the path</label></div>
-${strip}
-${legend(frames, styles)}
-<p class="faint" id="keys">Keys, with the drawing in focus: space plays and pauses, left and right step by one frame, with shift by ten, home and end go to the ends.</p>
-<noscript><p>The drawing needs JavaScript; the table below does not.</p></noscript>`
+<label${scene.frames.markers.length === 0 ? ' hidden' : ''}><input id="way" type="checkbox" checked> Show its path</label></div>
+${isSolid ? turntable : ''}
+<div class="over"><canvas id="strip" role="img" aria-label="Drives and contact over time; up is longer. Press or drag to go to a time."></canvas><div id="now" aria-hidden="true"></div></div>
+</div>
+<noscript><p>Playing needs JavaScript; the moments and the table below do not.</p></noscript>`
 }
 
-function legend(frames: Frames, styles: readonly LinkStyle[]): string {
-  const line = (style: LinkStyle, theme: Theme) =>
-    `<path d="M1 8h36" stroke="${colourOf(theme, style)}" stroke-width="${style.width}"${style.dash.length > 0 ? ` stroke-dasharray="${style.dash.map((part) => part * style.width).join(' ')}"` : ''}/>`
-  const items = styles.map((style) => sample((theme) => line(style, theme), style.kind))
-  const markers = frames.markers.map(({ label }) =>
-    sample(
-      (theme) =>
-        `<circle cx="19" cy="8" r="6" fill="${theme.marker}" fill-opacity="0.35" stroke="${theme.marker}" stroke-width="2"/>`,
-      label,
-    ),
+/** Key, what the button shows, what it does. */
+const turnButtons = [
+  ['a', '↶', 'Turn left'],
+  ['d', '↷', 'Turn right'],
+  ['w', '⤒', 'More from above'],
+  ['s', '⤓', 'More from the side'],
+  ['1', 'side', 'From the side'],
+  ['2', 'front', 'From the front'],
+  ['3', 'top', 'From above'],
+  ['4', 'corner', 'From the corner'],
+] as const
+
+function button(key: string, shown: string, label: string): string {
+  return `<button type="button" data-key="${escaped(key)}" aria-label="${label}" title="${label}">${shown}</button>`
+}
+
+function legend(scene: Scene): string {
+  const items = legendRows(scene).map(
+    ({ sample, words }) =>
+      `<li><svg width="${sampleWidthPx}" height="${sampleHeightPx}" viewBox="0 0 ${sampleWidthPx} ${sampleHeightPx}" aria-hidden="true">${svgElements(sample)}</svg>${escaped(words)}</li>`,
   )
-  return `<ul class="legend">${[...items, ...markers].join('')}</ul>`
+  return `<ul class="legend" aria-label="Legend">${items.join('')}</ul>`
 }
 
-/** A drawn example in both themes; the page shows the one that fits. */
-function sample(draw: (theme: Theme) => string, label: string): string {
-  const picture = (theme: Theme, media: string) => `<g class="${media}">${draw(theme)}</g>`
-  return `<li><svg width="38" height="16" aria-hidden="true"><style>.on-dark{display:none}@media (prefers-color-scheme: dark){.on-dark{display:inline}.on-light{display:none}}</style>${picture(light, 'on-light')}${picture(dark, 'on-dark')}</svg>${escaped(label)}</li>`
+function keyTable(scene: Scene): string {
+  const rows = keysFor(scene).map(
+    ({ shown, says }) => `<div><dt><kbd>${escaped(shown)}</kbd></dt><dd>${escaped(says)}</dd></div>`,
+  )
+  const drag = scene.frames.dimensions === 3 ? ' Dragging over the drawing turns it.' : ''
+  return `<section class="keys" id="keys"><h2>Keys, with the drawing in focus</h2><dl>${rows.join('')}</dl><p class="faint">Pressing or dragging on the curves goes to that time.${drag}</p></section>`
 }
 
 function paragraphs(lines: readonly string[]): string {
@@ -135,9 +161,23 @@ function section(title: string, lines: readonly string[]): string {
   return lines.length === 0 ? '' : `<section><h2>${title}</h2>${paragraphs(lines)}</section>`
 }
 
+const stillsWidthPx = 1000
+
+/** The same stills as in the picture: for print, for people without script, and at a glance. */
+function moments(scene: Scene, facts: PictureFacts): string {
+  const { operations, heightPx } = drawMoments(scene, {
+    leftPx: 4,
+    topPx: 0,
+    widthPx: stillsWidthPx - 8,
+    unit: 1.1,
+  })
+  const high = Math.ceil(heightPx + 6)
+  return `<section><h2>Moments</h2><div class="scroll" tabindex="0" role="region" aria-label="Moments of the run"><svg class="stills" viewBox="0 0 ${stillsWidthPx} ${high}" width="${stillsWidthPx}" height="${high}" role="img" aria-label="Moments of the run of ${escaped(facts.id)}">${svgElements(operations)}</svg></div></section>`
+}
+
 /** The motion in numbers: where the machine's middle and each marker are. */
-function table(frames: Frames, facts: PictureFacts): string {
-  const nodes = nodeCount(frames)
+function table(scene: Scene, facts: PictureFacts): string {
+  const { frames, middlesM } = scene
   const markers = frames.markers.slice(0, 4)
   const head = [
     'time, s',
@@ -145,93 +185,35 @@ function table(frames: Frames, facts: PictureFacts): string {
     ...markers.flatMap(({ label }) => [`${label} along, m`, `${label} height, m`]),
   ]
   const rows = momentsOf(frames, momentsInTable).map((frame) => {
-    let sum = 0
-    for (let node = 0; node < nodes; node++) sum += nodeAt(frames, frame, node)[0]
-    const places = markers.flatMap(({ node }) => nodeAt(frames, frame, node).map((value) => value.toFixed(3)))
-    return [secondsAt(frames, frame).toFixed(2), (sum / nodes).toFixed(3), ...places]
+    const places = markers.flatMap(({ node }) => {
+      const at = node * frames.dimensions
+      return [frames.positions[frame]![at]!, frames.positions[frame]![at + 1]!].map((value) =>
+        value.toFixed(3),
+      )
+    })
+    return [secondsAt(frames, frame).toFixed(2), middle(scene, frame).toFixed(3), ...places]
   })
-  const cells = (tag: string, row: readonly string[]) =>
-    `<tr>${row.map((cell) => `<${tag}>${escaped(cell)}</${tag}>`).join('')}</tr>`
-  const travel = nodeTravel(frames)
+  const headCells = head.map((cell) => `<th scope="col">${escaped(cell)}</th>`).join('')
+  const bodyRows = rows
+    .map((row) => `<tr>${row.map((cell) => `<td>${escaped(cell)}</td>`).join('')}</tr>`)
+    .join('')
+  const travel = middle(scene, scene.lastFrame) - middle(scene, 0)
+  const seconds = significant(secondsAt(frames, middlesM.length / 3 - 1))
   return `<details><summary>The motion as a table</summary>
-<p>In ${significant(secondsAt(frames, frames.positions.length - 1))} s the middle of ${escaped(facts.id)} moves ${significant(travel)} m along the ground.</p>
-<div class="scroll" tabindex="0" role="region" aria-label="Motion"><table><thead>${cells('th scope="col"', head).replace(/<\/th scope="col">/g, '</th>')}</thead><tbody>${rows.map((row) => cells('td', row)).join('')}</tbody></table></div></details>`
+<p>In ${seconds} s the middle of ${escaped(facts.id)} moves ${significant(travel)} m along the ground.</p>
+<div class="scroll" tabindex="0" role="region" aria-label="Motion"><table><thead><tr>${headCells}</tr></thead><tbody>${bodyRows}</tbody></table></div></details>`
 }
 
-function nodeTravel(frames: Frames): number {
-  const middle = (frame: number) => {
-    let sum = 0
-    for (let node = 0; node < nodeCount(frames); node++) sum += nodeAt(frames, frame, node)[0]
-    return sum / nodeCount(frames)
-  }
-  return middle(frames.positions.length - 1) - middle(0)
+/** Mean place of all nodes along the ground; of the machine's bodies where there are no nodes. */
+function middle({ frames, nodeCount, middlesM }: Scene, frame: number): number {
+  if (nodeCount === 0) return middlesM[3 * frame]!
+  const positions = frames.positions[frame]!
+  let sum = 0
+  for (let node = 0; node < nodeCount; node++) sum += positions[node * frames.dimensions]!
+  return sum / nodeCount
 }
 
-interface Packed {
-  readonly base64: string
-  readonly low: number
-  readonly step: number
-}
-
-/** Numbers as little-endian 16-bit steps between their smallest and largest. */
-export function packed(values: readonly number[]): Packed {
-  const low = values.reduce((a, b) => Math.min(a, b), Infinity)
-  const high = values.reduce((a, b) => Math.max(a, b), -Infinity)
-  const step = high > low ? (high - low) / 65_535 : 1
-  const bytes = Buffer.alloc(2 * values.length)
-  for (const [i, value] of values.entries()) bytes.writeUInt16LE(Math.round((value - low) / step), 2 * i)
-  return { base64: bytes.toString('base64'), low: Number.isFinite(low) ? low : 0, step }
-}
-
-function dataJson(frames: Frames, styles: readonly LinkStyle[]): string {
-  const nodes = nodeCount(frames)
-  const all = frames.positions.map((_, frame) => frame)
-  const places = all.flatMap((frame) =>
-    Array.from({ length: nodes }, (_, node) => nodeAt(frames, frame, node)),
-  )
-  const kinds = styles.map(({ kind }) => kind)
-  const extent = extentOf(frames, all)
-  const first = extentOf(frames, [0])
-  const wide = extent.right - extent.left
-  const data = {
-    frames: frames.positions.length,
-    nodes,
-    secondsPerFrame: frames.secondsPerFrame,
-    x: packed(places.map(([x]) => x)),
-    y: packed(places.map(([, y]) => y)),
-    links: frames.links.map(({ a, b, kind }) => [a, b, kinds.indexOf(kind)]),
-    radii: frames.nodeRadiiM,
-    ground: frames.ground,
-    markers: frames.markers.map(({ node, radiusM }) => ({ node, radiusM })),
-    drives: drivesOf(frames, kinds),
-    styles,
-    extent: {
-      ...extent,
-      bottom: Math.min(extent.bottom, lowestGround(frames, extent.left, extent.right)),
-      bodyWidth: first.right - first.left,
-    },
-    tick: roundStep(Math.max(wide, 1e-6) / 8),
-    bar: roundStep(Math.max(first.right - first.left, 1e-6) / 2),
-    light,
-    dark,
-  }
+function dataJson(frames: Frames): string {
   // Inside a script element only "<" could end it.
-  return JSON.stringify(data).replace(/</g, '\\u003c')
-}
-
-function lowestGround(frames: Frames, left: number, right: number): number {
-  const below = frames.ground.filter(([x]) => x >= left && x <= right).map(([, y]) => y)
-  return below.reduce((a, b) => Math.min(a, b), Infinity)
-}
-
-/** One lane a kind: links of one kind are driven alike; where they are not, their mean is shown. */
-function drivesOf(frames: Frames, kinds: readonly string[]): { kind: number; values: Packed }[] {
-  return kinds.flatMap((kind, place) => {
-    const own = frames.drive.filter(({ link }) => frames.links[link]!.kind === kind)
-    if (own.length === 0) return []
-    const mean = frames.positions.map(
-      (_, frame) => own.reduce((sum, { values }) => sum + values[frame]!, 0) / own.length,
-    )
-    return [{ kind: place, values: packed(mean) }]
-  })
+  return JSON.stringify(packFrames(frames)).replace(/</g, '\\u003c')
 }
