@@ -4,6 +4,7 @@
 // Power. Where only the force at standstill and the speed without load are known, force is taken to fall along a
 // straight line with speed (common practice, no source); the most power is then a quarter of their product.
 
+import { check } from '../check.js'
 import { cos } from '../detmath/index.js'
 import { silicones } from './materials.js'
 import type { ActuatorClass } from './types.js'
@@ -145,3 +146,14 @@ export const actuatorClasses = {
     source: "makers' data sheets of wiper-type motors, from memory; duty and temperature assumed",
   },
 } as const satisfies { readonly [name: string]: ActuatorClass }
+
+/** Limits of one linear actuator of this class and length, in the names of a lattice's guided strut. */
+export function strutLimits(row: ActuatorClass, lengthM: number) {
+  check(row.motion === 'linear', 'a strut is a linear actuator')
+  return {
+    forceLimitN: row.forceMost,
+    strainLimit: row.strokeMost ?? 1,
+    strainRateLimitPerSecond: row.rateMostPerSecond,
+    powerLimitW: row.powerMost * lengthM,
+  }
+}

@@ -7,6 +7,7 @@ export {
   braidContractionMost,
   braidForceN,
   straightLinePower,
+  strutLimits,
 } from './actuators.js'
 export { frictionRows, rubberFriction } from './friction.js'
 export { makingFaults, makingFaultText } from './makeability.js'

@@ -7,6 +7,7 @@ import {
   braidContractionMost,
   braidForceN,
   smallBellows,
+  strutLimits,
 } from './actuators.js'
 import { frictionRows, rubberFriction } from './friction.js'
 import { foams, gentYoungPa, hardnessSpread, metals, plastics, ruessYoungPa, silicones } from './materials.js'
@@ -222,6 +223,18 @@ describe('actuators', () => {
     // 172 MPa "maximum safe" for many uses (a maker's sheet, read).
     const { forceMost } = actuatorClasses.memoryWire
     expect(forceMost / ((Math.PI * 0.25e-3 ** 2) / 4)).toBeLessThanOrEqual(172e6 * (1 + 1e-12))
+  })
+
+  test('limits of a strut are those of its class, power by length', () => {
+    // A straight line from force to speed gives a quarter of their product: 5.6549 N, 0.06 m at 1.2 1/s.
+    const { forceLimitN, strainLimit, strainRateLimitPerSecond, powerLimitW } = strutLimits(
+      actuatorClasses.bellows,
+      0.06,
+    )
+    expect([strainLimit, strainRateLimitPerSecond]).toEqual([0.25, 1.2])
+    expect(forceLimitN).toBeCloseTo(5.6549, 4)
+    expect(powerLimitW).toBeCloseTo((5.6549 * 1.2 * 0.06) / 4, 5)
+    expect(() => strutLimits(actuatorClasses.wormGearedMotor, 0.1)).toThrow(/linear/)
   })
 
   test('the bellows pushes with pressure times bore', () => {
