@@ -100,7 +100,15 @@ export function layersOf(spec: RigidSpec): string[] {
 }
 
 function checkWorld(spec: RigidSpec, checker: Checker): void {
-  const { bodies, joints = [], stepSeconds, solverRounds = 4, sizeM = 1, contactHz = 30 } = spec
+  const {
+    bodies,
+    joints = [],
+    stepSeconds,
+    solverRounds = 4,
+    solverSweeps = 1,
+    sizeM = 1,
+    contactHz = 30,
+  } = spec
   checker.point(spec.gravityMps2, 'gravityMps2', 1e3)
   demand(isIn(stepSeconds, 1e-5, 0.1), 'stepSeconds', stepSeconds, 'a step of 1e-5 to 0.1 s')
   demand(bodies.length > 0, 'bodies', 'none', 'at least one body')
@@ -108,8 +116,9 @@ function checkWorld(spec: RigidSpec, checker: Checker): void {
   demand(joints.length <= jointsMost, 'joints', joints.length, `at most ${jointsMost}`)
   const shapes = bodies.reduce((sum, body) => sum + body.shapes.length, 0)
   demand(shapes <= shapesMost, 'shapes', shapes, `at most ${shapesMost}`)
-  const isRounds = Number.isInteger(solverRounds) && isIn(solverRounds, 1, 64)
-  demand(isRounds, 'solverRounds', solverRounds, 'a whole number of 1 to 64')
+  for (const [name, count] of Object.entries({ solverRounds, solverSweeps })) {
+    demand(Number.isInteger(count) && isIn(count, 1, 64), name, count, 'a whole number of 1 to 64')
+  }
   demand(isIn(sizeM, 1e-3, 1e3), 'sizeM', sizeM, 'a length of 0.001 to 1000 m')
   demand(isIn(contactHz, 0.1, 1e4), 'contactHz', contactHz, 'a frequency of 0.1 to 10000 Hz')
   const layers = layersOf(spec)
@@ -257,6 +266,9 @@ function checkMotor(motor: MotorSpec, at: string): void {
   demand(isAtLeast0(motor.damping), `${at}.damping`, motor.damping, 'a finite number of at least 0')
   const works = motor.stiffness > 0 || motor.damping > 0
   demand(works, at, 'neither stiffness nor damping', 'one of them above 0')
+  const { rampMost } = motor
+  const ramps = rampMost === undefined || isIn(rampMost, 1e-9, 1e9)
+  demand(ramps, `${at}.rampMost`, rampMost, 'a finite number above 0')
   for (const name of ['effortMost', 'rateMost', 'powerMostW'] as const) {
     demand(isIn(motor[name], 1e-9, 1e9), `${at}.${name}`, motor[name], 'a finite number above 0')
   }

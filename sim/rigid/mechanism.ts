@@ -78,7 +78,7 @@ export function driveMechanism(mechanism: Mechanism, h: number): void {
   isHeld.fill(false)
   for (let round = 0; round <= drives.length; round++) {
     solve(mechanism, h)
-    if (!holdBeyondLimits(mechanism)) break
+    if (!holdBeyondLimits(mechanism, h)) break
   }
   for (const [i, drive] of drives.entries()) {
     if (drive && !isHeld[i]) addEffort(joints[i]!, drive.effort, held[joints[i]!.a]!, held[joints[i]!.b]!)
@@ -86,7 +86,7 @@ export function driveMechanism(mechanism: Mechanism, h: number): void {
 }
 
 /** Reads the efforts of the solution; those beyond a limit become loads. True when one did. */
-function holdBeyondLimits({ joints, drives, held, isHeld, rows, right }: Mechanism): boolean {
+function holdBeyondLimits({ joints, drives, held, isHeld, rows, right }: Mechanism, h: number): boolean {
   let at = rows.length - drives.filter((drive) => drive !== undefined).length
   let isNew = false
   for (const [i, drive] of drives.entries()) {
@@ -94,7 +94,7 @@ function holdBeyondLimits({ joints, drives, held, isHeld, rows, right }: Mechani
     const wanted = right[at++]!
     if (isHeld[i]) continue
     const joint = joints[i]!
-    drive.effort = limited(drive, wanted, joint.rate)
+    drive.effort = limited(drive, wanted, joint.place, joint.rate, h)
     if (drive.effort === wanted) continue
     isHeld[i] = true
     isNew = true
@@ -117,7 +117,8 @@ const units = [
   [Float64Array.of(1, 0), Float64Array.of(0, 1)],
   [Float64Array.of(1, 0, 0), Float64Array.of(0, 1, 0), Float64Array.of(0, 0, 1)],
 ] as const
-const across = [Float64Array.of(0, 0), Float64Array.of(0, 0, 0), Float64Array.of(0, 0, 0)] as const
+const across2 = [Float64Array.of(0, 0)] as const
+const across3 = [Float64Array.of(0, 0, 0), Float64Array.of(0, 0, 0)] as const
 
 /** The rows that hold a joint together; the number of the row after them. */
 function fillJoint(joint: JointMotion, rows: readonly Row[], first: number, held: readonly Held[]): number {
@@ -143,19 +144,19 @@ function fillDriven(joint: JointMotion, row: Row, held: readonly Held[]): void {
 /** Unit vectors across an axis: one in 2-D, two in 3-D. */
 function perpendicular(axis: Float64Array): readonly Float64Array[] {
   if (axis.length === 2) {
-    const one = across[0]
+    const one = across2[0]
     one[0] = -axis[1]!
     one[1] = axis[0]!
-    return [one]
+    return across2
   }
-  const [, one, two] = across
+  const [one, two] = across3
   // The coordinate axis that lies most across, less its share along the axis.
   const least = [0, 1, 2].reduce((a, b) => (Math.abs(axis[b]!) < Math.abs(axis[a]!) ? b : a))
   for (let i = 0; i < 3; i++) one[i] = (i === least ? 1 : 0) - axis[least]! * axis[i]!
   const length = Math.sqrt(one[0]! * one[0]! + one[1]! * one[1]! + one[2]! * one[2]!)
   for (let i = 0; i < 3; i++) one[i]! /= length
   cross(axis, one, two, 0)
-  return [one, two]
+  return across3
 }
 
 function cross(a: Float64Array, b: Float64Array, out: Float64Array, at: number): void {
@@ -168,20 +169,25 @@ const arm = Float64Array.of(0, 0, 0)
 
 /** Rate at which b's end moves along a direction as seen from the point of a that is there. */
 function pointRow(row: Row, joint: JointMotion, direction: Float64Array, held: readonly Held[]): void {
-  for (const [on, body, sign] of [
-    [row.onA, row.a, -1],
-    [row.onB, row.b, 1],
-  ] as const) {
-    const { centre } = held[body]!
-    for (let i = 0; i < direction.length; i++) {
-      on[i] = sign * direction[i]!
-      arm[i] = joint.endB[i]! - centre[i]!
-    }
-    if (direction.length === 2) on[2] = sign * (arm[0]! * direction[1]! - arm[1]! * direction[0]!)
-    else {
-      cross(arm, direction, on, 3)
-      for (let i = 3; i < 6; i++) on[i]! *= sign
-    }
+  fillPoint(row.onA, joint.endB, direction, held[row.a]!.centre, -1)
+  fillPoint(row.onB, joint.endB, direction, held[row.b]!.centre, 1)
+}
+
+function fillPoint(
+  on: Float64Array,
+  end: Float64Array,
+  direction: Float64Array,
+  centre: Float64Array,
+  sign: number,
+): void {
+  for (let i = 0; i < direction.length; i++) {
+    on[i] = sign * direction[i]!
+    arm[i] = end[i]! - centre[i]!
+  }
+  if (direction.length === 2) on[2] = sign * (arm[0]! * direction[1]! - arm[1]! * direction[0]!)
+  else {
+    cross(arm, direction, on, 3)
+    for (let i = 3; i < 6; i++) on[i]! *= sign
   }
 }
 
@@ -238,18 +244,22 @@ function coupling(row: Row, other: Row): number {
 }
 
 /** Row of G times the velocities that the bodies would have after the step without joints and drives. */
-function freeRate(row: Row, { held, inverseMass, gravity }: Mechanism, h: number): number {
-  let rate = 0
-  for (const [on, by, body] of [
-    [row.onA, row.byA, row.a],
-    [row.onB, row.byB, row.b],
-  ] as const) {
-    const { velocity, force, torque } = held[body]!
-    if (inverseMass[body] === 0) continue
-    rate += dot(on, velocity)
-    for (let i = 0; i < force.length; i++) rate += h * (by[i]! * force[i]! + on[i]! * gravity[i]!)
-    for (let i = 0; i < torque.length; i++) rate += h * by[force.length + i]! * torque[i]!
-  }
+function freeRate(row: Row, mechanism: Mechanism, h: number): number {
+  return freeRateOf(row.onA, row.byA, row.a, mechanism, h) + freeRateOf(row.onB, row.byB, row.b, mechanism, h)
+}
+
+function freeRateOf(
+  on: Float64Array,
+  by: Float64Array,
+  body: number,
+  { held, inverseMass, gravity }: Mechanism,
+  h: number,
+): number {
+  if (inverseMass[body] === 0) return 0
+  const { velocity, force, torque } = held[body]!
+  let rate = dot(on, velocity)
+  for (let i = 0; i < force.length; i++) rate += h * (by[i]! * force[i]! + on[i]! * gravity[i]!)
+  for (let i = 0; i < torque.length; i++) rate += h * by[force.length + i]! * torque[i]!
   return rate
 }
 

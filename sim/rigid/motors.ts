@@ -3,9 +3,10 @@
 // step an effort is worked out for every drive, put on b and, turned round, on a, and it stays for the step. What a
 // drive did is therefore known and not inferred:
 //
-//   command   moves towards the target, at most rateMost * h a step; r is the rate at which it moved
+//   command   moves towards the target at a rate r of at most rateMost, which changes by at most rampMost * h a step
+//             and is such that it can still stop at the target, sqrt(2 rampMost |target - command|)
 //   effort    k (command - q') + d (r - v')   q', v' place and rate of the joint at the end of the step
-//             clamped to +-effortMost; where effort * rate > powerMost, effort = powerMost / rate
+//             clamped to +-effortMost; where effort * rate > powerMost, effort = powerMost / rate (mean rate of the step)
 //   work      effort * h * (rate before + rate after) / 2 (exact for a constant effort on a free joint)
 //
 // q' and v' are foreseen: all jointed bodies together take one linearly implicit step under their loads, their joints
@@ -53,18 +54,33 @@ const within = (value: number, most: number) => Math.max(-most, Math.min(most, v
 
 /** Moves the command on by one step of h seconds. */
 export function moveCommand(drive: Drive, h: number): void {
-  const { stiffness, rateMost } = drive.spec
+  const { stiffness, rateMost, rampMost = Number.POSITIVE_INFINITY } = drive.spec
+  const way = drive.target - drive.command
+  let rate = within(drive.targetRate, rateMost)
   if (stiffness > 0) {
-    const move = within(drive.target - drive.command, rateMost * h)
-    drive.command += move
-    drive.commandRate = move / h
-  } else drive.commandRate = within(drive.targetRate, rateMost)
+    const stopping = rampMost < Number.POSITIVE_INFINITY ? Math.sqrt(2 * rampMost * Math.abs(way)) : rateMost
+    rate = within(way / h, Math.min(rateMost, stopping))
+  }
+  drive.commandRate += within(rate - drive.commandRate, rampMost * h)
+  if (stiffness > 0) drive.command += drive.commandRate * h
 }
 
-/** An effort within the drive's limits, at this rate of the joint. */
-export function limited({ spec }: Drive, wanted: number, rate: number): number {
-  const effort = within(wanted, spec.effortMost)
-  return effort * rate > spec.powerMostW ? spec.powerMostW / rate : effort
+/**
+ * An effort within the drive's limits, where the joint has this rate before the step and, if the effort were `wanted`,
+ * one after it that the law of the drive tells.
+ */
+export function limited(
+  { spec, command, commandRate }: Drive,
+  wanted: number,
+  q: number,
+  v: number,
+  h: number,
+): number {
+  const { stiffness, damping, effortMost, powerMostW } = spec
+  const after = (stiffness * (command - q) + damping * commandRate - wanted) / (damping + h * stiffness)
+  const rate = (v + after) / 2
+  const effort = within(wanted, effortMost)
+  return effort * rate > powerMostW ? powerMostW / rate : effort
 }
 
 /** Books what the effort did in the step that is over. */

@@ -76,6 +76,7 @@ function fill(world: World, spec: RigidSpec): EngineWorld {
   const { integrationParameters: settings } = world
   settings.dt = spec.stepSeconds
   settings.numSolverIterations = spec.solverRounds ?? 4
+  settings.numInternalPgsIterations = spec.solverSweeps ?? 1
   settings.lengthUnit = spec.sizeM ?? 1
   if (spec.contactHz !== undefined) settings.contact_natural_frequency = spec.contactHz
   const bodies = spec.bodies.map((body) => world.createRigidBody(describeBody(body)))

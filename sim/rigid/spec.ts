@@ -75,6 +75,8 @@ export interface MotorSpec {
   readonly effortMost: number
   /** The command moves no faster than this. */
   readonly rateMost: number
+  /** How fast the command's rate changes, rad/s^2 or m/s^2; at once when absent. */
+  readonly rampMost?: number
   /** Power given to the joint stays within this; effort that brakes is not limited by it. */
   readonly powerMostW: number
 }
@@ -118,6 +120,8 @@ export interface RigidSpec {
   readonly restitutionRule?: PairRule
   /** Rounds of the contact and joint solver in one step, 1 to 64; 4 unless said. */
   readonly solverRounds?: number
+  /** Sweeps over all contacts and joints within a round, 1 to 64; 1 unless said. Helps chains of light and heavy parts. */
+  readonly solverSweeps?: number
   /**
    * Size of an ordinary body of this world, m; 1 unless said. The library allows an overlap of a thousandth of it
    * and looks for contacts two thousandths ahead.

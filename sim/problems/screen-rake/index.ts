@@ -1,0 +1,74 @@
+// The screen rake as a problem: a linkage with motors that clears debris from an intake screen. What it is and which
+// handbook cases stand behind it: README.md beside this file.
+
+import { actuatorMeasures, worstFigures } from '../../../shared/making/measures.js'
+import type { Situation } from '../../../shared/problem.js'
+import { defineProblem } from '../../problem.js'
+import { library } from '../../rigid/rigid2d.js'
+import { type RakeGenome, rakeGenome, repairRake } from './genome.js'
+import { rakeParts, rakeProcess, rakeUse } from './making.js'
+import { numbers } from './numbers.js'
+import { describeRake, rakeCautions } from './paper.js'
+import { rakeFrames } from './replay.js'
+import { drawIntake, type IntakeCondition } from './screen.js'
+import { runTrial } from './trial.js'
+
+function simulateOne(genome: RakeGenome, { condition }: Situation<IntakeCondition>, divide = 1) {
+  const result = runTrial(genome, condition, divide)
+  if ('reason' in result) return { failed: `${result.reason} at ${result.seconds.toFixed(2)} s` }
+  const { overLip, raised, energyJ, peakTorqueNm, clearedKg, machineKg, motors } = result
+  const { stroke, power, duty } = worstFigures(motors)
+  return {
+    objectives: {
+      cleared: (1 - numbers.raisedCounts) * overLip + numbers.raisedCounts * raised,
+      energy: energyJ,
+      peakTorque: peakTorqueNm,
+    },
+    measures: {
+      overLip,
+      raised,
+      clearedMass: clearedKg,
+      machineMass: machineKg,
+      motors: motors.length,
+      stroke,
+      power,
+      duty,
+    },
+  }
+}
+
+const { stroke, power, duty } = actuatorMeasures(numbers.motor)
+
+export default defineProblem({
+  name: 'screen-rake',
+  // The library's version is part of the problem's: results of two versions are never taken for the same.
+  version: `1+${library}`,
+  summary: 'A motor-driven linkage rakes debris up an intake screen and over its lip into a trough.',
+  genome: rakeGenome,
+  objectives: {
+    cleared: { direction: 'maximise', unit: '1' },
+    energy: { direction: 'minimise', unit: 'J' },
+    peakTorque: { direction: 'minimise', unit: 'N m' },
+  },
+  measures: {
+    overLip: { low: 0, high: 1, unit: '1' },
+    raised: { low: 0, high: 1, unit: '1' },
+    clearedMass: { low: 0, high: 40, unit: 'kg' },
+    machineMass: { low: 0, high: 15, unit: 'kg' },
+    motors: { low: 1, high: 3, unit: '1' },
+    stroke,
+    power,
+    duty,
+  },
+  drawCondition: drawIntake,
+  simulate: (genome, situations) => situations.map((situation) => simulateOne(genome, situation)),
+  simulateFiner: (genome, situations, divide) =>
+    situations.map((situation) => simulateOne(genome, situation, divide)),
+  repair: repairRake,
+  frames: rakeFrames,
+  describe: describeRake,
+  cautions: rakeCautions,
+  process: rakeProcess,
+  parts: rakeParts,
+  use: rakeUse,
+})

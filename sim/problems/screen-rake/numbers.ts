@@ -1,0 +1,99 @@
+// The numbers of the rake's world, each with where it comes from. SI units. The machine, its screen and the water
+// works are invented; the numbers are ordinary ones of the trade, good enough for comparing designs, not for building.
+
+import { cos, sin } from '../../../shared/detmath/trigonometry.js'
+import { actuatorClasses } from '../../../shared/making/actuators.js'
+
+const degree = Math.PI / 180
+const motor = actuatorClasses.wormGearedMotor
+
+export const numbers = {
+  degree,
+  gravityMps2: 9.81,
+  waterKgpm3: 1000,
+
+  // The intake: a bar screen 0.5 m wide across a small channel. Bars lean back 70 degrees from the horizontal (hand-
+  // and machine-raked screens stand at 60 to 80 degrees: common practice, no source). From the lip an apron falls
+  // at 30 degrees into a trough: wet wood slides on steel from about 20 degrees (friction 0.35, assumed).
+  screenWidthM: 0.5,
+  screenAngle: 70 * degree,
+  screenLengthM: 1.2,
+  barThicknessM: 0.04,
+  apronAngle: 30 * degree,
+  apronLengthM: 0.3,
+  troughDepthM: 0.3,
+  troughLengthM: 0.6,
+  /** A piece is cleared when its centre is this far behind the lip. */
+  clearedBehindM: 0.02,
+
+  // The machine stands over the trough; its base pin lies in this window.
+  baseLowM: [0.2, 1.4],
+  baseHighM: [1.2, 2.1],
+
+  // Links: square tube of aluminium, 40 x 40 x 3 mm: 444 mm^2 at 2700 kg/m^3.
+  linkWidthM: 0.04,
+  linkKgpm: 1.2,
+  // Comb: 12 tines of stainless rod, 8 mm (50 mm^2 at 7900 kg/m^3: 0.4 kg/m each), on a cross bar of 0.5 m.
+  tineCount: 12,
+  tineKgpm: 0.4,
+  tineWidthM: 0.012,
+  crossBarKg: 0.6,
+  crossBarRadiusM: 0.02,
+  /** Steel tines and aluminium links on wet debris, 0.3 to 0.5: assumed. */
+  machineFriction: 0.4,
+
+  // Drives: a worm-geared motor of 24 V (class and source: shared/making) and a chain stage of the given ratio with
+  // an efficiency of 0.9 (assumed). Commands go no faster than half the speed without load, where a motor with a
+  // straight line of torque over speed gives its most power.
+  motor,
+  gears: [1, 2, 4],
+  stageEfficiency: 0.9,
+  /** The rotor as felt at the motor's own shaft: 2e-5 kg m^2 behind a worm of 1:40 (assumed). */
+  rotorKgm2: 0.032,
+  motorKg: motor.fittingKg + 0.5,
+  /** Rack and pinion of the sliding arm. */
+  pinionM: 0.05,
+  /** Position control: full effort at this error, and damping for a tenth of a second. Assumed. */
+  fullEffortRad: 0.05,
+  fullEffortM: 0.02,
+  dampingSeconds: 0.1,
+  /** Time in which a drive runs up to its full rate. Assumed. */
+  rampSeconds: 0.4,
+
+  // The trial: the water brings debris for 1 s while the machine waits at its first pose, then it works for 12 s.
+  settleSeconds: 1,
+  workSeconds: 12,
+  stepSeconds: 1 / 80,
+  solverRounds: 2,
+  solverSweeps: 4,
+  waterSeconds: 0.05,
+  framesPerSecond: 20,
+  /**
+   * What counts as cleared: the mass behind the lip, and by this share the way that the mass has been raised out of the
+   * water. Without it every machine that only lifts scores like one that stands still, and nothing leads to clearing.
+   */
+  raisedCounts: 0.2,
+  /** Deeper than this in the screen or deck at the start, the machine cannot be put up. */
+  startDepthMostM: 0.03,
+
+  // Debris. Drag coefficients of blunt bodies about 1.1 (common practice, no source). Turning in water is damped with a
+  // time constant of 0.3 s (assumed).
+  dragCoefficient: 1.1,
+  spinSeconds: 0.3,
+} as const
+
+/** Lip of the screen, where its face ends. */
+export const lipM: readonly [number, number] = [
+  numbers.screenLengthM * cos(numbers.screenAngle),
+  numbers.screenLengthM * sin(numbers.screenAngle),
+]
+
+/** Limits of a drive with a stage of this ratio; effort N m, rate rad/s. */
+export function driveOf(ratio: number) {
+  const { forceMost, rateMostPerSecond, powerMost } = numbers.motor
+  return {
+    effortMost: forceMost * ratio * numbers.stageEfficiency,
+    rateMost: rateMostPerSecond / 2 / ratio,
+    powerMostW: powerMost * numbers.stageEfficiency,
+  }
+}
