@@ -28,5 +28,9 @@ export const builtInProblems: { readonly [name: string]: BuiltInProblem } = Obje
     'seal-pad',
     'A rubber pad of repeated cells for a hatch seal, toward a wanted Poisson ratio and stiffness.',
   ),
+  row(
+    'screen-rake',
+    'A motor-driven linkage rakes debris up an intake screen and over its lip into a trough.',
+  ),
   ...(Object.keys(classics) as ClassicName[]).map((name) => row(name, classics[name].summary)),
 ])
