@@ -122,7 +122,7 @@ const mainLobe: { readonly [W in Window]: number } = { rectangle: 1, hann: 2 }
  * filling measured to 0.003 bins of the record and 0.1 % when the tone stands alone).
  */
 export function spectralPeaks(of: Spectrum, most: number, floor = 0.01): Peak[] {
-  const { binHz, amplitudes, resolutionHz, window } = of
+  const { binHz, amplitudes, resolutionHz } = of
   const candidates: number[] = []
   let highest = 0
   for (let k = 1; k + 1 < amplitudes.length; k++) {
@@ -136,7 +136,7 @@ export function spectralPeaks(of: Spectrum, most: number, floor = 0.01): Peak[] 
   const stands = (k: number, other: number) => {
     const bins = (Math.abs(other - k) * binHz) / resolutionHz
     // Half as much again, because lobes of several tones add up.
-    return bins >= mainLobe[window] && amplitudes[k]! > 1.5 * amplitudes[other]! * leakage[window](bins)
+    return bins >= mainLobe[of.window] && amplitudes[k]! > 1.5 * amplitudes[other]! * leakage[of.window](bins)
   }
   const kept: number[] = []
   for (const k of candidates) {
