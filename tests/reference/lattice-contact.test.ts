@@ -77,11 +77,11 @@ describe('a spring and a dashpot let go at zero force', () => {
 
 describe('a bouncing ball', () => {
   test.each([
-    [1, 0.3],
-    [1.5, 0.5],
+    [1, 1e6, 0.3],
+    [1.5, 2e7, 0.5],
   ] as const)(
-    'exponent %d: every bounce gives back what Hunt and Crossley say of its speed',
-    (exponent, strength) => {
+    'exponent %d, %d N/m^n: every bounce gives back what Hunt and Crossley say of its speed',
+    (exponent, stiffness, strength) => {
       // Heights fall by e^2 a bounce (any textbook of mechanics), e from y (1 + e) = ln((1 + y)/(1 - e y)) with y in
       // proportion to the speed of that bounce (Hunt and Crossley, Coefficient of restitution interpreted as damping in
       // vibroimpact, 1975, from memory): a real ball bounces the better the slower it falls.
