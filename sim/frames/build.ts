@@ -41,7 +41,8 @@ export interface Framework {
   readonly hinges: readonly Hinge[]
   /** Area of the cell, m^2; 0 where the framework is not periodic. */
   readonly cellAreaM2: number
-  readonly meanLengthM: number
+  /** What corrections are measured against: side of a square as large as the cell, or of the box round the nodes, m. */
+  readonly sizeM: number
   /** Unknown of a rotation of a node; -1 when nothing uses it. */
   readonly turnOf: (node: number, turn?: number) => number
 }
@@ -66,9 +67,19 @@ export function buildFramework(spec: FrameworkSpec): Framework {
       stiffnessNmprad,
     })),
     cellAreaM2: Math.abs(a1[0] * a2[1] - a1[1] * a2[0]),
-    meanLengthM: bars.reduce((sum, bar) => sum + bar.lengthM, 0) / bars.length,
+    sizeM: periods ? Math.sqrt(Math.abs(a1[0] * a2[1] - a1[1] * a2[0])) : extentM(spec.nodes),
     turnOf: numbering.turnOf,
   }
+}
+
+function extentM(nodes: readonly Point[]): number {
+  let extent = 0
+  for (const axis of [0, 1] as const) {
+    const low = nodes.reduce((least, node) => Math.min(least, node[axis]), Number.POSITIVE_INFINITY)
+    const high = nodes.reduce((most, node) => Math.max(most, node[axis]), Number.NEGATIVE_INFINITY)
+    extent = Math.max(extent, high - low)
+  }
+  return extent
 }
 
 interface Numbering {

@@ -100,10 +100,10 @@ function unknownOf({ equation }: Equations, row: number): number {
 }
 
 const iterationsMost = 30
-/** Corrections below this (relative to the mean bar; rad) end the iteration, which then is at round-off. */
-const correctionLeast = 1e-9
-/** A correction this large (relative to the mean bar; rad) has left the path. */
-const correctionMost = 2
+/** Corrections below this (relative to the framework's size; rad) end the iteration, which then is at round-off. */
+const correctionLeast = 1e-10
+/** A correction this large (relative to its size; rad) has left the path. */
+const correctionMost = 1
 
 /**
  * Moves the held unknowns by `increments` (none when absent) and finds equilibrium with the loads by Newton's method,
@@ -136,8 +136,8 @@ export function equilibrate(situation: Situation, increments?: Float64Array): Ba
   return fail('no equilibrium found')
 }
 
-/** What a correction of unknown i is measured against: the mean bar for displacements, 1 for rotations and strains. */
-function sizeOf({ nodeUnknown, meanStrain, meanLengthM }: Framework, i: number): number {
+/** What a correction of unknown i is measured against: the framework's size for displacements, 1 for rotations and strains. */
+function sizeOf({ nodeUnknown, meanStrain, sizeM }: Framework, i: number): number {
   if (meanStrain >= 0 && i >= meanStrain) return 1
   let low = 0
   let high = nodeUnknown.length - 1
@@ -146,7 +146,7 @@ function sizeOf({ nodeUnknown, meanStrain, meanLengthM }: Framework, i: number):
     if (nodeUnknown[middle]! <= i) low = middle
     else high = middle - 1
   }
-  return i - nodeUnknown[low]! < 2 ? meanLengthM : 1
+  return i - nodeUnknown[low]! < 2 ? sizeM : 1
 }
 
 /** Forces that the bars exert on the unknowns at the present state: reactions where they are held (N, N m). */
