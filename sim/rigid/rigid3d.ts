@@ -14,6 +14,7 @@ import {
   type RigidBody,
   RigidBodyDesc,
   type SdpMatrix3,
+  type Vector,
   version,
   World,
 } from '@dimforge/rapier3d-deterministic-compat'
@@ -203,6 +204,20 @@ const jointKinds: {
   slider: ({ onAM, onBM, axis }) => JointData.prismatic(vector(onAM), vector(onBM), vector(axis!)),
 }
 
+function write({ x, y, z }: Vector, out: Float64Array, first: number): void {
+  out[first] = x
+  out[first + 1] = y
+  out[first + 2] = z
+}
+
+/** Angular momentum about the centre of mass. */
+function spinMomentumOf(body: RigidBody, momentum: Float64Array): void {
+  const inertia = fullMatrix(body.effectiveAngularInertia())
+  const { x, y, z } = body.angvel()
+  for (let k = 0; k < 3; k++)
+    momentum[k] = inertia[3 * k]! * x + inertia[3 * k + 1]! * y + inertia[3 * k + 2]! * z
+}
+
 function engineOf(
   world: World,
   spec: RigidSpec,
@@ -213,23 +228,12 @@ function engineOf(
   const at = { x: 0, y: 0, z: 0 }
   const turn = { x: 0, y: 0, z: 0, w: 1 }
   const masses = bodies.map(massOf)
-  const write = (out: Float64Array, first: number) => {
-    out[first] = at.x
-    out[first + 1] = at.y
-    out[first + 2] = at.z
-  }
-  const read = (from: ArrayLike<number>, first: number) => {
-    at.x = from[first]!
-    at.y = from[first + 1]!
-    at.z = from[first + 2]!
-    return at
-  }
   return {
     masses,
     step: () => world.step(),
     readPose(i, pose) {
       bodies[i]!.translation(at)
-      write(pose, 0)
+      write(at, pose, 0)
       bodies[i]!.rotation(turn)
       pose[3] = turn.x
       pose[4] = turn.y
@@ -238,13 +242,13 @@ function engineOf(
     },
     readVelocity(i, velocity) {
       bodies[i]!.linvel(at)
-      write(velocity, 0)
+      write(at, velocity, 0)
       bodies[i]!.angvel(at)
-      write(velocity, 3)
+      write(at, velocity, 3)
     },
     readCentre(i, centre) {
       bodies[i]!.worldCom(at)
-      write(centre, 0)
+      write(at, centre, 0)
     },
     readInverseInertia(i, inverse) {
       inverse.set(fullMatrix(bodies[i]!.effectiveWorldInvInertia()))
@@ -253,31 +257,25 @@ function engineOf(
       bodies[i]!.linvel(at)
       const along = masses[i]!.massKg * (at.x * at.x + at.y * at.y + at.z * at.z)
       const momentum = new Float64Array(3)
-      this.spinMomentum(i, momentum)
+      spinMomentumOf(bodies[i]!, momentum)
       bodies[i]!.angvel(at)
       return (along + momentum[0]! * at.x + momentum[1]! * at.y + momentum[2]! * at.z) / 2
     },
-    spinMomentum(i, momentum) {
-      const inertia = fullMatrix(bodies[i]!.effectiveAngularInertia())
-      bodies[i]!.angvel(at)
-      for (let k = 0; k < 3; k++) {
-        momentum[k] = inertia[3 * k]! * at.x + inertia[3 * k + 1]! * at.y + inertia[3 * k + 2]! * at.z
-      }
-    },
+    spinMomentum: (i, momentum) => spinMomentumOf(bodies[i]!, momentum),
     isAlive: (i) => bodies[i]!.isEnabled(),
     setLoad(i, force, torque) {
       const body = bodies[i]!
       body.resetForces(true)
       body.resetTorques(true)
-      body.addForce(read(force, 0), true)
-      body.addTorque(read(torque, 0), true)
+      body.addForce(vector(force), true)
+      body.addTorque(vector(torque), true)
     },
     place(i, pose, velocity) {
       const body = bodies[i]!
-      body.setTranslation(read(pose, 0), true)
+      body.setTranslation(vector(pose), true)
       body.setRotation(quaternion(pose.subarray(3)), true)
-      body.setLinvel(read(velocity, 0), true)
-      body.setAngvel(read(velocity, 3), true)
+      body.setLinvel(vector(velocity), true)
+      body.setAngvel(vector(velocity.subarray(3)), true)
     },
     contacts: () => contactsFrom(touchesOf(world, colliders, owners), spec),
     snapshot: () => world.takeSnapshot(),

@@ -15,6 +15,7 @@ import {
   type Plugin,
 } from 'esbuild'
 import { type Refusal, refuse } from '../../shared/refusals.js'
+import { builtInProblems } from '../../sim/problems/index.js'
 import { emittedFile, emittedRoot } from '../entry.js'
 import { nearNames } from './near.js'
 import { openingText, reservedNames, substitutions } from './purity.js'
@@ -38,10 +39,33 @@ const extensions = ['.ts', '.mts', '.js', '.mjs'] as const
  */
 export async function bundlePlugin(file: string): Promise<PluginBundle> {
   const entry = mustExist(file)
-  const folder = dirname(entry)
+  return bundleModule(file, `./${basename(entry)}`, dirname(entry))
+}
+
+/** True for the name of a problem that comes with this package: skerry/problems/NAME. */
+export function isBuiltIn(problem: string): boolean {
+  return problem.startsWith(builtInPrefix)
+}
+
+/** Bundles the problem 'skerry/problems/NAME'. Refuses problem-not-found, with near names. */
+export async function bundleBuiltIn(module: string): Promise<PluginBundle> {
+  const name = module.slice(builtInPrefix.length)
+  if (!Object.hasOwn(builtInProblems, name)) {
+    const near = nearNames(name, Object.keys(builtInProblems)).map((one) => `${builtInPrefix}${one}`)
+    throw refuse('problem-not-found', {
+      detail: `there is no problem ${module}; there are ${Object.keys(builtInProblems).sort().join(', ')}.`,
+      ...(near.length === 0 ? {} : { cure: `Did you mean ${near.join(' or ')}?` }),
+    })
+  }
+  return bundleModule(module, module, emittedRoot)
+}
+
+const builtInPrefix = 'skerry/problems/'
+
+async function bundleModule(file: string, module: string, folder: string): Promise<PluginBundle> {
   const result = await buildOrRefuse(file, {
     ...fixedOptions,
-    stdin: { contents: wrapper(basename(entry)), resolveDir: folder, sourcefile: 'plug-in', loader: 'js' },
+    stdin: { contents: wrapper(module), resolveDir: folder, sourcefile: 'plug-in', loader: 'js' },
     absWorkingDir: folder,
     format: 'esm',
     banner: { js: openingText(await detMathCode()) },
@@ -78,9 +102,9 @@ const fixedOptions = {
 } satisfies BuildOptions
 
 /** Mentions the reserved names freely, so that the bundler renames a plug-in's own top-level ones. */
-function wrapper(name: string): string {
+function wrapper(module: string): string {
   const mentions = reservedNames.map((reserved) => `typeof ${reserved}`).join(', ')
-  return `import * as plugin from ${JSON.stringify(`./${name}`)}\nexport default plugin.default\nexport const hidden = [${mentions}]\n`
+  return `import * as plugin from ${JSON.stringify(module)}\nexport default plugin.default\nexport const hidden = [${mentions}]\n`
 }
 
 /** The real path of the plug-in. */
@@ -156,8 +180,8 @@ function messageLine(message: Message): string {
 
 /** Parts that carry a library with them: who does not import one does not have it in the bundle. */
 const largeParts: { readonly [part: string]: string } = {
-  rigid2d: 'sim/rigid/rigid2d',
-  rigid3d: 'sim/rigid/rigid3d',
+  rigid2d: 'sim/rigid/rigid2d.js',
+  rigid3d: 'sim/rigid/rigid3d.js',
 }
 
 /** 'skerry' and 'skerry/...' are this package's emitted files, whatever is installed beside the plug-in. */
@@ -175,7 +199,7 @@ const ownModules: Plugin = {
           errors: [{ text: `there is no '${path}': import from ${names} or 'skerry/problems/NAME'` }],
         }
       }
-      return { path: emittedFile(module), sideEffects: false }
+      return { path: emittedFile(module.replace(/\.js$/, '')), sideEffects: false }
     })
     // What a plug-in does not use of ours stays out, with the packages it would pull in. So does the check that
     // defineProblem makes: whoever loads the bundle makes it (load.ts), and it would bring a whole package along.
