@@ -17,7 +17,7 @@ import {
   tensionN,
 } from '../../sim/lattice/observe.js'
 import type { LatticeSpec } from '../../sim/lattice/spec.js'
-import { imageOf, randomBody } from './lattice-bodies.js'
+import { imageOf, randomBody } from './lattice-free-bodies.js'
 import { orderOf } from './physics-bodies.js'
 
 const seeds = fc.integer({ min: 0, max: 2 ** 32 - 1 })
