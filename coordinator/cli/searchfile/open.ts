@@ -9,7 +9,7 @@ import type { AnyProblem } from '../../../shared/problem.js'
 import { Refusal, refuse } from '../../../shared/refusals.js'
 import { stream } from '../../../shared/streams.js'
 import { problemPlan } from '../../../sim/problem.js'
-import { bundlePlugin, type PluginBundle } from '../../../worker/plugin/bundle.js'
+import { bundleBuiltIn, bundlePlugin, isBuiltIn, type PluginBundle } from '../../../worker/plugin/bundle.js'
 import { loadPlugin } from '../../../worker/plugin/load.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import { type Finding, refusalOf } from './finding.js'
@@ -97,9 +97,9 @@ async function loadProblem(
 ): Promise<{ bundle: PluginBundle; problem: AnyProblem } | Refusal | undefined> {
   const path = read.partial.problem
   if (path === undefined) return undefined
-  const plugin = resolve(dirname(file), path)
+  const plugin = isBuiltIn(path) ? path : resolve(dirname(file), path)
   try {
-    const bundle = await bundlePlugin(plugin)
+    const bundle = await (isBuiltIn(path) ? bundleBuiltIn(path) : bundlePlugin(plugin))
     await tryLoad(bundle.code)
     return { bundle, problem: await loadPlugin({ code: bundle.code }) }
   } catch (error) {

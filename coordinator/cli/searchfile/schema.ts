@@ -114,7 +114,7 @@ export const fields = {
     .string('a name of lower-case letters, digits and -')
     .regex(/^[a-z0-9][a-z0-9-]{0,59}$/, 'a name of lower-case letters, digits and -, at most 60 characters'),
   problem: z
-    .string('the path of the problem, such as ./problem.ts')
+    .string('the path of the problem, such as ./problem.ts, or skerry/problems/NAME')
     .min(1, 'the path of the problem')
     .max(4096, 'a path'),
   seed: whole(0, most),
