@@ -24,7 +24,11 @@ export function stepLines(step: StepTrial | undefined): string[] {
 /** Changes below this part of the spread disappear in it. Common practice, no source. */
 const smallPart = 0.3
 
+/** Relative changes below this are rounding. */
+const roundingPart = 1e-9
+
 function changeLine({ objective, unit, mean, change, largestChange, bias, spread }: StepChange): string {
+  if (largestChange <= roundingPart * Math.abs(mean)) return `${objective} does not change beyond rounding.`
   const u = unit === '1' ? '' : ` ${unit}`
   const ofMean = mean === 0 ? '' : ` (${percent(Math.abs(change / mean))} of its mean)`
   const sizes = `${objective} changes by ${short(change)}${u}${ofMean} on average, ${short(largestChange)}${u} at most, ${short(bias)}${u} with its sign`
