@@ -65,6 +65,8 @@ const theme = () => (darkness.matches ? dark : light)
 
 function paintStage() {
   const { pen, rectangle } = cleared(canvas)
+  // Nothing to paint on while it is not shown, as when the page is printed.
+  if (rectangle.widthPx < 1 || rectangle.heightPx < 1) return
   paintCanvas(pen, drawStage(scene, player, rectangle, unitNow()), theme())
 }
 
@@ -74,6 +76,7 @@ function paintStrip() {
   strip.style.height = `${heightPx}px`
   if (heightPx === 0) return
   const { pen, rectangle } = cleared(strip)
+  if (rectangle.widthPx < 1) return
   paintCanvas(pen, drawStrip(scene, rectangle, unitNow()), theme())
 }
 
