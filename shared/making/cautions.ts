@@ -126,8 +126,9 @@ function textOf(error: unknown): string {
 }
 
 /** The use with how the machine is made, and with the mass of the listed parts where the use does not say it. */
-export function declaredOf({ process, parts }: Declaring, genome: Genome, use: Use): Declared {
-  const methods = process === undefined ? {} : { methods: process.methods }
+export function declaredOf(problem: Declaring, genome: Genome, use: Use): Declared {
+  const { parts } = problem
+  const methods = problem.process === undefined ? {} : { methods: problem.process.methods }
   if (use.massKg !== undefined || parts === undefined) return { ...use, ...methods }
   try {
     const { massKg } = parts(genome as never)
