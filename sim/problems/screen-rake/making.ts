@@ -1,15 +1,19 @@
 // What the workshop can make of a rake, what a genome asks for, and what the machine is used for.
 
-import type { Parts, Process, Use } from '../../../shared/making/types.js'
+import { aluminiumSquareTubes, stainlessRods, stockRow } from '../../../shared/making/stock.js'
+import type { Parts, Process, StrutPart, Use } from '../../../shared/making/types.js'
 import type { RakeGenome } from './genome.js'
 import { ratioOf } from './genome.js'
 import { buildMachine, type Machine } from './machine.js'
 import { driveOf, numbers } from './numbers.js'
 
+const linkTube = stockRow(aluminiumSquareTubes, 'aluminium square tube 40 x 3 mm')
+const tineRod = stockRow(stainlessRods, 'stainless rod 8 mm')
+
 export const rakeProcess: Process = {
   name: 'tube and rod cut, drilled and pinned; motors bought',
   methods: ['cutting-to-length', 'machining', 'screwing'],
-  stock: [],
+  stock: [linkTube, tineRod],
   actuators: [numbers.motor],
   massMostKg: 15,
 }
@@ -26,10 +30,28 @@ export function machineKg({ outlines, bodies }: Machine): number {
   return massKg
 }
 
+const lengthOf = ({ from, to }: Machine['outlines'][number]) => {
+  const [dx, dy] = [to[0] - from[0], to[1] - from[1]]
+  return Math.sqrt(dx * dx + dy * dy)
+}
+
+/** Links of square tube; tines of rod, bent from one piece where they have a hook. The cross bar is the same for all. */
+function strutsOf({ outlines }: Machine): StrutPart[] {
+  const links = outlines.filter(({ label }) => label !== 'comb' && label !== 'cross bar')
+  const tineM = outlines
+    .filter(({ label }) => label === 'comb')
+    .reduce((sum, piece) => sum + lengthOf(piece), 0)
+  return [
+    ...links.map((piece) => ({ name: piece.label, stock: linkTube.name, lengthM: lengthOf(piece) })),
+    ...(tineM > 0 ? [{ name: 'tines', stock: tineRod.name, lengthM: tineM }] : []),
+  ]
+}
+
 /** Motors by their class: what their stage leaves of the rate, and their torque before it. */
 export function rakeParts(genome: RakeGenome): Parts {
   const machine = buildMachine(genome)
   return {
+    struts: strutsOf(machine),
     actuators: machine.driven.map(({ joint }, i) => ({
       name: `${joint} motor`,
       class: numbers.motor.name,
