@@ -37,13 +37,12 @@ export function driveLanes({ kinds, frames }: Scene): Lane[] {
   return [...groups, ...motors]
 }
 
-/** Nodes that touch something at some time. */
+/** Nodes that touch something at some times and not at others. */
 export function touchingNodes({ contacts }: Frames): number[] {
-  const touching = new Set<number>()
-  for (const frame of contacts ?? []) {
-    for (const [node, touches] of frame.entries()) if (touches === 1) touching.add(node)
-  }
-  return [...touching].sort((a, b) => a - b)
+  const [first, ...others] = contacts ?? []
+  if (first === undefined) return []
+  const nodes = Array.from(first, (_, node) => node)
+  return nodes.filter((node) => others.some((frame) => frame[node] !== first[node]))
 }
 
 export const lanePx = 30

@@ -63,7 +63,7 @@ export function fitBox(
 /** A strut of 44 pixels gets the ordinary line weights. */
 export function lineFactor({ meanLinkM }: Scene, pxPerM: number, unit: number): number {
   if (meanLinkM === 0) return 1
-  return Math.min(1.9, Math.max(0.5, (meanLinkM * pxPerM) / (44 * unit)))
+  return Math.min(1.9, Math.max(0.6, (meanLinkM * pxPerM) / (44 * unit)))
 }
 
 /** Room around a followed machine, in parts of its own length. */

@@ -107,7 +107,7 @@ function player(scene: Scene): string {
   const turntable = `<div class="row" role="group" aria-label="Turntable">${turnButtons
     .map(([key, shown, label]) => button(key, shown, label))
     .join('')}</div>`
-  return `<div id="stage"${isSolid ? ' class="solid"' : ''} tabindex="0" role="application" aria-label="The machine in motion. Moments of it and a table follow below." aria-describedby="keys"><canvas id="canvas" aria-hidden="true"></canvas></div>
+  return `<div id="stage" class="${[isSolid ? 'solid' : '', isTall(scene) ? 'tall' : ''].join(' ').trim()}" tabindex="0" role="application" aria-label="The machine in motion. Moments of it and a table follow below." aria-describedby="keys"><canvas id="canvas" aria-hidden="true"></canvas></div>
 <div class="controls">
 <div class="row"><button id="play" type="button">Play</button>${button('ArrowLeft', '−1', 'One frame back')}${button('ArrowRight', '+1', 'One frame forward')}
 <input id="scrub" type="range" min="0" max="${scene.lastFrame}" step="1" value="0" aria-label="Time">
@@ -119,6 +119,11 @@ ${isSolid ? turntable : ''}
 <div class="over"><canvas id="strip" role="img" aria-label="Drives and contact over time; up is longer. Press or drag to go to a time."></canvas><div id="now" aria-hidden="true"></div></div>
 </div>
 <noscript><p>Playing needs JavaScript; the moments and the table below do not.</p></noscript>`
+}
+
+/** Higher than the ordinary stage has room for. */
+function isTall({ wayBox: { low, high } }: Scene): boolean {
+  return high[1] - low[1] > 0.45 * Math.max(high[0] - low[0], high[2] - low[2])
 }
 
 /** Key, what the button shows, what it does. */

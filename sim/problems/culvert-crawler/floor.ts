@@ -19,8 +19,8 @@ export interface CulvertCondition {
 }
 
 const spacingM = 0.004
-const firstXM = -0.8
-const lastXM = 2.4
+export const firstXM = -0.8
+export const lastXM = 2.4
 
 /** Friction 0.4 to 0.9, lag 20 to 80 ms, stones and silt 2 to 8 mm high every 6 to 20 cm. */
 export function drawCulvert(stream: Stream): CulvertCondition {

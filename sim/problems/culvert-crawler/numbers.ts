@@ -58,6 +58,9 @@ export const numbers = {
   puckKg: 0.05,
   puckRadiusM: 0.018,
 
+  // A pipe of 200 mm, an ordinary size of small drains (DN 200). Its crown is drawn and takes no part.
+  boreM: 0.2,
+
   // The trial.
   settleSeconds: 0.6,
   // Uniform drag while settling only, so that nothing swings when the trial starts.
@@ -69,8 +72,8 @@ export const numbers = {
   framesPerSecond: 25,
   samplesPerFrame: 4,
 
-  // Collapse: a bay that keeps less of its area than this, or a strut outside these multiples of its length.
-  bayAreaLeast: 0.15,
+  // Collapse: a bay that keeps less of its area (or volume) than this, or a strut outside these multiples of its length.
+  bayLeast: 0.15,
   strutRatioLeast: 0.6,
   strutRatioMost: 1.5,
 } as const

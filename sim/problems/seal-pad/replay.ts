@@ -129,8 +129,8 @@ export function padFrames(genome: PadGenome, { condition }: ProblemSituation<Cas
     secondsPerFrame: 1 / numbers.framesPerSecond,
     positions,
     links: [
-      ...spec.bars.map(({ a, b }, i) => ({ a, b, kind: kinds[i]! })),
-      { a: plate, b: plate + 1, kind: 'plate' },
+      ...spec.bars.map(({ a, b }, i) => ({ a, b, kind: kinds[i]!, weight: weights[kinds[i]!] ?? 0 })),
+      { a: plate, b: plate + 1, kind: 'plate', weight: 1 },
     ],
     nodeRadiiM: [...spec.nodes.map(() => 0.001), 0.0005, 0.0005],
     ground: [
@@ -141,6 +141,9 @@ export function padFrames(genome: PadGenome, { condition }: ProblemSituation<Cas
     drive: [],
   }
 }
+
+/** How bold a wall is drawn. */
+const weights: { readonly [kind: string]: number } = { 'thin wall': 0, 'middle wall': 0.4, 'thick wall': 0.8 }
 
 const emptyFrames: Frames = {
   dimensions: 2,
