@@ -8,7 +8,7 @@
 // for locomotion control in animals and robots: a review, 2008; both from memory.)
 //
 // Integrated with the classical Runge-Kutta method, error of fourth order, in equal parts of the interval so short that
-// no pull turns a phase by more than `partRadians` in one.
+// in one part no phase is pulled by more than `partRadians` and no linked pair drifts apart by more than that.
 
 import { cos, sin } from '../../shared/detmath/trigonometry.js'
 import { real } from '../../shared/encodings.js'
@@ -123,15 +123,20 @@ function pullTogether(phases: Float64Array, pull: number, pairs: Float64Array, r
 }
 
 /** Equal parts of the interval for one step of the integration each. */
-function partsOf({ links, commonPerSecond = 0, stepSeconds }: PhaseOscillatorsSpec, count: number): number {
+function partsOf(spec: PhaseOscillatorsSpec, count: number): number {
+  const { links, commonPerSecond = 0, stepSeconds, frequenciesHz } = spec
   const pulls = new Float64Array(count).fill(Math.abs(commonPerSecond))
-  for (const { to, couplingPerSecond } of links) pulls[to]! += Math.abs(couplingPerSecond)
-  const strongest = pulls.reduce((most, pull) => Math.max(most, pull), 0)
+  let drift = 0
+  for (const { from, to, couplingPerSecond } of links) {
+    pulls[to]! += Math.abs(couplingPerSecond)
+    drift = Math.max(drift, turn * Math.abs(frequenciesHz[from]! - frequenciesHz[to]!))
+  }
+  const strongest = pulls.reduce((most, pull) => Math.max(most, pull), drift)
   const parts = Math.max(1, Math.ceil((strongest * stepSeconds) / partRadians))
   demand(
     parts <= partsMost,
     'phaseOscillators.links',
-    `pulls of ${strongest} rad/s over intervals of ${stepSeconds} s`,
+    `pulls or differences of ${strongest} rad/s over intervals of ${stepSeconds} s`,
     `at most ${partsMost * partRadians} rad an interval`,
   )
   return parts

@@ -9,6 +9,7 @@ import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
 import { cos, sin } from '../../shared/detmath/trigonometry.js'
 import { refuse } from '../../shared/refusals.js'
 import { type CellSpec, cellForms } from './cell.js'
+import { demandDense } from './linear-model.js'
 
 /**
  * Angular frequencies (rad/s) of the waves with wavevector q (rad/m), from the lowest: as many as coordinates of a cell.
@@ -16,6 +17,7 @@ import { type CellSpec, cellForms } from './cell.js'
  */
 export function bandRadps(cell: CellSpec, wavevectorRadpm: readonly number[]): Float64Array {
   const { dimensions, size, forms } = cellForms(cell)
+  demandDense('cell.nodes', 2 * size)
   demand((cell.beams ?? []).length === 0, 'beams', 'beams', 'none: their rotations carry no mass here')
   demand(
     wavevectorRadpm.length === dimensions,

@@ -7,16 +7,17 @@
 import { refuse } from '../../shared/refusals.js'
 import type { LatticeSpec } from '../lattice/spec.js'
 import { type LinearModel, linearModel, part } from './linear-model.js'
-import { factorise } from './semidefinite.js'
+import { countRigid, rigidMotions } from './rigid-motions.js'
+import { type Factorisation, factorise } from './semidefinite.js'
 
 export interface BlockModuli {
   /** N/m in 2-D (unit thickness), Pa in 3-D. */
   readonly modulus: number
-  /** Towards the other axes in order. */
-  readonly poisson: readonly number[]
+  /** Towards the other axes in order; undefined where a mechanism leaves the lateral strain to chance. */
+  readonly poisson: readonly (number | undefined)[]
   /** Force for a unit displacement of the face, N/m. */
   readonly stiffnessNpm: number
-  /** Motion of every coordinate for a unit displacement of the face. */
+  /** Motion of every coordinate for a unit displacement of the face, one of those that floating parts allow. */
   readonly motion: Float64Array
   /** Motions besides rigid ones that the rollers allow and nothing resists. */
   readonly mechanisms: number
@@ -58,20 +59,57 @@ export function blockModuli(spec: LatticeSpec, axis: number): BlockModuli {
   for (const [i, coordinate] of free.entries()) motion[coordinate] = solution[i]!
   const stiffnessNpm = reaction(model, moved, motion)
   const faceSize = lengthM.reduce((product, length, a) => (a === axis ? product : product * length), 1)
-  const axialStrain = 1 / lengthM[axis]!
-  const lateral = faces.map(
-    (pair, a) =>
-      (meanMotion(model, pair[1], a, motion) - meanMotion(model, pair[0], a, motion)) / lengthM[a]!,
-  )
-  // Rollers leave the motions along the faces and the turn about the axis.
-  const rigid = dimensions === 2 ? 1 : 3
+  const lateral = faces.map((pair, a) => {
+    if (a === axis) return undefined
+    const extension = lateralExtension(model, pair, a, axis)
+    return determined(solver, free, extension) ? applied(extension, motion) / lengthM[a]! : undefined
+  })
   return {
     modulus: (stiffnessNpm * lengthM[axis]!) / faceSize,
-    poisson: lateral.filter((_, a) => a !== axis).map((strain) => -strain / axialStrain + 0),
+    poisson: lateral
+      .filter((_, a) => a !== axis)
+      .map((strain) => (strain === undefined ? undefined : -strain * lengthM[axis]! + 0)),
     stiffnessNpm,
     motion,
-    mechanisms: free.length - solver.rank - rigid,
+    mechanisms: free.length - solver.rank - countRigid(model, free),
   }
+}
+
+/**
+ * What a motion of all coordinates is multiplied with to give the mean motion of one face less that of the opposite one;
+ * with its part along a turn about the pulled axis taken out, which is no strain and which nothing holds.
+ */
+function lateralExtension(
+  model: LinearModel,
+  pair: readonly [Face, Face],
+  a: number,
+  axis: number,
+): Float64Array {
+  const { dimensions, size, positionsM } = model
+  const weights = new Float64Array(size)
+  for (const [face, sign] of [
+    [pair[0], -1],
+    [pair[1], 1],
+  ] as const) {
+    for (const node of face.nodes) weights[node * dimensions + a]! += sign / face.nodes.length
+  }
+  if (dimensions === 2) return weights
+  // Turns x to y, y to z, x to z are those about z, x and y.
+  const turn = rigidMotions(dimensions, size, positionsM)[dimensions + [1, 2, 0][axis]!]!
+  const share = applied(weights, turn) / applied(turn, turn)
+  return weights.map((weight, i) => weight - share * turn[i]!)
+}
+
+/** Whether no motion that costs nothing changes what `weights` measure: whether they lie in the range of the stiffness. */
+function determined(solver: Factorisation, free: readonly number[], weights: Float64Array): boolean {
+  const right = free.map((coordinate) => weights[coordinate]!)
+  return solver.residual(solver.solve(right), right) < 1e-7
+}
+
+function applied(weights: Float64Array, motion: Float64Array): number {
+  let sum = 0
+  for (let i = 0; i < weights.length; i++) sum += weights[i]! * motion[i]!
+  return sum
 }
 
 /** The nodes at the least and at the greatest coordinate, to a millionth of the extent. */
@@ -90,15 +128,6 @@ function facesOf({ dimensions, size, positionsM }: LinearModel, axis: number): [
     return { atM, nodes }
   }
   return [near(low), near(high)]
-}
-
-function meanMotion(
-  { dimensions }: LinearModel,
-  { nodes }: Face,
-  axis: number,
-  motion: Float64Array,
-): number {
-  return nodes.reduce((sum, node) => sum + motion[node * dimensions + axis]!, 0) / nodes.length
 }
 
 /** Sum of the elastic forces on the coordinates named. */

@@ -5,6 +5,7 @@ import type { CellSpec } from './cell.js'
 import { planeConstants, uniaxial } from './elasticity.js'
 import { homogenise } from './homogenise.js'
 import { coordinatesMost, linearModel } from './linear-model.js'
+import { naturalModes } from './modes.js'
 import { factorise } from './semidefinite.js'
 
 const strut = { a: 0, b: 0, shift: [1, 0], stiffnessNpm: 1 }
@@ -214,14 +215,15 @@ describe('semidefinite equations', () => {
 })
 
 test('a lattice that is too large for dense matrices, and an axis that is not there, are refused', () => {
-  const many = Array.from({ length: coordinatesMost / 2 + 1 }, (_, i) => ({ positionM: [i, 0], massKg: 1 }))
-  const rest = { struts: [], gravityMps2: [0, 0], stepSeconds: 'auto' as const }
-  expect(fieldOf(() => linearModel({ nodes: many, ...rest }))).toBe('lattice.nodes')
-  const square = [
-    [0, 0],
-    [1, 1],
-  ].map((positionM) => ({ positionM, massKg: 1 }))
-  expect(fieldOf(() => blockModuli({ nodes: square, ...rest }, 2))).toBe('axis')
-  const flat = many.slice(0, 3)
-  expect(fieldOf(() => blockModuli({ nodes: flat, ...rest }, 0))).toBe('lattice.nodes')
+  const row = (nodes: number, dy: number) => ({
+    nodes: Array.from({ length: nodes }, (_, i) => ({ positionM: [i, i * dy], massKg: 1 })),
+    struts: Array.from({ length: nodes - 1 }, (_, a) => ({ a, b: a + 1, stiffnessNpm: 1, dampingNspm: 0 })),
+    gravityMps2: [0, 0],
+    stepSeconds: 'auto' as const,
+  })
+  expect(fieldOf(() => linearModel(row(coordinatesMost / 2 + 1, 0)))).toBe('lattice.nodes')
+  expect(fieldOf(() => blockModuli(row(2, 1), 2))).toBe('axis')
+  expect(fieldOf(() => blockModuli(row(3, 0), 0))).toBe('lattice.nodes')
+  const strutToNowhere = { ...row(2, 1), struts: [{ a: 0, b: 5, stiffnessNpm: 1, dampingNspm: 0 }] }
+  expect(fieldOf(() => naturalModes(strutToNowhere))).toBe('lattice.struts[0].b')
 })

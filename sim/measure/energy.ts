@@ -238,13 +238,13 @@ function groundLosses(lattice: Lattice): { contactW: number; frictionW: number }
     const across = -sinking / longer
     const [tx, ty, tz] = [vx + across * sx, vy - across, vz + across * sz]
     const speed = Math.sqrt(tx * tx + ty * ty + tz * tz)
-    if (speed > 0) frictionW += frictionOf(lattice, i, tx, tz, speed) * f * Math.sqrt(longer) * speed
+    if (speed > 0) frictionW += frictionOf(lattice, i, tx, tz) * f * Math.sqrt(longer) * speed
   }
   return { contactW, frictionW }
 }
 
-/** Coefficient of friction of a node that slides with `speed`, (tx, tz) of it level; as the integration has it. */
-function frictionOf(lattice: Lattice, node: number, tx: number, tz: number, speed: number): number {
+/** Coefficient of friction of a node that slides with (tx, tz) as seen from above; as the integration has it. */
+function frictionOf(lattice: Lattice, node: number, tx: number, tz: number): number {
   const { dimensions, friction, heading, nodes, stride } = lattice
   const at = dimensions * node
   const [forward, backward] = [friction[at]!, friction[at + 1]!]
@@ -255,7 +255,8 @@ function frictionOf(lattice: Lattice, node: number, tx: number, tz: number, spee
   const ahead = heading[node]!
   const hx = ahead < 0 ? 1 : nodes[ahead]! - nodes[o]!
   const hz = ahead < 0 ? 0 : nodes[ahead + 2]! - nodes[o + 2]!
-  const c = (tx * hx + tz * hz) / (speed * (Math.sqrt(hx * hx + hz * hz) + tiny))
+  const lengths = Math.sqrt(hx * hx + hz * hz) * Math.sqrt(tx * tx + tz * tz)
+  const c = (tx * hx + tz * hz) / (lengths + tiny)
   const along = (c > 0 ? forward : backward) * c
   return Math.sqrt(along * along + sideways * sideways * Math.max(0, 1 - c * c))
 }

@@ -8,6 +8,7 @@
 
 import { type CellForms, type CellSpec, cellForms, cellMeasure, type SpringForm } from './cell.js'
 import { voigtPairs } from './elasticity.js'
+import { demandDense } from './linear-model.js'
 import { factorise } from './semidefinite.js'
 
 export interface Homogenised {
@@ -26,6 +27,7 @@ export interface Homogenised {
 export function homogenise(cell: CellSpec): Homogenised {
   const described = cellForms(cell)
   const { dimensions, size, forms } = described
+  demandDense('cell.nodes', size)
   const pairs = voigtPairs(dimensions)
   const strained = forms.map((form) => pairs.map(([p, q]) => underStrain(form, p, q)))
   const solver = factorise(periodicStiffness(described), size)

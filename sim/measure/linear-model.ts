@@ -10,6 +10,7 @@
 // decomposition of the equilibrium matrix, 1993 (from memory); the rest derived.
 
 import { refuse } from '../../shared/refusals.js'
+import { checkSpec } from '../lattice/build-checks.js'
 import type { AreaSpec, LatticeSpec, StrutSpec, VolumeSpec } from '../lattice/spec.js'
 
 /** Dense matrices: this many coordinates take 72 MB a matrix. */
@@ -33,6 +34,15 @@ export interface LinearModel {
   readonly moved: readonly number[]
 }
 
+/** Refuses more coordinates than dense matrices are good for. */
+export function demandDense(field: string, size: number): void {
+  if (size <= coordinatesMost) return
+  throw refuse('impossible-value', {
+    detail: `found ${size} coordinates, expected at most ${coordinatesMost}: the matrices are dense.`,
+    where: { field },
+  })
+}
+
 /** Where a pair of matrices is put together. */
 interface Assembly {
   readonly dimensions: number
@@ -42,16 +52,15 @@ interface Assembly {
   readonly positionsM: Float64Array
 }
 
-/** The linear model of a description. Refuses more than `coordinatesMost` coordinates and struts without length. */
+/**
+ * The linear model of a description. Refuses ('impossible-value') what buildLattice refuses of nodes and parts, and more
+ * than `coordinatesMost` coordinates.
+ */
 export function linearModel(spec: LatticeSpec): LinearModel {
+  checkSpec(spec)
   const dimensions = spec.dimensions ?? 2
   const size = spec.nodes.length * dimensions
-  if (size > coordinatesMost) {
-    throw refuse('impossible-value', {
-      detail: `found ${size} coordinates, expected at most ${coordinatesMost}: the matrices are dense.`,
-      where: { field: 'lattice.nodes' },
-    })
-  }
+  demandDense('lattice.nodes', size)
   const stiffness = new Float64Array(size * size)
   const damping = new Float64Array(size * size)
   const positionsM = Float64Array.from(spec.nodes.flatMap((node) => node.positionM))
@@ -87,12 +96,6 @@ function direction({ dimensions, positionsM }: Assembly, a: number, b: number) {
     (_, axis) => positionsM[b * dimensions + axis]! - positionsM[a * dimensions + axis]!,
   )
   const lengthM = Math.sqrt(d.reduce((sum, x) => sum + x * x, 0))
-  if (!(lengthM > 0)) {
-    throw refuse('impossible-value', {
-      detail: `nodes ${a} and ${b} are at one place; expected a distance above 0.`,
-      where: { field: 'lattice.nodes' },
-    })
-  }
   return { along: d.map((x) => x / lengthM), lengthM }
 }
 

@@ -7,10 +7,13 @@
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
 import type { LatticeSpec } from '../lattice/spec.js'
 import { type LinearModel, linearModel, part } from './linear-model.js'
-import { factorise } from './semidefinite.js'
+import { countRigid } from './rigid-motions.js'
 
-/** w^2 of at most this part of the largest is zero: a mode 1e5 times slower than the fastest. */
-export const zeroModeBelow = 1e-10
+/**
+ * w^2 of at most this part of the largest is zero: a mode a million times slower than the fastest. Rounding leaves
+ * about 1e-16 times the number of coordinates.
+ */
+export const zeroModeBelow = 1e-12
 
 export interface Mode {
   /** Angular frequency, rad/s; 0 for a zero mode. */
@@ -42,7 +45,7 @@ export interface Modes {
 export function naturalModes(spec: LatticeSpec | LinearModel): Modes {
   const model = 'stiffness' in spec ? spec : linearModel(spec)
   const { free, massKg, dimensions, size, stiffness } = model
-  const rigidModes = countRigid(model)
+  const rigidModes = countRigid(model, free)
   if (free.length === 0) return { modes: [], zeroModes: 0, rigidModes, mechanisms: 0, unstableModes: 0 }
   const perRootKg = free.map((coordinate) => 1 / Math.sqrt(massKg[Math.floor(coordinate / dimensions)]!))
   const scaled = Matrix.from1DArray(free.length, free.length, part(stiffness, size, free, free))
@@ -88,42 +91,4 @@ function upright(shape: Float64Array): Float64Array {
   let at = 0
   for (let i = 1; i < shape.length; i++) if (Math.abs(shape[i]!) > Math.abs(shape[at]!)) at = i
   return shape[at]! < 0 ? shape.map((x) => -x + 0) : shape
-}
-
-/** Rigid motions (translations, turns about each axis) that leave every held coordinate where it is. */
-function countRigid({ dimensions, size, positionsM, free }: LinearModel): number {
-  const isFree = new Set(free)
-  const held = Array.from({ length: size }, (_, i) => i).filter((i) => !isFree.has(i))
-  const all = rigidMotions(dimensions, size, positionsM)
-  return rankOf(all, free.concat(held)) - rankOf(all, held)
-}
-
-/** Columns of unit size about the centre of the nodes. */
-function rigidMotions(dimensions: number, size: number, positionsM: Float64Array): Float64Array[] {
-  const nodes = size / dimensions
-  const centre = new Float64Array(dimensions)
-  for (let i = 0; i < size; i++) centre[i % dimensions]! += positionsM[i]! / nodes
-  const translations = Array.from({ length: dimensions }, (_, axis) =>
-    Float64Array.from({ length: size }, (_, i) => (i % dimensions === axis ? 1 : 0)),
-  )
-  const pairs = [
-    [0, 1],
-    [1, 2],
-    [0, 2],
-  ].slice(0, dimensions === 2 ? 1 : 3)
-  const turns = pairs.map(([p, q]) =>
-    Float64Array.from({ length: size }, (_, i) => {
-      const first = i - (i % dimensions)
-      if (i % dimensions === p) return -(positionsM[first + q!]! - centre[q!]!)
-      return i % dimensions === q ? positionsM[first + p!]! - centre[p!]! : 0
-    }),
-  )
-  return [...translations, ...turns]
-}
-
-function rankOf(columns: readonly Float64Array[], rows: readonly number[]): number {
-  const gram = columns.flatMap((a) =>
-    columns.map((b) => rows.reduce((sum, row) => sum + a[row]! * b[row]!, 0)),
-  )
-  return factorise(Float64Array.from(gram), columns.length).rank
 }

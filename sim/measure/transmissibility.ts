@@ -115,7 +115,7 @@ export function sweptTransmissibility(
   return points
 }
 
-/** Greatest departure of the output from its mean start over that of the input: what a run-up does, resonance passed. */
+/** Greatest departure of the output from where it started over that of the input: what a run-up does, resonance passed. */
 export function peakRatio(input: Float64Array, output: Float64Array): number {
   demandPair(input, output)
   const most = (values: Float64Array) =>
@@ -133,10 +133,13 @@ function powerOfTwo(count: number): number {
   return length
 }
 
-/** Spectrum of the departures from the first value, filled up with zeros. */
+/**
+ * Spectrum of the differences of neighbouring samples, filled up with zeros. The same factor enters input and output, and a
+ * record that ends at rest somewhere else than it began has differences that end at 0.
+ */
 function transformed(samples: Float64Array, length: number): number[] {
   const data = new Array<number>(length).fill(0)
-  for (let n = 0; n < samples.length; n++) data[n] = samples[n]! - samples[0]!
+  for (let n = 1; n < samples.length; n++) data[n - 1] = samples[n]! - samples[n - 1]!
   const out = new Array<number>(2 * length).fill(0)
   transformer(length).realTransform(out, data)
   return out

@@ -5,6 +5,7 @@
 
 import { Matrix, SingularValueDecomposition } from 'ml-matrix'
 import { describe, expect, test } from 'vitest'
+import { hex, sha256 } from '../../shared/digests.js'
 import { Refusal } from '../../shared/refusals.js'
 import type { LatticeSpec, NodeSpec, StrutSpec } from '../../sim/lattice/spec.js'
 import { blockModuli } from '../../sim/measure/block.js'
@@ -147,6 +148,46 @@ describe('struts under tension', () => {
     const found = naturalModes({ ...row([1, 2, 1], [], [0, 2]), struts })
     expect(found.unstableModes).toBe(1)
     near(found.modes[0]!.growthPerSecond, Math.sqrt(10))
+  })
+})
+
+describe('hanging chains of masses on stiff struts, each under the weight below it', () => {
+  /** Angular frequencies of the swinging motions, rad/s; gravity enters through the tensions only. */
+  const swings = (masses: readonly number[], lengths: readonly number[], gravity: number) => {
+    const k = 1e4
+    const nodes: NodeSpec[] = [{ positionM: [0, 0], massKg: 1, pinned: true }]
+    for (const [i, massKg] of masses.entries()) {
+      nodes.push({ positionM: [0, nodes[i]!.positionM[1]! - lengths[i]!], massKg })
+    }
+    const struts = lengths.map((length, i) => {
+      const tension = gravity * masses.slice(i).reduce((a, b) => a + b, 0)
+      return { a: i, b: i + 1, restM: length - tension / k, stiffnessNpm: k, dampingNspm: 0 }
+    })
+    return naturalModes({ ...still, nodes, struts }).modes.map(({ radps }) => radps)
+  }
+
+  // N equal pendulums: w^2 = x g / l, x the zeros of the Laguerre polynomial L_N (from memory, recomputed to
+  // eight decimals or more).
+  test.each([
+    [2, [0.76536686473, 1.84775906502]],
+    [3, [0.64480583, 1.51468821, 2.50797629]],
+    [10, [0.37120543, 0.85408111, 1.34474641]],
+  ])('%d equal ones', (count, truths) => {
+    const ones = new Array<number>(count).fill(1)
+    const found = swings(ones, ones, 1)
+    for (const [i, truth] of truths.entries()) expect(Math.abs(found[i]! - truth)).toBeLessThan(1e-7)
+  })
+
+  test('double pendulums of 1 and 1 kg, 1 and 1 m, and of 2 and 1 kg, 1 and 0.5 m', () => {
+    const rows = [
+      [[1, 1], [1, 1], 2.3971994, 5.7873513],
+      [[2, 1], [1, 0.5], 2.82559022, 6.01340502],
+    ] as const
+    for (const [masses, lengths, slow, fast] of rows) {
+      const found = swings(masses, lengths, 9.81)
+      expect(Math.abs(found[0]! - slow)).toBeLessThan(1e-7)
+      expect(Math.abs(found[1]! - fast)).toBeLessThan(1e-7)
+    }
   })
 })
 
@@ -476,6 +517,43 @@ describe('blocks of struts', () => {
     near(found.poisson[0], 0.2)
   })
 
+  test('an irregular block in space has the same ratios whatever its nodes are called and wherever it floats', () => {
+    const at: number[][] = []
+    for (let x = 0; x < 3; x++) {
+      for (let y = 0; y < 3; y++) {
+        // Faces stay plane along the pulled axis; everything else is pushed about.
+        for (let z = 0; z < 3; z++) at.push([x, y + 0.2 * Math.sin(3 * x + z), z + 0.2 * Math.cos(5 * y + x)])
+      }
+    }
+    const moduli = (order: readonly number[]) => {
+      const nodes = order.map((i) => ({ positionM: at[i]!, massKg: 1 }))
+      const struts = nodes.flatMap((p, a) =>
+        nodes.slice(a + 1).flatMap((q, i) => {
+          const apart = Math.hypot(...p.positionM.map((v, axis) => v - q.positionM[axis]!))
+          return apart < 1.8 ? [strut(a, a + 1 + i)] : []
+        }),
+      )
+      return blockModuli({ ...still, dimensions: 3, gravityMps2: [0, 0, 0], nodes, struts }, 0)
+    }
+    const straight = moduli(at.map((_, i) => i))
+    const stirred = moduli(at.map((_, i) => (i * 7) % 27))
+    expect(straight.mechanisms).toBe(0)
+    near(stirred.modulus, straight.modulus)
+    for (const i of [0, 1]) near(stirred.poisson[i], straight.poisson[i]!)
+  })
+
+  test('a lateral strain that a mechanism leaves to chance is undefined, not a number', () => {
+    const nodes = [
+      [0, 0],
+      [2, 0],
+      [1, 1],
+    ].map((positionM) => ({ positionM, massKg: 1 }))
+    const found = blockModuli({ ...still, nodes, struts: [strut(0, 1), strut(0, 2)] }, 0)
+    expect(found.poisson).toEqual([undefined])
+    expect(found.mechanisms).toBe(1)
+    near(found.stiffnessNpm, 1)
+  })
+
   test('a cube of edges and face diagonals, halved and quartered where blocks share them, has E = 2.5, nu = 1/4', () => {
     // One cell of the simple cubic lattice with k = (1, 1, 0): an edge belongs to 4 cells, a face diagonal to 2.
     const at = [0, 1].flatMap((x) => [0, 1].flatMap((y) => [0, 1].map((z) => [x, y, z])))
@@ -492,4 +570,27 @@ describe('blocks of struts', () => {
     near(found.poisson[1], 0.25)
     expect(found.mechanisms).toBe(0)
   })
+})
+
+test('the same bits everywhere: digest of modes, an answer and a block', () => {
+  // Made of whole numbers and halves only, so that no function of the host enters.
+  const nodes = Array.from({ length: 30 }, (_, i) => {
+    return { positionM: [i % 6, Math.floor(i / 6)], massKg: 1 + i / 8 }
+  })
+  const struts = nodes.flatMap((p, a) =>
+    nodes.slice(a + 1).flatMap((q, i) => {
+      const [dx, dy] = [p.positionM[0]! - q.positionM[0]!, p.positionM[1]! - q.positionM[1]!]
+      return dx * dx + dy * dy < 2.5 ? [strut(a, a + 1 + i, 1 + ((a * i) % 7), 0.125)] : []
+    }),
+  )
+  const spec: LatticeSpec = { ...still, nodes, struts }
+  const { modes } = naturalModes(spec)
+  const answer = harmonicResponse(linearModel(spec), 0.125, { forceN: nodes.flatMap((_, i) => [i % 3, 1]) })
+  const numbers = [
+    ...modes.flatMap(({ radps, dampingRatio, shape }) => [radps, dampingRatio, ...shape]),
+    ...answer.real,
+    ...answer.imaginary,
+    blockModuli(spec, 0).modulus,
+  ]
+  expect(hex(sha256(new Uint8Array(Float64Array.from(numbers).buffer))).slice(0, 16)).toBe('23a67a5f17b1b231')
 })
