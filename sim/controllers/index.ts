@@ -2,6 +2,7 @@
 // way back from a genome. Checks: tests/reference/controllers-*.test.ts.
 
 export { type ActivationName, activations, logistic } from './activations.js'
+export { advanceLanesControlled } from './controlled-lanes.js'
 export {
   advanceControlled,
   type Controller,

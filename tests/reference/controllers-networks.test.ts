@@ -9,6 +9,7 @@ import { checkGenome, randomGenome } from '../../shared/encodings.js'
 import { Refusal } from '../../shared/refusals.js'
 import { stream } from '../../shared/streams.js'
 import { activations, logistic } from '../../sim/controllers/activations.js'
+import { advanceLanesControlled } from '../../sim/controllers/controlled-lanes.js'
 import {
   advanceControlled,
   type Controller,
@@ -20,7 +21,9 @@ import { openLoopFrom } from '../../sim/controllers/open-loop.js'
 import { type RecurrentDesign, recurrentFrom, recurrentParts } from '../../sim/controllers/recurrent.js'
 import { advance } from '../../sim/lattice/advance.js'
 import { buildLattice } from '../../sim/lattice/build.js'
+import { packLanes, unpackLane } from '../../sim/lattice/lanes.js'
 import type { LatticeSpec } from '../../sim/lattice/spec.js'
+import { varyLattice } from '../../sim/lattice/vary.js'
 import { orderOf } from './physics-bodies.js'
 
 const digest = (controller: Controller) =>
@@ -355,6 +358,47 @@ describe('guiding a lattice', () => {
     expect(guided.step).toBe(40)
     expect(sensed[0]).toBe(0)
     expect(sensed[1]).toBeGreaterThan(0)
+  })
+
+  test('four lanes under networks that feel give the bits of each replicate run alone', () => {
+    const felt = { kind: 'strain', strut: 0, filterSeconds: 0.05 } as const
+    const lattice = buildLattice(
+      body({ struts: [strut], guided: [strut, { ...strut, stiffnessNpm: 50 }], sensors: [felt] }),
+    )
+    const design: RecurrentDesign = {
+      inputs: 1,
+      neurons: 3,
+      outputs: 2,
+      timeConstantSeconds: [0.05, 1],
+      weightMost: 12,
+      biasMost: 5,
+      range: [-0.15, 0.15],
+      stepSeconds: 0.02,
+    }
+    const genomes = [1, 2, 3, 4].map((seed) =>
+      randomGenome(recurrentParts(design), stream(seed, 'founder', 1)),
+    )
+    const networks = () =>
+      genomes.map(({ timeConstant, bias, weights }) =>
+        recurrentFrom(design, { timeConstant: timeConstant!, bias: bias!, weights: weights! }),
+      )
+    const alone = networks().map((network) => {
+      const one = varyLattice(lattice, {})
+      expect(advanceControlled(one, network, 100)).toBeUndefined()
+      return one
+    })
+    const lanes = packLanes([0, 1, 2, 3].map(() => varyLattice(lattice, {})))
+    expect(advanceLanesControlled(lanes, networks(), 100)).toEqual([
+      undefined,
+      undefined,
+      undefined,
+      undefined,
+    ])
+    for (const [i, one] of alone.entries()) {
+      expect(unpackLane(lanes, i).nodes).toEqual(one.nodes)
+      expect(one.nodes[6]).not.toBe(1)
+    }
+    expect(alone[0]!.nodes).not.toEqual(alone[1]!.nodes)
   })
 
   test('an interval that is no whole number of steps, and a wrong number of commands, are refused', () => {
