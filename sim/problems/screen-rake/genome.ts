@@ -37,33 +37,6 @@ export const rakeGenome = {
 
 export type RakeGenome = GenomeOf<typeof rakeGenome>
 
-const crankLeastM = 0.1
-const spareM = 0.05
-
-/**
- * A crank that turns all the way round: the crank is the shortest bar, and crank and longest bar are together no longer
- * than the other two (Grashof's rule, with 5 cm to spare). The crank is shortened, then the longest bar. Only genomes
- * of that layout are touched. Pure and idempotent.
- */
-export function repairRake(genome: RakeGenome): RakeGenome {
-  if (layoutOf(genome) !== 'crank') return genome
-  const [coupler, rocker, pin] = [genome.links[0]!, genome.rocker[0]!, genome.rockerPin[0]!]
-  const [short, middle, long] = [coupler, rocker, pin].sort((a, b) => a - b) as [number, number, number]
-  const crankMostM = Math.min(short - spareM, short + middle - long - spareM)
-  if (crankMostM >= crankLeastM) {
-    return { ...genome, crank: Float64Array.of(Math.min(genome.crank[0]!, crankMostM)) }
-  }
-  const longestM = short + middle - crankLeastM - spareM
-  const cut = (value: number) => Math.min(value, longestM)
-  return {
-    ...genome,
-    crank: Float64Array.of(crankLeastM),
-    links: Float64Array.of(cut(coupler), genome.links[1]!),
-    rocker: Float64Array.of(cut(rocker)),
-    rockerPin: Float64Array.of(cut(pin)),
-  }
-}
-
 export function layoutOf(genome: RakeGenome): Layout {
   return layouts[genome.layout[0]!]!
 }

@@ -42,30 +42,12 @@ export function rakeCautions(genome: RakeGenome): readonly Caution[] {
   const force = closingForceN(genome).toFixed(0)
   return [
     {
-      hazard: 'Pinching and shearing',
+      hazard: 'Tines shearing between bars',
       because:
         `tines pass between bars and links close with up to ${force} N, and a timer can start the rake at any time, ` +
         'also with a hand in the screen',
       consult:
         'lock the supply out and block the arm before anybody reaches in; fence, emergency stop within reach, restart only by hand; local machine-safety rules and a person licensed for them',
-    },
-    {
-      hazard: 'Working over water',
-      because: 'the rake stands on a deck over moving water in front of a screen that holds a person under',
-      consult:
-        'local rules for work over and beside water: two people, railing or line, life jacket, flow shut off where it can be',
-    },
-    {
-      hazard: 'Electricity in a wet place',
-      because: `${numbers.motor.voltageV} V motors, their supply and its mains side stand in spray and can be flooded`,
-      consult:
-        "local electrical codes, a licensed electrician and the makers' data sheets; supply above flood level, residual-current protection",
-    },
-    {
-      hazard: 'A stuck rake blocks the intake',
-      because:
-        'an arm that stops in the screen holds debris there: the water upstream rises, the pumps behind run dry',
-      consult: 'the operator of the intake: level alarm, a way to lift the arm by hand, a spare screen',
     },
     {
       hazard: 'The model ends here',

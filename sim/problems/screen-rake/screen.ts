@@ -105,51 +105,54 @@ export function debrisBodies(pieces: readonly Piece[]): BodySpec[] {
   }))
 }
 
-/** A plate from one point to another, its face on the left of the way, as thick as the bars. */
-function plate(
-  from: readonly [number, number],
-  to: readonly [number, number],
-  turn: number,
-): ShapeSpec['atM'] {
-  const half = numbers.barThicknessM / 2
-  return [(from[0] + to[0]) / 2 + half * sin(turn), (from[1] + to[1]) / 2 - half * cos(turn)]
-}
+type Place = readonly [number, number]
+const half = numbers.barThicknessM / 2
 
-export const apronEndM: readonly [number, number] = [
+export const apronEndM: Place = [
   lipM[0] + numbers.apronLengthM * cos(numbers.apronAngle),
   lipM[1] - numbers.apronLengthM * sin(numbers.apronAngle),
 ]
 const troughFloorM = apronEndM[1] - numbers.troughDepthM
 const troughEndM = apronEndM[0] + numbers.troughLengthM
 
-/** Screen, apron, trough and channel floor: one body that stands still. Tines pass between the bars. */
+/** A straight plate as thick as the bars, by the middle line of its thickness. */
+export interface Plate {
+  readonly layer: 'bars' | 'deck'
+  readonly from: Place
+  readonly to: Place
+  readonly turn: number
+}
+
+/** A plate whose upper left face runs from one place to another. */
+function below(layer: Plate['layer'], from: Place, to: Place, turn: number): Plate {
+  const [x, y] = [half * sin(turn), -half * cos(turn)]
+  return { layer, from: [from[0] + x, from[1] + y], to: [to[0] + x, to[1] + y], turn }
+}
+const level = (y: number, from: number, to: number) => below('deck', [from, y], [to, y], 0)
+const upright = (x: number, from: number, to: number): Plate => {
+  return { layer: 'deck', from: [x, from], to: [x, to], turn: Math.PI / 2 }
+}
+
+/** Screen, apron, floor and two walls of the trough, channel floor. */
+export const plates: readonly Plate[] = [
+  below('bars', [0, 0], lipM, numbers.screenAngle),
+  below('deck', lipM, apronEndM, -numbers.apronAngle),
+  level(troughFloorM, apronEndM[0] - 0.1, troughEndM + 0.1),
+  upright(troughEndM + half, troughFloorM, troughFloorM + 0.8),
+  upright(apronEndM[0] - half, troughFloorM - 0.1, troughFloorM + 0.3),
+  level(0, -3, 0),
+]
+
+/** All that stands still, as one body. Tines pass between the bars. */
 export function standing(barFriction: number): BodySpec {
   const material: MaterialSpec = { friction: barFriction, density: 0 }
-  const half = numbers.barThicknessM / 2
-  const along = (length: number): ShapeSpec['outline'] => ({ kind: 'box', halfM: [length / 2, half] })
-  const deck = (outline: ShapeSpec['outline'], atM: ShapeSpec['atM'], turn = 0): ShapeSpec => {
-    return { outline, atM: atM!, turn, material, layer: 'deck' }
-  }
-  const screen: ShapeSpec = {
-    ...deck(along(numbers.screenLengthM), plate([0, 0], lipM, numbers.screenAngle), numbers.screenAngle),
-    layer: 'bars',
-  }
-  return {
-    name: 'intake',
-    fixed: true,
-    positionM: [0, 0],
-    shapes: [
-      screen,
-      deck(along(numbers.apronLengthM), plate(lipM, apronEndM, -numbers.apronAngle), -numbers.apronAngle),
-      deck(along(numbers.troughLengthM + 0.2), [
-        apronEndM[0] + numbers.troughLengthM / 2,
-        troughFloorM - half,
-      ]),
-      deck({ kind: 'box', halfM: [half, 0.4] }, [troughEndM + half, troughFloorM + 0.4]),
-      deck({ kind: 'box', halfM: [half, 0.2] }, [apronEndM[0] - half, troughFloorM + 0.1]),
-      deck({ kind: 'box', halfM: [1.5, half] }, [-1.5, -half]),
-    ],
-  }
+  const shapes = plates.map(({ layer, from, to, turn }): ShapeSpec => {
+    const [dx, dy] = [to[0] - from[0], to[1] - from[1]]
+    const halfM = [Math.sqrt(dx * dx + dy * dy) / 2, half]
+    const atM = [(from[0] + to[0]) / 2, (from[1] + to[1]) / 2]
+    return { outline: { kind: 'box', halfM }, atM, turn, material, layer }
+  })
+  return { name: 'intake', fixed: true, positionM: [0, 0], shapes }
 }
 
 /** Pairs that pass through each other: parts of the machine, and tines and bars. */
