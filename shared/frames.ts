@@ -33,6 +33,8 @@ export interface Frames {
   readonly groundGrid?: FrameGroundGrid
   /** Words at places that stand still. */
   readonly labels?: readonly { readonly text: string; readonly atM: readonly number[] }[]
+  /** A sentence that must stand in every picture, such as 'motion drawn 60 times larger'. */
+  readonly note?: string
   /** The part of the world worth showing, where that is not the way of the machine; corners x, y[, z]. */
   readonly worthSeeing?: { readonly lowM: readonly number[]; readonly highM: readonly number[] }
 }

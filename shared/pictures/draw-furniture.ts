@@ -2,7 +2,7 @@
 
 import { cos, sin } from '../detmath/trigonometry.js'
 import { activeInk } from './looks.js'
-import { decimalsOf, lengthText, roundStep, roundStepUp } from './measure.js'
+import { decimalsOf, lengthText, roundStep, roundStepUp, timeText } from './measure.js'
 import type { Moment } from './moment.js'
 import type { Operation, Words } from './operations.js'
 import type { Scene } from './scene.js'
@@ -74,15 +74,19 @@ export function scaleBarOperations(scene: Scene, view: View): Operation[] {
   ]
 }
 
-export function timeOperations(seconds: number, view: View): Operation[] {
+/** In the left upper corner; below it what the problem wants to be said. */
+export function timeOperations({ frames }: Scene, { at }: Moment, view: View): Operation[] {
   const { unit, leftPx, topPx } = view
+  const text = timeText(at * frames.secondsPerFrame, frames.secondsPerFrame, 2)
+  const [x, y] = [leftPx + 12 * unit, topPx + 20 * unit]
   return [
-    words(`${seconds.toFixed(2)} s`, leftPx + 12 * unit, topPx + 20 * unit, unit, {
-      role: 'time',
-      isBold: true,
-      hasHalo: true,
-    }),
+    words(text, x, y, unit, { role: 'time', isBold: true, hasHalo: true }),
+    ...noteOperations(frames.note, x, y + 1.5 * furnitureTextPx * unit, unit),
   ]
+}
+
+export function noteOperations(note: string | undefined, x: number, y: number, unit: number): Operation[] {
+  return note === undefined ? [] : [words(note, x, y, unit, { role: 'note', hasHalo: true })]
 }
 
 const directions = [

@@ -262,6 +262,27 @@ describe('contact, activity and stiffness', () => {
   })
 })
 
+describe('a body of 300 struts', () => {
+  it.each([
+    [1, 75],
+    [3, 18],
+  ])('costs few strokes of the pen, in %i chains of nodes', (chains, bays) => {
+    // Time belongs to the machine; the number of strokes, which it goes with, does not.
+    const frames = trussFrames({ bays, chains, frames: 3 })
+    const scene = sceneOf(frames)
+    const drawn = drawStage(scene, { ...startPlayer(scene, true), at: 1 }, stage, 1)
+    expect(frames.links.length).toBeGreaterThan(280)
+    expect(drawn.length).toBeLessThan(chains === 1 ? 50 : 400)
+    let places = 0
+    paintCanvas(
+      recordingPen(() => places++),
+      drawn,
+      light,
+    )
+    expect(places / frames.links.length).toBeLessThan(30)
+  })
+})
+
 describe('the turntable', () => {
   const frames = machines[1]![1]
   const scene = sceneOf(frames)
@@ -378,6 +399,19 @@ describe('the strip below', () => {
   })
   it('takes no room where there is nothing to show', () => {
     expect(stripHeightPx(sceneOf(machines[3]![1]), 1)).toBe(0)
+  })
+})
+
+describe('what a problem wants to be said', () => {
+  it('stands in motion and in stills, and a label counts in the view', () => {
+    const note = 'motion drawn 60 times larger'
+    const labels = [{ text: 'lip', atM: [0.1, 0.4] }]
+    const scene = sceneOf({ ...machines[0]![1], note, labels })
+    const drawn = drawStage(scene, startPlayer(scene, true), stage, 1)
+    expect(wordsOf(drawn, 'note').map(({ text }) => text)).toEqual([note])
+    expect(wordsOf(drawn, 'label').map(({ text }) => text)).toEqual(['lip'])
+    const stills = drawMoments(scene, { leftPx: 0, topPx: 0, widthPx: 1000, unit: 1 }).operations
+    expect(wordsOf(stills, 'note')).toHaveLength(1)
   })
 })
 

@@ -58,7 +58,7 @@ export function drawMoment(scene: Scene, moment: Moment, view: View, options: Dr
     ...(options.hasAxis && scene.frames.dimensions === 2 ? axisOperations(view) : []),
     ...(options.hasAxis && scene.frames.dimensions === 3 ? tripodOperations(view) : []),
     ...(options.hasScaleBar ? scaleBarOperations(scene, view) : []),
-    ...(options.hasTime ? timeOperations(moment.at * scene.frames.secondsPerFrame, view) : []),
+    ...(options.hasTime ? timeOperations(scene, moment, view) : []),
   ]
 }
 

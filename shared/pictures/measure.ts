@@ -17,6 +17,14 @@ export function secondsAt(frames: Frames, frame: number): number {
   return frame * frames.secondsPerFrame
 }
 
+/** A time with the decimals that tell one step of `stepSeconds` from the next, at least `least`. */
+export function timeText(seconds: number, stepSeconds: number, least: number): string {
+  let decimals = least
+  for (let finest = least === 1 ? 0.095 : 0.0095; decimals < 6 && stepSeconds < finest; finest /= 10)
+    decimals++
+  return `${seconds.toFixed(decimals)} s`
+}
+
 /** The power of ten at or below a positive number, without logarithms: their last bit depends on the machine. */
 function powerBelow(value: number): number {
   check(value > 0 && Number.isFinite(value), 'a step has a size')

@@ -1,12 +1,19 @@
 // Stills: moments of a run on one common scale, below each other so that the way reads from top to bottom, or in columns
 // where the way is short.
 
+import type { Frames } from '../frames.js'
 import type { Box } from './boxes.js'
 import { drawMoment } from './draw.js'
-import { axisOperations, furnitureTextPx, scaleBarOperations, tripodOperations } from './draw-furniture.js'
+import {
+  axisOperations,
+  furnitureTextPx,
+  noteOperations,
+  scaleBarOperations,
+  tripodOperations,
+} from './draw-furniture.js'
 import type { LegendRow } from './legend.js'
 import { sampleHeightPx, sampleWidthPx } from './legend.js'
-import { momentsOf, secondsAt } from './measure.js'
+import { momentsOf, secondsAt, timeText } from './measure.js'
 import { momentAt } from './moment.js'
 import { type Operation, textWidthPx } from './operations.js'
 import { axesOf, type Camera, extentsOf, sideCamera, startCamera } from './projection.js'
@@ -28,6 +35,12 @@ export interface SheetPlace {
   readonly widthPx: number
   /** As in View. */
   readonly unit: number
+}
+
+/** Times of shown frames, told apart. */
+export function momentTimes(frames: Frames, shown: readonly number[]): string[] {
+  const apart = secondsAt(frames, shown.at(-1)! - shown[0]!) / Math.max(1, shown.length - 1)
+  return shown.map((frame) => timeText(secondsAt(frames, frame), shown.length > 1 ? apart : 1, 1))
 }
 
 /** Moments shown, by the number of columns they stand in. */
@@ -71,6 +84,8 @@ export function drawMoments(scene: Scene, place: SheetPlace): MomentsSheet {
   const bottom = last.topPx + last.heightPx
   const under = Array.from({ length: Math.min(cells.columns, shown.length) }, (_, column) => views[column]!)
   const isFlat = scene.frames.dimensions === 2
+  const times = momentTimes(scene.frames, shown)
+  const noteAt = place.topPx + 20 * unit
   const axes = under.flatMap((view) =>
     axisOperations({ ...view, topPx: bottom, heightPx: axisPx * unit }, { ...view, topPx: top, heightPx: 0 }),
   )
@@ -79,7 +94,8 @@ export function drawMoments(scene: Scene, place: SheetPlace): MomentsSheet {
     shown,
     operations: [
       ...(isFlat ? axes : tripodOperations({ ...last, leftPx: place.leftPx, topPx: bottom - last.heightPx })),
-      ...shown.flatMap((frame, index) => momentOperations(scene, frame, views[index]!)),
+      ...shown.flatMap((frame, index) => momentOperations(scene, frame, times[index]!, views[index]!)),
+      ...noteOperations(scene.frames.note, place.leftPx, noteAt, unit),
       ...scaleBarOperations(scene, whole),
     ],
     heightPx: bottom + (isFlat ? axisPx * unit : 0) - place.topPx,
@@ -110,13 +126,13 @@ function cellsOf(scene: Scene, place: SheetPlace): Cells {
 
 const inStills = { showsWay: true, hasAxis: false, hasScaleBar: false, hasTime: false } as const
 
-function momentOperations(scene: Scene, frame: number, view: View): Operation[] {
+function momentOperations(scene: Scene, frame: number, text: string, view: View): Operation[] {
   const sizePx = 1.15 * furnitureTextPx * view.unit
   return [
     {
       shape: 'words',
       role: 'time',
-      text: `${secondsAt(scene.frames, frame).toFixed(1)} s`,
+      text,
       x: view.leftPx - timePx * view.unit,
       y: view.topPx + view.heightPx / 2,
       sizePx,

@@ -19,6 +19,7 @@ export type Role =
   | 'marker'
   | 'motor'
   | 'node'
+  | 'note'
   | 'plate'
   | 'scale'
   | 'shadow'

@@ -28,6 +28,12 @@ describe('time', () => {
     expect(startPlayer(single, false).isPlaying).toBe(false)
     expect(playing(startPlayer(single, false), single, true).isPlaying).toBe(false)
   })
+  it('shows a short run in slow motion at first', () => {
+    const frames = trussFrames({ bays: 2, chains: 1, frames: 61 })
+    const speedOf = (secondsPerFrame: number) =>
+      startPlayer(sceneOf({ ...frames, secondsPerFrame }), true).speed
+    expect([0.5, 0.04, 0.02, 0.005, 0.0005].map(speedOf)).toEqual([1, 1, 0.5, 0.1, 0.02])
+  })
   it('goes at the chosen speed, between frames too', () => {
     expect(played(moving, flat, 0.1).at).toBeCloseTo(2.5, 12)
     expect(played({ ...moving, speed: 0.25 }, flat, 0.1).at).toBeCloseTo(0.625, 12)
@@ -70,7 +76,7 @@ describe('keys', () => {
   it('change speed within the offered ones, whatever the case of letters', () => {
     expect(press(still, '+').speed).toBe(2)
     expect(press(press(press(still, '+'), '+'), '+').speed).toBe(4)
-    expect(press({ ...still, speed: 0.1 }, '-').speed).toBe(0.1)
+    expect(press({ ...still, speed: 0.01 }, '-').speed).toBe(0.01)
     expect(press(still, 'F').follows).toBe(false)
     expect(press(still, 'p').showsWay).toBe(false)
   })

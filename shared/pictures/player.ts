@@ -17,7 +17,9 @@ export interface Player {
   readonly restedSeconds: number
 }
 
-export const speeds: readonly number[] = [0.1, 0.25, 0.5, 1, 2, 4]
+export const speeds: readonly number[] = [0.01, 0.02, 0.05, 0.1, 0.25, 0.5, 1, 2, 4]
+/** Shorter runs start in slow motion, so that they take at least this long. */
+const runSecondsLeast = 1.5
 /** At the end it rests, then begins anew. */
 export const restSeconds = 1
 /** A page that was hidden does not leap when it is shown again. */
@@ -28,12 +30,19 @@ export function startPlayer(scene: Scene, wantsLessMotion: boolean): Player {
   return {
     at: 0,
     isPlaying: !wantsLessMotion && scene.lastFrame > 0,
-    speed: 1,
+    speed: startSpeed(scene),
     follows: true,
     showsWay: true,
     camera: scene.frames.dimensions === 3 ? startCamera : sideCamera,
     restedSeconds: 0,
   }
+}
+
+/** Real time, or the fastest slow motion in which a short run can be seen. */
+function startSpeed({ lastFrame, frames }: Scene): number {
+  const seconds = lastFrame * frames.secondsPerFrame
+  const slow = speeds.filter((speed) => speed <= 1 && seconds >= runSecondsLeast * speed)
+  return slow.at(-1) ?? (lastFrame === 0 ? 1 : speeds[0]!)
 }
 
 /** What time does to it. */

@@ -17,6 +17,8 @@ export interface Scene {
   readonly height: GroundHeight | undefined
   /** Everything worth showing over the whole run: the machine's way, loads at the start, walls and ground beside it. */
   readonly wayBox: Box
+  /** The machine's way alone. */
+  readonly ownWayBox: Box
   /** The machine over the whole run, seen from its own middle. */
   readonly machineBox: Box
   /** The machine's middle in each frame, averaged over a second so that a gait does not shake the view: x, y, z. */
@@ -39,6 +41,7 @@ export function sceneOf(frames: Frames): Scene {
     kinds: kindLooks(frames),
     bodyLabels: [...labels.values()],
     wayBox: boxWorthSeeing(frames) ?? withSurroundings(way, scene),
+    ownWayBox: way,
     machineBox: machine,
     meanLinkM: meanLink(frames),
   }
@@ -156,6 +159,10 @@ function withSurroundings(way: Box, { frames, height }: Early): Box {
       const x = low + ((high - low) * i) / samples
       for (const z of [way.low[2], way.high[2]]) maker.add(x, height(x, z), z)
     }
+  }
+  for (const { atM } of frames.labels ?? []) {
+    const [x, y, z] = [atM[0]!, atM[1]!, atM[2] ?? 0]
+    if (x >= low && x <= high) maker.add(x, y, z)
   }
   for (const { pointsM } of frames.walls ?? []) {
     for (const [a, b] of wallPieces(pointsM, frames.dimensions)) {

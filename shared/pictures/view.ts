@@ -63,7 +63,7 @@ export function fitBox(
 /** A strut of 44 pixels gets the ordinary line weights. */
 export function lineFactor({ meanLinkM }: Scene, pxPerM: number, unit: number): number {
   if (meanLinkM === 0) return 1
-  return Math.min(1.9, Math.max(0.6, (meanLinkM * pxPerM) / (44 * unit)))
+  return Math.min(1.5, Math.max(0.6, (meanLinkM * pxPerM) / (44 * unit)))
 }
 
 /** Room around a followed machine, in parts of its own length. */
@@ -74,7 +74,7 @@ const roomAround = 0.3
  * longer than the room around it; up and down it stays, unless the way climbs far.
  */
 export function followBox(scene: Scene, at: number): Box {
-  const { wayBox, machineBox } = scene
+  const { wayBox, ownWayBox, machineBox } = scene
   const long = machineBox.high[0] - machineBox.low[0]
   const room: Point = [roomAround * long, 0, 0]
   const low: number[] = []
@@ -82,7 +82,8 @@ export function followBox(scene: Scene, at: number): Box {
   for (let axis = 0; axis < 3; axis++) {
     const own = machineBox.high[axis]! - machineBox.low[axis]! + 2 * room[axis]!
     const way = wayBox.high[axis]! - wayBox.low[axis]!
-    const follows = axis === 1 ? way > 4 * own : way > own
+    const climb = ownWayBox.high[1] - ownWayBox.low[1]
+    const follows = axis === 1 ? climb > 4 * own : way > own
     const middle = middleAt(scene, at, axis)
     low.push(follows ? middle + machineBox.low[axis]! - room[axis]! : wayBox.low[axis]!)
     high.push(follows ? middle + machineBox.high[axis]! + room[axis]! : wayBox.high[axis]!)

@@ -9,9 +9,9 @@ import {
   framesFault,
   type Ink,
   legendRows,
+  momentTimes,
   type Operation,
   sceneOf,
-  secondsAt,
   svgDocument,
   textWidthPx,
 } from '../../../shared/pictures/index.js'
@@ -43,7 +43,7 @@ export function bestSvg(frames: Frames, facts: PictureFacts): string {
   add(moments)
   y += 20
   for (const block of foot(facts)) add(paragraph(block, y))
-  const times = moments.shown.map((frame) => `${secondsAt(frames, frame).toFixed(1)} s`).join(', ')
+  const times = momentTimes(frames, moments.shown).join(', ')
   return svgDocument({
     title: titleOf(facts),
     description: `${titleOf(facts)}: ${resultSentence(facts)} Shown: ${facts.shown}, at ${times}.`,

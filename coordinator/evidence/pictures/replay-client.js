@@ -18,6 +18,7 @@ import {
   startPlayer,
   stripFromPx,
   stripHeightPx,
+  timeText,
   turned,
   unpackFrames,
 } from '../../../shared/pictures/index.js'
@@ -87,13 +88,13 @@ function moveCursor() {
   now.style.transform = `translateX(${from + (width - 2 * unitNow() - from) * share}px)`
 }
 
-const time = (/** @type {number} */ frame) => (frame * secondsPerFrame).toFixed(2)
+const time = (/** @type {number} */ frame) => timeText(frame * secondsPerFrame, secondsPerFrame, 2)
 
 /** Puts the player's state on the page. */
 function show() {
   scrub.value = String(Math.floor(player.at))
-  scrub.setAttribute('aria-valuetext', `${time(player.at)} seconds`)
-  clock.textContent = `${time(player.at)} s of ${time(scene.lastFrame)} s`
+  scrub.setAttribute('aria-valuetext', time(player.at).replace(' s', ' seconds'))
+  clock.textContent = `${time(player.at)} of ${time(scene.lastFrame)}`
   byId('play').textContent = player.isPlaying ? 'Pause' : 'Play'
   speedSelect.value = String(player.speed)
   followBox.checked = player.follows

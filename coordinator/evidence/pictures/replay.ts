@@ -26,6 +26,7 @@ import {
   speeds,
   svgElements,
   type Theme,
+  timeText,
 } from '../../../shared/pictures/index.js'
 import {
   alwaysCaution,
@@ -196,7 +197,11 @@ function table(scene: Scene, facts: PictureFacts): string {
         value.toFixed(3),
       )
     })
-    return [secondsAt(frames, frame).toFixed(2), middle(scene, frame).toFixed(3), ...places]
+    return [
+      timeText(secondsAt(frames, frame), frames.secondsPerFrame, 2).replace(' s', ''),
+      middle(scene, frame).toFixed(3),
+      ...places,
+    ]
   })
   const headCells = head.map((cell) => `<th scope="col">${escaped(cell)}</th>`).join('')
   const bodyRows = rows
