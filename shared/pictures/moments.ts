@@ -49,7 +49,8 @@ const timePx = 64
 const gapPx = 26
 /** Moments stand side by side where that keeps this much of the scale. */
 const besideShare = 0.65
-const rowMostPx = { 2: 230, 3: 300 } as const
+/** Of a row of long ways and of tall machines. */
+const [rowLongPx, rowTallPx] = [230, 340] as const
 const axisPx = 30
 const scalePx = 30
 
@@ -112,7 +113,7 @@ function cellsOf(scene: Scene, place: SheetPlace): Cells {
   const insets = { leftPx: 12 * unit, rightPx: 12 * unit, topPx: 10 * unit, bottomPx: 18 * unit }
   const [besides, above] = [insets.leftPx + insets.rightPx, insets.topPx + insets.bottomPx]
   const isSingle = scene.lastFrame === 0
-  const rowRoomPx = (isSingle ? 2 : 1) * rowMostPx[dimensions] * unit - above
+  const rowRoomPx = (isSingle ? 1.5 : 1) * rowMostPx(highM / wideM) * unit - above
   const scaleFor = (columns: number) => {
     const cellPx = (place.widthPx + gapPx * unit) / columns - gapPx * unit
     return Math.min((cellPx - timePx * unit - besides) / wideM, rowRoomPx / highM)
@@ -122,6 +123,10 @@ function cellsOf(scene: Scene, place: SheetPlace): Cells {
   const pxPerM = scaleFor(columns)
   const plotPx = wideM * pxPerM + besides
   return { pxPerM, plotPx, rowPx: highM * pxPerM + above, columns, insets, box, camera }
+}
+
+function rowMostPx(tallness: number): number {
+  return rowLongPx + (rowTallPx - rowLongPx) * Math.min(1, Math.max(0, (tallness - 0.3) / 0.3))
 }
 
 const inStills = { showsWay: true, hasAxis: false, hasScaleBar: false, hasTime: false } as const

@@ -61,10 +61,16 @@ export function rakeFrames(genome: RakeGenome, { condition }: Situation<IntakeCo
       { label: 'screen', pointsM: walls.screen, solid: 'right' },
       { label: 'apron and trough', pointsM: walls.apron, solid: 'right' },
       { label: 'apron and trough', pointsM: walls.trough, solid: 'right' },
+      { label: 'water line', pointsM: waterLine(condition) },
     ],
-    labels: [{ text: 'water line', atM: [-1.1, condition.waterM] }],
     worthSeeing: { lowM: [-1.3, -0.1], highM: [1.6, 2.4] },
   }
+}
+
+/** From the edge of the picture to the screen. */
+function waterLine({ waterM }: IntakeCondition): number[] {
+  const [x0, y0, x1, y1] = walls.screen
+  return [-1.3, waterM, x0 + ((x1 - x0) * (waterM - y0)) / (y1 - y0), waterM]
 }
 
 function pinPlaces(world: RigidWorld, joints: ReturnType<typeof buildMachine>['joints']): Float64Array {
