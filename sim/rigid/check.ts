@@ -14,6 +14,11 @@ export const layersMost = 16
 const placeMostM = 1e4
 const sizeLeastM = 1e-4
 const rateMost = 1e4
+/** Speed (m/s) and spin (rad/s) beyond which the library cuts off: 400 of its length units a second, pi/4 a step. */
+export function cutOffs({ sizeM = 1, stepSeconds }: RigidSpec): readonly [number, number] {
+  return [400 * sizeM, Math.PI / 4 / stepSeconds]
+}
+
 /** How far apart the two ends of a joint may be when it is built, as a share of the world's size. */
 const gapMost = 1e-3
 
@@ -82,6 +87,7 @@ export function checkRigid(spec: RigidSpec, dimensions: 2 | 3): void {
     )
     names.add(body.name)
     checkBody(body, checker)
+    checkSpeed(body, spec)
   }
   const jointNames = new Set<string>()
   const bodies = new Map(spec.bodies.map((body) => [body.name, body]))
@@ -159,6 +165,23 @@ function checkBody(body: BodySpec, checker: Checker): void {
   demand(body.fixed === true || massKg > 0, at, 'no mass', 'a shape with density or extra mass')
 }
 
+function checkSpeed({ name, velocityMps = [], spinRadps = 0 }: BodySpec, spec: RigidSpec): void {
+  const size = (v: readonly number[]) => Math.sqrt(v.reduce((sum, x) => sum + x * x, 0))
+  const [speedMost, spinMost] = cutOffs(spec)
+  const spins = typeof spinRadps === 'number' ? [spinRadps] : spinRadps
+  const [slower, calmer] = [
+    `less than ${speedMost} m/s (400 sizeM a second)`,
+    `less than ${spinMost.toPrecision(4)}`,
+  ]
+  demand(size(velocityMps) < speedMost, `body ${name}.velocityMps`, velocityMps, slower)
+  demand(
+    size(spins) < spinMost,
+    `body ${name}.spinRadps`,
+    spinRadps,
+    `${calmer} rad/s (an eighth of a turn a step)`,
+  )
+}
+
 function checkShape(
   { outline, material, ...shape }: ShapeSpec,
   at: string,
@@ -204,6 +227,8 @@ const outlineChecks: OutlineChecks = {
       `${least} to 256 points`,
     )
     for (const [i, point] of pointsM.entries()) checker.point(point, `${at}.pointsM[${i}]`)
+    const flat = checker.dimensions === 2 ? 'one line' : 'one plane'
+    demand(isSolid(pointsM), `${at}.pointsM`, `points on ${flat}`, `points that do not lie on ${flat}`)
   },
   line: ({ pointsM }, at, checker) => {
     demand(checker.dimensions === 2, at, 'a line', 'one of the outlines of 3-D')
@@ -215,6 +240,25 @@ const outlineChecks: OutlineChecks = {
     )
     for (const [i, point] of pointsM.entries()) checker.point(point, `${at}.pointsM[${i}]`)
   },
+}
+
+/** Whether points span an area (2-D) or a volume (3-D): the farthest from one point, from that line, from that plane. */
+function isSolid(points: readonly (readonly number[])[]): boolean {
+  const first = points[0]!
+  // What is left of every way from the first point when the directions found so far are taken off.
+  let ways = points.map((point) => point.map((x, i) => x - first[i]!))
+  const length = (v: readonly number[]) => Math.sqrt(v.reduce((sum, x) => sum + x * x, 0))
+  for (let axis = 0; axis < first.length; axis++) {
+    const farthest = ways.reduce((a, b) => (length(b) > length(a) ? b : a))
+    const far = length(farthest)
+    if (far < sizeLeastM) return false
+    const unit = farthest.map((x) => x / far)
+    ways = ways.map((way) => {
+      const along = way.reduce((sum, x, i) => sum + x * unit[i]!, 0)
+      return way.map((x, i) => x - along * unit[i]!)
+    })
+  }
+  return true
 }
 
 function checkMaterial({ friction, restitution = 0, density }: MaterialSpec, at: string): void {

@@ -11,11 +11,14 @@
 // - Contacts: it tells one impulse a point. In lasting contact that sum is (n + 1)/n of what the balance of momentum
 //   asks, n the rounds of the solver (measured, a block at rest); in the first step of an impact it is exact. Forces
 //   here are impulse / h * n / (n + 1): right for lasting contact, n/(n + 1) of the blow of an impact.
-// - States that are not finite: it switches such a body off without a word. advance() looks for that.
+// - States that are not finite: it switches such a body off without a word. Speeds beyond 400 times the world's size
+//   a second and turns beyond an eighth of a turn a step: it cuts them off without a word. advance() looks for all
+//   three, every 16 steps and at its end: they are faults.
 
 import { ByteWriter } from '../../shared/bytes.js'
 import { check } from '../../shared/check.js'
 import { hex, sha256 } from '../../shared/digests.js'
+import { cutOffs } from './check.js'
 import type { Contact, EngineWorld, MassOf } from './engine.js'
 import { type Held, type JointMotion, readJoint, worldPoint } from './joints.js'
 import { driveMechanism, type Mechanism, startMechanism } from './mechanism.js'
@@ -174,8 +177,20 @@ export class RigidWorld {
       for (let k = 0; k < this.dimensions; k++) {
         if (Math.abs(pose[k]!) > placeMostM) return this.fault(`body ${body.name} has left the world`)
       }
+      const limit = this.overLimit(velocity)
+      if (limit) return this.fault(`body ${body.name} ${limit}`)
     }
     return undefined
+  }
+
+  /** What the library cuts off, a little below where it does. */
+  private overLimit(velocity: Float64Array): string | undefined {
+    const d = this.dimensions
+    const [along, spin] = [velocity.subarray(0, d), velocity.subarray(d)]
+    const size = (v: Float64Array) => Math.sqrt(v.reduce((sum, x) => sum + x * x, 0))
+    const [speedMost, spinMost] = cutOffs(this.spec)
+    if (size(along) > 0.999 * speedMost) return `is faster than ${speedMost} m/s`
+    return size(spin) > 0.999 * spinMost ? `turns by more than an eighth of a turn a step` : undefined
   }
 
   private fault(reason: string): Fault {
