@@ -33,6 +33,6 @@ export function logistic(x: number): number {
  */
 export function toRange(name: ActivationName, value: number, [low, high]: readonly [number, number]): number {
   const { bounds }: Activation = activations[name]
-  if (!bounds) return Math.min(high, Math.max(low, value))
-  return low + ((value - bounds[0]) / (bounds[1] - bounds[0])) * (high - low)
+  const command = bounds ? low + ((value - bounds[0]) / (bounds[1] - bounds[0])) * (high - low) : value
+  return Math.min(high, Math.max(low, command))
 }

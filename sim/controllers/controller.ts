@@ -46,9 +46,13 @@ export function stepsPerCommand(commandSeconds: number, stepSeconds: number): nu
 /** Reads what the controller senses into `inputs`. */
 export type Sense = (lattice: Lattice, inputs: Float64Array) => void
 
-/** The lattice's own sensors (filtered contact and strain), in their order. */
-export const latticeSensors: Sense = (lattice, inputs) =>
-  inputs.set(lattice.sensed.subarray(0, inputs.length))
+/** The lattice's own sensors (filtered contact and strain), in their order: as many as the controller has inputs. */
+export const latticeSensors: Sense = (lattice, inputs) => {
+  if (inputs.length === 0) return
+  const { length } = lattice.sensed
+  demand(length === inputs.length, 'controller.inputCount', inputs.length, `${length}, one for every sensor`)
+  inputs.set(lattice.sensed)
+}
 
 /**
  * Runs a lattice under a controller for a number of commands: sense, step the controller, guide the struts, advance. The

@@ -84,10 +84,10 @@ export function phaseOscillators(spec: PhaseOscillatorsSpec): Controller {
   }
 }
 
-/** In [0, 1). */
+/** In [0, 1); what is no number stays none, for the choke point of the simulator to find. */
 function fraction(turns: number): number {
   const left = turns - Math.floor(turns)
-  return left < 1 ? left : 0
+  return left >= 1 ? 0 : left
 }
 
 /** Rates of all phases, turns a second; `pairs` is scratch. */
@@ -219,7 +219,7 @@ export interface PhaseOscillatorsGenes {
   readonly lag: ArrayLike<number>
 }
 
-/** The controller that a genome describes; it starts with phases spread evenly, so that no pattern is favoured. */
+/** The controller that a genome describes; phases start spread evenly, so that no two start alike. */
 export function phaseOscillatorsFrom(
   design: PhaseOscillatorsDesign,
   { frequency, amplitude, coupling, lag }: PhaseOscillatorsGenes,

@@ -15,6 +15,7 @@ export {
   sampleBudget,
   storedEnergy,
 } from './energy.js'
+export { type ForceRecord, newForceRecord, peakForceN, rmsForceN, takeForces } from './forces.js'
 export {
   type CentreOfMass,
   type ContactRecord,

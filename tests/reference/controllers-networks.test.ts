@@ -18,6 +18,7 @@ import {
 } from '../../sim/controllers/controller.js'
 import { feedForwardFrom, feedForwardParts, feedForwardWeights } from '../../sim/controllers/feed-forward.js'
 import { openLoopFrom } from '../../sim/controllers/open-loop.js'
+import { phaseOscillators } from '../../sim/controllers/phase-oscillators.js'
 import { type RecurrentDesign, recurrentFrom, recurrentParts } from '../../sim/controllers/recurrent.js'
 import { advance } from '../../sim/lattice/advance.js'
 import { buildLattice } from '../../sim/lattice/build.js'
@@ -360,6 +361,20 @@ describe('guiding a lattice', () => {
     expect(sensed[1]).toBeGreaterThan(0)
   })
 
+  test('a command that is no number ends the simulation with its reason', () => {
+    const guided = buildLattice(body({ guided: [strut] }))
+    const lost = phaseOscillators({
+      frequenciesHz: [1],
+      links: [],
+      feedback: [{ oscillator: 0, input: 0, gainHz: 1 }],
+      amplitudes: [0.1],
+      range: [-0.1, 0.1],
+      stepSeconds: 0.01,
+    })
+    const fault = advanceControlled(guided, lost, 10, (_, inputs) => inputs.fill(Number.NaN))
+    expect(fault!.reason).toContain('no finite position')
+  })
+
   test('four lanes under networks that feel give the bits of each replicate run alone', () => {
     const felt = { kind: 'strain', strut: 0, filterSeconds: 0.05 } as const
     const lattice = buildLattice(
@@ -417,5 +432,10 @@ describe('guiding a lattice', () => {
       { frequency: [1], amplitude: [1], phase: [0] },
     )
     expect(() => advanceControlled(guided, single, 1)).toThrow(Refusal)
+    const unfelt = feedForwardFrom(
+      { layers: [3, 2], hidden: 'tanh', output: 'tanh', weightMost: 1, range: [-1, 1], stepSeconds: 0.01 },
+      { weights: new Array<number>(8).fill(0) },
+    )
+    expect(() => advanceControlled(guided, unfelt, 1)).toThrow(Refusal)
   })
 })
