@@ -4,8 +4,14 @@ import { type BarState, barState, moveBar } from './bar.js'
 import type { Bar, Framework } from './build.js'
 import type { Envelope } from './envelope.js'
 
-/** Where the stiffness of a pair of unknowns goes; called for every ordered pair (i, j) that a bar couples. */
-export type Add = (i: number, j: number, value: number) => void
+/**
+ * Where the stiffness of a bar or hinge goes: called once for each with the nine unknowns that it couples (ax, ay, turn a,
+ * bx, by, turn b, three mean strains; -1 where there is none) and the 9 x 9 block, row by row. Both are used again.
+ */
+export type AddBlock = (unknowns: Int32Array, block: Float64Array) => void
+
+/** Unknowns of a block. */
+export const blockSize = 9
 
 const placed = new Float64Array(6)
 
@@ -23,17 +29,27 @@ export function placeBar({ unknowns, shiftM }: Bar, meanStrain: number, u: Array
 }
 
 const state: BarState = barState()
+const names = new Int32Array(blockSize)
+const block = new Float64Array(blockSize * blockSize)
 
 /**
  * Adds the forces that the unknowns `u` call for to `forces` (the gradient of the elastic energy: N, N m, and N m for
- * mean strains), and the tangent stiffness through `add`.
+ * mean strains), and hands the tangent stiffness to `add`, bar by bar.
  */
-export function assemble(framework: Framework, u: ArrayLike<number>, forces: Float64Array, add?: Add): void {
+export function assemble(
+  framework: Framework,
+  u: ArrayLike<number>,
+  forces: Float64Array,
+  add?: AddBlock,
+): void {
   const { bars, hinges, meanStrain } = framework
   for (const bar of bars) {
     moveBar(bar, placeBar(bar, meanStrain, u), state)
     addForces(bar, meanStrain, forces)
-    if (add) addTangent(bar, meanStrain, add)
+    if (add) {
+      fillBlock(bar, meanStrain)
+      add(names, block)
+    }
   }
   for (const { unknowns, stiffnessNmprad: k } of hinges) {
     const [p, q] = unknowns
@@ -41,10 +57,28 @@ export function assemble(framework: Framework, u: ArrayLike<number>, forces: Flo
     forces[p] = forces[p]! + moment
     forces[q] = forces[q]! - moment
     if (add) {
-      add(p, p, k)
-      add(q, q, k)
-      add(p, q, -k)
-      add(q, p, -k)
+      names.fill(-1)
+      names[0] = p
+      names[1] = q
+      block[0] = block[blockSize + 1] = k
+      block[1] = block[blockSize] = -k
+      add(names, block)
+    }
+  }
+}
+
+/** As a full matrix, row by row. */
+export function addInto(matrix: Float64Array, size: number, place?: Int32Array): AddBlock {
+  return (unknowns, values) => {
+    for (let i = 0; i < blockSize; i++) {
+      const row = unknowns[i]! < 0 ? -1 : place ? place[unknowns[i]!]! : unknowns[i]!
+      if (row < 0) continue
+      for (let j = 0; j < blockSize; j++) {
+        const column = unknowns[j]! < 0 ? -1 : place ? place[unknowns[j]!]! : unknowns[j]!
+        if (column < 0) continue
+        const at = row * size + column
+        matrix[at] = matrix[at]! + values[blockSize * i + j]!
+      }
     }
   }
 }
@@ -62,30 +96,41 @@ function addForces({ unknowns, shiftM }: Bar, meanStrain: number, forces: Float6
   forces[meanStrain + 2] = forces[meanStrain + 2]! + f[3]! * ry + f[4]! * rx
 }
 
-function addTangent({ unknowns, shiftM }: Bar, meanStrain: number, add: Add): void {
+/**
+ * The bar's 9 x 9 block. Columns of the map from mean strains to the displacement of end b: e11 (rx, 0), e22 (0, ry),
+ * e12 (ry, rx).
+ */
+function fillBlock({ unknowns, shiftM }: Bar, meanStrain: number): void {
   const k = state.tangent
   for (let i = 0; i < 6; i++) {
-    if (unknowns[i]! < 0) continue
-    for (let j = 0; j < 6; j++) if (unknowns[j]! >= 0) add(unknowns[i]!, unknowns[j]!, k[6 * i + j]!)
+    names[i] = unknowns[i]!
+    for (let j = 0; j < 6; j++) block[blockSize * i + j] = k[6 * i + j]!
   }
   const [rx, ry] = shiftM
-  if (meanStrain < 0 || (rx === 0 && ry === 0)) return
-  // Columns of the map from mean strains to the displacement of end b: e11 (rx, 0), e22 (0, ry), e12 (ry, rx).
-  const ofX = [rx, 0, ry] as const
-  const ofY = [0, ry, rx] as const
-  for (let m = 0; m < 3; m++) {
-    for (let i = 0; i < 6; i++) {
-      if (unknowns[i]! < 0) continue
-      const value = k[6 * i + 3]! * ofX[m]! + k[6 * i + 4]! * ofY[m]!
-      add(unknowns[i]!, meanStrain + m, value)
-      add(meanStrain + m, unknowns[i]!, value)
-    }
-    for (let n = 0; n < 3; n++) {
-      const across = k[21]! * ofX[n]! + k[22]! * ofY[n]!
-      const up = k[27]! * ofX[n]! + k[28]! * ofY[n]!
-      add(meanStrain + m, meanStrain + n, ofX[m]! * across + ofY[m]! * up)
-    }
+  if (meanStrain < 0 || (rx === 0 && ry === 0)) {
+    names.fill(-1, 6)
+    return
   }
+  for (let m = 0; m < 3; m++) names[6 + m] = meanStrain + m
+  for (let i = 0; i < 6; i++) {
+    const x = k[6 * i + 3]!
+    const y = k[6 * i + 4]!
+    setBoth(i, 6, x * rx)
+    setBoth(i, 7, y * ry)
+    setBoth(i, 8, x * ry + y * rx)
+  }
+  const [xx, xy, yy] = [k[21]!, k[22]!, k[28]!]
+  setBoth(6, 6, rx * rx * xx)
+  setBoth(6, 7, rx * ry * xy)
+  setBoth(6, 8, rx * (ry * xx + rx * xy))
+  setBoth(7, 7, ry * ry * yy)
+  setBoth(7, 8, ry * (ry * xy + rx * yy))
+  setBoth(8, 8, ry * ry * xx + 2 * rx * ry * xy + rx * rx * yy)
+}
+
+function setBoth(i: number, j: number, value: number): void {
+  block[blockSize * i + j] = value
+  block[blockSize * j + i] = value
 }
 
 /** First column of every row among the unknowns that have an equation (`equation` >= 0), for an envelope. */
@@ -105,13 +150,20 @@ export function firstColumns(framework: Framework, equation: Int32Array, size: n
   return first
 }
 
-/** Adds into an envelope; unknowns without equation are left out. */
-export function adderInto(matrix: Envelope, equation: Int32Array): Add {
-  return (i, j, value) => {
-    const row = equation[i]!
-    const column = equation[j]!
-    if (row < 0 || column < 0 || column > row) return
-    const at = matrix.base[row]! + column
-    matrix.values[at] = matrix.values[at]! + value
+/** Into an envelope; unknowns without equation are left out. */
+export function addIntoEnvelope({ base, values }: Envelope, equation: Int32Array): AddBlock {
+  const rows = new Int32Array(blockSize)
+  return (unknowns, block) => {
+    for (let i = 0; i < blockSize; i++) rows[i] = unknowns[i]! < 0 ? -1 : equation[unknowns[i]!]!
+    for (let i = 0; i < blockSize; i++) {
+      const row = rows[i]!
+      if (row < 0) continue
+      const at = base[row]!
+      for (let j = 0; j < blockSize; j++) {
+        const column = rows[j]!
+        if (column >= 0 && column <= row)
+          values[at + column] = values[at + column]! + block[blockSize * i + j]!
+      }
+    }
   }
 }

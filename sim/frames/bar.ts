@@ -24,6 +24,7 @@ export function barState(): BarState {
   return { forces: new Float64Array(6), tangent: new Float64Array(36) }
 }
 
+// Their third and sixth entries stay 0.
 const r = new Float64Array(6)
 const z = new Float64Array(6)
 const b1 = new Float64Array(6)
@@ -70,8 +71,14 @@ export function moveBar(bar: Bar, u: ArrayLike<number>, state: BarState): void {
   const tension = k * stretchM
   const momentA = near * bendA + far * bendB
   const momentB = far * bendA + near * bendB
-  r.set([-cosine, -sine, 0, cosine, sine, 0])
-  z.set([sine, -cosine, 0, -sine, cosine, 0])
+  r[0] = -cosine
+  r[1] = -sine
+  r[3] = cosine
+  r[4] = sine
+  z[0] = sine
+  z[1] = -cosine
+  z[3] = -sine
+  z[4] = cosine
   const perLength = 1 / lengthM
   for (let i = 0; i < 6; i++) b1[i] = b2[i] = -z[i]! * perLength
   b1[2] = 1

@@ -1,7 +1,8 @@
 // From a description (spec.ts) to numbered unknowns and flat bars. Everything is checked here once.
 //
-// Unknowns, in the order of the nodes: displacement x, y of the node, then its rotations (only those that a welded
-// bar or a hinge uses). A periodic framework has three more at the end, the mean strains e11, e22, e12 (tensor
+// Unknowns, node by node: displacement x, y of the node, then its rotations (only those that a welded bar or a hinge
+// uses). Nodes between just two bars come first, the others follow, each in their order: equations of walls in pieces
+// are then solved at little more cost than those of whole walls. A periodic framework has three more at the end, the mean strains e11, e22, e12 (tensor
 // components, symmetric: the cell as a whole does not turn). End b of a bar that leaves the cell moves by the
 // displacement of its node plus the mean strain times the bar's shift vector R:
 //   (e11 Rx + e12 Ry, e12 Rx + e22 Ry)
@@ -35,6 +36,8 @@ export interface Framework {
   readonly unknownCount: number
   /** First unknown (x) of every node; y is the next one. */
   readonly nodeUnknown: Int32Array
+  /** 1 where an unknown is a displacement, 0 where it is a rotation or a mean strain. */
+  readonly isDisplacement: Uint8Array
   /** Place of the first of the three mean strains; -1 where the framework is not periodic. */
   readonly meanStrain: number
   readonly bars: readonly Bar[]
@@ -53,6 +56,8 @@ export function buildFramework(spec: FrameworkSpec): Framework {
   const numbering = numberUnknowns(spec)
   const periods = spec.periods
   const bars = spec.bars.map((bar, i) => layOutBar(spec, bar, i, numbering))
+  const isDisplacement = new Uint8Array(numbering.count + (periods ? 3 : 0))
+  for (const first of numbering.nodeUnknown) isDisplacement.fill(1, first, first + 2)
   const [a1, a2] = periods ?? [
     [0, 0],
     [0, 0],
@@ -60,6 +65,7 @@ export function buildFramework(spec: FrameworkSpec): Framework {
   return {
     unknownCount: numbering.count + (periods ? 3 : 0),
     nodeUnknown: numbering.nodeUnknown,
+    isDisplacement,
     meanStrain: periods ? numbering.count : -1,
     bars,
     hinges: (spec.hinges ?? []).map(({ node, turns, stiffnessNmprad }) => ({
@@ -97,13 +103,20 @@ function numberUnknowns({ nodes, bars, hinges = [] }: FrameworkSpec): Numbering 
     }
   }
   for (const hinge of hinges) for (const turn of hinge.turns) turns[hinge.node]!.add(turn)
+  const meeting = new Int32Array(nodes.length)
+  for (const { a, b } of bars) {
+    meeting[a]!++
+    meeting[b]!++
+  }
+  const inLine = (node: number) => meeting[node] === 2
+  const order = [...nodes.keys()]
   const nodeUnknown = new Int32Array(nodes.length)
-  const places: Map<number, number>[] = []
+  const places: Map<number, number>[] = nodes.map(() => new Map())
   let count = 0
-  for (const [node, used] of turns.entries()) {
+  for (const node of [...order.filter(inLine), ...order.filter((one) => !inLine(one))]) {
     nodeUnknown[node] = count
     count += 2
-    places.push(new Map([...used].sort((p, q) => p - q).map((turn) => [turn, count++])))
+    for (const turn of [...turns[node]!].sort((p, q) => p - q)) places[node]!.set(turn, count++)
   }
   return { count, nodeUnknown, turnOf: (node, turn = 0) => places[node]?.get(turn) ?? -1 }
 }

@@ -32,21 +32,32 @@ export interface Inertia {
 /** A pivot this small against its own diagonal entry is round-off. */
 const pivotLeast = 1e-14
 
-/** Replaces the matrix by its factors L (below) and D (on the diagonal). */
+/**
+ * Replaces the matrix by its factors L (below) and D (on the diagonal). Zeros inside the envelope stay zeros for long
+ * where walls are in pieces, so each row keeps a list of its other entries.
+ */
 export function factorise({ size, first, base, values }: Envelope): Inertia {
+  const filled = new Int32Array(size)
   let negative = 0
   for (let i = 0; i < size; i++) {
-    const from = first[i]!
     const row = base[i]!
     const diagonal = values[row + i]!
-    for (let j = from; j < i; j++) {
+    let count = 0
+    for (let j = first[i]!; j < i; j++) {
       const other = base[j]!
+      const from = first[j]!
       let sum = values[row + j]!
-      for (let k = Math.max(from, first[j]!); k < j; k++) sum -= values[row + k]! * values[other + k]!
+      for (let t = count - 1; t >= 0; t--) {
+        const k = filled[t]!
+        if (k < from) break
+        sum -= values[row + k]! * values[other + k]!
+      }
       values[row + j] = sum
+      if (sum !== 0) filled[count++] = j
     }
     let pivot = diagonal
-    for (let j = from; j < i; j++) {
+    for (let t = 0; t < count; t++) {
+      const j = filled[t]!
       const scaled = values[row + j]! / values[base[j]! + j]!
       pivot -= scaled * values[row + j]!
       values[row + j] = scaled

@@ -3,7 +3,7 @@
 
 import { describe, expect, test } from 'vitest'
 import { type Stream, stream } from '../../shared/streams.js'
-import { assemble } from './assemble.js'
+import { addInto, assemble } from './assemble.js'
 import { buildFramework } from './build.js'
 import { envelope, factorise, solveFactorised } from './envelope.js'
 import { equilibrate, situationOf } from './equilibrium.js'
@@ -84,9 +84,7 @@ describe('forces and tangent', () => {
       const n = framework.unknownCount
       const u = Float64Array.from({ length: n }, () => 0.4 * (draw.uniform() - 0.5))
       const tangent = new Float64Array(n * n)
-      assemble(framework, u, new Float64Array(n), (i, j, value) => {
-        tangent[i * n + j] = tangent[i * n + j]! + value
-      })
+      assemble(framework, u, new Float64Array(n), addInto(tangent, n))
       const forces = (at: number, by: number) => {
         const moved = Float64Array.from(u)
         moved[at] = moved[at]! + by

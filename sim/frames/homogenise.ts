@@ -3,7 +3,7 @@
 // (Hill, Elastic properties of reinforced solids: some theoretical principles, 1963, for the energy; the static
 // condensation is common practice.)
 
-import { assemble } from './assemble.js'
+import { addInto, assemble } from './assemble.js'
 import { buildFramework, type Framework } from './build.js'
 import type { PlaneStiffness } from './moduli.js'
 import { eliminate } from './semidefinite.js'
@@ -32,11 +32,7 @@ export function homogeniseFramework(framework: Framework): Homogenised {
   for (const [i, unknown] of kept.entries()) place[unknown] = i
   const size = kept.length
   const matrix = new Float64Array(size * size)
-  assemble(framework, new Float64Array(all), new Float64Array(all), (i, j, value) => {
-    const row = place[i]!
-    const column = place[j]!
-    if (row >= 0 && column >= 0) matrix[row * size + column] = matrix[row * size + column]! + value
-  })
+  assemble(framework, new Float64Array(all), new Float64Array(all), addInto(matrix, size, place))
   const { kept: k, mechanisms } = eliminate(matrix, size, 3)
   const perArea = 1 / framework.cellAreaM2
   // The unknown is e12, the stiffness that of 2 e12.

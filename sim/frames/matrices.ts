@@ -3,16 +3,14 @@
 // Z. Friedman and J. B. Kosmatka, An improved two-node Timoshenko beam finite element, 1993 (from memory); with p = 0
 // they are Hermite's and the matrices those of Euler-Bernoulli. Integrals by Gauss' rule with 4 points, exact here.
 
-import { assemble } from './assemble.js'
+import { addInto, assemble } from './assemble.js'
 import type { Bar, Framework } from './build.js'
 
 /** Stiffness of the undeformed framework. */
 export function stiffnessMatrix(framework: Framework): Float64Array {
   const n = framework.unknownCount
   const matrix = new Float64Array(n * n)
-  assemble(framework, new Float64Array(n), new Float64Array(n), (i, j, value) => {
-    matrix[i * n + j] = matrix[i * n + j]! + value
-  })
+  assemble(framework, new Float64Array(n), new Float64Array(n), addInto(matrix, n))
   return matrix
 }
 

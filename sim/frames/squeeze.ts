@@ -33,9 +33,11 @@ export interface SqueezeOptions {
   readonly axis: 0 | 1
   /** Wanted strain along the axis; negative squeezes. */
   readonly strain: number
-  /** Equal steps; halved where Newton's method fails, up to 4 times. */
+  /** Equal steps; halved up to 4 times where needed. */
   readonly steps: number
-  /** Ends with a fault at the first state that is not stable. */
+  /** Mean shear stays 0, as between plates that do not slide; free otherwise. */
+  readonly holdShear?: boolean
+  /** Goes through stable states only, or ends with a fault. */
   readonly stableOnly?: boolean
   /** Called after every step. */
   readonly each?: (state: Squeezed) => void
@@ -46,12 +48,12 @@ const halvingsMost = 4
 /** Squeezes from rest. The framework must be periodic. */
 export function squeeze(
   framework: Framework,
-  { axis, strain, steps, stableOnly = false, each }: SqueezeOptions,
+  { axis, strain, steps, stableOnly = false, holdShear = false, each }: SqueezeOptions,
 ): Squeezed | SqueezeFault {
   const m = framework.meanStrain
   const held = m + axis
   const first = framework.nodeUnknown[0]!
-  const situation = situationOf(framework, [first, first + 1, held])
+  const situation = situationOf(framework, [first, first + 1, held, ...(holdShear ? [m + 2] : [])])
   const increments = new Float64Array(framework.unknownCount)
   let unstable = 0
   const read = (): Squeezed => ({
@@ -63,34 +65,43 @@ export function squeeze(
     unstable,
   })
   for (let step = 1; step <= steps; step++) {
-    const balance = moveTo(situation, increments, held, (strain * step) / steps)
+    const balance = moveTo(situation, increments, held, (strain * step) / steps, stableOnly)
     if ('reason' in balance) return { reason: balance.reason, along: situation.u[held]! }
     unstable = Math.max(unstable, balance.unstable)
-    if (stableOnly && unstable > 0) {
-      return { reason: 'the framework snaps through', along: situation.u[held]! }
-    }
     each?.(read())
   }
   return read()
 }
 
+/**
+ * One step, in smaller ones where there is no equilibrium near by, or no stable one: large steps can miss the branch that
+ * bends gently aside.
+ */
 function moveTo(
   situation: Situation,
   increments: Float64Array,
   held: number,
   target: number,
+  stableOnly: boolean,
 ): Balance | NoBalance {
+  const { u } = situation
   let halvings = 0
   let pieces = 1
+  let unstable = 0
   for (;;) {
-    const from = situation.u[held]!
-    increments[held] = (target - from) / pieces
-    const balance = equilibrate(situation, increments)
+    const before = Float64Array.from(u)
+    increments[held] = (target - u[held]!) / pieces
+    let balance = equilibrate(situation, increments)
+    if (!('reason' in balance) && stableOnly && balance.unstable > 0) {
+      u.set(before)
+      balance = { reason: 'the framework snaps through' }
+    }
     if ('reason' in balance) {
       if (++halvings > halvingsMost) return balance
       pieces *= 2
-    } else if (--pieces === 0) {
-      return balance
+      continue
     }
+    unstable = Math.max(unstable, balance.unstable)
+    if (--pieces === 0) return { ...balance, unstable }
   }
 }

@@ -59,7 +59,8 @@ describe("Euler's columns, P = pi^2 EI / (K L)^2", () => {
   test('a column under its own thrust loses stability there in the large-displacement solver too', () => {
     const framework = beam({ pieces: 16 })
     const last = framework.nodeUnknown[16]!
-    const situation = situationOf(framework, [0, 1, last + 1])
+    const foot = framework.nodeUnknown[0]!
+    const situation = situationOf(framework, [foot, foot + 1, last + 1])
     const unstable = (load: number) => {
       situation.loads[last] = -load
       const balance = equilibrate(situation)

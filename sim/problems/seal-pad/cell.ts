@@ -72,7 +72,14 @@ export function idleSlots(walls: readonly CellWall[]): Set<number> {
     const left = walls.filter((wall) => !idle.has(wall.slot))
     const loose = looseEnds(left)
     if (loose.length === 0) {
-      for (const wall of left) if (reachOf(left, wall.a) === 0) idle.add(wall.slot)
+      const reach = new Map<number, number>()
+      for (const wall of left) {
+        if (!reach.has(wall.a)) {
+          const piece = pieceOf(left, wall.a)
+          for (const node of piece.nodes) reach.set(node, piece.reach)
+        }
+        if (reach.get(wall.a) === 0) idle.add(wall.slot)
+      }
       return idle
     }
     for (const slot of loose) idle.add(slot)
@@ -88,33 +95,37 @@ function looseEnds(walls: readonly CellWall[]): number[] {
   return walls.filter(({ a, b }) => ends[a] === 1 || ends[b] === 1).map((wall) => wall.slot)
 }
 
-/**
- * In how many independent directions (0, 1, 2) the piece that holds this node reaches from cell to cell: the rank of
- * the net shifts of its closed walks.
- */
-export function reachOf(walls: readonly CellWall[], start: number): number {
+export interface Piece {
+  readonly nodes: readonly number[]
+  /**
+   * In how many independent directions (0, 1, 2) the piece reaches from cell to cell: the rank of the net shifts of its
+   * closed walks.
+   */
+  readonly reach: number
+}
+
+/** The piece that holds this node. */
+export function pieceOf(walls: readonly CellWall[], start: number): Piece {
   const at = new Map<number, readonly [number, number]>([[start, [0, 0]]])
   const nodes = [start]
   const loops: (readonly [number, number])[] = []
-  for (let n = nodes.pop(); n !== undefined; n = nodes.pop()) {
-    const [x, y] = at.get(n)!
+  for (let next = 0; next < nodes.length; next++) {
+    const node = nodes[next]!
+    const [x, y] = at.get(node)!
     for (const { a, b, shift } of walls) {
-      for (const [from, to, sign] of [
-        [a, b, 1],
-        [b, a, -1],
-      ] as const) {
-        if (from !== n) continue
-        const there = [x + sign * shift[0], y + sign * shift[1]] as const
-        const known = at.get(to)
-        if (known) loops.push([there[0] - known[0], there[1] - known[1]])
-        else {
-          at.set(to, there)
-          nodes.push(to)
-        }
+      if (a !== node && b !== node) continue
+      const [to, sign] = a === node ? [b, 1] : [a, -1]
+      const there = [x + sign * shift[0], y + sign * shift[1]] as const
+      const known = at.get(to)
+      if (!known) {
+        at.set(to, there)
+        nodes.push(to)
+      } else if (there[0] !== known[0] || there[1] !== known[1]) {
+        loops.push([there[0] - known[0], there[1] - known[1]])
       }
     }
   }
-  const first = loops.find(([x, y]) => x !== 0 || y !== 0)
-  if (!first) return 0
-  return loops.some(([x, y]) => x * first[1] !== y * first[0]) ? 2 : 1
+  const [first] = loops
+  if (!first) return { nodes, reach: 0 }
+  return { nodes, reach: loops.some(([x, y]) => x * first[1] !== y * first[0]) ? 2 : 1 }
 }

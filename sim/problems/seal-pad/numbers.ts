@@ -22,7 +22,7 @@ export const numbers = {
 
   // The quarter of a cell that is evolved; the whole cell is four mirrored quarters. Assumed.
   quarterWidthM,
-  quarterHeightM: { low: 0.012, high: 0.036 },
+  quarterHeightM: { low: 0.016, high: 0.036 },
   /** Inner nodes stay this part of the quarter's sides away from its corners, and 1 - this. */
   placeLeast: 0.2,
   /** Rubber walls below about 1 mm do not fill well (rule of thumb). */
@@ -41,11 +41,15 @@ export const numbers = {
   // walls, +-0.25 mm on places of nodes (16 to 25 mm); taken as two standard deviations, nothing outside. The spread of the modulus
   // between batches (the material's row, +-30 %) is taken as three standard deviations.
   wallToleranceM,
+  /** How far a wall's middle may be out of line: as much as its thickness may be off. Assumed. */
+  bowToleranceM: wallToleranceM,
   placeToleranceM: mouldedRubberToleranceM(quarterWidthM, 'M2'),
 
   /** Squeeze at which the pad works, of its height. Assumed. */
   workingSqueeze: 0.06,
   squeezeSteps: 4,
+  /** Pieces of a wall while it is squeezed: a wall in one piece buckles a fifth too late (12 for pi^2). */
+  squeezePieces: 2,
 
   /** Wanted: draws in by 0.8 of what it is squeezed, as stiff as a soft sponge seal. Assumed. */
   wanted: { poisson: -0.8, modulusPa: 60e3 },

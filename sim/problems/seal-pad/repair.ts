@@ -1,6 +1,7 @@
 // Makes a freshly varied genome castable and its walls useful. Pure and idempotent.
 
 import { cellOf, idleSlots } from './cell.js'
+import { narrowestGap } from './gaps.js'
 import {
   braceKinds,
   chord,
@@ -21,14 +22,25 @@ const clearanceM = numbers.wallsM.thick + numbers.gapLeastM
 
 /**
  * Chords that would cross the walls of the centre become spokes; walls that are too short for their thickness are cast
- * thinner; walls with a free end, and pieces that hang on nothing, are left out.
+ * thinner; walls that leave no room for the mould, have a free end or hang on nothing are left out.
  */
 export function repairPad(genome: PadGenome): PadGenome {
-  const sound = thinShortWalls(turnChords(genome))
-  const idle = idleSlots(cellOf(sound).walls)
-  const walls = sound.walls.map((kind, slot) => (idle.has(slot) ? 0 : kind))
-  const braces = sound.braces.map((kind, i) => (idle.has(gridLines.length + i) ? none : kind))
-  return { ...sound, walls, braces }
+  let sound = withoutIdle(thinShortWalls(turnChords(genome)))
+  for (;;) {
+    const gap = narrowestGap(sound)
+    if (!gap || gap.gapM >= numbers.gapLeastM) return sound
+    sound = withoutIdle(without(sound, new Set([gap.slot])))
+  }
+}
+
+function withoutIdle(genome: PadGenome): PadGenome {
+  return without(genome, idleSlots(cellOf(genome).walls))
+}
+
+function without(genome: PadGenome, slots: ReadonlySet<number>): PadGenome {
+  const walls = genome.walls.map((kind, slot) => (slots.has(slot) ? 0 : kind))
+  const braces = genome.braces.map((kind, i) => (slots.has(gridLines.length + i) ? none : kind))
+  return { ...genome, walls, braces }
 }
 
 function turnChords(genome: PadGenome): PadGenome {

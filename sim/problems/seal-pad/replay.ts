@@ -163,12 +163,14 @@ function squeezeBlock(
   show: (u: Float64Array, down: number) => void,
 ): void {
   const at = framework.nodeUnknown
-  // The node on the lower plate nearest to the middle stays where it is; all others slide.
+  // On each plate the node nearest to the middle stays where it is along the plate: plates do not slide along each other,
+  // all other nodes slide on them.
   const middleM = spec.nodes.reduce((sum, [x]) => sum + x, 0) / spec.nodes.length
   const off = (node: number) => Math.abs(spec.nodes[node]![0] - middleM)
-  const middle = lower.reduce((best, node) => (off(node) < off(best) ? node : best))
+  const middle = (nodes: readonly number[]) =>
+    nodes.reduce((best, node) => (off(node) < off(best) ? node : best))
   const plates = [...lower, ...upper].map((node) => at[node]! + 1)
-  const situation = situationOf(framework, [...plates, at[middle]!])
+  const situation = situationOf(framework, [...plates, at[middle(lower)]!, at[middle(upper)]!])
   show(situation.u, 0)
   const moving = Math.round((2 / 3) * numbers.frameCount)
   const increments = new Float64Array(framework.unknownCount)

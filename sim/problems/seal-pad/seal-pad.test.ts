@@ -5,8 +5,8 @@ import { describe, expect, test } from 'vitest'
 import { conditionStream } from '../../../shared/conditions.js'
 import { checkGenome, genomesEqual, randomGenome } from '../../../shared/encodings.js'
 import { stream } from '../../../shared/streams.js'
-import { homogenise, moduliOf, squeeze } from '../../frames/index.js'
-import { cellOf, idleSlots, reachOf } from './cell.js'
+import { buildFramework, homogenise, moduliOf, squeeze } from '../../frames/index.js'
+import { cellOf, idleSlots, pieceOf } from './cell.js'
 import { braceKinds, chord, type PadGenome, padGenome, quarterNodes, quarterWalls } from './genome.js'
 import problem, { sealPad } from './index.js'
 import { numbers } from './numbers.js'
@@ -106,7 +106,7 @@ describe('the genome', () => {
     const walls = cellOf(repaired).walls
     expect(walls.length).toBe(8)
     expect(idleSlots(walls).size).toBe(0)
-    expect(reachOf(walls, walls[0]!.a)).toBe(2)
+    expect(pieceOf(walls, walls[0]!.a).reach).toBe(2)
   })
 
   test('the cell has mirror symmetry: stretch and shear are not coupled', () => {
@@ -114,7 +114,7 @@ describe('the genome', () => {
       const genome = founder(i)
       const small = smallStrain(genome, perfectCasting)
       if ('reason' in small) continue
-      const { stiffness } = homogenise(small.spec)
+      const { stiffness } = homogenise(small.described.spec)
       expect(Math.abs(stiffness.c16) + Math.abs(stiffness.c26)).toBeLessThan(1e-9 * stiffness.c11)
     }
   })
@@ -165,9 +165,9 @@ describe('given the topology of a honeycomb', () => {
 describe('a trial', () => {
   test('is repeatable to the bit and finite over random castings', () => {
     let passed = 0
-    for (let i = 0; i < 60; i++) {
+    for (let i = 0; i < 20; i++) {
       const genome = founder(i)
-      const situations = [0, 1].map((j) => ({ condition: casting(j), case: '' }))
+      const situations = [{ condition: casting(i), case: '' }]
       const first = problem.simulate(genome, situations)
       expect(problem.simulate(genome, situations)).toEqual(first)
       for (const outcome of first) {
@@ -178,7 +178,7 @@ describe('a trial', () => {
         }
       }
     }
-    expect(passed).toBeGreaterThan(20)
+    expect(passed).toBeGreaterThan(8)
   })
 
   test('walls that hold together one way only are a failure that says so', () => {
@@ -203,23 +203,23 @@ describe('a trial', () => {
     expect(sd).toBeLessThan(0.16)
   })
 
-  test('two and four pieces a wall converge: one piece is within 2 % at the working squeeze', () => {
+  test('four and eight pieces a wall converge: two are within 1 % at the working squeeze', () => {
     const genome = honeycomb(-20, 1.5, 2)
     const at = (finer: number) => {
       const trial = tryPad(genome, casting(1), finer)
       if ('reason' in trial) throw new Error(trial.reason)
       return -trial.squeezed.across / trial.squeezed.along
     }
-    const [one, two, four] = [at(1), at(2), at(4)]
-    expect(Math.abs(two - four)).toBeLessThan(Math.abs(one - four) / 3)
-    expect(Math.abs(one / four - 1)).toBeLessThan(0.02)
+    const [two, four, eight] = [at(1), at(2), at(4)]
+    expect(Math.abs(four - eight)).toBeLessThan(Math.abs(two - eight) / 3)
+    expect(Math.abs(two / eight - 1)).toBeLessThan(0.01)
   })
 
   test('a small squeeze gives the ratio of small strain, the working squeeze another', () => {
     const small = smallStrain(honeycomb(-20, 1.5, 2), perfectCasting)
     if ('reason' in small) throw new Error(small.reason)
     const at = (strain: number) => {
-      const end = squeeze(small.framework, { axis: 1, strain: -strain, steps: 2 })
+      const end = squeeze(buildFramework(small.described.spec), { axis: 1, strain: -strain, steps: 2 })
       return 'reason' in end ? Number.NaN : -end.across / end.along
     }
     const miss = (strain: number) => Math.abs(at(strain) - small.moduli.nu21)
@@ -249,16 +249,17 @@ describe('what a person sees', () => {
     const [first, last] = [frames.positions[0]!, frames.positions.at(-1)!]
     const heightM = (frame: Float64Array) => frame[2 * count - 1]!
     expect(heightM(last) / heightM(first)).toBeCloseTo(1 - numbers.workingSqueeze, 9)
-    // An auxetic block narrows.
+    // An auxetic block narrows halfway up (its ends are spread by the plates).
     const widthM = (frame: Float64Array) => {
-      const xs = Array.from({ length: count - 2 }, (_, i) => frame[2 * i]!)
+      const nodes = Array.from({ length: count - 2 }, (_, i) => [frame[2 * i]!, frame[2 * i + 1]!] as const)
+      const xs = nodes.filter(([, y]) => Math.abs(y / heightM(frame) - 0.5) < 0.2).map(([x]) => x)
       return Math.max(...xs) - Math.min(...xs)
     }
     expect(widthM(last)).toBeLessThan(widthM(first))
   })
 
   test('every founder can be shown, described and cautioned about', () => {
-    for (let i = 0; i < 12; i++) {
+    for (let i = 0; i < 6; i++) {
       const genome = founder(i)
       const frames = problem.frames!(genome, { condition: casting(0), case: '' })
       expect(frames.positions.length).toBeGreaterThan(0)

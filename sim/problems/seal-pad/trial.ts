@@ -18,7 +18,7 @@ import {
   type Squeezed,
   squeeze,
 } from '../../frames/index.js'
-import { type CellWall, cellOf, type PadCell, reachOf } from './cell.js'
+import { type CellWall, cellOf, type PadCell, pieceOf } from './cell.js'
 import { gridLines, type PadGenome, thicknessOfM } from './genome.js'
 import { numbers } from './numbers.js'
 import { wallsMeet } from './planar.js'
@@ -29,6 +29,8 @@ export interface CastingCondition {
   readonly batch: number
   /** Added to the thickness of each wall of the cell, in the order of slots and their four images, m. */
   readonly wallOffsetsM: Float64Array
+  /** How far the middle of each wall is out of line, in the same order, m. */
+  readonly bowsM: Float64Array
   /** Added to x, y of each of the 16 nodes, m. */
   readonly placeOffsetsM: Float64Array
 }
@@ -44,28 +46,37 @@ export function drawCasting(stream: Stream): CastingCondition {
     { length: slots * images },
     () => (numbers.wallToleranceM / 2) * within(2),
   )
+  const bowsM = Float64Array.from({ length: slots * images }, () => (numbers.bowToleranceM / 2) * within(2))
   const placeOffsetsM = Float64Array.from({ length: 32 }, () => (numbers.placeToleranceM / 2) * within(2))
-  return { batch, wallOffsetsM, placeOffsetsM }
+  return { batch, wallOffsetsM, bowsM, placeOffsetsM }
 }
 
 /** A casting without any deviation. */
 export const perfectCasting: CastingCondition = {
   batch: 0,
   wallOffsetsM: new Float64Array(slots * images),
+  bowsM: new Float64Array(slots * images),
   placeOffsetsM: new Float64Array(32),
 }
 
-/** Thickness of every wall of this casting, m. */
-function thicknessesM(walls: readonly CellWall[], { wallOffsetsM }: CastingCondition): number[] {
-  const images = new Int32Array(slots)
-  return walls.map(({ kind, slot }) => thicknessOfM[kind]! + wallOffsetsM[4 * slot + images[slot]!++]!)
+/** As drawn, but for walls that are a little out of line, one standard deviation to either side in turn: to be squeezed. */
+export const asDrawn: CastingCondition = {
+  ...perfectCasting,
+  bowsM: Float64Array.from(
+    { length: slots * images },
+    (_, i) => ((i % 2 ? 1 : -1) * numbers.bowToleranceM) / 2,
+  ),
+}
+
+/** What belongs to each wall of this casting in a list by slots and images. */
+function byWall(walls: readonly CellWall[], values: Float64Array): number[] {
+  const seen = new Int32Array(slots)
+  return walls.map(({ slot }) => values[images * slot + seen[slot]!++]!)
 }
 
 export interface WallOptions {
   /** Walls do not shear (Euler-Bernoulli), as published formulas for honeycombs have it. */
   readonly rigidInShear?: boolean
-  /** Every wall in this many pieces, to see what more of them change at large strain; 1 unless said. */
-  readonly pieces?: number
 }
 
 export interface DescribedCell {
@@ -73,7 +84,8 @@ export interface DescribedCell {
   /** One bar a wall, between nodes of the cell as it is numbered in cell.ts, per metre of depth. */
   readonly bars: readonly BarSpec[]
   readonly thicknessM: readonly number[]
-  /** The same as a framework, without nodes that no wall uses; walls in pieces. */
+  readonly bowsM: readonly number[]
+  /** The same as a framework, without nodes that no wall uses. */
   readonly spec: FrameworkSpec
 }
 
@@ -81,7 +93,7 @@ export interface DescribedCell {
 export function describeCell(
   genome: PadGenome,
   casting: CastingCondition = perfectCasting,
-  { rigidInShear = false, pieces = 1 }: WallOptions = {},
+  { rigidInShear = false }: WallOptions = {},
 ): DescribedCell {
   const cell = cellOf(genome)
   const { youngPa, youngSpread, poissonRatio: nu } = numbers.rubbers[genome.rubber[0]!]!
@@ -89,7 +101,8 @@ export function describeCell(
   // Walls are much deeper than thick: they stretch and bend like plates.
   const platePa = young / (1 - nu * nu)
   const shearPa = young / (2 * (1 + nu))
-  const thicknessM = thicknessesM(cell.walls, casting)
+  const offsetsM = byWall(cell.walls, casting.wallOffsetsM)
+  const thicknessM = cell.walls.map(({ kind }, i) => thicknessOfM[kind]! + offsetsM[i]!)
   const bars = cell.walls.map(({ a, b, shift }, i): BarSpec => {
     const t = thicknessM[i]!
     const axialN = platePa * t
@@ -103,8 +116,8 @@ export function describeCell(
     [cell.widthM, 0],
     [0, cell.heightM],
   ] as const
-  const spec = inPieces(withoutIdleNodes({ nodes, bars, periods }), pieces)
-  return { cell, bars, thicknessM, spec }
+  const bowsM = byWall(cell.walls, casting.bowsM)
+  return { cell, bars, thicknessM, bowsM, spec: withoutIdleNodes({ nodes, bars, periods }) }
 }
 
 function withoutIdleNodes({ nodes, bars, ...rest }: FrameworkSpec): FrameworkSpec {
@@ -118,9 +131,7 @@ function withoutIdleNodes({ nodes, bars, ...rest }: FrameworkSpec): FrameworkSpe
 }
 
 export interface SmallStrain {
-  readonly framework: Framework
-  readonly spec: FrameworkSpec
-  readonly thicknessM: readonly number[]
+  readonly described: DescribedCell
   readonly moduli: Moduli
   readonly anisotropy: number
   readonly materialKg: number
@@ -132,27 +143,24 @@ export interface SmallStrain {
 export function smallStrain(
   genome: PadGenome,
   casting: CastingCondition,
-  pieces = 1,
 ): SmallStrain | { readonly reason: string } {
-  const described = describeCell(genome, casting, { pieces })
-  const { cell, spec } = described
-  const thicknessM = described.thicknessM.flatMap((t) => new Array<number>(pieces).fill(t))
-  if (cell.walls.length === 0 || reachOf(cell.walls, cell.walls[0]!.a) < 2) {
+  const described = describeCell(genome, casting)
+  const { cell, spec, thicknessM } = described
+  if (cell.walls.length === 0 || pieceOf(cell.walls, cell.walls[0]!.a).reach < 2) {
     return { reason: 'the pad falls apart: its walls do not hold together both ways' }
   }
   const framework = buildFramework(spec)
   const areaM2 = framework.bars.reduce((sum, bar, i) => sum + bar.lengthM * thicknessM[i]!, 0)
   const density = areaM2 / framework.cellAreaM2
-  if (density > numbers.densityMost)
+  if (density > numbers.densityMost) {
     return { reason: `${percent(density)} of the pad are walls: no structure` }
+  }
   const { stiffness, mechanisms } = homogeniseFramework(framework)
   if (mechanisms > 0) return { reason: `the cell has ${mechanisms} mechanisms: parts of it move freely` }
   const { length, height, depth } = numbers.padM
   const rubber = numbers.rubbers[genome.rubber[0]!]!
   return {
-    framework,
-    spec,
-    thicknessM,
+    described,
     moduli: moduliOf(stiffness),
     anisotropy: nearestIsotropic(stiffness).anisotropy,
     materialKg: rubber.densityKgpm3 * density * length * height * depth,
@@ -167,21 +175,25 @@ export interface PadTrial extends SmallStrain {
 }
 
 /**
- * Tries one casting, small strain and working squeeze; or says why it is no pad. `finer` cuts walls into so many pieces
- * and takes so many times as many steps.
+ * Tries one casting, small strain and working squeeze; or says why it is no pad. `finer` cuts walls into so many times
+ * as many pieces and takes so many times as many steps.
  */
 export function tryPad(
   genome: PadGenome,
   casting: CastingCondition,
   finer = 1,
 ): PadTrial | { readonly reason: string } {
-  const small = smallStrain(genome, casting, finer)
+  const small = smallStrain(genome, casting)
   if ('reason' in small) return small
-  const { framework, spec, thicknessM } = small
+  const pieces = numbers.squeezePieces * finer
+  const spec = inPieces(small.described.spec, pieces, (bar) => small.described.bowsM[bar]!)
+  const framework = buildFramework(spec)
   const squeezed = squeeze(framework, {
     axis: 1,
     strain: -numbers.workingSqueeze,
     steps: numbers.squeezeSteps * finer,
+    // Hatch and frame, pipe and wall do not slide along each other.
+    holdShear: true,
     stableOnly: true,
   })
   if ('reason' in squeezed) return { reason: `${squeezed.reason} by ${percent(-squeezed.along)} squeeze` }
@@ -189,6 +201,7 @@ export function tryPad(
     return { reason: `walls meet before ${percent(numbers.workingSqueeze)} squeeze` }
   }
   const rubber = numbers.rubbers[genome.rubber[0]!]!
+  const thicknessM = small.described.thicknessM.flatMap((t) => new Array<number>(pieces).fill(t))
   const wallStrain = surfaceStrain(framework, squeezed.situation.u, thicknessM)
   if (wallStrain > rubber.strainMost) {
     return {
