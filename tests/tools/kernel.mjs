@@ -9,6 +9,7 @@ import { readFileSync, writeFileSync } from 'node:fs'
 import { dirname, join } from 'node:path'
 import { fileURLToPath } from 'node:url'
 import asc from 'assemblyscript/asc'
+import binaryen from 'assemblyscript/binaryen'
 
 const root = join(dirname(fileURLToPath(import.meta.url)), '..', '..')
 const folder = join(root, 'sim', 'lattice')
@@ -72,18 +73,11 @@ function sourceOf(variant, name) {
   }
 }
 
-/** The bytes of one variant's module, and with `text` its disassembly. Throws with what the compiler said. */
-export async function compile(variant, { text = false } = {}) {
+/** The bytes of one variant's module, and its disassembly. Throws with what the compiler said. */
+export async function compile(variant) {
   const files = new Map()
   const { error, stderr } = await asc.main(
-    [
-      'wasm/kernel.ts',
-      ...options,
-      ...more,
-      '--outFile',
-      'kernel.wasm',
-      ...(text ? ['--textFile', 'kernel.wat'] : []),
-    ],
+    ['wasm/kernel.ts', ...options, ...more, '--outFile', 'kernel.wasm'],
     {
       readFile: (name) => sourceOf(variant, name.replaceAll('\\', '/')),
       writeFile: (name, contents) => files.set(name, contents),
@@ -91,8 +85,67 @@ export async function compile(variant, { text = false } = {}) {
     },
   )
   if (error) throw new Error(`${variant.name}: ${error.message}\n${stderr.toString()}`)
-  // A copy: small files share one pool of memory.
-  return { bytes: Uint8Array.from(files.get('kernel.wasm')), text: files.get('kernel.wat') }
+  return foldOffsets(files.get('kernel.wasm'))
+}
+
+/** All that a module may use. Relaxed SIMD is not among them: validation refuses it. */
+export const features =
+  binaryen.Features.SIMD128 | binaryen.Features.NontrappingFPToInt | binaryen.Features.SignExt
+
+/**
+ * Moves constants that are added to an address into the offset of the load or store. The compiler's own pass leaves out
+ * splat loads and additions of 64, which it has turned into subtractions of -64; each costs an instruction in the
+ * innermost loop. Allowed because no address is near 2^32.
+ */
+function foldOffsets(bytes) {
+  const module = binaryen.readBinary(bytes)
+  module.setFeatures(features)
+  for (let i = 0; i < module.getNumFunctions(); i++) {
+    const { body } = binaryen.getFunctionInfo(module.getFunctionByIndex(i))
+    if (body !== 0) visit(body)
+  }
+  if (!module.validate()) throw new Error('folding offsets broke the module')
+  const folded = { bytes: Uint8Array.from(module.emitBinary()), text: module.emitText() }
+  module.dispose()
+  return folded
+}
+
+/** Every expression below this one, and this one. */
+function visit(expression) {
+  const info = binaryen.getExpressionInfo(expression)
+  if (info.id === binaryen.ConstId) return
+  const kind = memoryKinds.get(info.id)
+  if (kind !== undefined) fold(expression, kind)
+  for (const [name, value] of Object.entries(info)) {
+    if (!children.has(name)) continue
+    for (const child of Array.isArray(value) ? value : [value]) if (child !== 0) visit(child)
+  }
+}
+
+const memoryKinds = new Map([
+  [binaryen.LoadId, binaryen.Load],
+  [binaryen.StoreId, binaryen.Store],
+  [binaryen.SIMDLoadId, binaryen.SIMDLoad],
+  [binaryen.SIMDLoadStoreLaneId, binaryen.SIMDLoadStoreLane],
+])
+
+/** Fields of an expression that hold expressions. */
+const children = new Set([
+  ...['children', 'operands', 'condition', 'ifTrue', 'ifFalse', 'body', 'value', 'ptr', 'left', 'right'],
+  ...['vec', 'a', 'b', 'c', 'shift', 'delta'],
+])
+
+function fold(expression, kind) {
+  const address = binaryen.getExpressionInfo(kind.getPtr(expression))
+  if (address.id !== binaryen.BinaryId) return
+  const sign = address.op === binaryen.AddInt32 ? 1 : address.op === binaryen.SubInt32 ? -1 : 0
+  const added = binaryen.getExpressionInfo(address.right)
+  if (sign === 0 || added.id !== binaryen.ConstId) return
+  const offset = kind.getOffset(expression) + sign * added.value
+  if (offset < 0) return
+  kind.setOffset(expression, offset)
+  kind.setPtr(expression, address.left)
+  fold(expression, kind)
 }
 
 /** The generated file for these modules. */

@@ -37,8 +37,6 @@ export const prescribedFirst = 1100
 export const prescribedEnd = 1104
 /** One word a lane: address of its heights. */
 export const rowsFirst = 1108
-/** Address of the list `touching`, 0 when nobody asks. */
-export const touchingFirst = 1112
 /** 1 where the exponent of contact is 1.5. */
 export const rooted = 1116
 /** Steps since the drive began; below 0 before it. */

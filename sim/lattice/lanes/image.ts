@@ -42,7 +42,6 @@ function writeHead(pen: Pen): void {
   }
   putWord(pen, header.nodeTable, places.nodeTable.first)
   putWord(pen, header.rowsFirst, places.rows.first)
-  putWord(pen, header.touchingFirst, lattice.sensorCount > 0 ? places.touching.first : 0)
   putWord(pen, header.rooted, lattice.contact[2]! !== 0 ? 1 : 0)
   putWord(pen, header.rampSteps, lattice.rampSteps)
   putWord(pen, header.freshAt, -1)
@@ -67,14 +66,21 @@ function writeHead(pen: Pen): void {
 }
 
 function writeNodeTable(pen: Pen): void {
-  const { sizes, places, lanes } = pen
-  const [{ nodeCount, dimensions, heading }] = lanes as readonly [(typeof lanes)[number]]
+  const { sizes, places, lanes, variant } = pen
+  const [{ nodeCount, dimensions, heading, inverseMass, sensorCount }] = lanes as readonly [
+    (typeof lanes)[number],
+  ]
   for (let i = 0; i < nodeCount; i++) {
     const row = places.nodeTable.first + i * sizes.nodeRow
     putMaterial(pen, row, 'inverseMass', i)
     putWideRow(pen, row + sizes.friction, 'friction', dimensions * i, dimensions)
     const ahead = dimensions === 3 ? heading[i]! : -1
-    putWord(pen, row + sizes.heading, ahead < 0 ? 0 : nodeAt(pen, ahead))
+    const held = inverseMass[i] === 0
+    const words = row + sizes.heading
+    putWord(pen, words, ahead < 0 ? 0 : nodeAt(pen, ahead))
+    putWord(pen, words + 4, sensorCount > 0 ? places.touching.first + i * variant.wide : 0)
+    putWord(pen, words + 8, held ? 1 : 0)
+    putWord(pen, words + 12, held || sensorCount > 0 ? 1 : 0)
   }
 }
 
@@ -93,12 +99,12 @@ function putLaw(pen: Pen, at: number, i: number): void {
 }
 
 function writePassive(pen: Pen): void {
-  const { places, sizes, lanes } = pen
+  const { places, sizes, lanes, variant } = pen
   const [{ passiveCount, ends }] = lanes as readonly [(typeof lanes)[number]]
   for (let i = 0; i < passiveCount; i++) {
     const at = places.passive.first + i * sizes.passive
-    putEnds(pen, at, ends, i)
-    putLaw(pen, at + sizes.first, i)
+    putLaw(pen, at, i)
+    putEnds(pen, at + 3 * variant.materialBytes, ends, i)
   }
 }
 
@@ -111,10 +117,11 @@ function writeActive(pen: Pen): void {
   const [{ passiveCount, activeCount, ends, group }] = lanes as readonly [(typeof lanes)[number]]
   for (let j = 0; j < activeCount; j++) {
     const at = places.active.first + j * sizes.active
-    putEnds(pen, at, ends, passiveCount + j)
-    putWord(pen, at + 8, drivenPairAt(pen, group[j]!))
-    putLaw(pen, at + 16, passiveCount + j)
-    putMaterial(pen, at + 16 + 3 * variant.materialBytes, 'limitN', j)
+    const words = at + 4 * variant.materialBytes
+    putLaw(pen, at, passiveCount + j)
+    putMaterial(pen, at + 3 * variant.materialBytes, 'limitN', j)
+    putEnds(pen, words, ends, passiveCount + j)
+    putWord(pen, words + 8, drivenPairAt(pen, group[j]!))
     putWide(pen, at + sizes.activeStrain, 'strainCos', j)
     putWide(pen, at + sizes.activeStrain + variant.wide, 'strainSin', j)
   }

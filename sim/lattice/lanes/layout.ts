@@ -38,16 +38,16 @@ export function recordsOf({ dimensions, own, wide, materialBytes }: Variant) {
   const first = own ? 16 : 8
   const friction = round16(materialBytes)
   const heading = friction + dimensions * wide
-  const activeStrain = round16(16 + 4 * materialBytes)
+  const activeStrain = 4 * materialBytes + 16
   const guidedStrain = round16(32 + 5 * materialBytes)
   return {
     node: 3 * dimensions * wide,
     friction,
     heading,
-    nodeRow: round16(heading + 4),
-    /** Of the material of passive struts, drag struts and pairs. */
+    nodeRow: heading + 16,
+    /** Of the material of drag struts and pairs. */
     first,
-    passive: round16(first + 3 * materialBytes),
+    passive: round16(3 * materialBytes + 8),
     activeStrain,
     active: activeStrain + 2 * wide,
     guidedStrain,

@@ -14,7 +14,8 @@ const perSix = 1 / 6
 /**
  * Spring and dashpot of the passive struts; C = |pb - pa| - rest,
  *   tension T = stiffness * C + damping * dC/dt,   force on a = +T n,  on b = -T n,  n from a to b.
- * With d = pb - pa, q = d.d:  T / |d| = k - k rest / |d| + c (d . dv) / q.
+ * With d = pb - pa, q = d.d:  T / |d| = k - k rest / |d| + c (d . dv) / q = k + (c (d . dv) - k rest |d|) / q: one
+ * product less, and square root and 1 / q do not wait for each other.
  */
 export function addPassivePlane(
   count: number,
@@ -32,10 +33,8 @@ export function addPassivePlane(
     const dvx = nodes[b + 2]! - nodes[a + 2]!
     const dvy = nodes[b + 3]! - nodes[a + 3]!
     const q = dx * dx + dy * dy
-    const perQ = 1 / q
-    const perLength = Math.sqrt(q) * perQ
-    const scale =
-      stiffnessNpm[i]! - stiffnessRestN[i]! * perLength + dampingNspm[i]! * (dx * dvx + dy * dvy) * perQ
+    const along = dx * dvx + dy * dvy
+    const scale = stiffnessNpm[i]! + (dampingNspm[i]! * along - stiffnessRestN[i]! * Math.sqrt(q)) * (1 / q)
     const fx = scale * dx
     const fy = scale * dy
     nodes[a + 4]! += fx

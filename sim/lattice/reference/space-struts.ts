@@ -26,12 +26,8 @@ export function addPassiveSpace(
     const dvy = nodes[b + 4]! - nodes[a + 4]!
     const dvz = nodes[b + 5]! - nodes[a + 5]!
     const q = dx * dx + dy * dy + dz * dz
-    const perQ = 1 / q
-    const perLength = Math.sqrt(q) * perQ
-    const scale =
-      stiffnessNpm[i]! -
-      stiffnessRestN[i]! * perLength +
-      dampingNspm[i]! * (dx * dvx + dy * dvy + dz * dvz) * perQ
+    const along = dx * dvx + dy * dvy + dz * dvz
+    const scale = stiffnessNpm[i]! + (dampingNspm[i]! * along - stiffnessRestN[i]! * Math.sqrt(q)) * (1 / q)
     const fx = scale * dx
     const fy = scale * dy
     const fz = scale * dz

@@ -8,11 +8,12 @@ import {
 import { number, word, x, y, z } from './record'
 import { dimensions } from './variant'
 import {
-  add, choose, floor, gather, less, mul, numberBytes, only, read, sub, Vec,
+  add, atLeast, atMost, floor, gather, less, mul, numberBytes, only, read, sub, Vec,
 } from './vector'
 
-@inline function cellOf(along: Vec, low: Vec, last: Vec): Vec {
-  return choose(less(low, along), choose(less(along, last), floor(along), last), low)
+/** Cell of a place along one side: along > low ? (along < last ? floor(along) : last) : low; low for what is no number. */
+@inline export function cellOf(along: Vec, low: Vec, last: Vec): Vec {
+  return atMost(last, atLeast(low, floor(along)))
 }
 
 /** Height under `along` from the heights `place` and the next one. */

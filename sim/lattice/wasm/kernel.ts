@@ -9,13 +9,13 @@ import { guidedEnd, guidedFirst, sensorEnd, sensorFirst } from '../lanes/header'
 import { drive } from './drive'
 import { addFills } from './fills'
 import { guide } from './guide'
-import { integrate } from './nodes'
+import { integrate, special } from './nodes'
 import { word } from './record'
 import { addActive, addApart, addDrag, addGuided, addPassive } from './struts'
 
 export { look } from './look'
 export { sample } from './sample'
-export { addActive, addApart, addDrag, addFills, addGuided, addPassive, drive, guide, integrate }
+export { addActive, addApart, addDrag, addFills, addGuided, addPassive, drive, guide, integrate, special }
 
 /** Some steps; the forces are 0 before and after. */
 export function run(steps: i32): void {

@@ -3,10 +3,10 @@
 
 import { depthLimitAt, depthLimited, nodesEnd, nodesFirst, nodeTable, topAt } from '../lanes/header'
 import { depthOf } from './ground'
-import { nodeBytes, nodeRowBytes, number, wide, word, y } from './record'
+import { heldAt, nodeBytes, nodeRowBytes, number, wide, word, y } from './record'
 import { dimensions, vectors } from './variant'
 import {
-  add, anyOf, bitsOf, differ, either, less, numberBytes, read, sub, Vec, vectorBytes, vectorLanes,
+  add, anyOf, bitsOf, differ, either, less, read, sub, Vec, vectorBytes, vectorLanes,
 } from './vector'
 
 /** 0 as long as all numbers of all nodes are finite, no number otherwise. */
@@ -27,16 +27,12 @@ function sunk(lane: usize): u32 {
   let row = word(nodeTable)
   let found: u32 = 0
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    if (!isHeld(row) && anyOf(less(read(o, y + lane), number(topAt, lane)))) {
+    if (word(row + heldAt) == 0 && anyOf(less(read(o, y + lane), number(topAt, lane)))) {
       found |= bitsOf(less(number(depthLimitAt, lane), depthOf(o, lane)))
     }
     row += nodeRowBytes
   }
   return found
-}
-
-@inline function isHeld(row: usize): bool {
-  return numberBytes == 8 ? load<f64>(row) == 0 : load<f32>(row) == 0
 }
 
 @inline function lookAt(lane: usize): u32 {

@@ -1,20 +1,18 @@
 // Nodes: node drag, contact, friction and one step of symplectic Euler. Formulas: ../reference/plane-nodes.ts and
-// space-nodes.ts. The free step is in the loop; a vector with some lane below the highest ground goes to touch(), where
-// lanes without contact get the results of the free step, bit for bit.
+// space-nodes.ts. The loop holds the free step; whatever is more than that (held, felt by a sensor, lower than the highest
+// ground in some lane) goes to special(), where lanes without contact get the results of the free step, bit for bit.
 
-import {
-  dragAt, gravityAt, nodesEnd, nodesFirst, nodeTable, stepAt, topAt, touchingFirst,
-} from '../lanes/header'
+import { dragAt, gravityAt, nodesEnd, nodesFirst, nodeTable, stepAt, topAt } from '../lanes/header'
 import { touchPlane } from './plane-touch'
 import {
-  fx, fy, fz, material, nodeBytes, nodeRowBytes, number, vx, vy, vz, wide, word, x, y, z,
+  fx, fy, fz, heldAt, material, nodeBytes, nodeRowBytes, number, specialAt, touchingAt, vx, wide, word, x, y,
 } from './record'
 import { touchSpace } from './space-touch'
 import { dimensions, vectors } from './variant'
-import { add, anyOf, less, mul, numberBytes, read, sub, Vec, vectorBytes, write } from './vector'
+import { add, anyOf, either, less, mul, read, sub, Vec, vectorBytes, write } from './vector'
 
 /** v += h (f / m + g), x += h v of one component, f without the drag of the node. */
-@inline function free(o: usize, c: usize, lane: usize, h: Vec, drag: Vec, perKg: Vec, zero: Vec): void {
+@inline function component(o: usize, c: usize, lane: usize, h: Vec, drag: Vec, perKg: Vec, zero: Vec): void {
   const position = x + c * wide + lane
   const velocity = vx + c * wide + lane
   const force = fx + c * wide + lane
@@ -26,48 +24,63 @@ import { add, anyOf, less, mul, numberBytes, read, sub, Vec, vectorBytes, write 
   write(o, position, add(read(o, position), mul(h, v)))
 }
 
-@inline function move(o: usize, row: usize, touching: usize, lane: usize): void {
-  if (anyOf(less(read(o, y + lane), number(topAt, lane)))) {
-    if (dimensions == 3) touchSpace(o + lane, row, touching, lane)
-    else touchPlane(o + lane, row, touching, lane)
-    return
-  }
-  const h = number(stepAt, lane)
-  const zero = sub(h, h)
+@inline function free(o: usize, row: usize, lane: usize, h: Vec, zero: Vec): void {
   const drag = number(dragAt, lane)
   const perKg = material(row, 0, 0, lane)
-  free(o, 0, lane, h, drag, perKg, zero)
-  free(o, 1, lane, h, drag, perKg, zero)
-  if (dimensions == 3) free(o, 2, lane, h, drag, perKg, zero)
-  if (touching != 0) write(touching, lane, zero)
+  component(o, 0, lane, h, drag, perKg, zero)
+  component(o, 1, lane, h, drag, perKg, zero)
+  if (dimensions == 3) component(o, 2, lane, h, drag, perKg, zero)
 }
 
-@inline function clearForces(o: usize, lane: usize): void {
-  const zero = sub(number(stepAt, lane), number(stepAt, lane))
+@inline function clearForces(o: usize, lane: usize, zero: Vec): void {
   write(o, fx + lane, zero)
   write(o, fy + lane, zero)
   if (dimensions == 3) write(o, fz + lane, zero)
 }
 
-@inline function isHeld(row: usize): bool {
-  return numberBytes == 8 ? load<f64>(row) == 0 : load<f32>(row) == 0
+/** The step of one vector of a node that moves. */
+@inline function move(o: usize, row: usize, touching: usize, lane: usize, h: Vec, zero: Vec): void {
+  if (anyOf(less(read(o, y + lane), number(topAt, lane)))) {
+    if (dimensions == 3) touchSpace(o + lane, row, touching, lane)
+    else touchPlane(o + lane, row, touching, lane)
+  } else {
+    free(o, row, lane, h, zero)
+    if (touching != 0) write(touching, lane, zero)
+  }
+}
+
+export function special(o: usize, row: usize): void {
+  const h = number(stepAt, 0)
+  const zero = sub(h, h)
+  if (word(row + heldAt) != 0) {
+    clearForces(o, 0, zero)
+    if (vectors > 1) clearForces(o, vectorBytes, zero)
+    return
+  }
+  const touching = word(row + touchingAt)
+  move(o, row, touching, 0, h, zero)
+  if (vectors > 1) move(o, row, touching, vectorBytes, h, zero)
+}
+
+@inline function isLow(o: usize): bool {
+  const first = less(read(o, y), number(topAt, 0))
+  if (vectors > 1) return anyOf(either(first, less(read(o, y + vectorBytes), number(topAt, vectorBytes))))
+  return anyOf(first)
 }
 
 /** One step for every node by index; forces are 0 afterwards. */
 export function integrate(): void {
   const end = word(nodesEnd)
   let row = word(nodeTable)
-  let touching = word(touchingFirst)
-  const each: usize = touching == 0 ? 0 : wide
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    if (isHeld(row)) {
-      clearForces(o, 0)
-      if (vectors > 1) clearForces(o, vectorBytes)
+    if (isLow(o) || word(row + specialAt) != 0) {
+      special(o, row)
     } else {
-      move(o, row, touching, 0)
-      if (vectors > 1) move(o, row, touching, vectorBytes)
+      const h = number(stepAt, 0)
+      const zero = sub(h, h)
+      free(o, row, 0, h, zero)
+      if (vectors > 1) free(o, row, vectorBytes, h, zero)
     }
     row += nodeRowBytes
-    touching += each
   }
 }

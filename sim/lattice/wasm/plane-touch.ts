@@ -5,9 +5,10 @@ import {
   contactDampingAt, contactStiffnessAt, dragAt, firstXAt, gravityAt, lastColumnAt, lowColumnAt, oneAt,
   perSpacingXAt, rooted, rowsFirst, stepAt, tinyAt, topAt,
 } from '../lanes/header'
+import { cellOf } from './ground'
 import { frictionAt, fx, fy, material, number, vx, vy, wide, word, x, y } from './record'
 import {
-  add, anyOf, atMost, both, choose, div, floor, gather, less, mul, neg, numberBytes, only, read, sqrt, sub, Vec,
+  add, anyOf, atMost, both, choose, div, gather, less, mul, numberBytes, only, read, sqrt, sub, Vec,
   write,
 } from './vector'
 
@@ -17,33 +18,32 @@ import {
 }
 
 export function touchPlane(o: usize, row: usize, touching: usize, lane: usize): void {
-  const h = number(stepAt, lane)
-  const zero = sub(h, h)
-  const perKg = material(row, 0, 0, lane)
-  const vx0 = read(o, vx)
-  const vy0 = read(o, vy)
-  const drag = number(dragAt, lane)
-  let forceX = sub(read(o, fx), mul(drag, vx0))
-  let forceY = sub(read(o, fy), mul(drag, vy0))
-  write(o, fx, zero)
-  write(o, fy, zero)
-
   const perSpacing = number(perSpacingXAt, lane)
   const along = mul(sub(read(o, x), number(firstXAt, lane)), perSpacing)
   const low = number(lowColumnAt, lane)
   const last = number(lastColumnAt, lane)
-  const cell = choose(less(low, along), choose(less(along, last), floor(along), last), low)
+  const cell = cellOf(along, low, last)
   const rows = word(rowsFirst) + (lane / numberBytes) * 4
   const left = gather(rows, cell, 0)
   const rise = sub(gather(rows, cell, numberBytes), left)
   const slope = mul(rise, perSpacing)
   const depth = sub(add(left, mul(rise, sub(along, cell))), read(o, y))
   const power = word(rooted) != 0 ? mul(depth, sqrt(depth)) : depth
+  const vx0 = read(o, vx)
+  const vy0 = read(o, vy)
   const rate = sub(mul(slope, vx0), vy0)
   const f = mul(power, add(number(contactStiffnessAt, lane), mul(number(contactDampingAt, lane), rate)))
+  const h = number(stepAt, lane)
+  const zero = sub(h, h)
   const below = less(read(o, y), number(topAt, lane))
   const pushed = both(both(below, less(zero, depth)), less(zero, f))
-  forceX = choose(pushed, sub(forceX, mul(f, slope)), forceX)
+  const perKg = material(row, 0, 0, lane)
+  const drag = number(dragAt, lane)
+  let forceX = sub(read(o, fx), mul(drag, vx0))
+  let forceY = sub(read(o, fy), mul(drag, vy0))
+  write(o, fx, zero)
+  write(o, fy, zero)
+  forceX = sub(forceX, only(pushed, mul(f, slope)))
   forceY = choose(pushed, add(forceY, f), forceY)
   let v = driven(vx0, h, forceX, perKg, number(gravityAt, lane))
   let w = driven(vy0, h, forceY, perKg, number(gravityAt + 1, lane))
@@ -58,9 +58,10 @@ export function touchPlane(o: usize, row: usize, touching: usize, lane: usize): 
     const mu = choose(less(zero, sliding), forward, backward)
     const speed = add(sqrt(mul(mul(sliding, sliding), perLength)), number(tinyAt, lane))
     const drop = mul(mul(mul(mul(h, mu), f), sqrt(squared)), perKg)
-    const change = mul(mul(neg(atMost(div(drop, speed), one)), sliding), perLength)
-    v = choose(pushed, add(v, change), v)
-    w = choose(pushed, add(w, mul(change, slope)), w)
+    // Minus the change: taking away +0 leaves -0 what it is, adding +0 does not.
+    const lost = mul(mul(atMost(div(drop, speed), one), sliding), perLength)
+    v = sub(v, only(pushed, lost))
+    w = sub(w, only(pushed, mul(lost, slope)))
   }
   write(o, vx, v)
   write(o, vy, w)

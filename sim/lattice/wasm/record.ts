@@ -22,18 +22,22 @@ export const nodeBytes: usize = 3 * dimensions * wide
 
 export const materialBytes: usize = own ? wide : numberBytes
 
-// Row of the node table: inverse mass | friction (2 numbers in 2-D, 3 in 3-D) | heading (a word).
+// Row of the node table: inverse mass | friction (2 numbers in 2-D, 3 in 3-D) | words: heading (the other node's record
+// or 0), where to tell whether it touches the ground (or 0), 1 when it is held, 1 when the free step is not all.
 export const frictionAt: usize = (materialBytes + 15) & ~15
 export const headingAt: usize = frictionAt + (dimensions == 3 ? 3 * wide : 2 * wide)
-export const nodeRowBytes: usize = (headingAt + 19) & ~15
+export const touchingAt: usize = headingAt + 4
+export const heldAt: usize = headingAt + 8
+export const specialAt: usize = headingAt + 12
+export const nodeRowBytes: usize = headingAt + 16
 
-// Passive strut: ends (2 words) | stiffness, stiffness * rest, damping.
-export const passiveMaterial: usize = own ? 16 : 8
-export const passiveBytes: usize = (passiveMaterial + 3 * materialBytes + 15) & ~15
+// Passive strut: stiffness, stiffness * rest, damping | ends (2 words). (Offset 0 is the cheapest for a splat load.)
+export const passiveEnds: usize = 3 * materialBytes
+export const passiveBytes: usize = (passiveEnds + 8 + 15) & ~15
 
-// Active strut: ends, driven pair of its group, - | stiffness, stiffness * rest, damping, limit | strainCos, strainSin.
-export const activeMaterial: usize = 16
-export const activeStrain: usize = (activeMaterial + 4 * materialBytes + 15) & ~15
+// Active strut: stiffness, stiffness * rest, damping, limit | ends, driven pair of its group, - | strainCos, strainSin.
+export const activeEnds: usize = 4 * materialBytes
+export const activeStrain: usize = activeEnds + 16
 export const activeBytes: usize = activeStrain + 2 * wide
 
 // Guided strut: ends, driven pair of its group, first and end of its feedback rows (8 words in all) | stiffness,
@@ -101,9 +105,12 @@ export const prescribedBytes: usize = prescribedPhase + 2 * wide
   if (dimensions == 3) return add(add(mul(ax, bx), mul(ay, by)), mul(az, bz))
   return add(mul(ax, bx), mul(ay, by))
 }
-/** Adds `force` to component c of node a. */
+/**
+ * Adds `force` to component c of node a. (The force stands first so that the load comes after what the force is made of:
+ * loads keep their order, and one too early costs a register for a long time.)
+ */
 @inline export function give(a: usize, c: usize, lane: usize, force: Vec): void {
-  write(a, c + lane, add(read(a, c + lane), force))
+  write(a, c + lane, add(force, read(a, c + lane)))
 }
 /** Takes `force` from component c of node a. */
 @inline export function take(a: usize, c: usize, lane: usize, force: Vec): void {

@@ -8,8 +8,8 @@ import {
 } from '../lanes/header'
 import { depthOf } from './ground'
 import {
-  activeBytes, activeMaterial, activeStrain, dot, drivenSampleBytes, from, guidedBytes, guidedMaterial, guidedStrain,
-  material, nodeBytes, nodeSampleBytes, number, passiveBytes, passiveMaterial, strutSampleBytes, vx, vy, vz, wide, word,
+  activeBytes, activeEnds, activeStrain, dot, drivenSampleBytes, from, guidedBytes, guidedMaterial, guidedStrain,
+  material, nodeBytes, nodeSampleBytes, number, passiveBytes, passiveEnds, strutSampleBytes, vx, vy, vz, wide, word,
   x, y, z,
 } from './record'
 import { dimensions, vectors } from './variant'
@@ -54,13 +54,13 @@ import {
 function samplePassive(at: usize, lane: usize): void {
   const end = word(passiveEnd)
   for (let p = word(passiveFirst); p < end; p += passiveBytes) {
-    const a = word(p)
-    const b = word(p + 4)
+    const a = word(p + passiveEnds)
+    const b = word(p + passiveEnds + 4)
     const q = squareOf(a, b, lane)
     const perQ = div(number(oneAt, lane), q)
     const length = sqrt(q)
-    const commanded = material(p, passiveMaterial, 1, lane)
-    const scale = scaleOf(p, passiveMaterial, commanded, mul(length, perQ), perQ, alongOf(a, b, lane), lane)
+    const commanded = material(p, 0, 1, lane)
+    const scale = scaleOf(p, 0, commanded, mul(length, perQ), perQ, alongOf(a, b, lane), lane)
     keep(at + lane, mul(abs(scale), length), length)
     at += strutSampleBytes
   }
@@ -69,9 +69,9 @@ function samplePassive(at: usize, lane: usize): void {
 function sampleActive(at: usize, work: usize, lane: usize): void {
   const end = word(activeEnd)
   for (let p = word(activeFirst); p < end; p += activeBytes) {
-    const a = word(p)
-    const b = word(p + 4)
-    const group = word(p + 8)
+    const a = word(p + activeEnds)
+    const b = word(p + activeEnds + 4)
+    const group = word(p + activeEnds + 8)
     const one = number(oneAt, lane)
     const q = squareOf(a, b, lane)
     const perQ = div(one, q)
@@ -82,9 +82,9 @@ function sampleActive(at: usize, work: usize, lane: usize): void {
       mul(read(group, lane), read(p, activeStrain + lane)),
       mul(read(group, wide + lane), read(p, activeStrain + wide + lane)),
     )
-    const commanded = mul(material(p, activeMaterial, 1, lane), add(one, drive))
-    const most = mul(material(p, activeMaterial, 3, lane), perLength)
-    const free = scaleOf(p, activeMaterial, commanded, perLength, perQ, along, lane)
+    const commanded = mul(material(p, 0, 1, lane), add(one, drive))
+    const most = mul(material(p, 0, 3, lane), perLength)
+    const free = scaleOf(p, 0, commanded, perLength, perQ, along, lane)
     const scale = atMost(atLeast(free, neg(most)), most)
     keep(at + lane, mul(abs(scale), length), length)
     keepWork(work + lane, scale, along, lane)

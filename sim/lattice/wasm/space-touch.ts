@@ -5,11 +5,12 @@ import {
   columnsAt, contactDampingAt, contactStiffnessAt, dragAt, firstXAt, firstZAt, gravityAt, lastColumnAt, lastRowAt,
   lowColumnAt, lowRowAt, oneAt, perSpacingXAt, perSpacingZAt, rooted, rowsFirst, stepAt, tinyAt, topAt,
 } from '../lanes/header'
+import { cellOf } from './ground'
 import {
   dot, frictionAt, fx, fy, fz, headingAt, material, number, vx, vy, vz, wide, word, x, y, z,
 } from './record'
 import {
-  add, anyOf, atLeast, atMost, both, choose, differ, div, either, floor, gather, less, Mask, mul, numberBytes,
+  add, anyOf, atLeast, atMost, both, choose, differ, div, either, gather, less, Mask, mul, numberBytes,
   only, read, sqrt, sub, Vec, write,
 } from './vector'
 
@@ -18,26 +19,7 @@ import {
   return add(v, mul(h, add(mul(force, perKg), gravity)))
 }
 
-/** Cell of a place along one side of the ground. */
-@inline function cellOf(along: Vec, low: Vec, last: Vec): Vec {
-  return choose(less(low, along), choose(less(along, last), floor(along), last), low)
-}
-
 export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): void {
-  const h = number(stepAt, lane)
-  const zero = sub(h, h)
-  const perKg = material(row, 0, 0, lane)
-  const vx0 = read(o, vx)
-  const vy0 = read(o, vy)
-  const vz0 = read(o, vz)
-  const drag = number(dragAt, lane)
-  const freeX = sub(read(o, fx), mul(drag, vx0))
-  const freeY = sub(read(o, fy), mul(drag, vy0))
-  const freeZ = sub(read(o, fz), mul(drag, vz0))
-  write(o, fx, zero)
-  write(o, fy, zero)
-  write(o, fz, zero)
-
   const perSpacingX = number(perSpacingXAt, lane)
   const perSpacingZ = number(perSpacingZAt, lane)
   const alongX = mul(sub(read(o, x), number(firstXAt, lane)), perSpacingX)
@@ -54,6 +36,7 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
   const farRise = sub(gather(rows, opposite, numberBytes), far)
   const u = sub(alongX, column)
   const w = sub(alongZ, line)
+  const zero = sub(number(oneAt, lane), number(oneAt, lane))
   const nearHeight = add(near, mul(nearRise, u))
   const across = sub(add(far, mul(farRise, u)), nearHeight)
   const depth = sub(add(nearHeight, mul(across, w)), read(o, y))
@@ -62,10 +45,22 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
   const sx = only(inside, mul(add(nearRise, mul(sub(farRise, nearRise), w)), perSpacingX))
   const sz = only(inside, mul(across, perSpacingZ))
   const power = word(rooted) != 0 ? mul(depth, sqrt(depth)) : depth
+  const vx0 = read(o, vx)
+  const vy0 = read(o, vy)
+  const vz0 = read(o, vz)
   const rate = sub(add(mul(sx, vx0), mul(sz, vz0)), vy0)
   const law = add(number(contactStiffnessAt, lane), mul(number(contactDampingAt, lane), rate))
   const f = only(inside, atLeast(mul(power, law), zero))
   const pushed = less(zero, f)
+  const h = number(stepAt, lane)
+  const perKg = material(row, 0, 0, lane)
+  const drag = number(dragAt, lane)
+  const freeX = sub(read(o, fx), mul(drag, vx0))
+  const freeY = sub(read(o, fy), mul(drag, vy0))
+  const freeZ = sub(read(o, fz), mul(drag, vz0))
+  write(o, fx, zero)
+  write(o, fy, zero)
+  write(o, fz, zero)
   write(o, vx, driven(vx0, h, sub(freeX, mul(f, sx)), perKg, number(gravityAt, lane)))
   write(o, vy, driven(vy0, h, choose(below, add(freeY, f), freeY), perKg, number(gravityAt + 1, lane)))
   write(o, vz, driven(vz0, h, sub(freeZ, mul(f, sz)), perKg, number(gravityAt + 2, lane)))
@@ -97,10 +92,10 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
     mu = choose(directed, directedMu(o, row, lane, tx, tz, forward, backward, sideways, one), forward)
   }
   const drop = mul(mul(mul(number(stepAt, lane), mu), mul(f, sqrt(squared))), material(row, 0, 0, lane))
-  const change = only(pushed, atMost(div(drop, speed), one))
-  write(o, vx, choose(pushed, sub(vx1, mul(change, tx)), vx1))
-  write(o, vy, choose(pushed, sub(vy1, mul(change, ty)), vy1))
-  write(o, vz, choose(pushed, sub(vz1, mul(change, tz)), vz1))
+  const change = atMost(div(drop, speed), one)
+  write(o, vx, sub(vx1, only(pushed, mul(change, tx))))
+  write(o, vy, sub(vy1, only(pushed, mul(change, ty))))
+  write(o, vz, sub(vz1, only(pushed, mul(change, tz))))
 }
 
 /** mu between the coefficients of the node's heading. */

@@ -9,8 +9,8 @@ import {
   passiveFirst, perSixAt, twoAt,
 } from '../lanes/header'
 import {
-  activeBytes, activeMaterial, activeStrain, apartBytes, apartMaterial, dot, dragBytes, dragMaterial, from, fx, fy, fz,
-  give, guidedBytes, guidedMaterial, guidedStrain, material, number, passiveBytes, passiveMaterial, take, vx, vy, vz,
+  activeBytes, activeEnds, activeStrain, apartBytes, apartMaterial, dot, dragBytes, dragMaterial, from, fx, fy, fz,
+  give, guidedBytes, guidedMaterial, guidedStrain, material, number, passiveBytes, passiveEnds, take, vx, vy, vz,
   wide, word, x, y, z,
 } from './record'
 import { dimensions, vectors } from './variant'
@@ -44,15 +44,14 @@ import {
   const dz = dimensions == 3 ? from(a, b, z, lane) : dx
   const q = dot(dx, dy, dz, dx, dy, dz)
   const perQ = div(one, q)
-  const perLength = mul(sqrt(q), perQ)
   const dvx = from(a, b, vx, lane)
   const dvy = from(a, b, vy, lane)
   const dvz = dimensions == 3 ? from(a, b, vz, lane) : dvx
   const along = dot(dx, dy, dz, dvx, dvy, dvz)
-  const stiffness = material(p, passiveMaterial, 0, lane)
-  const stiffnessRest = material(p, passiveMaterial, 1, lane)
-  const damping = material(p, passiveMaterial, 2, lane)
-  const scale = add(sub(stiffness, mul(stiffnessRest, perLength)), mul(mul(damping, along), perQ))
+  const stiffness = material(p, 0, 0, lane)
+  const stiffnessRest = material(p, 0, 1, lane)
+  const damping = material(p, 0, 2, lane)
+  const scale = add(stiffness, mul(sub(mul(damping, along), mul(stiffnessRest, sqrt(q))), perQ))
   pull(a, b, lane, scale, dx, dy, dz)
 }
 
@@ -60,8 +59,8 @@ export function addPassive(): void {
   const one = number(oneAt, 0)
   const end = word(passiveEnd)
   for (let p = word(passiveFirst); p < end; p += passiveBytes) {
-    const a = word(p)
-    const b = word(p + 4)
+    const a = word(p + passiveEnds)
+    const b = word(p + passiveEnds + 4)
     passive(p, a, b, 0, one)
     if (vectors > 1) passive(p, a, b, vectorBytes, one)
   }
@@ -82,10 +81,10 @@ export function addPassive(): void {
     mul(read(group, lane), read(p, activeStrain + lane)),
     mul(read(group, wide + lane), read(p, activeStrain + wide + lane)),
   )
-  const commanded = mul(material(p, activeMaterial, 1, lane), add(one, drive))
-  const most = mul(material(p, activeMaterial, 3, lane), perLength)
-  const stiffness = material(p, activeMaterial, 0, lane)
-  const damping = material(p, activeMaterial, 2, lane)
+  const commanded = mul(material(p, 0, 1, lane), add(one, drive))
+  const most = mul(material(p, 0, 3, lane), perLength)
+  const stiffness = material(p, 0, 0, lane)
+  const damping = material(p, 0, 2, lane)
   const free = add(sub(stiffness, mul(commanded, perLength)), mul(mul(damping, along), perQ))
   pull(a, b, lane, atMost(atLeast(free, neg(most)), most), dx, dy, dz)
 }
@@ -94,9 +93,9 @@ export function addActive(): void {
   const one = number(oneAt, 0)
   const end = word(activeEnd)
   for (let p = word(activeFirst); p < end; p += activeBytes) {
-    const a = word(p)
-    const b = word(p + 4)
-    const group = word(p + 8)
+    const a = word(p + activeEnds)
+    const b = word(p + activeEnds + 4)
+    const group = word(p + activeEnds + 8)
     active(p, a, b, group, 0, one)
     if (vectors > 1) active(p, a, b, group, vectorBytes, one)
   }

@@ -66,8 +66,9 @@ export const vectorLanes: usize = 2
 @inline export function either(a: Mask, b: Mask): Mask {
   return v128.or(a, b)
 }
+// (Compilers make better branches of a bit mask than of any_true.)
 @inline export function anyOf(a: Mask): bool {
-  return v128.any_true(a)
+  return i64x2.bitmask(a) != 0
 }
 /** One bit a lane. */
 @inline export function bitsOf(a: Mask): u32 {
@@ -81,9 +82,13 @@ export const vectorLanes: usize = 2
   return v128.and(mask, a)
 }
 
+/** Added to a whole number below 2^31, this leaves the number in the lower half of the bits. */
+const whole: f64 = 4503599627370496
+
 /** Heights `offset` bytes behind the one numbered `cell` (a whole number), every lane in its own row of heights. */
 @inline export function gather(rows: usize, cell: Vec, offset: usize): Vec {
-  const first = <usize>i32.load(rows) + (<usize>(<i32>f64x2.extract_lane(cell, 0)) << 3)
-  const second = <usize>i32.load(rows + 4) + (<usize>(<i32>f64x2.extract_lane(cell, 1)) << 3)
+  const at = i64x2.shl(f64x2.add(cell, f64x2.splat(whole)), 3)
+  const first = <usize>(i32.load(rows) + i32x4.extract_lane(at, 0))
+  const second = <usize>(i32.load(rows + 4) + i32x4.extract_lane(at, 2))
   return v128.load64_lane(second + offset, v128.load64_zero(first + offset), 1)
 }

@@ -82,7 +82,10 @@ export const vectorLanes: usize = 1
   return select<f64>(a, 0, mask)
 }
 
+/** Added to a whole number below 2^31, this leaves the number in the lower half of the bits. */
+const whole: f64 = 4503599627370496
+
 /** Heights `offset` bytes behind the one numbered `cell` (a whole number), every lane in its own row of heights. */
 @inline export function gather(rows: usize, cell: Vec, offset: usize): Vec {
-  return f64.load(<usize>i32.load(rows) + ((<usize>(<i32>cell)) << 3) + offset)
+  return f64.load(<usize>i32.load(rows) + (<usize>(<i32>i64.reinterpret_f64(cell + whole)) << 3) + offset)
 }
