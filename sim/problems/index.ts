@@ -21,6 +21,10 @@ export const builtInProblems: { readonly [name: string]: BuiltInProblem } = Obje
     'A soft truss crawls along a culvert with debris on its floor, carrying a sensor puck.',
   ),
   row(
+    'pump-mount',
+    'A lattice of rubber and spring steel carries a sensor on a pump and keeps the pump’s shaking from it.',
+  ),
+  row(
     'ramp-walker',
     'A passive walker on two straight legs is let go on the ramp of a drained channel and walks down it.',
   ),

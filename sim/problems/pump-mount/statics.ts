@@ -1,0 +1,64 @@
+// How a lattice hangs or stands at rest under gravity, by Newton's method on its linear model (measure/linear-model.ts:
+// springs with the stiffness that tension adds across). A state that gives way, because a part buckles or is a
+// mechanism, has no positive definite stiffness and is told apart from one that is found.
+
+import type { LatticeSpec } from '../../lattice/spec.js'
+import { linearModel, part } from '../../measure/linear-model.js'
+import { factorise } from '../../measure/semidefinite.js'
+
+/** Gravity is put on in this many equal parts. */
+const loadSteps = 4
+const roundsMost = 20
+/** Forces left over, as a share of the weight. */
+const leftMost = 1e-12
+
+/** The description at rest: positions moved, rest lengths as they were; or nothing where it gives way. */
+export function atRest(spec: LatticeSpec): LatticeSpec | undefined {
+  let now = spec
+  for (let step = 1; step <= loadSteps; step++) {
+    const settled = balance(now, step / loadSteps)
+    if (!settled) return undefined
+    now = settled
+  }
+  return now
+}
+
+function balance(spec: LatticeSpec, share: number): LatticeSpec | undefined {
+  let now = spec
+  const weightN = spec.nodes.reduce((sum, { massKg }) => sum + massKg, 0) * Math.abs(spec.gravityMps2[1]!)
+  for (let round = 0; round < roundsMost; round++) {
+    const { free, stiffness, size, dimensions } = linearModel(now)
+    const forces = forcesN(now, share)
+    const open = free.map((coordinate) => forces[coordinate]!)
+    const left = open.reduce((most, force) => Math.max(most, Math.abs(force)), 0)
+    const solver = factorise(part(stiffness, size, free, free), free.length)
+    if (solver.rank < free.length) return undefined
+    if (left <= leftMost * weightN) return now
+    const moves = solver.solve(open)
+    const positions = now.nodes.map(({ positionM }) => [...positionM])
+    for (const [i, coordinate] of free.entries()) {
+      positions[Math.floor(coordinate / dimensions)]![coordinate % dimensions]! += moves[i]!
+    }
+    now = { ...now, nodes: now.nodes.map((node, i) => ({ ...node, positionM: positions[i]! })) }
+  }
+  return undefined
+}
+
+/** Spring forces and a share of the weight on every coordinate, node by node, N. */
+function forcesN({ nodes, struts, gravityMps2 }: LatticeSpec, share: number): Float64Array {
+  const forces = new Float64Array(2 * nodes.length)
+  for (const [i, { massKg }] of nodes.entries()) forces[2 * i + 1] = share * massKg * gravityMps2[1]!
+  for (const { a, b, restM, stiffnessNpm } of struts) {
+    const [dx, dy] = [0, 1].map((axis) => nodes[b]!.positionM[axis]! - nodes[a]!.positionM[axis]!) as [
+      number,
+      number,
+    ]
+    const lengthM = Math.sqrt(dx * dx + dy * dy)
+    const scale = (stiffnessNpm * (lengthM - restM!)) / lengthM
+    forces[2 * a]! += scale * dx
+    forces[2 * a + 1]! += scale * dy
+    forces[2 * b]! -= scale * dx
+    forces[2 * b + 1]! -= scale * dy
+  }
+  return forces
+}
