@@ -21,6 +21,7 @@ export default defineConfig({
           include: ['{shared,sim,worker,coordinator}/**/*.test.ts', 'tests/{reference,tools}/**/*.test.ts'],
         },
       },
+      { test: { ...long, name: 'kernel', include: ['tests/kernel/**/*.test.ts'], fileParallelism: false } },
       { test: { ...long, name: 'contract', include: ['tests/contract/**/*.test.ts'] } },
       { test: { ...long, name: 'cluster', include: ['tests/cluster/**/*.test.ts'] } },
       { test: { ...long, name: 'chaos', include: ['tests/chaos/**/*.test.ts'], fileParallelism: false } },

@@ -17,7 +17,7 @@ import { type Fault, look } from './advance.js'
 import { demandOneBody, hasOwnMaterial } from './lanes/body.js'
 import { prepareDrive, sweepEnds } from './lanes/drive.js'
 import { settle, type Tenant } from './lanes/engine.js'
-import { heightsCount, writeGround } from './lanes/frame.js'
+import { firstOrigins, follow, heightsCount, writeGround } from './lanes/frame.js'
 import { sampleSecondsAt } from './lanes/header.js'
 import { writeBody } from './lanes/image.js'
 import { type Precision, placesOf, recordsOf, variantFor } from './lanes/layout.js'
@@ -66,7 +66,7 @@ export function packLanes(
   const all = Array.from({ length: variant.lanes }, (_, lane) => lattices[lane] ?? first)
   const places = placesOf(variant, first, heightsCount(all, precision === 'single'))
   const tenant: Tenant = { module: variant.module, bytes: places.bytes, saved: undefined }
-  const origins = new Float64Array(3 * variant.lanes)
+  const origins = firstOrigins(all, precision === 'single')
   let pen: Pen | undefined
   settle(tenant, (engine) => {
     pen = { engine, variant, sizes: recordsOf(variant), places, lanes: all }
@@ -104,6 +104,7 @@ export function advanceLanes(lanes: Lanes, steps: number): readonly (Fault | und
     left -= some
     const bits = pen.engine.look() & lanes.moving
     if (bits !== 0) findFaults(lanes, bits)
+    if (lanes.precision === 'single') follow(pen, lanes.origins)
   }
   return lanes.faults
 }

@@ -32,6 +32,11 @@ export const phases = [
   },
   { name: 'house', says: 'imports, banned calls, sizes, documents', project: 'house' },
   { name: 'unit', says: 'units, properties, reference values', project: 'unit' },
+  {
+    name: 'kernel',
+    says: 'the WebAssembly modules: compiled again, same bits everywhere, fast',
+    project: 'kernel',
+  },
   { name: 'contract', says: 'one suite a port, over every adapter', project: 'contract' },
   { name: 'package', says: 'what would be published', project: 'package' },
   { name: 'cluster', says: 'simulated clusters under seeds', project: 'cluster' },

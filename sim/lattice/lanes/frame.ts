@@ -1,21 +1,60 @@
 // Places in single precision. Near the origin single precision is good to a ten-thousandth of a millimetre, ten metres
 // away only to a micrometre, which contact feels. So every lane counts places from an origin of its own, which is moved
-// after the body whenever that has gone some decimetres; the ground, prescribed nodes and what is read out follow. The
-// moves are multiples of a power of two, which single precision subtracts without error. In double precision the
-// origin stays 0 and nothing of this happens.
+// after the body whenever that has gone some decimetres; the ground, prescribed nodes and what is read out follow. A
+// move is a multiple of a power of two and costs a place at most one rounding. In double precision the origin stays 0
+// and nothing of this happens.
 
 import type { Lattice } from '../layout.js'
 import * as header from './header.js'
 import { numberPlace, type Pen, putWord } from './pen.js'
+import { shiftSamples, writeStarts } from './state.js'
 
 /** Origins are multiples of this, m. */
 const gridM = 0.25
 /** The origin follows when the first node is farther from it than this, m. */
-export const farM = 0.5
+const farM = 0.5
 
-/** Where a lane's origin should be for a body whose first node is at `place`. */
-export function originFor(place: number): number {
-  return Math.round(place / gridM) * gridM
+/** x, y, z of the origin of every lane: 0, or in single precision near the first node. */
+export function firstOrigins(lanes: readonly Lattice[], single: boolean): Float64Array {
+  const origins = new Float64Array(3 * lanes.length)
+  for (const [lane, { nodes, dimensions }] of lanes.entries()) {
+    for (let axis = 0; single && axis < dimensions; axis++) origins[3 * lane + axis] = nearest(nodes[axis]!)
+  }
+  return origins
+}
+
+/** The nearest multiple of the grid; 0 for what is no number. */
+function nearest(place: number): number {
+  return Number.isFinite(place) ? Math.round(place / gridM) * gridM : 0
+}
+
+/** Single precision: moves the origins after bodies that have gone too far from them. */
+export function follow(pen: Pen, origins: Float64Array): void {
+  const { engine, variant, places, lanes } = pen
+  const first = places.nodes.first / variant.numberBytes
+  let moved = false
+  for (const [lane, { dimensions }] of lanes.entries()) {
+    for (let axis = 0; axis < dimensions; axis++) {
+      const place = engine.numbers[first + axis * lanes.length + lane]!
+      if (!(Math.abs(place) > farM)) continue
+      const by = nearest(place)
+      if (by === 0) continue
+      moveOrigin(pen, lane, axis, by)
+      origins[3 * lane + axis]! += by
+      moved = true
+    }
+  }
+  if (!moved) return
+  writeStarts(pen, origins)
+  writeGround(pen, origins)
+}
+
+function moveOrigin(pen: Pen, lane: number, axis: number, by: number): void {
+  const { engine, variant, places, lanes } = pen
+  const { nodes, stride } = lanes[lane]!
+  const first = places.nodes.first / variant.numberBytes + lane
+  for (let i = axis; i < nodes.length; i += stride) engine.numbers[first + i * lanes.length]! -= by
+  if (axis === 1) shiftSamples(pen, lane, by)
 }
 
 /** Number of heights to make room for: in double precision lanes with one ground share it. */
