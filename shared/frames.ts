@@ -21,12 +21,8 @@ export interface Frames {
   readonly contacts?: readonly Uint8Array[]
   /** Rigid pieces, each of which moves as a whole. */
   readonly bodies?: readonly FrameBody[]
-  /** Driven joints at nodes: drive per frame, -1 (clockwise) to 1 (counter-clockwise). */
-  readonly motors?: readonly {
-    readonly node: number
-    readonly label: string
-    readonly values: Float64Array
-  }[]
+  /** Driven joints at nodes. */
+  readonly motors?: readonly FrameMotor[]
   /** What stands still beside the ground: a pipe's wall, a screen, a stop. Always drawn. */
   readonly walls?: readonly FrameWall[]
   /** Ground that differs across, 3-D only; drawn instead of `ground`. */
@@ -46,6 +42,15 @@ export interface FrameLink {
   readonly kind: string
   /** Stiffness class from 0 (softest) to 1 (stiffest), drawn as line weight; the same for all links of a kind. */
   readonly weight?: number
+}
+
+export interface FrameMotor {
+  readonly node: number
+  readonly label: string
+  /** Drive of each frame: -1 (clockwise) to 1 (counter-clockwise), or -1 (in) to 1 (out) of a slide. */
+  readonly values: Float64Array
+  /** A slide, which goes away from this node when it is driven out. */
+  readonly slidesFrom?: number
 }
 
 /** A rigid piece: corners in axes of its own, and where those axes are in each frame. */

@@ -167,6 +167,12 @@ export function linkageFrames(frames = 101): Frames {
     bodies,
     motors: [
       {
+        node: 1,
+        label: 'slide motor',
+        values: Float64Array.from({ length: frames }, (_, f) => Math.cos(f / 9)),
+        slidesFrom: 0,
+      },
+      {
         node: 0,
         label: 'crank motor',
         values: Float64Array.from({ length: frames }, (_, f) => Math.sin(f / 9)),

@@ -136,8 +136,12 @@ export function motorOperations(
   view: View,
   nodes: Float64Array,
 ): Operation[] {
-  return (frames.motors ?? []).flatMap(({ node, values }, place) => {
+  return (frames.motors ?? []).flatMap(({ node, values, slidesFrom }, place) => {
     const [x, y] = [nodes[3 * node]!, nodes[3 * node + 1]!]
+    if (slidesFrom !== undefined) {
+      const [dx, dy] = [x - nodes[3 * slidesFrom]!, y - nodes[3 * slidesFrom + 1]!]
+      return slideAt(x, y, [dx, dy], moment.valueOf(values), place, view.unit)
+    }
     return motorAt(
       x,
       y,
@@ -169,5 +173,32 @@ export function motorAt(
   return [
     ring,
     { shape: 'lines', role: 'motor', lines: [arc, head], stroke, widthPx: 2.6 * unit, isRound: true },
+  ]
+}
+
+/** Two rails beside the joint; between them an arrow, the longer the harder the drive, out or in. */
+export function slideAt(
+  x: number,
+  y: number,
+  [dx, dy]: readonly [number, number],
+  drive: number,
+  place: number,
+  unit: number,
+): Operation[] {
+  const length = Math.sqrt(dx * dx + dy * dy)
+  const [alongX, alongY] = length > 0 ? [dx / length, dy / length] : [1, 0]
+  const at = (along: number, aside: number) =>
+    [x + unit * (along * alongX - aside * alongY), y + unit * (along * alongY + aside * alongX)] as const
+  const look = { shape: 'lines', role: 'motor', stroke: activeInk(place) } as const
+  const rails = [-1, 1].map((side) => [...at(-14, 9 * side), ...at(14, 9 * side)])
+  const tip = 24 * drive
+  const back = tip - 5 * Math.sign(drive)
+  const arrow = [
+    [...at(0, 0), ...at(tip, 0)],
+    [...at(back, -4), ...at(tip, 0), ...at(back, 4)],
+  ]
+  return [
+    { ...look, lines: rails, widthPx: unit },
+    { ...look, lines: Math.abs(drive) < 0.02 ? [] : arrow, widthPx: 2.6 * unit, isRound: true },
   ]
 }

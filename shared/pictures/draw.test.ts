@@ -262,6 +262,26 @@ describe('contact, activity and stiffness', () => {
   })
 })
 
+describe('motors', () => {
+  const frames = machines[2]![1]
+  const scene = sceneOf(frames)
+  const drawnAt = (at: number) => drawStage(scene, { ...startPlayer(scene, true), at }, stage, 1)
+  it('of hinges show an arc the way they are driven, of slides an arrow out or in', () => {
+    const [slide, hinge] = frames.motors!
+    expect([slide!.slidesFrom, hinge!.slidesFrom]).toEqual([0, undefined])
+    for (const at of [0, 20, 29]) {
+      const drawn = drawnAt(at)
+      const [x0, y0, , x1, y1] = discsOf(drawn, 'node')[0]!.discs
+      const [, arrow, arc] = linesOf(drawn, 'motor').map(({ lines }) => lines[0]!)
+      const out = (arrow![2]! - x1!) * (x1! - x0!) + (arrow![3]! - y1!) * (y1! - y0!)
+      expect(Math.sign(out)).toBe(Math.sign(slide!.values[at]!))
+      // The arc starts at the top; counter-clockwise it leaves to the left.
+      if (arc !== undefined) expect(Math.sign(arc[0]! - arc[2]!)).toBe(Math.sign(hinge!.values[at]!))
+      expect(arc !== undefined).toBe(Math.abs(hinge!.values[at]!) > 0.02)
+    }
+  })
+})
+
 describe('a body of 300 struts', () => {
   it.each([
     [1, 75],

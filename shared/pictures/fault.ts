@@ -93,7 +93,11 @@ function driveFault(frames: Frames): string | undefined {
   if (!frames.drive.every(({ link, values }) => isLink(link) && fits(values)))
     return 'the drive does not fit links and frames'
   const isNode = nodeTest(frames)
-  if (!(motors ?? []).every(({ node, values }) => isNode(node) && fits(values)))
+  if (
+    !(motors ?? []).every(
+      ({ node, values, slidesFrom }) => isNode(node) && isNode(slidesFrom ?? node) && fits(values),
+    )
+  )
     return 'a motor does not fit nodes and frames'
   return undefined
 }

@@ -1,7 +1,7 @@
 // The legend: a drawn sample and words for everything that a drawing may show, made by the routines that draw it.
 
 import { bodyLook } from './draw-bodies.js'
-import { motorAt } from './draw-furniture.js'
+import { motorAt, slideAt } from './draw-furniture.js'
 import { hatchOf } from './draw-ground.js'
 import { contactOperation, linkOperations, nodeOperation, type Weights } from './draw-links.js'
 import type { KindLook } from './looks.js'
@@ -58,8 +58,11 @@ function contactRows({ frames }: Scene): LegendRow[] {
 }
 
 function motorRows({ frames }: Scene): LegendRow[] {
-  return (frames.motors ?? []).map(({ label }, place) => ({
-    sample: motorAt(sampleWidthPx / 2, middlePx, 0.7, 7, place, 0.8),
+  return (frames.motors ?? []).map(({ label, slidesFrom }, place) => ({
+    sample:
+      slidesFrom === undefined
+        ? motorAt(sampleWidthPx / 2, middlePx, 0.7, 7, place, 0.8)
+        : slideAt(sampleWidthPx / 2 - 4, middlePx, [1, 0], 0.8, place, 0.8),
     words: label,
   }))
 }

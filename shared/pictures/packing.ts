@@ -5,7 +5,7 @@
 //   contacts  base64 of one bit a node and frame, lowest bit first, frame after frame
 
 import { check } from '../check.js'
-import type { FrameBody, Frames } from '../frames.js'
+import type { FrameBody, FrameMotor, Frames } from '../frames.js'
 
 export interface PackedNumbers {
   readonly base64: string
@@ -23,11 +23,7 @@ export interface PackedFrames
   readonly drive: readonly { readonly link: number; readonly values: PackedNumbers }[]
   readonly contacts?: string
   readonly bodies?: readonly (Omit<FrameBody, 'poses'> & { readonly poses: readonly PackedNumbers[] })[]
-  readonly motors?: readonly {
-    readonly node: number
-    readonly label: string
-    readonly values: PackedNumbers
-  }[]
+  readonly motors?: readonly (Omit<FrameMotor, 'values'> & { readonly values: PackedNumbers })[]
   readonly groundGrid?: Omit<NonNullable<Frames['groundGrid']>, 'heightsM'> & {
     readonly heightsM: PackedNumbers
   }

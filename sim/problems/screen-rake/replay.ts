@@ -55,6 +55,8 @@ export function rakeFrames(genome: RakeGenome, { condition }: Situation<IntakeCo
     motors: machine.driven.map(({ joint }, i) => ({
       node: machine.joints.findIndex(({ name }) => name === joint),
       label: `${joint} motor`,
+      // A slide goes out along the arm, away from the pin at its other end.
+      ...(machine.joints.find(({ name }) => name === joint)?.kind === 'slider' ? { slidesFrom: 0 } : {}),
       values: Float64Array.from(pins[i]!),
     })),
     walls: [
