@@ -10,7 +10,7 @@ import type { Genome, GenomeOf, GenomeSpec } from './genome.js'
 import type { noMachine, Parts, Process, Use } from './making/types.js'
 import type { Stream } from './streams.js'
 
-export type { FrameBody, FrameGroundGrid, FrameLink, Frames, FrameWall } from './frames.js'
+export type { FrameBody, FrameGroundGrid, FrameLink, FrameMotor, Frames, FrameWall } from './frames.js'
 
 export type Direction = 'maximise' | 'minimise'
 /** How the replicates of an individual become one number. 'worst' is the worst for the objective's direction. */
