@@ -116,12 +116,16 @@ export class RigidWorld {
     return number
   }
 
-  /** Steps the world; the fault that ends the simulation, or nothing. A world with a fault is not stepped again. */
+  /**
+   * Steps the world; the fault that ends the simulation, or nothing. A world with a fault is not stepped again. Whoever
+   * steps by less than 16 at a time hears of a fault up to 16 steps late and asks look() at the end.
+   */
   advance(steps: number): Fault | undefined {
     check(!this.isFree, 'a world that was given back is not stepped')
     for (let i = 0; i < steps; i++) {
       this.stepOnce()
-      if (this.steps % stepsBetweenLooks === 0 || i === steps - 1) {
+      const isLast = i === steps - 1 && steps >= stepsBetweenLooks
+      if (isLast || this.steps % stepsBetweenLooks === 0) {
         const fault = this.look()
         if (fault) return fault
       }
@@ -166,8 +170,8 @@ export class RigidWorld {
     this.engine.readCentre(i, centre)
   }
 
-  /** The first body whose state is not finite, or that has left the world. */
-  private look(): Fault | undefined {
+  /** The first body whose state is not finite or cut off, or that has left the world. */
+  look(): Fault | undefined {
     for (const [i, body] of this.spec.bodies.entries()) {
       if (body.fixed) continue
       const { pose, velocity } = this.held[i]!
@@ -256,6 +260,12 @@ export class RigidWorld {
   velocity(body: number): Float64Array {
     this.engine.readVelocity(body, this.held[body]!.velocity)
     return this.held[body]!.velocity.slice()
+  }
+  /** The same without copies: live arrays that the next step changes. Not to be written. */
+  peek(body: number): { readonly pose: Float64Array; readonly velocity: Float64Array } {
+    this.engine.readPose(body, this.held[body]!.pose)
+    this.engine.readVelocity(body, this.held[body]!.velocity)
+    return this.held[body]!
   }
   /** World place of a point given in a body's own axes. */
   pointOf(body: number, own: readonly number[]): Float64Array {

@@ -61,7 +61,7 @@ function bar(body: string, label: string, from: Place, to: Place): { shape: Shap
       atM: [(from[0] + to[0]) / 2, (from[1] + to[1]) / 2],
       turn: atan2(dy, dx),
       material: { friction: numbers.machineFriction, density: kgpm / widthM },
-      layer: isTine ? 'tines' : 'machine',
+      layer: isTine ? 'tines' : 'arms',
     },
     outline: { body, label, from, to, radiusM: widthM / 2 },
   }
@@ -82,15 +82,16 @@ class Assembly {
   }
 
   /**
-   * A link with its bars; `motorAtM` is where a motor hangs on it. A link that a motor on the base turns (isFirst) has
-   * that motor's rotor as inertia; the rotors of motors that ride on links are left out.
+   * A link with its bars; `motorAtM` is where a motor hangs on it. A link that is turned by motor number `turnedBy` has
+   * that motor's rotor as inertia, geared up: exact for a motor on the base, nearly so for one that rides on a link,
+   * whose rotor turns with the link against the one before. A slider's is left out.
    */
   link(
     name: string,
     at: Place,
     turn: number,
     bars: readonly [string, Place, Place][],
-    { motorAtM, isFirst = false }: { readonly motorAtM?: Place; readonly isFirst?: boolean } = {},
+    { motorAtM, turnedBy }: { readonly motorAtM?: Place; readonly turnedBy?: number } = {},
   ): void {
     const made = bars.map(([label, from, to]) => bar(name, label, from, to))
     const shapes = made.map(({ shape }) => shape)
@@ -101,13 +102,13 @@ class Assembly {
       const radiusM = numbers.crossBarRadiusM
       this.outlines.push({ body: name, label: 'cross bar', from: comb[1], to: comb[1], radiusM })
     }
-    const ratio = ratioOf(this.genome, 0)
+    const ratio = turnedBy === undefined ? 0 : ratioOf(this.genome, turnedBy)
     const extra = {
       massKg: motorAtM ? numbers.motorKg : 1e-3,
       centreM: motorAtM ?? [0, 0],
-      inertiaKgm2: 0.005 + (isFirst ? numbers.rotorKgm2 * ratio * ratio : 0),
+      inertiaKgm2: (motorAtM ? 0.005 : 0) + numbers.rotorKgm2 * ratio * ratio,
     }
-    this.bodies.push({ name, positionM: at, turn, shapes, ...(motorAtM || isFirst ? { extra } : {}) })
+    this.bodies.push({ name, positionM: at, turn, shapes, ...(motorAtM || ratio > 0 ? { extra } : {}) })
   }
 
   hinge(
@@ -151,7 +152,7 @@ function crossBar(at: Place): ShapeSpec {
   const { crossBarRadiusM: radiusM, crossBarKg } = numbers
   const density = crossBarKg / (Math.PI * radiusM * radiusM)
   const material = { friction: numbers.machineFriction, density }
-  return { outline: { kind: 'ball', radiusM }, atM: at, material, layer: 'machine' }
+  return { outline: { kind: 'ball', radiusM }, atM: at, material, layer: 'beam' }
 }
 
 /** Tines and their hooks from a place of a body, turned against its axis. */
@@ -189,18 +190,19 @@ function arms(genome: RakeGenome, assembly: Assembly, base: Place, hasWrist: boo
   const tip: Place = [forearmM, 0]
   assembly.link('arm', base, shoulder(0), [['arm', [0, 0], [armM, 0]]], {
     motorAtM: [armM, 0],
-    isFirst: true,
+    turnedBy: 0,
   })
   const forearm: [string, Place, Place] = ['forearm', [0, 0], tip]
   if (hasWrist) {
-    assembly.link('forearm', elbowAt, forearmTurn, [forearm], { motorAtM: tip })
+    assembly.link('forearm', elbowAt, forearmTurn, [forearm], { motorAtM: tip, turnedBy: 1 })
     assembly.link(
       'comb',
       along(elbowAt, forearmTurn, forearmM),
       forearmTurn + wrist(0),
       combBars(genome, [0, 0]),
+      { turnedBy: 2 },
     )
-  } else assembly.link('forearm', elbowAt, forearmTurn, [forearm, ...combBars(genome, tip)])
+  } else assembly.link('forearm', elbowAt, forearmTurn, [forearm, ...combBars(genome, tip)], { turnedBy: 1 })
   assembly.hinge('shoulder', 'intake', 'arm', base, shoulder)
   assembly.hinge('elbow', 'arm', 'forearm', [armM, 0], elbow)
   if (hasWrist) assembly.hinge('wrist', 'forearm', 'comb', tip, wrist)
@@ -213,7 +215,7 @@ function slidingArm(genome: RakeGenome, assembly: Assembly, base: Place): void {
   const shoulder = shoulderTurn(genome)
   const slide = (seconds: number) => strokeM * poseShare(genome, 1, seconds)
   const turn = shoulder(0)
-  assembly.link('arm', base, turn, [['arm', [0, 0], [armM, 0]]], { motorAtM: [0.1, 0], isFirst: true })
+  assembly.link('arm', base, turn, [['arm', [0, 0], [armM, 0]]], { motorAtM: [0.1, 0], turnedBy: 0 })
   const bars: [string, Place, Place][] = [['rod', [-rodM, 0], [0, 0]], ...combBars(genome, [0, 0])]
   assembly.link('rod', along(base, turn, armM + slide(0)), turn, bars)
   assembly.hinge('shoulder', 'intake', 'arm', base, shoulder)
@@ -230,7 +232,7 @@ function crankMachine(genome: RakeGenome, assembly: Assembly, base: Place): void
   const couplerTurn = atan2(meet[1] - crankEnd[1], meet[0] - crankEnd[0])
   const rockerTurn = atan2(meet[1] - pin[1], meet[0] - pin[0])
   const tip: Place = [couplerM + genome.links[1]!, 0]
-  assembly.link('crank', base, crankTurn(0), [['crank', [0, 0], [crankM, 0]]], { isFirst: true })
+  assembly.link('crank', base, crankTurn(0), [['crank', [0, 0], [crankM, 0]]], { turnedBy: 0 })
   assembly.link('coupler', crankEnd, couplerTurn, [['coupler', [0, 0], tip], ...combBars(genome, tip)])
   assembly.link('rocker', pin, rockerTurn, [['rocker', [0, 0], [rockerM, 0]]])
   // The drive counts whole turns from where it starts.

@@ -66,7 +66,7 @@ export const numbers = {
   stepSeconds: 1 / 80,
   solverRounds: 2,
   solverSweeps: 4,
-  waterSeconds: 0.05,
+  sampleSeconds: 0.05,
   framesPerSecond: 20,
   /**
    * What counts as cleared: the mass behind the lip, and by this share the way that the mass has been raised out of the

@@ -155,10 +155,16 @@ export function standing(barFriction: number): BodySpec {
   return { name: 'intake', fixed: true, positionM: [0, 0], shapes }
 }
 
-/** Pairs that pass through each other: parts of the machine, and tines and bars. */
+/**
+ * Pairs that pass through each other: parts of the machine; tines and bars; arms and debris, because a tube of 40 mm in
+ * a channel of 500 mm is no shovel (in a side view it would be a plate as wide as the channel).
+ */
 export const apart: readonly (readonly [string, string])[] = [
-  ['machine', 'machine'],
-  ['machine', 'tines'],
+  ['arms', 'arms'],
+  ['arms', 'beam'],
+  ['arms', 'tines'],
+  ['arms', 'debris'],
+  ['beam', 'tines'],
   ['tines', 'tines'],
   ['tines', 'bars'],
 ]

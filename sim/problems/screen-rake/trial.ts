@@ -3,7 +3,7 @@
 // Water. A piece below the water line is lifted by the weight of the water it displaces and pushed by its drag,
 // 1/2 rho Cd A |w| w with w = flow - velocity and A = length times depth; in the last piece of its height both grade to
 // nothing. Screen and debris do not change the flow, and the water does not push the machine: its arms are thin and
-// slow. Loads of the water are renewed every 0.05 s.
+// slow.
 
 import {
   type ActuatorFigures,
@@ -85,8 +85,8 @@ interface Trial {
 }
 
 const stepsPerSecond = Math.round(1 / numbers.stepSeconds)
-const stepsPerWater = Math.round(numbers.waterSeconds * stepsPerSecond)
-const watersPerFrame = Math.round(1 / numbers.framesPerSecond / numbers.waterSeconds)
+const stepsPerSample = Math.round(numbers.sampleSeconds * stepsPerSecond)
+const samplesPerFrame = Math.round(1 / numbers.framesPerSecond / numbers.sampleSeconds)
 
 function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondition): Trial {
   const firstPiece = 1 + machine.bodies.length
@@ -100,10 +100,10 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
     tallies: machine.driven.map(startTally),
     fault: undefined,
   }
-  trial.fault = world.advance(1) ?? startsInside(trial)
-  for (let i = 0; i < numbers.settleSeconds / numbers.waterSeconds && !trial.fault; i++) {
-    trial.fault = advanceWater(trial)
-  }
+  world.advance(1)
+  trial.fault = startsInside(trial)
+  const steps = Math.round(numbers.settleSeconds / world.stepSeconds)
+  for (let i = 0; i < steps && !trial.fault; i++) trial.fault = advanceOnce(trial)
   for (let i = 0; i < condition.pieces.length; i++) {
     trial.startM.push(world.pose(firstPiece + i)[1]!)
     trial.highestM.push(trial.startM[i]!)
@@ -129,10 +129,11 @@ function startsInside({ world, machine }: Trial): Fault | undefined {
   return undefined
 }
 
-function advanceWater(trial: Trial): Fault | undefined {
+/** One step of the world, under the loads of the water. */
+function advanceOnce(trial: Trial): Fault | undefined {
   const { world, condition, firstPiece } = trial
   for (const [i, piece] of condition.pieces.entries()) loadPiece(world, firstPiece + i, piece, condition)
-  return world.advance(Math.round(numbers.waterSeconds / world.stepSeconds))
+  return world.advance(1)
 }
 
 function loadPiece(
@@ -141,7 +142,8 @@ function loadPiece(
   piece: Piece,
   { waterM, flowMps }: IntakeCondition,
 ): void {
-  const y = world.pose(body)[1]!
+  const { pose, velocity } = world.peek(body)
+  const y = pose[1]!
   const [along, across] = piece.halfM
   const size = (along + across) / 2
   const wet = Math.min(1, Math.max(0, (waterM - y) / (2 * size) + 0.5))
@@ -149,8 +151,7 @@ function loadPiece(
     world.load(body, [0, 0], [0])
     return
   }
-  const [vx, vy, spin] = world.velocity(body) as unknown as [number, number, number]
-  const [wx, wy] = [flowMps - vx, -vy]
+  const [wx, wy, spin] = [flowMps - velocity[0]!, -velocity[1]!, velocity[2]!]
   const areaM2 = 2 * along * piece.depthM
   const drag =
     0.5 * numbers.waterKgpm3 * numbers.dragCoefficient * areaM2 * Math.sqrt(wx * wx + wy * wy) * wet
@@ -161,24 +162,24 @@ function loadPiece(
 
 /** Works for the whole time; the fault that ended it, or nothing. */
 function work(trial: Trial, look: Look | undefined): Fault | undefined {
-  const { world, machine, condition, firstPiece, highestM } = trial
+  const { world, machine, firstPiece, highestM } = trial
   const joints = machine.driven.map(({ joint }) => world.joint(joint))
-  const rounds = Math.round(numbers.workSeconds / numbers.waterSeconds)
-  for (let round = 0; round < rounds; round++) {
-    if (round % watersPerFrame === 0) look?.(world)
-    for (const [i, piece] of condition.pieces.entries()) loadPiece(world, firstPiece + i, piece, condition)
-    for (let step = 0; step < stepsPerWater; step++) {
-      const seconds = (round + (step + 1) / stepsPerWater) * numbers.waterSeconds
-      for (const [i, { target }] of machine.driven.entries()) world.command(joints[i]!, target(seconds))
-      const fault = world.advance(Math.round(1 / stepsPerSecond / world.stepSeconds))
+  const divide = Math.round(numbers.stepSeconds / world.stepSeconds)
+  const samples = Math.round(numbers.workSeconds / numbers.sampleSeconds)
+  for (let i = 0; i < samples; i++) {
+    if (i % samplesPerFrame === 0) look?.(world)
+    for (let step = 1; step <= stepsPerSample * divide; step++) {
+      const seconds = (i + step / (stepsPerSample * divide)) * numbers.sampleSeconds
+      for (const [k, { target }] of machine.driven.entries()) world.command(joints[k]!, target(seconds))
+      const fault = advanceOnce(trial)
       if (fault) return fault
     }
     sample(trial, joints)
-    for (let i = 0; i < highestM.length; i++) {
-      highestM[i] = Math.max(highestM[i]!, world.pose(firstPiece + i)[1]!)
+    for (let k = 0; k < highestM.length; k++) {
+      highestM[k] = Math.max(highestM[k]!, world.peek(firstPiece + k).pose[1]!)
     }
   }
-  return undefined
+  return world.look()
 }
 
 function sample({ world, machine, tallies }: Trial, joints: readonly number[]): void {
@@ -186,7 +187,7 @@ function sample({ world, machine, tallies }: Trial, joints: readonly number[]): 
   for (const [i, { effortPerMotorNm }] of machine.driven.entries()) {
     const force = world.driveOf(joints[i]!).effort / effortPerMotorNm
     const length = world.placeOf(joints[i]!)
-    addSample(tallies[i]!, { force, length, speed: world.rateOf(joints[i]!) }, motor, numbers.waterSeconds)
+    addSample(tallies[i]!, { force, length, speed: world.rateOf(joints[i]!) }, motor, numbers.sampleSeconds)
   }
 }
 
@@ -203,7 +204,7 @@ function figuresOf({ world, machine, condition, firstPiece, startM, highestM, ta
   }
   const drives = machine.driven.map(({ joint }) => world.driveOf(world.joint(joint)))
   const motors = drives.map((drive, i) => ({
-    ...actuatorFigures(tallies[i]!, 1, numbers.waterSeconds),
+    ...actuatorFigures(tallies[i]!, 1, numbers.sampleSeconds),
     peakForce: drive.peakEffort / machine.driven[i]!.effortPerMotorNm,
     power: drive.workGivenJ / numbers.workSeconds,
   }))

@@ -1,0 +1,203 @@
+// The screen rake: its repair, its water, its drives' limits, and that it is the same to the bit every time.
+
+import { describe, expect, test } from 'vitest'
+import { conditionStream } from '../../../shared/conditions.js'
+import { randomGenome } from '../../../shared/encodings.js'
+import type { Measured } from '../../../shared/problem.js'
+import { stream } from '../../../shared/streams.js'
+import { layouts, type RakeGenome, rakeGenome } from './genome.js'
+import problem from './index.js'
+import { buildMachine } from './machine.js'
+import { lipM, numbers } from './numbers.js'
+import { beginsClear, repairRake } from './repair.js'
+import { areaOf, debrisBodies, drawIntake, type IntakeCondition, massOfPiece, type Piece } from './screen.js'
+import { runTrial } from './trial.js'
+
+const conditionOf = (replicate: number) => drawIntake(conditionStream(20_261_201, true, 0, replicate))
+const randomRake = (i: number): RakeGenome =>
+  randomGenome(rakeGenome, stream(11, 'founder', 1, i)) as RakeGenome
+
+/** A three-armed rake that a search found, rounded to millimetres and thousandths. */
+const found: RakeGenome = {
+  layout: Int32Array.of(1),
+  baseX: Float64Array.of(1.079),
+  baseY: Float64Array.of(1.629),
+  links: Float64Array.of(0.721, 1.033),
+  poses: Float64Array.of(
+    ...[0.108, 0.973, 0.569, 0.653, 0.727, 0.501],
+    ...[0.754, 0.562, 0.544, 0.675, 0.048, 0.638],
+    ...[0.798, 0.31, 0.267, 0.544, 0.504, 0.996],
+  ),
+  period: Float64Array.of(6.951),
+  gear: Int32Array.of(2, 2, 0),
+  combAngle: Float64Array.of(-0.96),
+  tine: Float64Array.of(0.065),
+  hook: Float64Array.of(0.126),
+  hookAngle: Float64Array.of(-66.099),
+  crank: Float64Array.of(0.48),
+  rocker: Float64Array.of(0.767),
+  rockerPin: Float64Array.of(0.277),
+  rockerPinAngle: Float64Array.of(-39.662),
+}
+/** The same that keeps its first pose. */
+const still: RakeGenome = {
+  ...found,
+  poses: Float64Array.from(found.poses, (_, i) => found.poses[i - (i % 6)]!),
+}
+
+function figures(genome: RakeGenome, condition: IntakeCondition, divide = 1) {
+  const result = runTrial(genome, condition, divide)
+  if ('reason' in result) throw new Error(`${result.reason} at ${result.seconds} s`)
+  return result
+}
+
+describe('repair', () => {
+  test('is pure, changes nothing twice, and finds a start that is clear for nine in ten', () => {
+    let clear = 0
+    for (let i = 0; i < 200; i++) {
+      const genome = randomRake(i)
+      const before = JSON.stringify(genome)
+      const once = repairRake(genome)
+      expect(JSON.stringify(genome)).toBe(before)
+      expect(repairRake(once)).toEqual(once)
+      if (beginsClear(once)) clear++
+    }
+    expect(clear).toBeGreaterThan(170)
+  })
+
+  test('makes cranks that turn all the way round: the four bars close at every angle', () => {
+    for (let i = 0; i < 300; i++) {
+      const genome = repairRake({ ...randomRake(i), layout: Int32Array.of(layouts.indexOf('crank')) })
+      const [crank, coupler, rocker, pin] = [genome.crank, genome.links, genome.rocker, genome.rockerPin].map(
+        (part) => part[0]!,
+      ) as [number, number, number, number]
+      expect(crank).toBeGreaterThanOrEqual(0.1 - 1e-12)
+      // Crank end to rocker pin is between pin - crank and pin + crank: coupler and rocker must span both.
+      expect(coupler + rocker).toBeGreaterThan(pin + crank)
+      expect(Math.abs(coupler - rocker)).toBeLessThan(pin - crank)
+    }
+  })
+
+  test('a machine that begins inside the deck is a failed simulation that says so', () => {
+    const inside = { ...still, baseX: Float64Array.of(0.3), baseY: Float64Array.of(1.4) }
+    const poses = Float64Array.from(inside.poses)
+    poses.fill(0.6, 0, 6)
+    poses.fill(0.5, 6, 12)
+    const [outcome] = problem.simulate({ ...inside, poses }, [{ condition: conditionOf(0), case: '' }])
+    expect(outcome).toEqual({ failed: expect.stringMatching(/begins inside screen or deck at 0.00 s/) })
+  })
+})
+
+describe('the water', () => {
+  const piece: Piece = {
+    kind: 'plank',
+    halfM: [0.08, 0.03],
+    depthM: 0.3,
+    densityKgpm3: 500,
+    friction: 0.5,
+    positionM: [-1, 0.5],
+    turn: 0,
+  }
+  const pond = (change: Partial<Piece>, waterM = 0.9): IntakeCondition => {
+    return { barFriction: 0.4, flowMps: 0, waterM, strengths: [1, 1, 1], pieces: [{ ...piece, ...change }] }
+  }
+  /** Heights of the one piece, 20 times a second. */
+  const heights = (condition: IntakeCondition) => {
+    const seen: number[] = []
+    const body = debrisBodies(condition.pieces)[0]!.name
+    runTrial(still, condition, 1, (world) => seen.push(world.pose(world.body(body))[1]!))
+    return seen
+  }
+
+  test('carries a piece of half its density half under the surface', () => {
+    // It bobs on: the mean of the last 3 s.
+    const last = heights(pond({})).slice(-60)
+    expect(last.reduce((sum, y) => sum + y / 60, 0)).toBeCloseTo(0.9, 2)
+  })
+
+  test('lets a heavy piece sink at the speed at which drag carries its weight', () => {
+    // 1/2 rho Cd A v^2 = (density - rho) V g: common practice, no source.
+    const heavy = { ...piece, densityKgpm3: 1040, positionM: [-1, 8] as const }
+    const seen = heights(pond(heavy, 9))
+    const volume = areaOf(heavy) * heavy.depthM
+    const area = 2 * heavy.halfM[0] * heavy.depthM
+    const speed = Math.sqrt((2 * 40 * volume * numbers.gravityMps2) / (1000 * numbers.dragCoefficient * area))
+    expect((seen[60]! - seen[160]!) / 5 / speed).toBeCloseTo(1, 2)
+  })
+
+  test('presses pieces onto the screen and holds them there', () => {
+    const condition = { ...pond({ densityKgpm3: 900 }), flowMps: 0.4 }
+    let x = 0
+    runTrial(still, condition, 1, (world) => {
+      x = world.pose(world.body('plank 1'))[0]!
+    })
+    expect(x).toBeGreaterThan(0)
+    expect(x).toBeLessThan(lipM[0])
+  })
+})
+
+describe('a trial', () => {
+  test('of a rake that a search found clears more than half of what lies there; one that stands still, nothing', () => {
+    const days = Array.from({ length: 4 }, (_, j) => figures(found, conditionOf(j)).overLip)
+    expect(days.reduce((sum, one) => sum + one / 4, 0)).toBeGreaterThan(0.5)
+    for (let j = 0; j < 2; j++) {
+      const { overLip, energyJ } = figures(still, conditionOf(j))
+      expect(overLip).toBe(0)
+      expect(energyJ).toBeLessThan(2)
+    }
+  })
+
+  test('keeps every motor within the torque and power of its class', () => {
+    for (const genome of [found, repairRake(randomRake(3)), repairRake(randomRake(4))]) {
+      const { motors, peakTorqueNm, energyJ } = figures(genome, conditionOf(1))
+      expect(peakTorqueNm).toBeLessThanOrEqual(numbers.motor.forceMost * 1.05 + 1e-9)
+      for (const { power, duty } of motors) {
+        expect(power).toBeLessThanOrEqual(numbers.motor.powerMost * 1.05)
+        expect(duty).toBeLessThanOrEqual(1)
+      }
+      expect(energyJ).toBeCloseTo(
+        motors.reduce((sum, { power }) => sum + power * numbers.workSeconds, 0),
+        6,
+      )
+    }
+  })
+
+  test('gives the same bits twice, whatever was simulated between', () => {
+    const situations = [0, 1].map((j) => ({ condition: conditionOf(j), case: '' }))
+    const first = problem.simulate(found, situations)
+    problem.simulate(repairRake(randomRake(5)), situations)
+    expect(problem.simulate(found, [...situations].reverse()).reverse()).toEqual(first)
+    // Equal on every machine; changes with the problem's version only, which names the library's.
+    expect((first[0] as Measured).objectives).toEqual(golden)
+    expect(problem.version).toBe('1+rapier2d-deterministic-0.20.0')
+  })
+
+  test('masses are those that were drawn', () => {
+    const condition = conditionOf(2)
+    const total = condition.pieces.reduce((sum, piece) => sum + massOfPiece(piece), 0)
+    runTrial(found, condition, 1, (world) => {
+      if (world.seconds > 1.1) return
+      const first = 1 + buildMachine(found).bodies.length
+      const masses = condition.pieces.map((_, i) => world.massOf(first + i).massKg)
+      expect(masses.reduce((sum, one) => sum + one, 0) / total).toBeCloseTo(1, 5)
+    })
+  })
+})
+
+test('the replay has every piece in every frame, and the paper every link and motor', () => {
+  const situation = { condition: conditionOf(0), case: '' }
+  for (const genome of layouts.map((_, i) => repairRake({ ...randomRake(9), layout: Int32Array.of(i) }))) {
+    const frames = problem.frames!(genome, situation)
+    expect(frames.positions.length).toBeGreaterThan(0)
+    for (const { poses } of frames.bodies!) {
+      expect(poses.length).toBe(frames.positions.length)
+      expect(poses.every((pose) => pose.length === 3 && pose.every(Number.isFinite))).toBe(true)
+    }
+    expect(frames.motors!.length).toBe(buildMachine(genome).driven.length)
+    const lines = problem.describe!(genome).join('\n')
+    for (const { joint } of buildMachine(genome).driven) expect(lines).toContain(`${joint} motor`)
+    expect(problem.cautions!(genome).map(({ hazard }) => hazard)).toContain('Tines shearing between bars')
+  }
+})
+
+const golden = { cleared: 0.24842339462724122, energy: 421.95014548322064, peakTorque: 30.111360105650732 }
