@@ -54,25 +54,35 @@ function checkNodes(spec: LatticeSpec, dimensions: number): void {
   demand(nodes.length > 0, 'nodes', 'none', 'at least one node')
   const most = limits.latticeNodesMost
   demand(nodes.length <= most, 'nodes', `${nodes.length} nodes`, `at most ${most}`)
-  for (const [i, node] of nodes.entries()) {
-    const at = `nodes[${i}]`
-    demand(isVector(node.positionM), `${at}.positionM`, node.positionM, `${dimensions} finite numbers`)
-    const velocity = node.velocityMps
-    demand(!velocity || isVector(velocity), `${at}.velocityMps`, velocity, `${dimensions} finite numbers`)
-    demand(isPositive(node.massKg), `${at}.massKg`, node.massKg, 'a finite mass above 0')
-    const sound = !node.friction || isFriction(node.friction)
-    demand(sound, `${at}.friction`, JSON.stringify(node.friction), 'finite coefficients of at least 0')
-    const ahead = node.headingNode
-    demand(
-      ahead === undefined || (nodes[ahead] !== undefined && ahead !== i),
-      `${at}.headingNode`,
-      ahead,
-      `another node, 0 to ${nodes.length - 1}`,
-    )
+  for (let i = 0; i < nodes.length; i++) {
+    if (!isSoundNode(spec, i, isVector)) explainNode(spec, i, isVector)
   }
   demand(isVector(gravityMps2), 'gravityMps2', gravityMps2, `${dimensions} finite numbers`)
   demand(isAtLeast0(dragNspm), 'dragNspm', dragNspm, 'a finite number of at least 0')
 }
+
+type IsVector = (v: readonly number[]) => boolean
+
+/** A quick look at what is nearly always so: words are made only for what is wrong. */
+function isSoundNode({ nodes }: LatticeSpec, i: number, isVector: IsVector): boolean {
+  const { positionM, velocityMps, massKg, friction, headingNode: ahead } = nodes[i]!
+  const isPlaced = isVector(positionM) && (velocityMps === undefined || isVector(velocityMps))
+  const isLed = ahead === undefined || (nodes[ahead] !== undefined && ahead !== i)
+  return isPlaced && isLed && isPositive(massKg) && (friction === undefined || isFriction(friction))
+}
+
+function explainNode({ nodes, dimensions = 2 }: LatticeSpec, i: number, isVector: IsVector): void {
+  const at = `nodes[${i}]`
+  const { positionM, velocityMps, massKg, friction, headingNode } = nodes[i]!
+  const vector = `${dimensions} finite numbers`
+  demand(isVector(positionM), `${at}.positionM`, positionM, vector)
+  demand(!velocityMps || isVector(velocityMps), `${at}.velocityMps`, velocityMps, vector)
+  demand(isPositive(massKg), `${at}.massKg`, massKg, 'a finite mass above 0')
+  demand(!friction || isFriction(friction), `${at}.friction`, JSON.stringify(friction), soundFriction)
+  demand(false, `${at}.headingNode`, headingNode, `another node, 0 to ${nodes.length - 1}`)
+}
+
+export const soundFriction = 'finite coefficients of at least 0'
 
 export function isFriction({ forward, backward, sideways = 0 }: FrictionSpec): boolean {
   return isAtLeast0(forward) && isAtLeast0(backward) && isAtLeast0(sideways)
@@ -100,8 +110,17 @@ export function distanceM(spec: LatticeSpec, nodeA: number, nodeB: number): numb
   return Math.sqrt(squared)
 }
 
+/** A quick look at what is nearly always so: words are made only for what is wrong. */
+function isSoundStrut(spec: LatticeSpec, { a, b, restM = 1, stiffnessNpm, dampingNspm }: StrutSpec): boolean {
+  if (spec.nodes[a] === undefined || spec.nodes[b] === undefined || a === b) return false
+  const isStiff = isAtLeast0(stiffnessNpm) && isAtLeast0(dampingNspm)
+  return isStiff && isPositive(restM) && distanceM(spec, a, b) > 0
+}
+
 function checkStruts(spec: LatticeSpec): void {
-  const one = (strut: StrutSpec, at: string) => {
+  const one = (strut: StrutSpec, list: string, i: number) => {
+    if (isSoundStrut(spec, strut)) return
+    const at = `${list}[${i}]`
     checkEnds(spec, strut, at)
     demand(
       strut.restM === undefined || isPositive(strut.restM),
@@ -124,9 +143,9 @@ function checkStruts(spec: LatticeSpec): void {
   const parts = [struts, actuators, guided, keepApart, dragStruts, areas, volumes]
   const count = parts.reduce((sum, list) => sum + list.length, 0)
   demand(count <= limits.latticePartsMost, 'struts', `${count} parts`, `at most ${limits.latticePartsMost}`)
-  for (const [i, strut] of struts.entries()) one(strut, `struts[${i}]`)
-  for (const [i, strut] of actuators.entries()) one(strut, `actuators[${i}]`)
-  for (const [i, strut] of guided.entries()) one(strut, `guided[${i}]`)
+  for (const [i, strut] of struts.entries()) one(strut, 'struts', i)
+  for (const [i, strut] of actuators.entries()) one(strut, 'actuators', i)
+  for (const [i, strut] of guided.entries()) one(strut, 'guided', i)
   for (const [i, pair] of keepApart.entries()) {
     const at = `keepApart[${i}]`
     checkEnds(spec, pair, at)
@@ -276,6 +295,11 @@ function checkGuided(spec: LatticeSpec, strut: GuidedSpec, at: string): void {
   }
 }
 
+function firstNotFinite(values: readonly number[] | Float64Array): number {
+  for (let i = 0; i < values.length; i++) if (!Number.isFinite(values[i]!)) return i
+  return -1
+}
+
 /** Also of a ground that comes later (vary.ts). */
 export function checkGround(ground: GroundSpec, contact: ContactSpec | undefined, dimensions: number): void {
   const { heightsM, spacingM, firstXM, rows = 1, firstZM = 0, spacingZM = spacingM } = ground
@@ -290,9 +314,8 @@ export function checkGround(ground: GroundSpec, contact: ContactSpec | undefined
   demand(heightsM.length / rows >= 2, 'ground.heightsM', heightsM.length, 'at least 2 heights a row')
   const most = limits.latticeHeightsMost
   demand(heightsM.length <= most, 'ground.heightsM', heightsM.length, `at most ${most} heights`)
-  for (let i = 0; i < heightsM.length; i++) {
-    demand(Number.isFinite(heightsM[i]!), `ground.heightsM[${i}]`, heightsM[i], 'a finite height')
-  }
+  const wrong = firstNotFinite(heightsM)
+  demand(wrong < 0, `ground.heightsM[${wrong}]`, heightsM[wrong], 'a finite height')
   demand(isPositive(spacingM), 'ground.spacingM', spacingM, 'a finite spacing above 0')
   demand(isPositive(spacingZM), 'ground.spacingZM', spacingZM, 'a finite spacing above 0')
   demand(Number.isFinite(firstXM), 'ground.firstXM', firstXM, 'a finite number')

@@ -21,9 +21,34 @@ export function sineAndCosine(angle: number): [number, number] {
   return [sin(angle), cos(angle)]
 }
 
+/** Shared by all that have none of something: it cannot be written to. */
+const noNumbers = new Float64Array(0)
+const noOffsets = new Int32Array(0)
+
+/** A number of every item; a loop, because `from` asks an iterator for each of them. */
+export function doubles<T>(list: readonly T[], read: (item: T, i: number) => number): Float64Array {
+  if (list.length === 0) return noNumbers
+  const values = new Float64Array(list.length)
+  for (let i = 0; i < list.length; i++) values[i] = read(list[i]!, i)
+  return values
+}
+
+export function zeros(count: number): Float64Array {
+  return count === 0 ? noNumbers : new Float64Array(count)
+}
+
+export function integers<T>(list: readonly T[], read: (item: T, i: number) => number): Int32Array {
+  if (list.length === 0) return noOffsets
+  const values = new Int32Array(list.length)
+  for (let i = 0; i < list.length; i++) values[i] = read(list[i]!, i)
+  return values
+}
+
 const strideOf = (spec: LatticeSpec) => 3 * dimensionsOf(spec)
-const offsets = (spec: LatticeSpec, nodes: readonly number[]) =>
-  Int32Array.from(nodes, (node) => node * strideOf(spec))
+const offsets = (spec: LatticeSpec, nodes: readonly number[]) => {
+  const stride = strideOf(spec)
+  return integers(nodes, (node) => node * stride)
+}
 const endsOf = (spec: LatticeSpec, list: readonly { readonly a: number; readonly b: number }[]) =>
   offsets(
     spec,
@@ -33,8 +58,8 @@ const endsOf = (spec: LatticeSpec, list: readonly { readonly a: number; readonly
 export function layOutStruts(spec: LatticeSpec) {
   const { struts, actuators = [], guided = [] } = spec
   const all: readonly StrutSpec[] = [...struts, ...actuators, ...guided]
-  const restM = Float64Array.from(all, ({ restM, a, b }) => restM ?? distanceM(spec, a, b))
-  const stiffnessNpm = Float64Array.from(all, (strut) => strut.stiffnessNpm)
+  const restM = doubles(all, ({ restM, a, b }) => restM ?? distanceM(spec, a, b))
+  const stiffnessNpm = doubles(all, (strut) => strut.stiffnessNpm)
   return {
     passiveCount: struts.length,
     activeCount: actuators.length,
@@ -42,55 +67,83 @@ export function layOutStruts(spec: LatticeSpec) {
     ends: endsOf(spec, all),
     restM,
     stiffnessNpm,
-    stiffnessRestN: stiffnessNpm.map((k, i) => k * restM[i]!),
-    dampingNspm: Float64Array.from(all, (strut) => strut.dampingNspm),
+    stiffnessRestN: doubles(all, (_, i) => stiffnessNpm[i]! * restM[i]!),
+    dampingNspm: doubles(all, (strut) => strut.dampingNspm),
   }
 }
 
-/** What turns a drive into the strain of one strut; phase and lag may be those of another situation (vary.ts). */
-export interface Stroke extends ActuatorLimits {
-  readonly group: DriveGroupSpec
-  readonly strain: number
-  readonly phaseTurns: number
+/** What turns a drive into the strain of a driven strut; phase and lag may be those of another situation (vary.ts). */
+export interface Strokes {
+  /** Made small enough for the limits of strain and rate, with a sweep at its highest frequency. */
+  readonly strain: Float64Array
+  /** Sine and cosine of the phase. */
+  readonly sine: Float64Array
+  readonly cosine: Float64Array
+  readonly angularRadps: Float64Array
+}
+
+/** Of actuators, then guided struts; those are limited as they go. */
+export function strokesOf({ groups = [], actuators = [], guided = [] }: LatticeSpec): Strokes {
+  const count = actuators.length + guided.length
+  const strokes = {
+    strain: zeros(count),
+    sine: zeros(count),
+    cosine: zeros(count),
+    angularRadps: zeros(count),
+  }
+  for (let j = 0; j < count; j++) {
+    const strut = actuators[j] ?? guided[j - actuators.length]!
+    const { frequencyHz, sweep } = (strut.group === undefined ? undefined : groups[strut.group]) ?? still
+    const most = j < actuators.length ? strainMost(strut, Math.max(frequencyHz, sweep?.toHz ?? 0)) : unlimited
+    const strain = strut.group === undefined ? 0 : (strut.strain ?? 0)
+    strokes.strain[j] = Math.min(most, Math.max(-most, strain))
+    const angle = turn * (strut.phaseTurns ?? 0)
+    strokes.sine[j] = sin(angle)
+    strokes.cosine[j] = cos(angle)
+    strokes.angularRadps[j] = turn * frequencyHz
+  }
+  return strokes
+}
+
+const still: DriveGroupSpec = { frequencyHz: 0 }
+
+function strainMost({ strainLimit, strainRateLimitPerSecond }: ActuatorLimits, fastestHz: number): number {
+  const rate = strainRateLimitPerSecond ?? unlimited
+  return Math.min(strainLimit ?? unlimited, fastestHz > 0 ? rate / (turn * fastestHz) : unlimited)
 }
 
 /**
- * Strain times cosine and sine of (phase - lag angle), times the cosine of the lag angle. The stroke is first made
- * small enough for the limits of strain and rate; with a sweep at its highest frequency.
+ * Strain times cosine and sine of (phase - lag angle), times the cosine of the lag angle d, tan d = angular frequency *
+ * lag. `lagOf` says the lag of a driven strut.
  */
-export function turnedStrain(stroke: Stroke): readonly [number, number] {
-  const { group, phaseTurns, strainLimit = unlimited, strainRateLimitPerSecond = unlimited } = stroke
-  const { frequencyHz, lagSeconds = 0, sweep } = group
-  const fastestRadps = turn * Math.max(frequencyHz, sweep?.toHz ?? 0)
-  const most = Math.min(strainLimit, fastestRadps > 0 ? strainRateLimitPerSecond / fastestRadps : unlimited)
-  const strain = Math.min(most, Math.max(-most, stroke.strain))
-  const tangent = turn * frequencyHz * lagSeconds
-  const shrink = strain / (1 + tangent * tangent)
-  const [s, c] = sineAndCosine(turn * phaseTurns)
-  return [shrink * (c + s * tangent), shrink * (s - c * tangent)]
+export function turnStrains(strokes: Strokes, lagOf: (j: number) => number) {
+  const { strain, sine, cosine, angularRadps } = strokes
+  const strainCos = zeros(strain.length)
+  const strainSin = zeros(strain.length)
+  for (let j = 0; j < strain.length; j++) {
+    const tangent = angularRadps[j]! * lagOf(j)
+    const shrink = strain[j]! / (1 + tangent * tangent)
+    strainCos[j] = shrink * (cosine[j]! + sine[j]! * tangent)
+    strainSin[j] = shrink * (sine[j]! - cosine[j]! * tangent)
+  }
+  return { strainCos, strainSin }
 }
 
-/** The driven struts of a description: actuators, then guided struts. Guided ones are limited as they go. */
-export function strokesOf({ groups = [], actuators = [], guided = [] }: LatticeSpec): readonly Stroke[] {
-  const still: DriveGroupSpec = { frequencyHz: 0 }
-  return [
-    ...actuators.map((strut) => ({ ...strut, group: groups[strut.group]! })),
-    ...guided.map(({ group, strain = 0, phaseTurns = 0 }) => {
-      return group === undefined
-        ? { group: still, strain: 0, phaseTurns: 0 }
-        : { group: groups[group]!, strain, phaseTurns }
-    }),
-  ]
+/** Lag of every driven strut as described, s. */
+export function lagsOf({ groups = [], actuators = [], guided = [] }: LatticeSpec): Float64Array {
+  return doubles([...actuators, ...guided], ({ group }) =>
+    group === undefined ? 0 : (groups[group]!.lagSeconds ?? 0),
+  )
 }
 
-export function layOutDriven(spec: LatticeSpec) {
+export function layOutDriven(spec: LatticeSpec, strokes: Strokes) {
   const { actuators = [], guided = [] } = spec
-  const turned = strokesOf(spec).map(turnedStrain)
+  const struts = [...actuators, ...guided]
+  const lags = lagsOf(spec)
   return {
-    group: Int32Array.from([...actuators, ...guided], (strut) => 2 * (strut.group ?? 0)),
-    strainCos: Float64Array.from(turned, ([cosine]) => cosine),
-    strainSin: Float64Array.from(turned, ([, sine]) => sine),
-    limitN: Float64Array.from([...actuators, ...guided], (strut) => strut.forceLimitN ?? unlimited),
+    group: integers(struts, (strut) => 2 * (strut.group ?? 0)),
+    ...turnStrains(strokes, (j) => lags[j]!),
+    limitN: doubles(struts, (strut) => strut.forceLimitN ?? unlimited),
   }
 }
 
@@ -101,26 +154,24 @@ export function layOutGuided({ guided = [] }: LatticeSpec, h: number) {
     feedbackFirst[j + 1] = feedbackFirst[j]! + (strut.feedback?.length ?? 0)
   }
   return {
-    guidedStrain: new Float64Array(guided.length),
-    hostStrain: new Float64Array(guided.length),
-    strokeMost: Float64Array.from(guided, (strut) => strut.strainLimit ?? unlimited),
-    strainStepMost: Float64Array.from(guided, (strut) => (strut.strainRateLimitPerSecond ?? unlimited) * h),
-    powerMostW: Float64Array.from(guided, (strut) => strut.powerLimitW ?? unlimited),
+    guidedStrain: zeros(guided.length),
+    hostStrain: zeros(guided.length),
+    strokeMost: doubles(guided, (strut) => strut.strainLimit ?? unlimited),
+    strainStepMost: doubles(guided, (strut) => (strut.strainRateLimitPerSecond ?? unlimited) * h),
+    powerMostW: doubles(guided, (strut) => strut.powerLimitW ?? unlimited),
     feedbackFirst,
-    feedbackSensor: Int32Array.from(feedback, (row) => row.sensor),
-    feedbackGain: Float64Array.from(feedback, (row) => row.gain),
+    feedbackSensor: integers(feedback, (row) => row.sensor),
+    feedbackGain: doubles(feedback, (row) => row.gain),
   }
 }
 
 export function layOutSensors({ sensors = [] }: LatticeSpec, h: number) {
   return {
     sensorCount: sensors.length,
-    sensed: new Float64Array(sensors.length),
-    sensorKind: Int32Array.from(sensors, ({ kind }) => (kind === 'contact' ? 0 : 1)),
-    sensorAt: Int32Array.from(sensors, (s) => (s.kind === 'contact' ? s.node : s.strut)),
-    sensorRate: Float64Array.from(sensors, ({ filterSeconds = 0 }) =>
-      filterSeconds > h ? h / filterSeconds : 1,
-    ),
+    sensed: zeros(sensors.length),
+    sensorKind: integers(sensors, ({ kind }) => (kind === 'contact' ? 0 : 1)),
+    sensorAt: integers(sensors, (s) => (s.kind === 'contact' ? s.node : s.strut)),
+    sensorRate: doubles(sensors, ({ filterSeconds = 0 }) => (filterSeconds > h ? h / filterSeconds : 1)),
   }
 }
 
@@ -129,8 +180,8 @@ export function layOutFluid(spec: LatticeSpec) {
   return {
     dragCount: dragStruts.length,
     dragEnds: endsOf(spec, dragStruts),
-    dragNormal: Float64Array.from(dragStruts, (strut) => strut.normalNspm2),
-    dragDifference: Float64Array.from(dragStruts, (strut) => strut.normalNspm2 - strut.tangentNspm2),
+    dragNormal: doubles(dragStruts, (strut) => strut.normalNspm2),
+    dragDifference: doubles(dragStruts, (strut) => strut.normalNspm2 - strut.tangentNspm2),
   }
 }
 
@@ -139,7 +190,7 @@ export function layOutFills(spec: LatticeSpec) {
     ...(spec.areas ?? []).map((a) => ({ nodes: a.nodes, stiffness: a.stiffnessNpm, rest: a.restM2 })),
     ...(spec.volumes ?? []).map((v) => ({ nodes: v.nodes, stiffness: v.stiffnessPa, rest: v.restM3 })),
   ]
-  const fillRest = Float64Array.from(fills, ({ nodes, rest }) => rest ?? signedSize(spec, nodes))
+  const fillRest = doubles(fills, ({ nodes, rest }) => rest ?? signedSize(spec, nodes))
   return {
     fillCount: fills.length,
     fillEnds: offsets(
@@ -147,7 +198,7 @@ export function layOutFills(spec: LatticeSpec) {
       fills.flatMap(({ nodes }) => [...nodes]),
     ),
     fillRest,
-    fillStiffness: Float64Array.from(fills, ({ stiffness }, i) => stiffness / fillRest[i]!),
+    fillStiffness: doubles(fills, ({ stiffness }, i) => stiffness / fillRest[i]!),
   }
 }
 
@@ -156,8 +207,8 @@ export function layOutPairs(spec: LatticeSpec) {
   return {
     apartCount: keepApart.length,
     apartEnds: endsOf(spec, keepApart),
-    apartStiffnessNpm: Float64Array.from(keepApart, (pair) => pair.stiffnessNpm),
-    apartStiffnessLeastN: Float64Array.from(keepApart, (pair) => pair.stiffnessNpm * pair.leastM),
+    apartStiffnessNpm: doubles(keepApart, (pair) => pair.stiffnessNpm),
+    apartStiffnessLeastN: doubles(keepApart, (pair) => pair.stiffnessNpm * pair.leastM),
   }
 }
 
@@ -186,12 +237,15 @@ export function layOutGround(ground: GroundSpec | undefined, dimensions: 2 | 3) 
   const heightsM = new Float64Array(groundColumns * groundRows)
   let highest = Number.NEGATIVE_INFINITY
   for (let row = 0; row < groundRows; row++) {
-    const from = dimensions === 2 ? 0 : Math.min(rows - 1, Math.max(0, row - 1))
-    for (let column = 0; column < groundColumns; column++) {
-      const height = given[from * columns + Math.min(columns - 1, Math.max(0, column - 1))]!
-      heightsM[row * groundColumns + column] = height
+    const from = (dimensions === 2 ? 0 : Math.min(rows - 1, Math.max(0, row - 1))) * columns
+    const to = row * groundColumns
+    for (let column = 0; column < columns; column++) {
+      const height = given[from + column]!
+      heightsM[to + 1 + column] = height
       if (height > highest) highest = height
     }
+    heightsM[to] = given[from]!
+    heightsM[to + columns + 1] = given[from + columns - 1]!
   }
   const terrain = Float64Array.of(
     firstXM - spacingM,
@@ -214,11 +268,9 @@ export function layOutDrive(spec: LatticeSpec, groupCount: number, h: number) {
   const groups: readonly DriveGroupSpec[] = spec.groups?.length
     ? spec.groups
     : new Array<DriveGroupSpec>(groupCount).fill({ frequencyHz: 0 })
-  const sweepSteps = Int32Array.from(groups, ({ sweep }) =>
-    sweep ? Math.max(1, Math.round(sweep.seconds / h)) : 0,
-  )
-  const angularRadps = Float64Array.from(groups, (g) => turn * g.frequencyHz)
-  const sweepRadps2 = Float64Array.from(groups, ({ sweep }, i) =>
+  const sweepSteps = integers(groups, ({ sweep }) => (sweep ? Math.max(1, Math.round(sweep.seconds / h)) : 0))
+  const angularRadps = doubles(groups, (g) => turn * g.frequencyHz)
+  const sweepRadps2 = doubles(groups, ({ sweep }, i) =>
     sweep ? (turn * sweep.toHz - angularRadps[i]!) / (sweepSteps[i]! * h) : 0,
   )
   const parts = { angularRadps, sweepRadps2, sweepSteps, stepSeconds: h }
@@ -240,11 +292,11 @@ export function layOutPrescribed(spec: LatticeSpec) {
       spec,
       prescribed.map((path) => path.node),
     ),
-    prescribedGroup: Int32Array.from(prescribed, (path) => 2 * path.group),
+    prescribedGroup: integers(prescribed, (path) => 2 * path.group),
     prescribedStartM: Float64Array.from(prescribed.flatMap((path) => spec.nodes[path.node]!.positionM)),
     prescribedAmplitudeM: Float64Array.from(prescribed.flatMap((path) => path.amplitudeM)),
-    prescribedCos: Float64Array.from(turned, ([, cosine]) => cosine),
-    prescribedSin: Float64Array.from(turned, ([sine]) => sine),
+    prescribedCos: doubles(turned, ([, cosine]) => cosine),
+    prescribedSin: doubles(turned, ([sine]) => sine),
   }
 }
 

@@ -3,6 +3,7 @@
 
 import { checkSpec, demand, dimensionsOf } from './build-checks.js'
 import {
+  doubles,
   layOutContact,
   layOutDrive,
   layOutDriven,
@@ -16,6 +17,7 @@ import {
   layOutSensors,
   layOutStruts,
   startPrescribed,
+  strokesOf,
 } from './build-parts.js'
 import type { Lattice, Source } from './layout.js'
 import type { LatticeSpec } from './spec.js'
@@ -30,6 +32,7 @@ export type { Lattice } from './layout.js'
 export function buildLattice(spec: LatticeSpec): Lattice {
   checkSpec(spec)
   const rows = stepRows(spec)
+  const strokes = strokesOf(spec)
   const h = stepOf(spec, boundOf(spec, rows))
   const dimensions = dimensionsOf(spec)
   const stride = 3 * dimensions
@@ -48,13 +51,13 @@ export function buildLattice(spec: LatticeSpec): Lattice {
     driven: pairs(groupCount, 0, atOnce ? 1 : 0),
     step: 0,
     dragNspm: spec.dragNspm ?? 0,
-    inverseMass: Float64Array.from(spec.nodes, (n, i) => (n.pinned || fixed.has(i) ? 0 : 1 / n.massKg)),
-    massKg: Float64Array.from(spec.nodes, (n) => n.massKg),
+    inverseMass: doubles(spec.nodes, (n, i) => (n.pinned || fixed.has(i) ? 0 : 1 / n.massKg)),
+    massKg: doubles(spec.nodes, (n) => n.massKg),
     gravity: Float64Array.from(spec.gravityMps2),
     friction: layOutFriction(spec),
     heading: dimensions === 3 ? headings(spec, stride) : new Int32Array(0),
     ...layOutStruts(spec),
-    ...layOutDriven(spec),
+    ...layOutDriven(spec, strokes),
     ...layOutGuided(spec, h),
     ...layOutSensors(spec, h),
     ...layOutFluid(spec),
@@ -75,7 +78,7 @@ export function buildLattice(spec: LatticeSpec): Lattice {
     rotation: rotation.slice(),
     driven: driven.slice(),
   }
-  const source: Source = { spec, start, ...rows }
+  const source: Source = { spec, start, strokes, ...rows }
   return { ...parts, source }
 }
 
@@ -86,9 +89,12 @@ function pairs(count: number, first: number, second: number): Float64Array {
 
 function layOutNodes(spec: LatticeSpec, stride: number): Float64Array {
   const nodes = new Float64Array(spec.nodes.length * stride)
-  for (const [i, node] of spec.nodes.entries()) {
-    nodes.set(node.positionM, i * stride)
-    nodes.set(node.velocityMps ?? [], i * stride + stride / 3)
+  for (let i = 0; i < spec.nodes.length; i++) {
+    const { positionM, velocityMps } = spec.nodes[i]!
+    for (let axis = 0; axis < positionM.length; axis++) {
+      nodes[i * stride + axis] = positionM[axis]!
+      if (velocityMps) nodes[i * stride + stride / 3 + axis] = velocityMps[axis]!
+    }
   }
   return nodes
 }

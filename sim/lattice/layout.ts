@@ -14,6 +14,7 @@
 //   7 nodes: node drag, contact, friction, integration     8 step + 1, rotors, drive, prescribed nodes
 // Formulas: above the functions in reference/. Empty lists cost nothing.
 
+import type { Strokes } from './build-parts.js'
 import type { LatticeSpec } from './spec.js'
 
 export interface Lattice {
@@ -166,6 +167,7 @@ export interface Lattice {
 export interface Source {
   readonly spec: LatticeSpec
   readonly start: Pick<Lattice, 'nodes' | 'rotors' | 'rotation' | 'driven'>
+  readonly strokes: Strokes
   readonly rowStiffnessNpm: Float64Array
   readonly rowDampingNspm: Float64Array
 }

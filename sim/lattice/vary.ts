@@ -3,8 +3,17 @@
 // of a body cost little and the kernel can see what they have in common.
 
 import { demandStable } from './build.js'
-import { checkGround, demand, isFriction } from './build-checks.js'
-import { frictionOf, layOutGround, strokesOf, turnedStrain } from './build-parts.js'
+import { checkGround, demand, isFriction, soundFriction } from './build-checks.js'
+import {
+  frictionOf,
+  lagsOf,
+  layOutGround,
+  type Strokes,
+  sineAndCosine,
+  turn,
+  turnStrains,
+  zeros,
+} from './build-parts.js'
 import type { Lattice, Source } from './layout.js'
 import type { FrictionSpec, GroundSpec } from './spec.js'
 import { boundOf, steepestSlope } from './stability.js'
@@ -41,46 +50,53 @@ export function varyLattice(lattice: Lattice, variation: Variation): Lattice {
     const steepest = variation.steepestSlope ?? steepestSlope(ground ?? spec.ground)
     demandStable(lattice.stepSeconds, boundOf(spec, source, ground ?? spec.ground, dragNspm, steepest))
   }
+  const floor = ground ? layOutGround(ground, lattice.dimensions) : lattice
+  const drive = lagSeconds !== undefined || phaseTurns ? drives(lattice, lagSeconds, phaseTurns) : lattice
+  const material = strutFactors ? scaled(lattice, strutFactors) : lattice
+  const { nodes, rotors, driven, rotation } = lattice.source.start
+  // One spread and a list: many spreads cost more than all the arrays.
   return {
     ...lattice,
-    ...freshState(lattice),
-    dragNspm,
-    ...(ground ? layOutGround(ground, lattice.dimensions) : {}),
-    ...(friction ? { friction: frictions(lattice, friction) } : {}),
-    ...(lagSeconds !== undefined || phaseTurns ? drives(lattice, lagSeconds, phaseTurns) : {}),
-    ...(strutFactors ? scaled(lattice, strutFactors) : {}),
-    source,
-  }
-}
-
-/** State as it was when the lattice was built. */
-function freshState({ nodeCount, sensorCount, guidedCount, rotation, sweepSteps, source }: Lattice) {
-  const { nodes, rotors, driven, rotation: turning } = source.start
-  return {
     nodes: nodes.slice(),
-    touching: new Float64Array(nodeCount),
-    sensed: new Float64Array(sensorCount),
-    guidedStrain: new Float64Array(guidedCount),
-    hostStrain: new Float64Array(guidedCount),
+    touching: new Float64Array(lattice.nodeCount),
+    sensed: zeros(lattice.sensorCount),
+    guidedStrain: zeros(lattice.guidedCount),
+    hostStrain: zeros(lattice.guidedCount),
     rotors: rotors.slice(),
     // Without a sweep it never changes.
-    rotation: sweepSteps.some((steps) => steps > 0) ? turning.slice() : rotation,
+    rotation: lattice.sweepSteps.some((steps) => steps > 0) ? rotation.slice() : lattice.rotation,
     driven: driven.slice(),
     step: 0,
+    dragNspm,
+    heightsM: floor.heightsM,
+    terrain: floor.terrain,
+    groundColumns: floor.groundColumns,
+    groundRows: floor.groundRows,
+    friction: friction ? frictions(lattice, friction) : lattice.friction,
+    strainCos: drive.strainCos,
+    strainSin: drive.strainSin,
+    stiffnessNpm: material.stiffnessNpm,
+    stiffnessRestN: material.stiffnessRestN,
+    dampingNspm: material.dampingNspm,
+    source,
   }
 }
 
 function frictions({ dimensions, nodeCount }: Lattice, given: readonly (FrictionSpec | undefined)[]) {
   demand(given.length === nodeCount, 'friction', given.length, `one for each of ${nodeCount} nodes`)
-  for (const [i, one] of given.entries()) {
-    const sound = one === undefined || isFriction(one)
-    demand(sound, `nodes[${i}].friction`, JSON.stringify(one), 'finite coefficients of at least 0')
+  for (let i = 0; i < nodeCount; i++) {
+    const one = given[i]
+    if (one === undefined || isFriction(one)) continue
+    demand(false, `nodes[${i}].friction`, JSON.stringify(one), soundFriction)
   }
-  return Float64Array.from(given.flatMap((one) => frictionOf(dimensions, one)))
+  const size = dimensions === 2 ? 2 : 3
+  const friction = new Float64Array(size * nodeCount)
+  for (let i = 0; i < nodeCount; i++) friction.set(frictionOf(dimensions, given[i]), size * i)
+  return friction
 }
 
 function drives(
-  { activeCount, guidedCount, source }: Lattice,
+  { activeCount, guidedCount, group, sweepSteps, source }: Lattice,
   lagSeconds: number | undefined,
   phaseTurns: readonly number[] | Float64Array | undefined,
 ) {
@@ -89,23 +105,26 @@ function drives(
   const count = activeCount + guidedCount
   const known = !phaseTurns || phaseTurns.length === count
   demand(known, 'phaseTurns', phaseTurns?.length, `one for each of ${count} driven struts`)
-  const strainCos = new Float64Array(count)
-  const strainSin = new Float64Array(count)
-  for (const [j, stroke] of strokesOf(source.spec).entries()) {
-    const phase = phaseTurns ? phaseTurns[j]! : stroke.phaseTurns
-    demand(Number.isFinite(phase), `phaseTurns[${j}]`, phase, 'a finite number')
-    const lag = lagSeconds ?? stroke.group.lagSeconds ?? 0
-    demand(
-      lag === 0 || !stroke.group.sweep,
-      'lagSeconds',
-      lag,
-      'no lag with a sweep: it holds for one frequency',
-    )
-    const turned = turnedStrain({ ...stroke, phaseTurns: phase, group: { ...stroke.group, lagSeconds: lag } })
-    strainCos[j] = turned[0]
-    strainSin[j] = turned[1]
+  const lags = lagSeconds === undefined ? lagsOf(source.spec) : undefined
+  const isLagging = lagSeconds !== undefined && lagSeconds > 0
+  const swept =
+    isLagging && sweepSteps.some((steps) => steps > 0) && group.some((g) => sweepSteps[g / 2]! > 0)
+  demand(!swept, 'lagSeconds', lagSeconds, 'no lag with a sweep: it holds for one frequency')
+  const strokes = phaseTurns ? atPhases(source.strokes, phaseTurns) : source.strokes
+  return turnStrains(strokes, (j) => lagSeconds ?? lags![j]!)
+}
+
+function atPhases(strokes: Strokes, phaseTurns: readonly number[] | Float64Array): Strokes {
+  const sine = new Float64Array(phaseTurns.length)
+  const cosine = new Float64Array(phaseTurns.length)
+  for (let j = 0; j < phaseTurns.length; j++) {
+    const phase = phaseTurns[j]!
+    if (!Number.isFinite(phase)) demand(false, `phaseTurns[${j}]`, phase, 'a finite number')
+    const [s, c] = sineAndCosine(turn * phase)
+    sine[j] = s
+    cosine[j] = c
   }
-  return { strainCos, strainSin }
+  return { ...strokes, sine, cosine }
 }
 
 function scaled({ stiffnessNpm, dampingNspm, restM }: Lattice, factors: readonly number[] | Float64Array) {

@@ -7,15 +7,19 @@ import { cautionsOf } from '../../../shared/making/cautions.js'
 import { makingFaults } from '../../../shared/making/makeability.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import { stream } from '../../../shared/streams.js'
-import { planeStride as stride } from '../../lattice/layout.js'
+import { advance } from '../../lattice/advance.js'
+import { type Lattice, planeStride as stride } from '../../lattice/layout.js'
 import { contactJ, elasticJ, gravitationalJ, kineticJ } from '../../lattice/observe.js'
 import { stepBound, stepSafety } from '../../lattice/stability.js'
 import { buildBody } from './body.js'
-import { culvertGround, drawCulvert, steepestGround } from './floor.js'
+import { overstrained, watchOf } from './collapse.js'
+import { type CulvertCondition, culvert, culvertGround, drawCulvert, slopeMost } from './floor.js'
 import { actuator, type CrawlerGenome, feet, none } from './genome.js'
 import problem from './index.js'
+import type { Machine } from './machine.js'
+import { outcomeOf } from './measure.js'
 import { numbers } from './numbers.js'
-import { advanceFrame, describeLattice, framesPerTrial, startTrial } from './trial.js'
+import { baseLattice, describeMachine, followTrial, framesPerTrial, situate } from './trial.js'
 
 function founder(number: number): CrawlerGenome {
   return problem.repair(
@@ -23,6 +27,10 @@ function founder(number: number): CrawlerGenome {
   )
 }
 const condition = (replicate: number) => drawCulvert(conditionStream(20_261_201, true, 1, replicate))
+/** The body about to settle, on the reference simulator. */
+function settling(machine: Machine, surroundings: CulvertCondition): Lattice {
+  return situate(baseLattice(machine, culvert.steepest), machine, culvert, [surroundings])[0]!
+}
 const situation = (replicate: number) => ({ condition: condition(replicate), case: '' })
 
 /** Three bays, all soft, one chain of actuators below, pads that let go forwards. */
@@ -82,11 +90,10 @@ describe('the genome', () => {
 
 describe('the floor', () => {
   test('no debris is steeper than what the step is chosen for', () => {
-    const slope = steepestGround.heightsM[1]! / steepestGround.spacingM
     for (let j = 0; j < 50; j++) {
       const { heightsM, spacingM } = culvertGround(condition(j).debris)
       for (let i = 1; i < heightsM.length; i++) {
-        expect(Math.abs(heightsM[i]! - heightsM[i - 1]!) / spacingM).toBeLessThanOrEqual(slope)
+        expect(Math.abs(heightsM[i]! - heightsM[i - 1]!) / spacingM).toBeLessThanOrEqual(slopeMost)
       }
     }
   })
@@ -100,40 +107,54 @@ describe('the floor', () => {
 describe('a trial', () => {
   test('every body gets a safe step', () => {
     for (let i = 0; i < 30; i++) {
-      const genome = founder(i)
-      const spec = describeLattice(genome, buildBody(genome), condition(i))
-      const { limitSeconds } = stepBound({ ...spec, ground: steepestGround })
+      const spec = describeMachine(buildBody(founder(i)), culvert.steepest)
+      const { limitSeconds } = stepBound(spec)
       expect(spec.stepSeconds).toBeLessThanOrEqual(stepSafety * limitSeconds * (1 + 1e-9))
     }
   })
 
   test('a body without stroke stays where it settled and only loses energy', () => {
-    const genome = inchworm(0)
-    const trial = startTrial(genome, buildBody(genome), condition(0))
-    if ('reason' in trial) throw new Error(trial.reason)
-    const { lattice } = trial
+    const machine = buildBody(inchworm(0))
+    const lattice = settling(machine, condition(0))
     const energy = () => kineticJ(lattice) + elasticJ(lattice) + gravitationalJ(lattice) + contactJ(lattice)
-    let last = energy()
-    const first = lattice.nodes.slice()
-    for (let frame = 0; frame < framesPerTrial; frame++) {
-      expect(advanceFrame(trial)).toBeUndefined()
+    let last = Number.POSITIVE_INFINITY
+    let first: Float64Array | undefined
+    const result = followTrial(machine, lattice, () => {
       // 1e-6 J lifts the puck by 2 micrometres: the ripple of the scheme.
       expect(energy()).toBeLessThan(last + 1e-6)
       last = energy()
-    }
+      first ??= lattice.nodes.slice()
+    })
+    expect(result).not.toHaveProperty('reason')
     for (let i = 0; i < lattice.nodeCount; i++) {
-      expect(Math.abs(lattice.nodes[i * stride]! - first[i * stride]!)).toBeLessThan(1e-3)
+      expect(Math.abs(lattice.nodes[i * stride]! - first![i * stride]!)).toBeLessThan(1e-3)
     }
   })
 
   test('it has settled when it starts', () => {
     for (let i = 0; i < 20; i++) {
-      const genome = founder(i)
-      const trial = startTrial(genome, buildBody(genome), condition(i))
-      if ('reason' in trial) continue
+      const machine = buildBody(founder(i))
+      const lattice = settling(machine, condition(i))
+      if (advance(lattice, lattice.driveStartStep)) continue
       // As much as the whole body at 2 cm/s.
-      expect(kineticJ(trial.lattice)).toBeLessThan(0.5 * trial.body.massKg * 0.02 * 0.02)
+      expect(kineticJ(lattice)).toBeLessThan(0.5 * machine.massKg * 0.02 * 0.02)
     }
+  })
+
+  test('the lanes of the kernel give the bits of the reference, however many go side by side', () => {
+    let failed = 0
+    for (let i = 0; i < 8; i++) {
+      const machine = buildBody(founder(i))
+      const truth = [0, 1, 2, 3, 4].map((j) =>
+        outcomeOf(machine, followTrial(machine, settling(machine, condition(j)))),
+      )
+      if (truth.some((outcome) => 'failed' in outcome)) failed++
+      for (const count of [1, 2, 3, 5]) {
+        const situations = Array.from({ length: count }, (_, j) => situation(j))
+        expect(problem.simulate(founder(i), situations)).toEqual(truth.slice(0, count))
+      }
+    }
+    expect(failed).toBeLessThan(8)
   })
 
   test('pads decide the way: an inchworm goes forwards, and backwards on reversed pads', () => {
@@ -151,12 +172,9 @@ describe('a trial', () => {
 
   test('half the step gives the same distance within 2 %', () => {
     const genome = inchworm(0.15)
-    const body = buildBody(genome)
     const run = (divide: number) => {
-      const trial = startTrial(genome, body, condition(2), divide)
-      if ('reason' in trial) throw new Error(trial.reason)
-      for (let frame = 0; frame < framesPerTrial; frame++) advanceFrame(trial)
-      return trial.lattice.nodes[body.puckNode * stride]! - trial.startXM
+      const [outcome] = problem.simulateFiner!(genome, [situation(2)], divide)
+      return 'failed' in outcome! ? Number.NaN : outcome!.objectives.distance!
     }
     const whole = run(1)
     expect(whole).toBeGreaterThan(0.02)
@@ -171,21 +189,37 @@ describe('a trial', () => {
   })
 
   test('a broken body fails with a reason and a time', () => {
-    const genome = inchworm(0.15)
-    const broken = (alter: (nodes: Float64Array) => void) => {
-      const trial = startTrial(genome, buildBody(genome), condition(0))
-      if ('reason' in trial) throw new Error(trial.reason)
-      alter(trial.lattice.nodes)
-      return advanceFrame(trial)
+    const machine = buildBody(inchworm(0.15))
+    const broken = (alter: (nodes: Float64Array) => void, atFrame: number) => {
+      const lattice = settling(machine, condition(0))
+      let frame = 0
+      const result = followTrial(machine, lattice, () => {
+        if (frame++ === atFrame) alter(lattice.nodes)
+      })
+      return 'reason' in result ? result : undefined
     }
-    expect(broken(() => {})).toBeUndefined()
+    expect(broken(() => {}, 0)).toBeUndefined()
     // The upper node of column 1 thrown far ahead; a node without a place.
-    expect(broken((nodes) => nodes.set([0.5, 0.3, 0, 0], stride))?.reason).toMatch(
-      /collapsed|% of its length/,
-    )
-    const fault = broken((nodes) => nodes.set([Number.NaN], stride))
+    const thrown = broken((nodes) => nodes.set([0.5, 0.3, 0, 0], stride), 0)
+    expect(thrown?.reason).toMatch(/collapsed|is at \d+ % of its length/)
+    const fault = broken((nodes) => nodes.set([Number.NaN], stride), 0)
     expect(fault?.reason).toMatch(/no finite position/)
     expect(fault?.seconds).toBeCloseTo(numbers.settleSeconds + 0.01, 3)
+  })
+
+  test('a strut that is torn only between two looks is found in the samples', () => {
+    const machine = buildBody(inchworm(0.15))
+    const lattice = settling(machine, condition(0))
+    const result = followTrial(machine, lattice)
+    if ('reason' in result) throw new Error(result.reason)
+    const watch = watchOf(machine)
+    expect(overstrained(result.tally, watch)).toBeUndefined()
+    const { lengthM, place } = machine.members[2]!
+    result.tally.longestM[2] = 1.51 * lengthM
+    expect(overstrained(result.tally, watch)?.reason).toMatch(new RegExp(`${place}.* was at 151 %`))
+    result.tally.longestM[2] = lengthM
+    result.tally.shortestM[2] = 0.59 * lengthM
+    expect(overstrained(result.tally, watch)?.reason).toMatch(/was at 59 %/)
   })
 
   test('random bodies hardly move', () => {

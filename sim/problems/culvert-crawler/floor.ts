@@ -3,6 +3,7 @@
 
 import type { Stream } from '../../../shared/streams.js'
 import type { GroundSpec } from '../../lattice/spec.js'
+import type { Surroundings, World } from './trial.js'
 
 export interface Lump {
   readonly centreM: number
@@ -10,11 +11,7 @@ export interface Lump {
   readonly heightM: number
 }
 
-export interface CulvertCondition {
-  /** Coefficient of friction of bare rubber on this floor. */
-  readonly floorFriction: number
-  /** Time constant of the actuators' first-order lag, s. */
-  readonly lagSeconds: number
+export interface CulvertCondition extends Surroundings {
   readonly debris: readonly Lump[]
 }
 
@@ -38,7 +35,13 @@ export function drawCulvert(stream: Stream): CulvertCondition {
 }
 
 /** A slope that no debris exceeds: 1.54 / 2.5, rounded up. For the choice of the step. */
-export const steepestGround: GroundSpec = { firstXM: 0, spacingM: 1, heightsM: [0, 0.62] }
+export const slopeMost = 0.62
+
+export const culvert: World<CulvertCondition> = {
+  groundOf: ({ debris }) => culvertGround(debris),
+  steepest: { firstXM: 0, spacingM: 1, heightsM: [0, slopeMost] },
+  slopeMost,
+}
 
 /** Heights on a grid of 4 mm; a lump is h (1 - u^2)^2, smooth at its foot, steepest 1.54 h / half width. */
 export function culvertGround(debris: readonly Lump[]): GroundSpec {

@@ -4,8 +4,9 @@
 import { actuatorClasses } from '../../../shared/making/actuators.js'
 import { siliconeTubes } from '../../../shared/making/stock.js'
 import type { Parts, Process, Use } from '../../../shared/making/types.js'
-import { type Body, buildBody, type Member } from './body.js'
+import { buildBody } from './body.js'
 import type { CrawlerGenome } from './genome.js'
+import type { Machine, Member } from './machine.js'
 import { numbers } from './numbers.js'
 
 /** The stiffness classes of the struts are rows of the workshop's stock. */
@@ -21,10 +22,16 @@ export const crawlerProcess: Process = {
   massMostKg: 1.5,
 }
 
-/** Struts by their row of stock, actuators by their class. */
 export function partsOf(genome: CrawlerGenome): Parts {
-  const body = buildBody(genome)
-  const [frontMost] = body.positionsM[0]!
+  return partsOfMachine(buildBody(genome))
+}
+
+/** Struts by their row of stock, actuators by their class; how much room the body takes along every axis. */
+export function partsOfMachine(body: Machine): Parts {
+  const sizeM = (axis: number) => {
+    const places = body.positionsM.map((position) => position[axis]!)
+    return Math.max(...places) - Math.min(...places)
+  }
   return {
     struts: body.members
       .filter(({ group }) => group < 0)
@@ -45,29 +52,32 @@ export function partsOf(genome: CrawlerGenome): Parts {
           ratePerSecond: 2 * Math.PI * body.frequencyHz * stroke,
         }
       }),
-    envelopeM: [-frontMost, Math.max(...body.positionsM.map(([, y]) => y))],
+    envelopeM: body.positionsM[0]!.map((_, axis) => sizeM(axis)),
     massKg: body.massKg,
   }
 }
 
-function partName({ place, a }: Member): string {
-  return `${place} of column ${(a >> 1) + 1}`
+function partName({ place, column }: Member): string {
+  return `${place} of column ${column + 1}`
 }
 
-/** At most this many struts close one bay. */
-const strutsPerBay = 5
-
 /** The largest energy in one strut at the largest stroke, J: what it lets go when it tears. */
-function strutEnergyJ(body: Body): number {
+function strutEnergyJ(body: Machine): number {
   return body.members.reduce((most, { stiffnessNpm, lengthM }) => {
     const stretchM = numbers.strainMost * lengthM
     return Math.max(most, (stiffnessNpm * stretchM * stretchM) / 2)
   }, 0)
 }
 
-/** What a crawler is used for, in its own numbers. Battery, voltage and hoses are assumed. */
 export function useOf(genome: CrawlerGenome): Use {
-  const body = buildBody(genome)
+  return useOfMachine(buildBody(genome), 5)
+}
+
+/**
+ * What a crawler is used for, in its own numbers. Battery, voltage and hoses are assumed. `strutsPerBay`: as many close
+ * one bay at most.
+ */
+export function useOfMachine(body: Machine, strutsPerBay: number): Use {
   const bellows = body.members.filter(({ group }) => group >= 0)
   const hasAir = bellows.length > 0
   // As much again in the hoses.

@@ -71,6 +71,8 @@ export const numbers = {
   stepSecondsMost: 1e-3,
   framesPerSecond: 25,
   samplesPerFrame: 4,
+  /** Frames between two looks at whether the body is broken, five a second; the last frame is one of them. */
+  framesPerLook: 5,
 
   // Collapse: a bay that keeps less of its area (or volume) than this, or a strut outside these multiples of its length.
   bayLeast: 0.15,

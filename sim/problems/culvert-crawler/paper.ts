@@ -2,11 +2,12 @@
 // follow from its use. A simulation is no certificate, and a machine found by a search works at the edge of its model.
 
 import type { Caution } from '../../../shared/problem.js'
-import { buildBody, type Member } from './body.js'
+import { buildBody, nodeName } from './body.js'
 import type { CrawlerGenome } from './genome.js'
+import type { Machine, Member } from './machine.js'
 import { numbers } from './numbers.js'
 
-const mm = (metres: number) => `${(metres * 1000).toFixed(1)} mm`
+export const mm = (metres: number) => `${(metres * 1000).toFixed(1)} mm`
 const grams = (kg: number) => `${(kg * 1000).toFixed(1)} g`
 
 const materials: { readonly [kind: string]: string } = {
@@ -19,49 +20,61 @@ const materials: { readonly [kind: string]: string } = {
 /** Lines for a person, part by part, with units. */
 export function describeCrawler(genome: CrawlerGenome): readonly string[] {
   const body = buildBody(genome)
+  const columns = body.footNodes.map(({ node, foot }, column) => {
+    const [[x], [, heightM]] = [body.positionsM[node]!, body.positionsM[node + 1]!] as [number[], number[]]
+    return `Column ${column + 1}: ${mm(-x!)} behind the front, ${mm(heightM!)} high, foot ${foot}.`
+  })
+  return describeMachine(body, columns, nodeName)
+}
+
+/** Lines for a person on any crawler: `columns` says how its columns are shaped, `nameOf` what a node is called. */
+export function describeMachine(
+  body: Machine,
+  columns: readonly string[],
+  nameOf: (node: number) => string,
+): string[] {
+  const lengthM = -Math.min(...body.positionsM.map(([x]) => x!))
+  const puckColumn = Math.floor(body.columns / 2) + 1
   const lines = [
-    `Body: ${body.columns - 1} bays, ${mm(-body.positionsM[0]![0])} long, ${grams(body.massKg)} with the puck ` +
+    `Body: ${body.columns - 1} bays, ${mm(lengthM)} long, ${grams(body.massKg)} with the puck ` +
       `(${grams(numbers.puckKg)}), ${grams(body.materialKg)} of material.`,
     `Tubes: ${mm(numbers.strutDiameterM)} mean diameter, ${mm(numbers.strutAreaM2 / Math.PI / numbers.strutDiameterM)} wall.`,
-    `Puck: on the upper node of column ${(body.puckNode >> 1) + 1}.`,
+    `Puck: on the upper node of column ${puckColumn}.`,
+    ...columns,
+    ...body.members.map((member) => memberLine(member, nameOf)),
+    `Drive: ${body.frequencyHz.toFixed(3)} Hz for all groups.`,
   ]
-  for (let column = 0; column < body.columns; column++) {
-    const [x] = body.positionsM[2 * column]!
-    const heightM = body.positionsM[2 * column + 1]![1]
-    lines.push(
-      `Column ${column + 1}: ${mm(-x)} behind the front, ${mm(heightM)} high, foot ${body.feet[column]}.`,
-    )
-  }
-  for (const member of body.members) lines.push(memberLine(member))
-  lines.push(`Drive: ${body.frequencyHz.toFixed(3)} Hz for all groups.`)
   const used = new Set(body.members.map((member) => member.group))
   for (const [group, strain] of body.strains.entries()) {
     if (!used.has(group)) continue
     const percent = (100 * strain).toFixed(1)
-    const degrees = (360 * genome.phase[group]!).toFixed(0)
+    const degrees = (360 * body.phaseTurns[group]!).toFixed(0)
     lines.push(`Group ${group + 1}: length +-${percent} %, ${degrees} degrees ahead.`)
   }
   return lines
 }
 
-function memberLine({ place, a, b, kind, group, lengthM, stiffnessNpm, massKg }: Member): string {
-  const ends = `${nodeName(a)} to ${nodeName(b)}`
+function memberLine(member: Member, nameOf: (node: number) => string): string {
+  const { place, a, b, kind, group, lengthM, stiffnessNpm, massKg } = member
+  const ends = `${nameOf(a)} to ${nameOf(b)}`
   const drive = group < 0 ? '' : `, group ${group + 1}`
   const stiffness = `${stiffnessNpm.toFixed(0)} N/m`
   return `${place} ${ends}: ${materials[kind]}${drive}, ${mm(lengthM)}, ${stiffness}, ${grams(massKg)}.`
 }
 
-function nodeName(node: number): string {
-  return `${node % 2 === 0 ? 'lower' : 'upper'} ${(node >> 1) + 1}`
+export function cautionsOf(genome: CrawlerGenome): readonly Caution[] {
+  return cautionsOfMachine(
+    buildBody(genome),
+    'it is a plane model without buckling, wear, water, roof or hoses',
+  )
 }
 
-/** Beyond what follows from its use (making.ts). */
-export function cautionsOf(genome: CrawlerGenome): readonly Caution[] {
-  const { massKg } = buildBody(genome)
+/** Beyond what follows from its use (making.ts). `model`: what the model leaves out. */
+export function cautionsOfMachine({ massKg }: Machine, model: string): readonly Caution[] {
   return [
     {
       hazard: 'The model ends here',
-      because: 'it is a plane model without buckling, wear, water, roof or hoses',
+      because: model,
       consult: 'bench trials behind a guard, and a person licensed for such machines where it will be used',
     },
     {

@@ -1,53 +1,78 @@
-// One trial of one body under one condition: settle, drive for 8 s, measure. The body settles first (drives still,
+// Trials of one body under several conditions: settle, drive for 8 s, measure. The body settles first (drives still,
 // some drag), so that nothing is measured that was stored before the start; then the drag is off and distance
 // counts from where the puck stands.
+//
+// Conditions run side by side in the lanes of the lattice kernel, and are sampled there. followTrial() does the same on
+// the reference simulator, one condition at a time and bit for bit the same, for replays and checks.
 
-import { advance, type Fault, groundHeightM } from '../../lattice/advance.js'
-import { buildLattice, type Lattice } from '../../lattice/build.js'
-import { planeStride as stride } from '../../lattice/layout.js'
-import { lengthM, lengthRateMps, tensionN } from '../../lattice/observe.js'
-import type { LatticeSpec } from '../../lattice/spec.js'
+import { advance, type Fault } from '../../lattice/advance.js'
+import { buildLattice } from '../../lattice/build.js'
+import {
+  advanceLanes,
+  type Lanes,
+  lanePlaceM,
+  lanesMost,
+  laneTally,
+  packLanes,
+  sampleLanes,
+  unpackLane,
+} from '../../lattice/lanes.js'
+import type { Lattice } from '../../lattice/layout.js'
+import type { FrictionSpec, GroundSpec, LatticeSpec } from '../../lattice/spec.js'
 import { chooseStep, stepBound } from '../../lattice/stability.js'
-import type { Body } from './body.js'
-import { type CulvertCondition, culvertGround, steepestGround } from './floor.js'
-import type { CrawlerGenome } from './genome.js'
+import { newTally, type Tally, takeSample } from '../../lattice/tally.js'
+import { varyLattice } from '../../lattice/vary.js'
+import { collapse, overstrained, type Watch, watchOf } from './collapse.js'
+import type { Foot, Machine } from './machine.js'
 import { numbers } from './numbers.js'
+
+/** What is drawn for one simulation, besides the ground. */
+export interface Surroundings {
+  /** Coefficient of friction of bare rubber on this floor. */
+  readonly floorFriction: number
+  /** Time constant of the actuators' first-order lag, s. */
+  readonly lagSeconds: number
+}
+
+/** The floors that a crawler may meet. */
+export interface World<Condition extends Surroundings> {
+  readonly groundOf: (condition: Condition) => GroundSpec
+  /** A ground as steep as any of them, for the choice of the step: a body has one step whatever it meets. */
+  readonly steepest: GroundSpec
+  /** Its slope. */
+  readonly slopeMost: number
+}
 
 const frameSeconds = 1 / numbers.framesPerSecond
 export const framesPerTrial = numbers.trialSeconds * numbers.framesPerSecond
 
-/** The body in the culvert as a description for the lattice simulator, with the longest step that is safe. */
-export function describeLattice(
-  genome: CrawlerGenome,
-  body: Body,
-  condition: CulvertCondition,
-): LatticeSpec & { readonly stepSeconds: number } {
-  const { floorFriction, lagSeconds, debris } = condition
-  const frictionOf = (foot: keyof typeof numbers.feet) => ({
-    forward: Math.min(numbers.frictionMost, floorFriction * numbers.feet[foot].forward),
-    backward: Math.min(numbers.frictionMost, floorFriction * numbers.feet[foot].backward),
-  })
-  const strut = ({ a, b, lengthM: restM, stiffnessNpm }: Body['members'][number]) => {
+export type MachineSpec = LatticeSpec & { readonly stepSeconds: number }
+
+/** The body on the steepest floor as a description for the lattice simulator, with the longest step that is safe. */
+export function describeMachine(machine: Machine, steepest: GroundSpec, divide = 1): MachineSpec {
+  const strut = ({ a, b, lengthM: restM, stiffnessNpm }: Machine['members'][number]) => {
     return { a, b, restM, stiffnessNpm, dampingNspm: stiffnessNpm * numbers.relaxationSeconds }
   }
+  const headings = headingNodes(machine)
   const spec = {
-    nodes: body.positionsM.map((positionM, i) => ({
+    dimensions: machine.dimensions,
+    nodes: machine.positionsM.map((positionM, i) => ({
       positionM,
-      massKg: body.nodeMassesKg[i]!,
-      friction: frictionOf(i % 2 === 0 ? body.feet[i / 2]! : 'bare'),
+      massKg: machine.nodeMassesKg[i]!,
+      ...(headings[i] === undefined ? {} : { headingNode: headings[i] }),
     })),
-    struts: body.members.slice(0, body.passiveCount).map(strut),
-    actuators: body.members.slice(body.passiveCount).map((member) => ({
+    struts: machine.members.slice(0, machine.passiveCount).map(strut),
+    actuators: machine.members.slice(machine.passiveCount).map((member) => ({
       ...strut(member),
       group: member.group,
-      strain: body.strains[member.group]!,
-      phaseTurns: genome.phase[member.group]!,
+      strain: machine.strains[member.group]!,
+      phaseTurns: machine.phaseTurns[member.group]!,
       forceLimitN: numbers.pressurePa * numbers.boreAreaM2,
     })),
-    groups: Array.from(body.strains, () => ({ frequencyHz: body.frequencyHz, lagSeconds })),
-    gravityMps2: [0, -numbers.gravityMps2],
+    groups: Array.from(machine.strains, () => ({ frequencyHz: machine.frequencyHz })),
+    gravityMps2: [0, -numbers.gravityMps2, 0].slice(0, machine.dimensions),
     dragNspm: numbers.settleDragNspm,
-    ground: culvertGround(debris),
+    ground: steepest,
     contact: {
       stiffness: numbers.contactNpm,
       damping: numbers.contactNspm2,
@@ -57,117 +82,151 @@ export function describeLattice(
     drive: { startSeconds: numbers.settleSeconds, rampSeconds: numbers.rampSeconds },
     stepSeconds: numbers.stepSecondsMost,
   }
-  // The step is chosen for the steepest floor there is, so that a body has one step whatever it meets.
-  const bound = stepBound({ ...spec, ground: steepestGround })
-  const stepSeconds = chooseStep(bound, frameSeconds, numbers.stepSecondsMost, numbers.samplesPerFrame)
-  return { ...spec, stepSeconds }
+  const whole = chooseStep(stepBound(spec), frameSeconds, numbers.stepSecondsMost, numbers.samplesPerFrame)
+  return { ...spec, stepSeconds: whole / divide }
+}
+
+function headingNodes({ positionsM, footNodes }: Machine): (number | undefined)[] {
+  const headings = new Array<number | undefined>(positionsM.length).fill(undefined)
+  for (const { node, toward } of footNodes) headings[node] = toward?.node
+  return headings
+}
+
+/** Friction of every node on a floor. */
+export function frictionOf(machine: Machine, floorFriction: number): FrictionSpec[] {
+  const { dimensions, positionsM, footNodes } = machine
+  const on = (foot: Foot, turned: boolean): FrictionSpec => {
+    const { forward, backward } = numbers.feet[foot]
+    const coefficient = (factor: number) => Math.min(numbers.frictionMost, floorFriction * factor)
+    const [ahead, behind] = [coefficient(forward), coefficient(backward)]
+    const along = turned ? { forward: behind, backward: ahead } : { forward: ahead, backward: behind }
+    return dimensions === 2 ? along : { ...along, sideways: Math.max(ahead, behind) }
+  }
+  const friction = positionsM.map(() => on('bare', false))
+  for (const { node, foot, toward } of footNodes) friction[node] = on(foot, toward?.isBehind ?? false)
+  return friction
+}
+
+/** The body on the steepest floor: what situate() varies. */
+export function baseLattice(machine: Machine, steepest: GroundSpec, divide = 1): Lattice {
+  return buildLattice(describeMachine(machine, steepest, divide))
+}
+
+/** The body ready to settle under each condition: lattices that share all that does not differ. */
+export function situate<Condition extends Surroundings>(
+  base: Lattice,
+  machine: Machine,
+  world: World<Condition>,
+  conditions: readonly Condition[],
+): Lattice[] {
+  return conditions.map((condition) =>
+    varyLattice(base, {
+      ground: world.groundOf(condition),
+      steepestSlope: world.slopeMost,
+      friction: frictionOf(machine, condition.floorFriction),
+      lagSeconds: condition.lagSeconds,
+    }),
+  )
 }
 
 /** Steps of a whole trial of this body, settling included; the same under every condition. */
-export function stepsOf(genome: CrawlerGenome, body: Body): number {
-  const { stepSeconds } = describeLattice(genome, body, { floorFriction: 0, lagSeconds: 0, debris: [] })
+export function stepsOf(machine: Machine, steepest: GroundSpec): number {
+  const { stepSeconds } = describeMachine(machine, steepest)
   return Math.round((numbers.settleSeconds + numbers.trialSeconds) / stepSeconds)
 }
 
-/** What is counted while the trial runs. */
-export interface Tally {
-  samples: number
-  contacts: number
-  peakTensionN: number
-  /** Mechanical work given to the nodes by the actuators, J, positive part: a bellows that is pushed gives nothing back. */
-  workJ: number
-  puckLowM: number
-  puckHighM: number
-}
-
+/** A trial that came to its end: what was sampled, and where the puck was. */
 export interface Trial {
-  readonly lattice: Lattice
-  readonly body: Body
-  readonly startXM: number
-  readonly stepsPerSample: number
   readonly tally: Tally
+  readonly startXM: number
+  readonly startYM: number
+  readonly endXM: number
 }
 
-/** The settled body, ready to start; or why it could not settle. `divide` makes the step smaller, for checks. */
-export function startTrial(
-  genome: CrawlerGenome,
-  body: Body,
-  condition: CulvertCondition,
+const stepsPerSample = ({ stepSeconds }: Lattice) =>
+  Math.round(frameSeconds / numbers.samplesPerFrame / stepSeconds)
+
+/** One trial for each condition, in order; a fault where the machine broke. */
+export function runTrials<Condition extends Surroundings>(
+  machine: Machine,
+  world: World<Condition>,
+  conditions: readonly Condition[],
   divide = 1,
-): Trial | Fault {
-  const spec = describeLattice(genome, body, condition)
-  const lattice = buildLattice({ ...spec, stepSeconds: spec.stepSeconds / divide })
-  const stepsPerSample = Math.round(frameSeconds / numbers.samplesPerFrame / lattice.stepSeconds)
-  const fault = advance(lattice, lattice.driveStartStep) ?? collapse(lattice, body)
-  if (fault) return fault
-  lattice.dragNspm = 0
-  const startXM = lattice.nodes[body.puckNode * stride]!
-  const y = lattice.nodes[body.puckNode * stride + 1]!
-  const tally = { samples: 0, contacts: 0, peakTensionN: 0, workJ: 0, puckLowM: y, puckHighM: y }
-  return { lattice, body, startXM, stepsPerSample, tally }
+): (Trial | Fault)[] {
+  const results: (Trial | Fault)[] = []
+  const watch = watchOf(machine)
+  const base = baseLattice(machine, world.steepest, divide)
+  for (let first = 0; first < conditions.length; first += lanesMost.double) {
+    const some = conditions.slice(first, first + lanesMost.double)
+    results.push(...runGroup(watch, situate(base, machine, world, some)))
+  }
+  return results
 }
 
-/** One frame (1/25 s) further; the fault that ended the trial, or nothing. */
-export function advanceFrame(trial: Trial): Fault | undefined {
-  for (let i = 0; i < numbers.samplesPerFrame; i++) {
-    const fault = advance(trial.lattice, trial.stepsPerSample)
-    if (fault) return fault
-    sample(trial)
-  }
-  return collapse(trial.lattice, trial.body)
-}
-
-/** How far the puck has come since the start, m. */
-export function distanceM({ lattice, body, startXM }: Trial): number {
-  return lattice.nodes[body.puckNode * stride]! - startXM
-}
-
-function sample({ lattice, body, tally, stepsPerSample }: Trial): void {
-  const { nodes, passiveCount } = lattice
-  tally.samples++
-  for (let column = 0; column < body.columns; column++) {
-    const o = 2 * column * stride
-    if (nodes[o + 1]! < groundHeightM(lattice, nodes[o]!)) tally.contacts++
-  }
-  const seconds = stepsPerSample * lattice.stepSeconds
-  for (let i = 0; i < body.members.length; i++) {
-    const tension = tensionN(lattice, i)
-    tally.peakTensionN = Math.max(tally.peakTensionN, Math.abs(tension))
-    if (i >= passiveCount) tally.workJ += Math.max(0, -tension * lengthRateMps(lattice, i)) * seconds
-  }
-  const y = nodes[body.puckNode * stride + 1]!
-  tally.puckLowM = Math.min(tally.puckLowM, y)
-  tally.puckHighM = Math.max(tally.puckHighM, y)
-}
-
-/** A bay turned inside out, or a strut squeezed or torn beyond what rubber does: the machine is broken. */
-function collapse(lattice: Lattice, body: Body): Fault | undefined {
-  const seconds = lattice.step * lattice.stepSeconds
-  for (let column = 0; column + 1 < body.columns; column++) {
-    const now = bayArea((node, axis) => lattice.nodes[node * stride + axis]!, column)
-    const before = bayArea((node, axis) => body.positionsM[node]![axis]!, column)
-    if (now < numbers.bayAreaLeast * before) return { reason: `bay ${column + 1} collapsed`, seconds }
-  }
-  for (const [i, member] of body.members.entries()) {
-    const ratio = lengthM(lattice, i) / member.lengthM
-    if (ratio < numbers.strutRatioLeast || ratio > numbers.strutRatioMost) {
-      const percent = Math.round(100 * ratio)
-      return {
-        reason: `${member.place} of column ${(member.a >> 1) + 1} is at ${percent} % of its length`,
-        seconds,
-      }
+/** Up to four trials side by side. */
+function runGroup(watch: Watch, lattices: readonly Lattice[]): (Trial | Fault)[] {
+  const { machine } = watch
+  const lanes = packLanes(lattices)
+  const [{ driveStartStep, stepSeconds }] = lattices as readonly [Lattice]
+  const faults: (Fault | undefined)[] = lattices.map(() => undefined)
+  const steps = stepsPerSample(lattices[0]!)
+  advanceLanes(lanes, driveStartStep)
+  noteFaults(watch, lanes, faults)
+  for (const lattice of lattices) lattice.dragNspm = 0
+  const starts = lattices.map((_, i) => [0, 1].map((axis) => puckM(machine, lanes, i, axis as 0 | 1)))
+  for (let frame = 0; frame < framesPerTrial && faults.includes(undefined); frame++) {
+    for (let i = 0; i < numbers.samplesPerFrame; i++) {
+      advanceLanes(lanes, steps)
+      sampleLanes(lanes, steps * stepSeconds)
     }
+    if ((frame + 1) % numbers.framesPerLook === 0) noteFaults(watch, lanes, faults)
   }
-  return undefined
+  return faults.map((fault, i) => {
+    if (fault) return fault
+    const [startXM, startYM] = starts[i] as [number, number]
+    const tally = laneTally(lanes, i)
+    return overstrained(tally, watch) ?? { tally, startXM, startYM, endXM: puckM(machine, lanes, i, 0) }
+  })
 }
 
-/** Signed area of a bay, m^2: half the cross product of its diagonals. */
-function bayArea(coordinate: (node: number, axis: 0 | 1) => number, column: number): number {
-  const lower = 2 * column
-  const upper = lower + 1
-  const risingX = coordinate(upper + 2, 0) - coordinate(lower, 0)
-  const risingY = coordinate(upper + 2, 1) - coordinate(lower, 1)
-  const fallingX = coordinate(upper, 0) - coordinate(lower + 2, 0)
-  const fallingY = coordinate(upper, 1) - coordinate(lower + 2, 1)
-  return (risingX * fallingY - risingY * fallingX) / 2
+function puckM({ puckNode }: Machine, lanes: Lanes, lane: number, axis: 0 | 1): number {
+  return lanePlaceM(lanes, lane, puckNode, axis)
+}
+
+/** The first fault of every lane stays: the kernel's own, or a collapse. */
+function noteFaults(watch: Watch, lanes: Lanes, faults: (Fault | undefined)[]): void {
+  for (let i = 0; i < faults.length; i++) {
+    faults[i] ??= lanes.faults[i] ?? collapse(unpackLane(lanes, i), watch)
+  }
+}
+
+/**
+ * One trial on the reference simulator; `onFrame` sees the settled body and every frame (1/25 s) after it, until a fault.
+ * The same bits as the trial of runTrials().
+ */
+export function followTrial(
+  machine: Machine,
+  lattice: Lattice,
+  onFrame: (lattice: Lattice) => void = () => {},
+): Trial | Fault {
+  const watch = watchOf(machine)
+  const settled = advance(lattice, lattice.driveStartStep) ?? collapse(lattice, watch)
+  if (settled) return settled
+  lattice.dragNspm = 0
+  onFrame(lattice)
+  const at = (axis: number) => lattice.nodes[machine.puckNode * lattice.stride + axis]!
+  const [startXM, startYM] = [at(0), at(1)]
+  const tally = newTally(lattice)
+  const steps = stepsPerSample(lattice)
+  for (let frame = 0; frame < framesPerTrial; frame++) {
+    for (let i = 0; i < numbers.samplesPerFrame; i++) {
+      const fault = advance(lattice, steps)
+      if (fault) return fault
+      takeSample(lattice, tally, steps * lattice.stepSeconds)
+    }
+    const fault = (frame + 1) % numbers.framesPerLook === 0 ? collapse(lattice, watch) : undefined
+    if (fault) return fault
+    onFrame(lattice)
+  }
+  return overstrained(tally, watch) ?? { tally, startXM, startYM, endXM: at(0) }
 }

@@ -1,0 +1,74 @@
+// What is told of a trial as numbers: the objectives and measures of every culvert crawler.
+
+import type { SimulationOutcome } from '../../../shared/problem.js'
+import type { Fault } from '../../lattice/advance.js'
+import type { Machine } from './machine.js'
+import { numbers } from './numbers.js'
+import { runTrials, type Surroundings, stepsOf, type Trial, type World } from './trial.js'
+
+/** Highest value that is kept of the cost of transport: a body that stands still has none. */
+const costMost = 10_000
+
+export const objectives = {
+  distance: { direction: 'maximise', unit: 'm' },
+  material: { direction: 'minimise', unit: 'kg' },
+} as const
+
+/** The largest numbers of bays and actuators belong to the genome. */
+export function measuresUpTo(bays: number, actuators: number) {
+  return {
+    puckTravel: { low: 0, high: 0.2, unit: 'm' },
+    costOfTransport: { low: 0, high: costMost, unit: '1' },
+    contactDuty: { low: 0, high: 1, unit: '1' },
+    peakForce: { low: 0, high: 50, unit: 'N' },
+    bays: { low: 2, high: bays, unit: '1' },
+    actuators: { low: 0, high: actuators, unit: '1' },
+  } as const
+}
+
+const sum = (values: Float64Array) => values.reduce((a, b) => a + b, 0)
+
+function measure(machine: Machine, { tally, startXM, startYM, endXM }: Trial): SimulationOutcome {
+  const { footNodes, puckNode, massKg, members, passiveCount } = machine
+  const distance = endXM - startXM
+  const weightN = massKg * numbers.gravityMps2
+  const cost = distance > 0 ? sum(tally.workJ) / (weightN * distance) : costMost
+  const contacts = footNodes.reduce((count, { node }) => count + tally.contacts[node]!, 0)
+  return {
+    objectives: { distance, material: machine.materialKg },
+    measures: {
+      puckTravel: Math.max(startYM, tally.highestM[puckNode]!) - Math.min(startYM, tally.lowestM[puckNode]!),
+      costOfTransport: Math.min(costMost, cost),
+      contactDuty: contacts / (tally.samples * footNodes.length),
+      peakForce: tally.peakTensionN.reduce((a, b) => Math.max(a, b), 0),
+      bays: machine.bays.length,
+      actuators: members.length - passiveCount,
+    },
+  }
+}
+
+/** The outcome of a trial or of what ended it. */
+export function outcomeOf(machine: Machine, result: Trial | Fault): SimulationOutcome {
+  return 'reason' in result
+    ? { failed: `${result.reason} at ${result.seconds.toFixed(2)} s` }
+    : measure(machine, result)
+}
+
+export function simulateMachine<Condition extends Surroundings>(
+  machine: Machine,
+  world: World<Condition>,
+  situations: readonly { readonly condition: Condition }[],
+  divide = 1,
+): SimulationOutcome[] {
+  const conditions = situations.map(({ condition }) => condition)
+  return runTrials(machine, world, conditions, divide).map((result) => outcomeOf(machine, result))
+}
+
+/** In units of 20,000 strut steps; a node costs about as much as two struts. */
+export function costOf<Condition extends Surroundings>(
+  machine: Machine,
+  { steepest }: World<Condition>,
+): number {
+  const work = (machine.members.length + 2 * machine.positionsM.length) * stepsOf(machine, steepest)
+  return Math.max(1, Math.round(work / 20_000))
+}
