@@ -1,5 +1,5 @@
-// The replay: a block of a few cells between two smooth plates, the upper one going down to the working squeeze. Unlike
-// the measured cell it has edges: its outer walls are whole, and its sides are free.
+// The replay: a block of a few cells between two plates that it sticks to, the upper one going down to the working
+// squeeze. Unlike the measured cell it has edges: its outer walls are whole, and its sides are free.
 
 import type { Frames, Situation as ProblemSituation } from '../../../shared/problem.js'
 import {
@@ -158,19 +158,13 @@ const emptyFrames: Frames = {
 
 function squeezeBlock(
   framework: Framework,
-  { lower, upper, spec }: Block,
+  { lower, upper }: Block,
   heightM: number,
   show: (u: Float64Array, down: number) => void,
 ): void {
   const at = framework.nodeUnknown
-  // On each plate the node nearest to the middle stays where it is along the plate: plates do not slide along each other,
-  // all other nodes slide on them.
-  const middleM = spec.nodes.reduce((sum, [x]) => sum + x, 0) / spec.nodes.length
-  const off = (node: number) => Math.abs(spec.nodes[node]![0] - middleM)
-  const middle = (nodes: readonly number[]) =>
-    nodes.reduce((best, node) => (off(node) < off(best) ? node : best))
-  const plates = [...lower, ...upper].map((node) => at[node]! + 1)
-  const situation = situationOf(framework, [...plates, at[middle(lower)]!, at[middle(upper)]!])
+  const held = [...lower, ...upper].flatMap((node) => [at[node]!, at[node]! + 1])
+  const situation = situationOf(framework, held)
   show(situation.u, 0)
   const moving = Math.round((2 / 3) * numbers.frameCount)
   const increments = new Float64Array(framework.unknownCount)

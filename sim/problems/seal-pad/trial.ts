@@ -1,7 +1,7 @@
 // One trial of one pad as cast: its cell with this casting's deviations, its moduli at small strain, and the cell
 // squeezed to the working strain.
 
-import type { Stream } from '../../../shared/streams.js'
+import { type Stream, stream } from '../../../shared/streams.js'
 import {
   type BarSpec,
   buildFramework,
@@ -59,13 +59,11 @@ export const perfectCasting: CastingCondition = {
   placeOffsetsM: new Float64Array(32),
 }
 
-/** As drawn, but for walls that are a little out of line, one standard deviation to either side in turn: to be squeezed. */
+/** As drawn, but with nodes and walls a little out of line, as every casting has them: to be squeezed. */
 export const asDrawn: CastingCondition = {
-  ...perfectCasting,
-  bowsM: Float64Array.from(
-    { length: slots * images },
-    (_, i) => ((i % 2 ? 1 : -1) * numbers.bowToleranceM) / 2,
-  ),
+  ...drawCasting(stream(1, 'spare')),
+  batch: 0,
+  wallOffsetsM: perfectCasting.wallOffsetsM,
 }
 
 /** What belongs to each wall of this casting in a list by slots and images. */
