@@ -20,6 +20,34 @@ export function clippedLine(points: readonly number[], rectangle: Rectangle): nu
   return pieces
 }
 
+const straightPx = 0.05
+
+/**
+ * A line from left to right without the points that lie on it anyway, to a twentieth of a pixel: level ground needs but
+ * its ends. From the last point kept, `least` and `most` are the slopes that pass every point since.
+ */
+export function withoutStraightPoints(points: readonly number[]): number[] {
+  const kept = points.slice(0, 2)
+  let [least, most] = [-Infinity, Infinity]
+  for (let i = 2; i + 1 < points.length; i += 2) {
+    const [x, y] = [points[i]!, points[i + 1]!]
+    const slope = slopeFrom(kept, x, y)
+    if (i > 2 && !(slope >= least && slope <= most)) {
+      kept.push(points[i - 2]!, points[i - 1]!)
+      ;[least, most] = [-Infinity, Infinity]
+    }
+    least = Math.max(least, slopeFrom(kept, x, y - straightPx))
+    most = Math.min(most, slopeFrom(kept, x, y + straightPx))
+  }
+  return [...kept, ...points.slice(-2)]
+}
+
+/** From the last point of a line; a step is infinitely steep. */
+function slopeFrom(line: readonly number[], x: number, y: number): number {
+  const [dx, dy] = [x - line[line.length - 2]!, y - line[line.length - 1]!]
+  return dx > 0 ? dy / dx : Math.sign(dy) * Infinity
+}
+
 /** The part of a straight piece inside, by the method of Liang and Barsky (1984, from memory); undefined where none is. */
 export function clippedPiece(
   x0: number,

@@ -2,7 +2,7 @@
 // which depth can be read. Walls are always drawn; in 2-D they are hatched on the side where the solid is.
 
 import type { Point } from './boxes.js'
-import { clippedLine, clippedPiece } from './clip.js'
+import { clippedLine, clippedPiece, withoutStraightPoints } from './clip.js'
 import { roundStepUp } from './measure.js'
 import type { Operation } from './operations.js'
 import { dot } from './projection.js'
@@ -16,11 +16,12 @@ export function groundOperations(scene: Scene, view: View): Operation[] {
   const bottom = view.topPx + view.heightPx
   const [left, right] = [view.originRightM, view.originRightM + view.widthPx / view.pxPerM]
   const inside = scene.frames.ground.filter(([x]) => x > left && x < right)
-  const line = [[left, height(left, 0)] as const, ...inside, [right, height(right, 0)] as const].flatMap(
-    ([x, y]) => {
+  const points = [[left, height(left, 0)] as const, ...inside, [right, height(right, 0)] as const]
+  const line = withoutStraightPoints(
+    points.flatMap(([x, y]) => {
       const [px, py] = pxOf(view, x, y, 0)
       return [px, Math.min(bottom, Math.max(view.topPx, py))]
-    },
+    }),
   )
   const edge = [line[line.length - 2]!, bottom, line[0]!, bottom]
   return [
