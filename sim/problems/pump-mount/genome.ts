@@ -34,8 +34,8 @@ export const mountGenome = {
     options: ['none', ...strutClasses.map((row) => row.name)],
   }),
   compound: choice({ length: 1, options: compoundNames }),
-  cellWidth: real({ low: 0.014, high: 0.03, unit: 'm' }),
-  cellHeight: real({ low: 0.014, high: 0.03, unit: 'm' }),
+  cellWidth: real({ low: 0.014, high: 0.026, unit: 'm' }),
+  cellHeight: real({ low: 0.014, high: 0.026, unit: 'm' }),
 } as const
 
 export type MountGenome = GenomeOf<typeof mountGenome>

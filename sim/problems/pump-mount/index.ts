@@ -8,6 +8,7 @@ import { type MountGenome, mountGenome, repairMount } from './genome.js'
 import { type CaseName, caseNames, numbers } from './numbers.js'
 import { describeMount, mountProcess, partsOfMount, useOfMount } from './paper.js'
 import { mountFrames } from './replay.js'
+import { slowestHz } from './statics.js'
 import {
   arriving,
   type Broken,
@@ -28,7 +29,7 @@ function outcome(
   mount: Mount,
   condition: MountCondition,
   name: CaseName,
-  { sagM }: Loaded,
+  { sagM, shaking }: Loaded,
   recording: Recording | Broken,
 ) {
   if ('reason' in recording) return { failed: recording.reason }
@@ -47,6 +48,7 @@ function outcome(
     },
     measures: {
       ratio: Math.min(ratioMost, ratio),
+      slowest: slowestHz(shaking.spec),
       travelShare: worst.share,
       peakForce: peakTensionN.subarray(0, mount.members.length).reduce((a, b) => Math.max(a, b), 0),
       struts: mount.members.length,
@@ -99,6 +101,7 @@ export default defineProblem({
   },
   measures: {
     ratio: { low: 0, high: ratioMost, unit: '1' },
+    slowest: { low: 0, high: 100, unit: 'Hz' },
     travelShare: { low: 0, high: 1, unit: '1' },
     peakForce: { low: 0, high: 200, unit: 'N' },
     struts: { low: 4, high: 47, unit: '1' },

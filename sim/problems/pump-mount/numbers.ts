@@ -34,6 +34,10 @@ export const numbers = {
   // Part of the sensor's mass that sits in its foot.
   footShare: 0.4,
 
+  // A mount must still carry the sensor at this many times its weight: knocks, a hand, a fall of the pump's speed on a
+  // rough bearing. Assumed; without it a search finds mounts that are about to buckle, because they are soft.
+  weightsCarried: 2,
+
   // The mount: moulded struts as thick as their class says and this deep across; bows of strip 10 mm wide.
   depthM: 0.03,
   // A joint: a moulded boss with a steel bush. Assumed.

@@ -6,7 +6,7 @@ import type { LatticeSpec } from '../../lattice/spec.js'
 import { linearModel, part } from '../../measure/linear-model.js'
 import { factorise } from '../../measure/semidefinite.js'
 
-/** Gravity is put on in this many equal parts. */
+/** A load is put on in this many equal parts. */
 const loadSteps = 4
 const roundsMost = 20
 /** Forces left over, as a share of the weight. */
@@ -14,13 +14,49 @@ const leftMost = 1e-12
 
 /** The description at rest: positions moved, rest lengths as they were; or nothing where it gives way. */
 export function atRest(spec: LatticeSpec): LatticeSpec | undefined {
+  return loadedBetween(spec, 0, 1)
+}
+
+/** Whether a mount at rest would still carry `times` the weight. */
+export function carries(rest: LatticeSpec, times: number): boolean {
+  return loadedBetween(rest, 1, times) !== undefined
+}
+
+function loadedBetween(spec: LatticeSpec, from: number, to: number): LatticeSpec | undefined {
   let now = spec
   for (let step = 1; step <= loadSteps; step++) {
-    const settled = balance(now, step / loadSteps)
+    const settled = balance(now, from + ((to - from) * step) / loadSteps)
     if (!settled) return undefined
     now = settled
   }
   return now
+}
+
+/**
+ * Frequency of the slowest mode of a mount at rest, Hz, by inverse iteration (von Mises and Pollaczek-Geiringer, 1929, from
+ * memory): u <- K^-1 M u, and w^2 = u'Ku / u'Mu.
+ */
+export function slowestHz(rest: LatticeSpec): number {
+  const { free, stiffness, size, dimensions, massKg } = linearModel(rest)
+  const solver = factorise(part(stiffness, size, free, free), free.length)
+  const mass = free.map((coordinate) => massKg[Math.floor(coordinate / dimensions)]!)
+  // Leaning to one side, which no mode of a mount is blind to for long.
+  let shape = Float64Array.from(free, (coordinate, i) => (coordinate % dimensions === 0 ? 1 : 1e-3 * (i + 1)))
+  let squared = 0
+  for (let round = 0; round < 20; round++) {
+    const force = shape.map((one, i) => one * mass[i]!)
+    const next = solver.solve(force)
+    // K next = M shape: next'K next = next'M shape.
+    let [above, below] = [0, 0]
+    for (let i = 0; i < next.length; i++) {
+      above += next[i]! * force[i]!
+      below += next[i]! * next[i]! * mass[i]!
+    }
+    squared = above / below
+    const scale = 1 / Math.sqrt(below)
+    shape = next.map((one) => one * scale)
+  }
+  return Math.sqrt(squared) / (2 * Math.PI)
 }
 
 function balance(spec: LatticeSpec, share: number): LatticeSpec | undefined {

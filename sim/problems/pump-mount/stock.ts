@@ -22,14 +22,15 @@ const bow = (thickness: string): StrutClass => ({
   row: stockRow(springStrips, `spring-steel strip 10 x ${thickness} mm`),
 })
 
-/** From soft to stiff: about 2.9, 4.6 and 9.8 kN/m for rubber of 15 mm, 1.7 to 7 kN/m for bows over 15 mm. */
+/** From soft to stiff: 2.9, 4.6 and 9.8 kN/m for rubber over 15 mm; 4.0, 7.0 and 16.6 kN/m for bows over 15 mm. */
 export const strutClasses: readonly StrutClass[] = [
   rubber(20),
   rubber(30),
   rubber(50),
-  bow('0.2'),
+
   bow('0.25'),
   bow('0.3'),
+  bow('0.4'),
 ]
 
 export interface StrutMake {

@@ -10,7 +10,7 @@ import type { Tally } from '../../lattice/tally.js'
 import { toneAt } from '../../measure/tones.js'
 import { crestM, latticeOf, type Mount } from './body.js'
 import { type CaseName, cases, numbers } from './numbers.js'
-import { atRest } from './statics.js'
+import { atRest, carries } from './statics.js'
 
 /** Everything random about one simulation. */
 export interface MountCondition {
@@ -130,6 +130,9 @@ export function load(mount: Mount, condition: MountCondition, divide: number): L
     }),
   )
   if (!spec) return { reason: 'gives way under the sensor' }
+  if (!carries(spec, numbers.weightsCarried)) {
+    return { reason: `gives way under ${numbers.weightsCarried} times the sensor's weight` }
+  }
   const sampleSeconds = 1 / numbers.samplesPerSecond
   const stepSeconds = chooseStep(stepBound(spec), sampleSeconds, stepMostSeconds, 1) / divide
   const shaking: Shaking = {
