@@ -4,6 +4,7 @@ import { cpus, tmpdir } from 'node:os'
 import { type ContestSeed, contestMeasures } from './contest.js'
 import type { CpuPart } from './crawler.js'
 import { runDemo } from './demo.js'
+import { kernelMeasures } from './kernel/figure.js'
 import type { Measure } from './measure.js'
 import { slope } from './statistics.js'
 import { runTask } from './tasks.js'
@@ -188,6 +189,15 @@ export const figures: readonly Figure[] = [
       }
       return contestMeasures(seeds)
     },
+  },
+  {
+    name: 'kernel',
+    what: 'the lattice kernel, the TypeScript reference and plain C in turn; ratios per replicate',
+    rounds: { full: 3, quick: 1 },
+    takes: 'median',
+    // Ratios within a round, measured again where they are spread widely.
+    dependsOnTime: false,
+    run: ({ quick, folder, say }) => kernelMeasures(folder, quick, say),
   },
 ]
 

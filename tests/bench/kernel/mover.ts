@@ -7,6 +7,7 @@ import { advanceLanes, lanesMost, packLanes, unpackLane } from '../../../sim/lat
 import type { Lattice } from '../../../sim/lattice/layout.js'
 import { benchReplicates } from './bodies.js'
 
+/** double-alone: one replicate, in the module of one lane. */
 export type MoverKind = 'reference' | 'double' | 'double-alone' | 'single'
 
 /** How many replicates a process of this kind moves at a time. */
@@ -16,7 +17,7 @@ export function replicatesOf(kind: MoverKind): number {
 }
 
 /** Serves lines until the other side closes. */
-export function serveMover(kind: MoverKind, dimensions: 2 | 3): void {
+function serveMover(kind: MoverKind, dimensions: 2 | 3): void {
   const lattices = benchReplicates(dimensions, replicatesOf(kind))
   const move = moverOf(kind, lattices)
   const lines = createInterface({ input: process.stdin })
@@ -48,4 +49,9 @@ function moverOf(kind: MoverKind, lattices: readonly Lattice[]) {
     run: (steps: number) => advanceLanes(lanes, steps),
     state: () => places(lattices.map((_, i) => unpackLane(lanes, i))),
   }
+}
+
+const [, , kind, dimensions] = process.argv
+if (kind !== undefined && dimensions !== undefined) {
+  serveMover(kind as MoverKind, dimensions === '3' ? 3 : 2)
 }
