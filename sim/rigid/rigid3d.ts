@@ -1,5 +1,5 @@
 // Rigid bodies in space: builds a checked description with the library's 3-D build. Importing this file makes its
-// WebAssembly ready (top-level await); a bundle that imports it carries the library, about 4.4 MB, and nothing of 2-D.
+// WebAssembly ready (top-level await); a bundle that imports it carries the library, about 4.5 MB, and nothing of 2-D.
 //
 // Known weakness: free rotation. Figures: README.md of this folder. Do not judge tumbling or spinning bodies by it.
 

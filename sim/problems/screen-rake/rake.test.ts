@@ -39,10 +39,10 @@ const found: RakeGenome = {
   rockerPin: Float64Array.of(0.277),
   rockerPinAngle: Float64Array.of(-39.662),
 }
-/** The same that keeps its first pose. */
+/** The same, stretched out over the water and told to stay so. */
 const still: RakeGenome = {
   ...found,
-  poses: Float64Array.from(found.poses, (_, i) => found.poses[i - (i % 6)]!),
+  poses: Float64Array.from(found.poses, (_, i) => (i < 6 ? 0 : 0.5)),
 }
 
 function figures(genome: RakeGenome, condition: IntakeCondition, divide = 1) {
@@ -79,11 +79,15 @@ describe('repair', () => {
   })
 
   test('a machine that begins inside the deck is a failed simulation that says so', () => {
-    const inside = { ...still, baseX: Float64Array.of(0.3), baseY: Float64Array.of(1.4) }
-    const poses = Float64Array.from(inside.poses)
-    poses.fill(0.6, 0, 6)
-    poses.fill(0.5, 6, 12)
-    const [outcome] = problem.simulate({ ...inside, poses }, [{ condition: conditionOf(0), case: '' }])
+    const poses = Float64Array.from(still.poses, (share, i) => (i < 6 ? 0.6 : share))
+    const inside = {
+      ...still,
+      layout: Int32Array.of(0),
+      baseX: Float64Array.of(0.3),
+      baseY: Float64Array.of(1.4),
+      poses,
+    }
+    const [outcome] = problem.simulate(inside, [{ condition: conditionOf(0), case: '' }])
     expect(outcome).toEqual({ failed: expect.stringMatching(/begins inside screen or deck at 0.00 s/) })
   })
 })
