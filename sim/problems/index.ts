@@ -25,6 +25,10 @@ export const builtInProblems: { readonly [name: string]: BuiltInProblem } = Obje
     'A lattice of rubber and spring steel carries a sensor on a pump and keeps the pump’s shaking from it.',
   ),
   row(
+    'culvert-crawler-3d',
+    'A soft truss of three chains crawls along the round bottom of a pipe, carrying a sensor puck.',
+  ),
+  row(
     'ramp-walker',
     'A passive walker on two straight legs is let go on the ramp of a drained channel and walks down it.',
   ),

@@ -64,9 +64,9 @@ function bayArea(nodes: Float64Array, stride: number, bays: Int32Array, at: numb
  */
 function bayVolume(nodes: Float64Array, stride: number, bays: Int32Array, at: number): number {
   return (
-    tetrahedron(nodes, stride, bays, at, at + 1, at + 2, at + 3) +
-    tetrahedron(nodes, stride, bays, at + 1, at + 2, at + 3, at + 4) +
-    tetrahedron(nodes, stride, bays, at + 2, at + 4, at + 3, at + 5)
+    tetrahedron(nodes, stride, bays, at + 1, at, at + 2, at + 5) +
+    tetrahedron(nodes, stride, bays, at + 1, at, at + 5, at + 3) +
+    tetrahedron(nodes, stride, bays, at + 1, at + 3, at + 5, at + 4)
   )
 }
 
