@@ -137,6 +137,12 @@ export function equilibrate(situation: Situation, increments?: Float64Array): Ba
   return fail('no equilibrium found')
 }
 
+/** Unstable directions of the present state among the unknowns that are not held; infinite where stiffness is lost. */
+export function unstableDirections(situation: Situation): number {
+  const { negative, lost } = correct(situation)
+  return lost >= 0 ? Number.POSITIVE_INFINITY : negative
+}
+
 /** Forces that the bars exert on the unknowns at the present state: reactions where they are held (N, N m). */
 export function forcesOf({ framework, u }: Situation): Float64Array {
   const forces = new Float64Array(framework.unknownCount)

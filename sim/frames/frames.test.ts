@@ -270,6 +270,28 @@ describe('homogenisation and squeezing', () => {
     // Sway of a wall between turning-stiff joints at pi^2 EI / L^2 at most: strain 1e-3.
     expect(-end.along).toBeLessThan(0.0051)
   })
+
+  test('between plates that hold the mean shear, leaning is still seen', () => {
+    // An upright wall between soft crossbars: the cell has next to no stiffness against shear, and leans before it bows.
+    const spec: FrameworkSpec = {
+      nodes: [[0, 0]],
+      periods: [
+        [1, 0],
+        [0, 1],
+      ],
+      bars: [
+        { a: 0, b: 0, shift: [0, 1], axialN: 1, bendingNm2: 1e-3 },
+        { a: 0, b: 0, shift: [1, 0], axialN: 1, bendingNm2: 1e-5 },
+      ],
+    }
+    const options = { axis: 1, strain: -0.02, steps: 40, holdShear: true } as const
+    const watched = squeeze(buildFramework(spec), { ...options, stableOnly: true })
+    expect(watched).toMatchObject({ reason: 'rows of cells lean over' })
+    // It leans when the thrust 1 e reaches the shear stiffness of the welded cross, 12 EI EI' / (EI + EI') at most.
+    expect(-watched.along).toBeLessThan(1.3e-4 + 0.02 / 40)
+    const held = squeeze(buildFramework(spec), options)
+    expect(held).toMatchObject({ unstable: 0 })
+  })
 })
 
 describe('matrices', () => {

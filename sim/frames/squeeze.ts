@@ -10,6 +10,7 @@ import {
   type NoBalance,
   type Situation,
   situationOf,
+  unstableDirections,
 } from './equilibrium.js'
 
 export interface Squeezed {
@@ -37,7 +38,10 @@ export interface SqueezeOptions {
   readonly steps: number
   /** Mean shear stays 0, as between plates that do not slide; free otherwise. */
   readonly holdShear?: boolean
-  /** Goes through stable states only, or ends with a fault. */
+  /**
+   * Goes through stable states only, or ends with a fault. Held shear counts as free here: rows of cells may lean over
+   * in turn, to the left and to the right, although the plates stay.
+   */
   readonly stableOnly?: boolean
   /** Called after every step. */
   readonly each?: (state: Squeezed) => void
@@ -48,12 +52,14 @@ const halvingsMost = 4
 /** Squeezes from rest. The framework must be periodic. */
 export function squeeze(
   framework: Framework,
-  { axis, strain, steps, stableOnly = false, holdShear = false, each }: SqueezeOptions,
+  { axis, strain, steps, holdShear = false, stableOnly = false, each }: SqueezeOptions,
 ): Squeezed | SqueezeFault {
   const m = framework.meanStrain
   const held = m + axis
   const first = framework.nodeUnknown[0]!
-  const situation = situationOf(framework, [first, first + 1, held, ...(holdShear ? [m + 2] : [])])
+  const heldAlways = [first, first + 1, held]
+  const situation = situationOf(framework, holdShear ? [...heldAlways, m + 2] : heldAlways)
+  const leaning = { ...situationOf(framework, heldAlways), u: situation.u }
   const increments = new Float64Array(framework.unknownCount)
   let unstable = 0
   const read = (): Squeezed => ({
@@ -68,6 +74,9 @@ export function squeeze(
     const balance = moveTo(situation, increments, held, (strain * step) / steps, stableOnly)
     if ('reason' in balance) return { reason: balance.reason, along: situation.u[held]! }
     unstable = Math.max(unstable, balance.unstable)
+    if (holdShear && stableOnly && unstableDirections(leaning) > 0) {
+      return { reason: 'rows of cells lean over', along: situation.u[held]! }
+    }
     each?.(read())
   }
   return read()

@@ -178,7 +178,7 @@ describe('a trial', () => {
         }
       }
     }
-    expect(passed).toBeGreaterThan(8)
+    expect(passed).toBeGreaterThan(5)
   })
 
   test('walls that hold together one way only are a failure that says so', () => {
