@@ -1,6 +1,7 @@
 // The ground and what stands on it: a filled outline in 2-D; in 3-D a grid of round step with the machine's shadow, from
 // which depth can be read. Walls are always drawn; in 2-D they are hatched on the side where the solid is.
 
+import type { Frames } from '../frames.js'
 import type { Point } from './boxes.js'
 import { clippedLine, clippedPiece, withoutStraightPoints } from './clip.js'
 import { roundStepUp } from './measure.js'
@@ -51,16 +52,23 @@ export function gridOperations(scene: Scene, view: View): Operation[] {
     }
     lines.push(...clippedLine(line, view))
   }
-  const [countX, countZ] = [Math.round((highX - lowX) / step), Math.round((highZ - lowZ) / step)]
-  for (let k = 0; k <= countZ; k++)
-    add(countX * samples, (i) => [lowX + (i * step) / samples, lowZ + k * step])
-  for (let i = 0; i <= countX; i++)
-    add(countZ * samples, (k) => [lowX + i * step, lowZ + (k * step) / samples])
+  const [pointsX, pointsZ] = [highX - lowX, highZ - lowZ].map((long) => Math.ceil((samples * long) / step))
+  for (const z of crossings(lowZ, highZ, step))
+    add(pointsX!, (i) => [lowX + ((highX - lowX) * i) / pointsX!, z])
+  for (const x of crossings(lowX, highX, step))
+    add(pointsZ!, (k) => [x, lowZ + ((highZ - lowZ) * k) / pointsZ!])
   return [{ shape: 'lines', role: 'ground', lines, stroke: 'grid', widthPx: view.unit }]
 }
 
+/** Both ends and the whole steps between them. */
+function crossings(low: number, high: number, step: number): number[] {
+  const first = Math.ceil(low / step + 1e-6)
+  const count = Math.max(0, Math.floor(high / step - 1e-6) - first + 1)
+  return [low, ...Array.from({ length: count }, (_, i) => (first + i) * step), high]
+}
+
 /** Whole steps around what the view shows of the ground, and around the machine's way across. */
-function gridEdges({ wayBox }: Scene, view: View, step: number) {
+function gridEdges({ wayBox, frames }: Scene, view: View, step: number) {
   const middleRight = view.originRightM + view.widthPx / view.pxPerM / 2
   // The view's middle on the ground: go along the way until it lies there.
   const { right } = view.axes
@@ -75,11 +83,23 @@ function gridEdges({ wayBox }: Scene, view: View, step: number) {
   ]
   const down = (value: number) => Math.floor(value / step) * step
   const up = (value: number) => Math.ceil(value / step) * step
+  const [mostX, mostZ] = groundEnds(frames)
   return [
-    down(Math.min(lowX, highX)),
-    up(Math.max(lowX, highX)),
-    down(wayBox.low[2] - sideM),
-    up(wayBox.high[2] + sideM),
+    Math.max(mostX[0], down(Math.min(lowX, highX))),
+    Math.min(mostX[1], up(Math.max(lowX, highX))),
+    Math.max(mostZ[0], down(wayBox.low[2] - sideM)),
+    Math.min(mostZ[1], up(wayBox.high[2] + sideM)),
+  ] as const
+}
+
+/** Where the ground is known, along and across: beyond a grid it only goes on level. */
+function groundEnds({ groundGrid }: Frames) {
+  if (groundGrid === undefined)
+    return [[-Infinity, Infinity] as const, [-Infinity, Infinity] as const] as const
+  const { firstXM, firstZM, spacingXM, spacingZM, countX, countZ } = groundGrid
+  return [
+    [firstXM, firstXM + spacingXM * (countX - 1)] as const,
+    [firstZM, firstZM + spacingZM * (countZ - 1)] as const,
   ] as const
 }
 

@@ -19,7 +19,7 @@ import { sideCamera } from './projection.js'
 import { sceneOf } from './scene.js'
 import { drawStage, stageInsets, stageView } from './stage.js'
 import { light } from './style.js'
-import { fitBox, followBox, pxOf, type Rectangle } from './view.js'
+import { fitBox, followBox, nearness, pxOf, type Rectangle } from './view.js'
 
 const machines: readonly (readonly [string, Frames])[] = [
   ['a flat truss', trussFrames({ bays: 6, chains: 1, frames: 60 })],
@@ -307,27 +307,36 @@ describe('the turntable', () => {
   const frames = machines[1]![1]
   const scene = sceneOf(frames)
   const player = startPlayer(scene, true)
-  it('paints what is nearer later', () => {
-    const drawn = drawStage(scene, player, stage, 1)
-    const view = stageView(scene, player, stage, 1)
-    const depths = new Map<string, number>()
-    for (let node = 0; node < scene.nodeCount; node++) {
-      const [x, y, z] = frames.positions[0]!.subarray(3 * node, 3 * node + 3)
-      const at = pxOf(view, x!, y!, z!)
-      depths.set(
-        at.map((v) => v.toFixed(6)).join(),
-        view.axes.near[0] * x! + view.axes.near[1] * y! + view.axes.near[2] * z!,
-      )
+  const view = stageView(scene, player, stage, 1)
+  const places = Array.from({ length: scene.nodeCount }, (_, node) => {
+    const [x, y, z] = frames.positions[0]!.subarray(3 * node, 3 * node + 3)
+    return { px: pxOf(view, x!, y!, z!), near: nearness(view, x!, y!, z!) }
+  })
+  const nodeAt = (x: number, y: number) =>
+    places.findIndex(({ px }) => Math.abs(px[0] - x) + Math.abs(px[1] - y) < 1e-6)
+  it('paints nearer struts later, but for a slice, and every node after the struts that end in it', () => {
+    const nears = places.map(({ near }) => near)
+    // Fourteen slices make the depth of the machine.
+    const sliceM = (Math.max(...nears) - Math.min(...nears)) / 14
+    const painted = new Set<number>()
+    let [farthest, struts] = [-Infinity, 0]
+    for (const operation of drawStage(scene, player, stage, 1)) {
+      if (operation.shape === 'discs' && operation.role === 'node')
+        for (let i = 0; i < operation.discs.length; i += 3)
+          painted.add(nodeAt(operation.discs[i]!, operation.discs[i + 1]!))
+      if (operation.shape !== 'lines' || (operation.role !== 'strut' && operation.role !== 'actuator'))
+        continue
+      for (const [x0, y0, x1, y1] of operation.lines) {
+        const ends = [nodeAt(x0!, y0!), nodeAt(x1!, y1!)]
+        for (const end of ends) expect(painted.has(end)).toBe(false)
+        const near = (nears[ends[0]!]! + nears[ends[1]!]!) / 2
+        expect(near).toBeGreaterThan(farthest - 1.001 * sliceM)
+        farthest = Math.max(farthest, near)
+        struts++
+      }
     }
-    const order = discsOf(drawn, 'node').map(({ discs }) => {
-      const own: number[] = []
-      for (let i = 0; i < discs.length; i += 3)
-        own.push(depths.get([discs[i]!, discs[i + 1]!].map((v) => v.toFixed(6)).join())!)
-      return own
-    })
-    expect(order.length).toBeGreaterThan(3)
-    for (let i = 1; i < order.length; i++)
-      expect(Math.min(...order[i]!)).toBeGreaterThanOrEqual(Math.max(...order[i - 1]!) - 1e-9)
+    expect(struts).toBe(frames.links.length)
+    expect(painted.size).toBe(scene.nodeCount)
   })
   it('shows plain views from the side, the front and above', () => {
     const see = (turnRad: number, tiltRad: number, point: readonly [number, number, number]) => {

@@ -265,15 +265,19 @@ function sliced(drawing: Drawing): Slice[] {
     nodes: [],
     pieces: [],
   }))
-  const sliceOf = (near: number) => made[Math.min(slices - 1, Math.floor((near - least) * perM))]!
+  const sliceOf = (near: number) => Math.min(slices - 1, Math.floor((near - least) * perM))
+  // A node comes after every strut that ends in it, or they would be painted over it.
+  const nodeSlices = Array.from({ length: scene.nodeCount }, (_, node) => sliceOf(nodes[3 * node + 2]!))
   for (const [kind, { links }] of scene.kinds.entries()) {
     for (const [place, link] of links.entries()) {
       const { a, b } = scene.frames.links[link]!
-      sliceOf((nodes[3 * a + 2]! + nodes[3 * b + 2]!) / 2).links[kind]!.push(place)
+      const slice = sliceOf((nodes[3 * a + 2]! + nodes[3 * b + 2]!) / 2)
+      made[slice]!.links[kind]!.push(place)
+      for (const node of [a, b]) nodeSlices[node] = Math.max(nodeSlices[node]!, slice)
     }
   }
-  for (let node = 0; node < scene.nodeCount; node++) sliceOf(nodes[3 * node + 2]!).nodes.push(node)
-  for (const piece of pieces) sliceOf(piece.nearnessM).pieces.push(piece)
+  for (const [node, slice] of nodeSlices.entries()) made[slice]!.nodes.push(node)
+  for (const piece of pieces) made[sliceOf(piece.nearnessM)]!.pieces.push(piece)
   return made
 }
 
