@@ -24,7 +24,8 @@ export function watchOf(machine: Machine): Watch {
   const { dimensions, positionsM, bays, members } = machine
   const places = Float64Array.from(positionsM.flat())
   const bayNodes = Int32Array.from(bays.flat())
-  const bound = (ratio: number) => Float64Array.from(members, ({ lengthM }) => (ratio * lengthM) ** 2)
+  const bound = (ratio: number) =>
+    Float64Array.from(members, ({ lengthM }) => ratio * lengthM * (ratio * lengthM))
   return {
     machine,
     bayNodes,
