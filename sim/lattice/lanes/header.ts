@@ -37,6 +37,8 @@ export const prescribedFirst = 1100
 export const prescribedEnd = 1104
 /** One word a lane: address of its heights. */
 export const rowsFirst = 1108
+/** 1 where there is a ground in some lane. */
+export const hasGround = 1112
 /** 1 where the exponent of contact is 1.5. */
 export const rooted = 1116
 /** Steps since the drive began; below 0 before it. */

@@ -42,6 +42,8 @@ function writeHead(pen: Pen): void {
   }
   putWord(pen, header.nodeTable, places.nodeTable.first)
   putWord(pen, header.rowsFirst, places.rows.first)
+  const grounded = lanes.some(({ terrain }) => terrain[2]! !== Number.NEGATIVE_INFINITY)
+  putWord(pen, header.hasGround, grounded ? 1 : 0)
   putWord(pen, header.rooted, lattice.contact[2]! !== 0 ? 1 : 0)
   putWord(pen, header.rampSteps, lattice.rampSteps)
   putWord(pen, header.freshAt, -1)
@@ -79,8 +81,8 @@ function writeNodeTable(pen: Pen): void {
     const words = row + sizes.heading
     putWord(pen, words, ahead < 0 ? 0 : nodeAt(pen, ahead))
     putWord(pen, words + 4, sensorCount > 0 ? places.touching.first + i * variant.wide : 0)
-    putWord(pen, words + 8, held ? 1 : 0)
-    putWord(pen, words + 12, held || sensorCount > 0 ? 1 : 0)
+    putWord(pen, words + 8, held ? 2 : sensorCount > 0 ? 1 : 0)
+    putWord(pen, words + 12, 0)
   }
 }
 

@@ -37,7 +37,7 @@ const round16 = (bytes: number) => Math.ceil(bytes / 16) * 16
 export function recordsOf({ dimensions, own, wide, materialBytes }: Variant) {
   const first = own ? 16 : 8
   const friction = round16(materialBytes)
-  const heading = friction + dimensions * wide
+  const heading = friction + 2 * dimensions * wide
   const activeStrain = 4 * materialBytes + 16
   const guidedStrain = round16(32 + 5 * materialBytes)
   return {

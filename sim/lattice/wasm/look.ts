@@ -3,7 +3,7 @@
 
 import { depthLimitAt, depthLimited, nodesEnd, nodesFirst, nodeTable, topAt } from '../lanes/header'
 import { depthOf } from './ground'
-import { heldAt, nodeBytes, nodeRowBytes, number, wide, word, y } from './record'
+import { isHeld, nodeBytes, nodeRowBytes, number, specialAt, wide, word, y } from './record'
 import { dimensions, vectors } from './variant'
 import {
   add, anyOf, bitsOf, differ, either, less, read, sub, Vec, vectorBytes, vectorLanes,
@@ -27,7 +27,7 @@ function sunk(lane: usize): u32 {
   let row = word(nodeTable)
   let found: u32 = 0
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    if (word(row + heldAt) == 0 && anyOf(less(read(o, y + lane), number(topAt, lane)))) {
+    if ((word(row + specialAt) & isHeld) == 0 && anyOf(less(read(o, y + lane), number(topAt, lane)))) {
       found |= bitsOf(less(number(depthLimitAt, lane), depthOf(o, lane)))
     }
     row += nodeRowBytes

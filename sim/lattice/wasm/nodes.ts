@@ -2,14 +2,14 @@
 // space-nodes.ts. The loop holds the free step; whatever is more than that (held, felt by a sensor, lower than the highest
 // ground in some lane) goes to special(), where lanes without contact get the results of the free step, bit for bit.
 
-import { dragAt, gravityAt, nodesEnd, nodesFirst, nodeTable, stepAt, topAt } from '../lanes/header'
+import { dragAt, gravityAt, nodesEnd, nodesFirst, nodeTable, stepAt } from '../lanes/header'
 import { touchPlane } from './plane-touch'
 import {
-  fx, fy, fz, heldAt, material, nodeBytes, nodeRowBytes, number, specialAt, touchingAt, vx, wide, word, x, y,
+  fx, fy, fz, isHeld, lowAt, material, nodeBytes, nodeRowBytes, number, specialAt, touchingAt, vx, wide, word, x,
 } from './record'
 import { touchSpace } from './space-touch'
 import { dimensions, vectors } from './variant'
-import { add, anyOf, either, less, mul, read, sub, Vec, vectorBytes, write } from './vector'
+import { add, mul, read, sub, Vec, vectorBytes, write } from './vector'
 
 /** v += h (f / m + g), x += h v of one component, f without the drag of the node. */
 @inline function component(o: usize, c: usize, lane: usize, h: Vec, drag: Vec, perKg: Vec, zero: Vec): void {
@@ -38,9 +38,9 @@ import { add, anyOf, either, less, mul, read, sub, Vec, vectorBytes, write } fro
   if (dimensions == 3) write(o, fz + lane, zero)
 }
 
-/** The step of one vector of a node that moves. */
-@inline function move(o: usize, row: usize, touching: usize, lane: usize, h: Vec, zero: Vec): void {
-  if (anyOf(less(read(o, y + lane), number(topAt, lane)))) {
+/** The step of one vector of a node that moves and is low or watched by a sensor. */
+@inline function move(o: usize, row: usize, touching: usize, low: bool, lane: usize, h: Vec, zero: Vec): void {
+  if (low) {
     if (dimensions == 3) touchSpace(o + lane, row, touching, lane)
     else touchPlane(o + lane, row, touching, lane)
   } else {
@@ -52,28 +52,24 @@ import { add, anyOf, either, less, mul, read, sub, Vec, vectorBytes, write } fro
 export function special(o: usize, row: usize): void {
   const h = number(stepAt, 0)
   const zero = sub(h, h)
-  if (word(row + heldAt) != 0) {
+  if (word(row + specialAt) & isHeld) {
     clearForces(o, 0, zero)
     if (vectors > 1) clearForces(o, vectorBytes, zero)
     return
   }
+  const low = word(row + lowAt) != 0
   const touching = word(row + touchingAt)
-  move(o, row, touching, 0, h, zero)
-  if (vectors > 1) move(o, row, touching, vectorBytes, h, zero)
+  move(o, row, touching, low, 0, h, zero)
+  if (vectors > 1) move(o, row, touching, low, vectorBytes, h, zero)
 }
 
-@inline function isLow(o: usize): bool {
-  const first = less(read(o, y), number(topAt, 0))
-  if (vectors > 1) return anyOf(either(first, less(read(o, y + vectorBytes), number(topAt, vectorBytes))))
-  return anyOf(first)
-}
-
-/** One step for every node by index; forces are 0 afterwards. */
+/** One step for every node by index, feelGround() having marked the low ones; forces are 0 afterwards. */
 export function integrate(): void {
   const end = word(nodesEnd)
   let row = word(nodeTable)
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    if (isLow(o) || word(row + specialAt) != 0) {
+    // Both words at once: special and low.
+    if (load<u64>(row + specialAt) != 0) {
       special(o, row)
     } else {
       const h = number(stepAt, 0)

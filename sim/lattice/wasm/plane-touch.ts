@@ -1,16 +1,9 @@
 // The step of a node in the plane that is lower than the highest ground in some lane (../reference/plane-nodes.ts).
-// `o` is the node's record plus `lane`, the offset of the vector in hand.
+// `o` is the node's record plus `lane`, the offset of the vector in hand; feelGround() has measured depth and slope.
 
-import {
-  contactDampingAt, contactStiffnessAt, dragAt, firstXAt, gravityAt, lastColumnAt, lowColumnAt, oneAt,
-  perSpacingXAt, rooted, rowsFirst, stepAt, tinyAt, topAt,
-} from '../lanes/header'
-import { cellOf } from './ground'
-import { frictionAt, fx, fy, material, number, vx, vy, wide, word, x, y } from './record'
-import {
-  add, anyOf, atMost, both, choose, div, gather, less, mul, numberBytes, only, read, sqrt, sub, Vec,
-  write,
-} from './vector'
+import { contactDampingAt, contactStiffnessAt, dragAt, gravityAt, oneAt, rooted, stepAt, tinyAt } from '../lanes/header'
+import { depthAt, frictionAt, fx, fy, material, number, slopeXAt, vx, vy, wide, word, x, y } from './record'
+import { add, anyOf, atMost, both, choose, div, less, mul, only, read, sqrt, sub, Vec, write } from './vector'
 
 /** v + h (f / m + g) */
 @inline function driven(v: Vec, h: Vec, force: Vec, perKg: Vec, gravity: Vec): Vec {
@@ -18,25 +11,16 @@ import {
 }
 
 export function touchPlane(o: usize, row: usize, touching: usize, lane: usize): void {
-  const perSpacing = number(perSpacingXAt, lane)
-  const along = mul(sub(read(o, x), number(firstXAt, lane)), perSpacing)
-  const low = number(lowColumnAt, lane)
-  const last = number(lastColumnAt, lane)
-  const cell = cellOf(along, low, last)
-  const rows = word(rowsFirst) + (lane / numberBytes) * 4
-  const left = gather(rows, cell, 0)
-  const rise = sub(gather(rows, cell, numberBytes), left)
-  const slope = mul(rise, perSpacing)
-  const depth = sub(add(left, mul(rise, sub(along, cell))), read(o, y))
-  const power = word(rooted) != 0 ? mul(depth, sqrt(depth)) : depth
-  const vx0 = read(o, vx)
-  const vy0 = read(o, vy)
-  const rate = sub(mul(slope, vx0), vy0)
-  const f = mul(power, add(number(contactStiffnessAt, lane), mul(number(contactDampingAt, lane), rate)))
   const h = number(stepAt, lane)
   const zero = sub(h, h)
-  const below = less(read(o, y), number(topAt, lane))
-  const pushed = both(both(below, less(zero, depth)), less(zero, f))
+  const depth = read(row + lane, depthAt)
+  const slope = read(row + lane, slopeXAt)
+  const vx0 = read(o, vx)
+  const vy0 = read(o, vy)
+  const power = word(rooted) != 0 ? mul(depth, sqrt(depth)) : depth
+  const rate = sub(mul(slope, vx0), vy0)
+  const f = mul(power, add(number(contactStiffnessAt, lane), mul(number(contactDampingAt, lane), rate)))
+  const pushed = both(less(zero, depth), less(zero, f))
   const perKg = material(row, 0, 0, lane)
   const drag = number(dragAt, lane)
   let forceX = sub(read(o, fx), mul(drag, vx0))

@@ -22,14 +22,20 @@ export const nodeBytes: usize = 3 * dimensions * wide
 
 export const materialBytes: usize = own ? wide : numberBytes
 
-// Row of the node table: inverse mass | friction (2 numbers in 2-D, 3 in 3-D) | words: heading (the other node's record
-// or 0), where to tell whether it touches the ground (or 0), 1 when it is held, 1 when the free step is not all.
+// Row of the node table: inverse mass | friction (2 numbers in 2-D, 3 in 3-D) | what feelGround() finds: depth, slopes
+// along x and z | words: heading (the other node's record or 0), where to tell whether it touches the ground (or 0), what
+// is more than the free step (2 held, 1 a sensor asks), 1 when it is lower than the highest ground in some lane.
 export const frictionAt: usize = (materialBytes + 15) & ~15
-export const headingAt: usize = frictionAt + (dimensions == 3 ? 3 * wide : 2 * wide)
+export const depthAt: usize = frictionAt + dimensions * wide
+export const slopeXAt: usize = depthAt + wide
+export const slopeZAt: usize = depthAt + 2 * wide
+export const headingAt: usize = depthAt + dimensions * wide
 export const touchingAt: usize = headingAt + 4
-export const heldAt: usize = headingAt + 8
-export const specialAt: usize = headingAt + 12
+export const specialAt: usize = headingAt + 8
+export const lowAt: usize = headingAt + 12
 export const nodeRowBytes: usize = headingAt + 16
+/** In specialAt. */
+export const isHeld: usize = 2
 
 // Passive strut: stiffness, stiffness * rest, damping | ends (2 words). (Offset 0 is the cheapest for a splat load.)
 export const passiveEnds: usize = 3 * materialBytes
