@@ -14,20 +14,31 @@ import { rakeFrames } from './replay.js'
 import { drawIntake, type IntakeCondition } from './screen.js'
 import { runTrial } from './trial.js'
 
+/** Highest value that is kept of the work per mass, J/kg, and the mass below which a machine has cleared nothing. */
+const perKgMost = 10_000
+const kgLeast = 0.05
+
+/** A machine that stands still needs no energy and has cleared nothing: it gets the highest value, not 0. */
+function energyPerKg(energyJ: number, clearedKg: number): number {
+  return clearedKg < kgLeast ? perKgMost : Math.min(perKgMost, energyJ / clearedKg)
+}
+
 function simulateOne(genome: RakeGenome, { condition }: Situation<IntakeCondition>, divide = 1) {
   const result = runTrial(genome, condition, divide)
   if ('reason' in result) return { failed: `${result.reason} at ${result.seconds.toFixed(2)} s` }
-  const { overLip, raised, energyJ, peakTorqueNm, clearedKg, machineKg, motors } = result
+  const { overLip, raised, energyJ, peakTorqueNm, clearedKg, raisedKg, machineKg, motors } = result
+  const share = numbers.raisedCounts
   const { stroke, power, duty } = worstFigures(motors)
   return {
     objectives: {
-      cleared: (1 - numbers.raisedCounts) * overLip + numbers.raisedCounts * raised,
-      energy: energyJ,
+      cleared: (1 - share) * overLip + share * raised,
+      energy: energyPerKg(energyJ, (1 - share) * clearedKg + share * raisedKg),
       peakTorque: peakTorqueNm,
     },
     measures: {
       overLip,
       raised,
+      work: energyJ,
       clearedMass: clearedKg,
       machineMass: machineKg,
       motors: motors.length,
@@ -48,12 +59,13 @@ export default defineProblem({
   genome: rakeGenome,
   objectives: {
     cleared: { direction: 'maximise', unit: '1' },
-    energy: { direction: 'minimise', unit: 'J' },
+    energy: { direction: 'minimise', unit: 'J/kg' },
     peakTorque: { direction: 'minimise', unit: 'N m' },
   },
   measures: {
     overLip: { low: 0, high: 1, unit: '1' },
     raised: { low: 0, high: 1, unit: '1' },
+    work: { low: 0, high: 2000, unit: 'J' },
     clearedMass: { low: 0, high: 40, unit: 'kg' },
     machineMass: { low: 0, high: 15, unit: 'kg' },
     motors: { low: 1, high: 3, unit: '1' },

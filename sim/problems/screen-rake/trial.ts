@@ -35,6 +35,8 @@ export interface RakeFigures {
   /** Largest torque of any geared motor, before its chain stage, N m. */
   readonly peakTorqueNm: number
   readonly clearedKg: number
+  /** `raised` in kilograms. */
+  readonly raisedKg: number
   readonly machineKg: number
   readonly motors: readonly ActuatorFigures[]
 }
@@ -216,6 +218,7 @@ function figuresOf({ world, machine, condition, firstPiece, startM, highestM, ta
     energyJ: drives.reduce((sum, drive) => sum + drive.workGivenJ, 0),
     peakTorqueNm: motors.reduce((most, { peakForce }) => Math.max(most, peakForce), 0),
     clearedKg,
+    raisedKg: raised,
     machineKg,
     motors,
   }
