@@ -46,7 +46,7 @@ export const numbers = {
   placeToleranceM: mouldedRubberToleranceM(quarterWidthM, 'M2'),
 
   /** Squeeze at which the pad works, of its height. Assumed. */
-  workingSqueeze: 0.06,
+  workingSqueeze: 0.04,
   squeezeSteps: 4,
   /** Pieces of a wall while it is squeezed: a wall in one piece buckles a fifth too late (12 for pi^2). */
   squeezePieces: 2,
