@@ -180,6 +180,18 @@ test('layers named as apart pass through each other, others do not', () => {
   })
 })
 
+test('a hinge counts the whole turns that its bodies are built with', () => {
+  for (const turn of [-3.5, 0, 4, 7]) {
+    const turned = { ...arm, turn, positionM: [0.5 * Math.cos(turn), 0.5 * Math.sin(turn)] }
+    withRigid({ ...good, gravityMps2: [0, 0], bodies: [base, turned] }, (world) => {
+      world.command(0, turn)
+      world.advance(100)
+      expect(world.placeOf(0)).toBeCloseTo(turn, 4)
+      expect(world.driveOf(0).workGivenJ).toBeLessThan(1e-3)
+    })
+  }
+})
+
 test('a fixed joint keeps two bodies as they were built, turned against each other too', () => {
   const bodies = [
     { ...arm, name: 'one', positionM: [0, 0] },

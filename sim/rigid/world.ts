@@ -23,7 +23,7 @@ import type { Contact, EngineWorld, MassOf } from './engine.js'
 import { type Held, type JointMotion, readJoint, worldPoint } from './joints.js'
 import { driveMechanism, type Mechanism, startMechanism } from './mechanism.js'
 import { bookWork, type Drive, startDrive } from './motors.js'
-import type { RigidSpec } from './spec.js'
+import type { JointSpec, RigidSpec } from './spec.js'
 
 /** Why and when a simulation failed. */
 export interface Fault {
@@ -72,7 +72,7 @@ export class RigidWorld {
       spec: joint,
       a: this.bodyNumbers.get(joint.a)!,
       b: this.bodyNumbers.get(joint.b)!,
-      place: 0,
+      place: builtPlace(joint, spec),
       rate: 0,
       axis: new Float64Array(dimensions),
       endA: new Float64Array(dimensions),
@@ -354,6 +354,16 @@ export class RigidWorld {
     this.isFree = true
     this.engine.free()
   }
+}
+
+/** Place of a 2-D hinge by the turns that its bodies are built with, whole turns included; reading keeps near it. */
+function builtPlace(joint: JointSpec, { bodies }: RigidSpec): number {
+  if (joint.kind !== 'hinge') return 0
+  const turnOf = (name: string) => {
+    const { turn } = bodies.find((body) => body.name === name)!
+    return typeof turn === 'number' ? turn : 0
+  }
+  return turnOf(joint.b) - turnOf(joint.a)
 }
 
 function emptyHeld(dimensions: 2 | 3): Held {

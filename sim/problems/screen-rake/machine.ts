@@ -235,15 +235,11 @@ function crankMachine(genome: RakeGenome, assembly: Assembly, base: Place): void
   assembly.link('crank', base, crankTurn(0), [['crank', [0, 0], [crankM, 0]]], { turnedBy: 0 })
   assembly.link('coupler', crankEnd, couplerTurn, [['coupler', [0, 0], tip], ...combBars(genome, tip)])
   assembly.link('rocker', pin, rockerTurn, [['rocker', [0, 0], [rockerM, 0]]])
-  // The drive counts whole turns from where it starts.
-  const first = wrappedTurn(crankTurn(0))
-  assembly.hinge('crank pin', 'intake', 'crank', base, (seconds) => first + crankTurn(seconds) - crankTurn(0))
+  assembly.hinge('crank pin', 'intake', 'crank', base, crankTurn)
   assembly.hinge('coupler pin', 'crank', 'coupler', [crankM, 0])
   assembly.hinge('rocker pin', 'intake', 'rocker', pin)
   assembly.hinge('joint pin', 'coupler', 'rocker', [couplerM, 0], undefined, [rockerM, 0])
 }
-
-const wrappedTurn = (turn: number) => turn - 2 * Math.PI * Math.round(turn / (2 * Math.PI))
 
 /** Where two bars meet, on the right of the way from the first pin to the second (the lower side of a left-hand pin). */
 function meetingPoint(a: Place, fromA: number, b: Place, fromB: number): Place {

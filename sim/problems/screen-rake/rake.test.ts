@@ -39,9 +39,10 @@ const found: RakeGenome = {
   rockerPin: Float64Array.of(0.343),
   rockerPinAngle: Float64Array.of(100.727),
 }
-/** The same, stretched out over the water and told to stay so. */
+/** The same, stretched out over the water and told to stay so, with stages that can hold it. */
 const still: RakeGenome = {
   ...found,
+  gear: Int32Array.of(2, 2, 2),
   poses: Float64Array.from(found.poses, (_, i) => (i < 6 ? 0 : 0.5)),
 }
 
