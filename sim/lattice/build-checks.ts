@@ -265,6 +265,8 @@ function checkDriven(spec: LatticeSpec, dimensions: number): void {
     demand(Math.abs(strut.strain) < 1, `${at}.strain`, strut.strain, 'a strain between -1 and 1')
     demand(Number.isFinite(strut.phaseTurns), `${at}.phaseTurns`, strut.phaseTurns, 'a finite number')
     checkLimits(strut, at)
+    const { powerLimitW } = strut as GuidedSpec
+    demand(powerLimitW === undefined, `${at}.powerLimitW`, powerLimitW, 'a guided strut, which has one')
   }
   for (const [i, strut] of (spec.guided ?? []).entries()) {
     const at = `guided[${i}]`

@@ -351,3 +351,58 @@ describe('the highest frequency of lattices', () => {
     expect(tightest).toBeGreaterThan(0.5)
   })
 })
+
+describe('a pendulum: one mass on a stiff strut', () => {
+  // q'' = -sin q from (1, 0): q(5) = -0.0239512848529275, exactly (sin(q/2) = k cd(t, k), k = sin 1/2). Hairer, Lubich and
+  // Wanner, Geometric Numerical Integration, 2006 (from memory); the number recomputed. The strut gives by 1e-6 of its
+  // length.
+  const angle = (h: number) => {
+    const stiffnessNpm = 1e6
+    const start = 1 + Math.cos(1) / stiffnessNpm
+    const lattice = buildLattice({
+      nodes: [
+        { positionM: [0, 0], massKg: 1, pinned: true },
+        { positionM: [start * Math.sin(1), -start * Math.cos(1)], massKg: 1 },
+      ],
+      struts: [{ a: 0, b: 1, restM: 1, stiffnessNpm, dampingNspm: 20 }],
+      gravityMps2: [0, -1],
+      stepSeconds: h,
+    })
+    advance(lattice, Math.round(5 / h))
+    return Math.atan2(at(lattice, 1, x), -lattice.nodes[7]!)
+  }
+  const error = (h: number) => Math.abs(angle(h) + 0.0239512848529275)
+
+  test('after 5 s it is where the closed form says, at first order in the step', () => {
+    expect(error(2.5e-4)).toBeLessThan(1e-3)
+    expect(Math.abs(orderOf(error(1e-3), error(5e-4)) - 1)).toBeLessThan(0.1)
+  })
+
+  test('two steps extrapolated meet it to 1e-5', () => {
+    expect(Math.abs(2 * angle(2.5e-4) - angle(5e-4) + 0.0239512848529275)).toBeLessThan(1e-5)
+  })
+
+  test.each([
+    [10, 1.00190718814],
+    [45, 1.0399733432],
+    [90, 1.18034059902],
+    [120, 1.37288050062],
+  ])('swinging out to %d degrees it takes %d of the time of small swings', (degrees, ratio) => {
+    // T / T0 = 2 K / pi = 1 / AGM(1, cos(q0 / 2)) (Landau and Lifshitz, Mechanics, from memory; recomputed).
+    const h = 2.5e-4
+    const reach = (degrees * Math.PI) / 180
+    const lattice = buildLattice({
+      nodes: [
+        { positionM: [0, 0], massKg: 1, pinned: true },
+        { positionM: [Math.sin(reach), -Math.cos(reach)], massKg: 1 },
+      ],
+      struts: [{ a: 0, b: 1, restM: 1, stiffnessNpm: 1e6, dampingNspm: 20 }],
+      gravityMps2: [0, -1],
+      stepSeconds: h,
+    })
+    const values = record(lattice, Math.round(20 / h), (l) => at(l, 1, x))
+    expect(Math.abs((2 * Math.PI) / angularFrequency(values, h) / (2 * Math.PI) / ratio - 1)).toBeLessThan(
+      1e-3,
+    )
+  })
+})

@@ -6,7 +6,7 @@ import type { Caution, Frames, FrameWall, Situation } from '../../../shared/prob
 import { firstXM, lastXM } from '../culvert-crawler/floor.js'
 import { crawlerProcess, partsOfMachine, useOfMachine } from '../culvert-crawler/making.js'
 import { numbers } from '../culvert-crawler/numbers.js'
-import { cautionsOfMachine, describeMachine, mm } from '../culvert-crawler/paper.js'
+import { cautionsOfMachine, linesOfMachine, mm } from '../culvert-crawler/paper.js'
 import { machineFrames } from '../culvert-crawler/replay.js'
 import { buildBody3d, nodeName3d } from './body.js'
 import { halfBreadthM, type PipeCondition, pipe, pipeGround } from './floor.js'
@@ -22,7 +22,7 @@ export function describeCrawler3d(genome: Crawler3dGenome): readonly string[] {
       `${mm(genome.height[i]!)} high, feet ${left.foot} (left) and ${right.foot} (right).`
     )
   })
-  return describeMachine(body, columns, nodeName3d)
+  return linesOfMachine(body, columns, nodeName3d)
 }
 
 export function cautionsOf3d(genome: Crawler3dGenome): readonly Caution[] {

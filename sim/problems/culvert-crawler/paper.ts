@@ -24,11 +24,11 @@ export function describeCrawler(genome: CrawlerGenome): readonly string[] {
     const [[x], [, heightM]] = [body.positionsM[node]!, body.positionsM[node + 1]!] as [number[], number[]]
     return `Column ${column + 1}: ${mm(-x!)} behind the front, ${mm(heightM!)} high, foot ${foot}.`
   })
-  return describeMachine(body, columns, nodeName)
+  return linesOfMachine(body, columns, nodeName)
 }
 
 /** Lines for a person on any crawler: `columns` says how its columns are shaped, `nameOf` what a node is called. */
-export function describeMachine(
+export function linesOfMachine(
   body: Machine,
   columns: readonly string[],
   nameOf: (node: number) => string,
