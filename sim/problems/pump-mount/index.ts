@@ -8,7 +8,6 @@ import { type MountGenome, mountGenome, repairMount } from './genome.js'
 import { type CaseName, caseNames, numbers } from './numbers.js'
 import { describeMount, mountProcess, partsOfMount, useOfMount } from './paper.js'
 import { mountFrames } from './replay.js'
-import { slowestHz } from './statics.js'
 import {
   arriving,
   type Broken,
@@ -19,6 +18,7 @@ import {
   type Recording,
   shake,
   speedIn,
+  strutSteps,
   worstTravel,
 } from './trial.js'
 
@@ -29,7 +29,7 @@ function outcome(
   mount: Mount,
   condition: MountCondition,
   name: CaseName,
-  { sagM, shaking }: Loaded,
+  { sagM, slowestHz }: Loaded,
   recording: Recording | Broken,
 ) {
   if ('reason' in recording) return { failed: recording.reason }
@@ -48,7 +48,7 @@ function outcome(
     },
     measures: {
       ratio: Math.min(ratioMost, ratio),
-      slowest: slowestHz(shaking.spec),
+      slowest: slowestHz,
       travelShare: worst.share,
       peakForce: peakTensionN.subarray(0, mount.members.length).reduce((a, b) => Math.max(a, b), 0),
       struts: mount.members.length,
@@ -111,7 +111,8 @@ export default defineProblem({
   drawCondition: drawMount,
   simulate: (genome, situations) => simulated(genome, situations, 1),
   simulateFiner: simulated,
-  expectedCost: (genome) => expectedCost(buildMount(genome)),
+  // In units of 200,000 strut steps.
+  expectedCost: (genome) => Math.max(1, Math.round(strutSteps(buildMount(genome)) / 200_000)),
   repair: repairMount,
   frames: (genome, { condition, case: name }) => mountFrames(buildMount(genome), condition, name as CaseName),
   describe: describeMount,
@@ -119,12 +120,3 @@ export default defineProblem({
   parts: partsOfMount,
   use: useOfMount,
 })
-
-/** In units of 20,000 strut steps; a node costs about as much as two struts. */
-function expectedCost(mount: Mount): number {
-  const loaded = load(mount, { sensor: 1, batch: 1, speed: 1, leanRad: 0 }, 1)
-  if ('reason' in loaded) return 1
-  const { stepsPerSample, samples, spec } = loaded.shaking
-  const work = (spec.struts.length + 2 * spec.nodes.length) * stepsPerSample * samples
-  return Math.max(1, Math.round(work / 200_000))
-}

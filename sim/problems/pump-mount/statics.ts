@@ -7,7 +7,7 @@ import { linearModel, part } from '../../measure/linear-model.js'
 import { factorise } from '../../measure/semidefinite.js'
 
 /** A load is put on in this many equal parts. */
-const loadSteps = 4
+const loadSteps = 2
 const roundsMost = 20
 /** Forces left over, as a share of the weight. */
 const leftMost = 1e-12

@@ -10,7 +10,7 @@ import type { Tally } from '../../lattice/tally.js'
 import { toneAt } from '../../measure/tones.js'
 import { crestM, latticeOf, type Mount } from './body.js'
 import { type CaseName, cases, numbers } from './numbers.js'
-import { atRest, carries } from './statics.js'
+import { atRest, carries, slowestHz } from './statics.js'
 
 /** Everything random about one simulation. */
 export interface MountCondition {
@@ -115,10 +115,25 @@ export interface Loaded {
   readonly shaking: Shaking
   /** How far the sensor has come down, m. */
   readonly sagM: number
+  readonly slowestHz: number
 }
 
 /** The longest step of a simulation: 1/64 of a sample of the fastest shaking stays far from it, s. */
 const stepMostSeconds = 1 / 6400
+
+const samples = Math.round(numbers.seconds * numbers.samplesPerSecond) + 1
+
+function stepsPerSampleOf(spec: LatticeSpec): number {
+  const sampleSeconds = 1 / numbers.samplesPerSecond
+  return Math.round(sampleSeconds / chooseStep(stepBound(spec), sampleSeconds, stepMostSeconds, 1))
+}
+
+/** Strut steps of one simulation, a node counted as two struts; from the mount as drawn. */
+export function strutSteps(mount: Mount): number {
+  const { sensorKg } = numbers
+  const spec = latticeOf(mount, { batch: 1, sensorKg, shakeM: crestM(0) })
+  return (spec.struts.length + 2 * spec.nodes.length) * stepsPerSampleOf(spec) * samples
+}
 
 /** The mount under its sensor, at rest; or why it does not carry it. `divide` makes the step finer. */
 export function load(mount: Mount, condition: MountCondition, divide: number): Loaded | Broken {
@@ -133,17 +148,16 @@ export function load(mount: Mount, condition: MountCondition, divide: number): L
   if (!carries(spec, numbers.weightsCarried)) {
     return { reason: `gives way under ${numbers.weightsCarried} times the sensor's weight` }
   }
-  const sampleSeconds = 1 / numbers.samplesPerSecond
-  const stepSeconds = chooseStep(stepBound(spec), sampleSeconds, stepMostSeconds, 1) / divide
+  const stepsPerSample = divide * stepsPerSampleOf(spec)
   const shaking: Shaking = {
     spec,
     sensorNode: mount.sensorNode,
-    stepSeconds,
-    stepsPerSample: Math.round(sampleSeconds / stepSeconds),
-    samples: Math.round(numbers.seconds * numbers.samplesPerSecond) + 1,
+    stepSeconds: 1 / numbers.samplesPerSecond / stepsPerSample,
+    stepsPerSample,
+    samples,
   }
   const sagM = mount.positionsM[mount.sensorNode]![1] - spec.nodes[mount.sensorNode]!.positionM[1]!
-  return { shaking, sagM }
+  return { shaking, sagM, slowestHz: slowestHz(spec) }
 }
 
 export const speedIn = (name: CaseName, { speed }: MountCondition): Speed => {
