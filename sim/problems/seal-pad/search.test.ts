@@ -51,10 +51,11 @@ function leastMiss(method: string, seed: number, simulations: number): number {
   return least
 }
 
-test('1,000 simulations of a search come at least twice as near as 1,000 random pads, mean of three seeds', () => {
-  const mean = (method: string) =>
-    [6, 7, 8].reduce((sum, seed) => sum + leastMiss(method, seed, 1_000) / 3, 0)
-  const [searched, random] = [mean('steady-state'), mean('random-sampling')]
+test('1,200 simulations of a search come at least twice as near as 1,200 random pads, median of five seeds', () => {
+  // One seed alone may stay in a corner: a median.
+  const median = (method: string) =>
+    [6, 7, 8, 9, 10].map((seed) => leastMiss(method, seed, 1_200)).sort((a, b) => a - b)[2]!
+  const [searched, random] = [median('steady-state'), median('random-sampling')]
   expect(searched).toBeLessThan(random / 2)
   expect(searched).toBeLessThan(0.3)
 }, 60_000)
