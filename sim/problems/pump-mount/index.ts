@@ -19,6 +19,7 @@ import {
   shake,
   speedIn,
   strutSteps,
+  weakness,
   worstTravel,
 } from './trial.js'
 
@@ -59,6 +60,8 @@ function outcome(
 
 function simulated(genome: MountGenome, situations: readonly Situation<MountCondition>[], divide: number) {
   const mount = buildMount(genome)
+  const weak = weakness(mount)
+  if (weak) return situations.map(() => ({ failed: weak.reason }))
   const outcomes: ReturnType<typeof outcome>[] = []
   for (const group of besideEachOther(situations)) {
     const { condition } = group[0]!

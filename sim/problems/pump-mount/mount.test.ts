@@ -16,9 +16,9 @@ import { buildMount, latticeOf } from './body.js'
 import { columns, compoundNames, levels, type MountGenome, none, slotAt } from './genome.js'
 import problem from './index.js'
 import { type CaseName, numbers } from './numbers.js'
-import { atRest, carries, slowestHz } from './statics.js'
+import { atRest, slowestHz } from './statics.js'
 import { makeOf, strutClasses } from './stock.js'
-import { arriving, groupOf, load, type Recording, type Shaking, shake, speedIn } from './trial.js'
+import { arriving, groupOf, load, type Recording, type Shaking, shake, speedIn, weakness } from './trial.js'
 
 function founder(number: number): MountGenome {
   return problem.repair(randomGenome(problem.genome, stream(20_261_201, 'founder', 1, number)) as MountGenome)
@@ -62,11 +62,11 @@ describe('the genome', () => {
     expect(atRest(spec)).toBeDefined()
   })
 
-  test('most founders carry twice their sensor', () => {
-    const carrying = Array.from({ length: 60 }, (_, i) => load(buildMount(founder(i)), nominal, 1)).filter(
-      (loaded) => !('reason' in loaded),
+  test('more than a quarter of founders carry twice their sensor', () => {
+    const carrying = Array.from({ length: 60 }, (_, i) => weakness(buildMount(founder(i)))).filter(
+      (weak) => weak === undefined,
     )
-    expect(carrying.length).toBeGreaterThan(30)
+    expect(carrying.length).toBeGreaterThan(15)
   })
 
   test('no mount is a mechanism, sparse ones included', () => {
@@ -154,9 +154,20 @@ describe('at rest', () => {
 
   test('a braced mount of the stiffest rubber carries twice its sensor, and not forty times', () => {
     const mount = buildMount(braced('rubber 50 A', 'ordinary'))
-    const rest = atRest(latticeOf(mount, { batch: 1, sensorKg: numbers.sensorKg, shakeM: [0, 0] }))!
-    expect(carries(rest, 2)).toBe(true)
-    expect(carries(rest, 40)).toBe(false)
+    expect(weakness(mount)).toBeUndefined()
+    const spec = latticeOf(mount, { batch: 1, sensorKg: numbers.sensorKg, shakeM: [0, 0] })
+    expect(atRest(spec, 40)).toBeUndefined()
+  })
+
+  test('whether it is strong enough does not depend on what is drawn', () => {
+    for (let i = 0; i < 12; i++) {
+      const weak = weakness(buildMount(founder(i)))
+      for (const replicate of [0, 1, 2]) {
+        const outcome = problem.simulate(founder(i), situations(replicate).slice(0, 1))[0]!
+        const reason = 'failed' in outcome ? outcome.failed : ''
+        expect(reason.startsWith('gives way')).toBe(weak !== undefined)
+      }
+    }
   })
 
   test('a tall mount of the softest bows gives way', () => {

@@ -7,7 +7,7 @@ import { buildMount, type Mount } from './body.js'
 import type { MountGenome } from './genome.js'
 import { numbers } from './numbers.js'
 import { strutClasses } from './stock.js'
-import { load } from './trial.js'
+import { load, weakness } from './trial.js'
 
 const mm = (metres: number) => `${(metres * 1000).toFixed(1)} mm`
 const nominal = { sensor: 1, batch: 1, speed: 1, leanRad: 0 }
@@ -22,8 +22,9 @@ export function describeMount(genome: MountGenome): readonly string[] {
       `${(mount.materialKg * 1000).toFixed(0)} g of struts and joints.`,
     `Rubber: ${mount.compound} compound (loss factor ${lossAt(mount, 10)} at 10 Hz, ${lossAt(mount, 50)} at 50 Hz).`,
   ]
-  if ('reason' in loaded) lines.push(`It ${loaded.reason}.`)
-  else {
+  const weak = weakness(mount)
+  if (weak) lines.push(`It ${weak.reason}.`)
+  if (!('reason' in loaded)) {
     const slow = naturalModes(loaded.shaking.spec).modes.slice(0, 3)
     lines.push(`Static sag: ${mm(loaded.sagM)}.`)
     for (const { radps, dampingRatio } of slow) {

@@ -6,26 +6,18 @@ import type { LatticeSpec } from '../../lattice/spec.js'
 import { linearModel, part } from '../../measure/linear-model.js'
 import { factorise } from '../../measure/semidefinite.js'
 
-/** A load is put on in this many equal parts. */
+/** Each weight is put on in this many equal parts. */
 const loadSteps = 2
 const roundsMost = 20
 /** Forces left over, as a share of the weight. */
 const leftMost = 1e-12
 
-/** The description at rest: positions moved, rest lengths as they were; or nothing where it gives way. */
-export function atRest(spec: LatticeSpec): LatticeSpec | undefined {
-  return loadedBetween(spec, 0, 1)
-}
-
-/** Whether a mount at rest would still carry `times` the weight. */
-export function carries(rest: LatticeSpec, times: number): boolean {
-  return loadedBetween(rest, 1, times) !== undefined
-}
-
-function loadedBetween(spec: LatticeSpec, from: number, to: number): LatticeSpec | undefined {
+/** The description at rest under so many times its weight: positions moved, rest lengths as they were; or nothing where it gives way. */
+export function atRest(spec: LatticeSpec, weights = 1): LatticeSpec | undefined {
   let now = spec
-  for (let step = 1; step <= loadSteps; step++) {
-    const settled = balance(now, from + ((to - from) * step) / loadSteps)
+  const steps = Math.ceil(loadSteps * weights)
+  for (let step = 1; step <= steps; step++) {
+    const settled = balance(now, (weights * step) / steps)
     if (!settled) return undefined
     now = settled
   }
