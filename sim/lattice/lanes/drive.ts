@@ -39,14 +39,15 @@ function writeFresh(pen: Pen, since: number): void {
   const { lanes, places, sizes, variant, engine } = pen
   const width = lanes.length
   const regular = since % freshEverySteps === 0
+  // Groups and lanes mostly turn alike.
+  let known = Number.NaN
+  let s = 0
+  let c = 0
   for (let g = 0; g < lanes[0]!.groupCount; g++) {
     const first = (places.groups.first + g * sizes.group) / variant.numberBytes
     const put = (quantity: number, lane: number, value: number) => {
       engine.numbers[first + quantity * width + lane] = value
     }
-    let known = Number.NaN
-    let s = 0
-    let c = 0
     for (let lane = 0; lane < width; lane++) {
       const lattice = lanes[lane]!
       const sweep = lattice.sweepSteps[g]!

@@ -2,10 +2,10 @@
 // Formulas and order of operations: ../reference/plane-nodes.ts, ../reference/space-nodes.ts.
 
 import {
-  columnsAt, firstXAt, firstZAt, lastColumnAt, lastRowAt, lowColumnAt, lowRowAt, nodesEnd, nodesFirst, nodeTable,
+  columnsAt, firstXAt, firstZAt, lastColumnAt, lastRowAt, lowColumnAt, lowRowAt, nodesEnd, nodesFirst, nodeTable, oneAt,
   perSpacingXAt, perSpacingZAt, rowsFirst, topAt,
 } from '../lanes/header'
-import { depthAt, lowAt, nodeBytes, nodeRowBytes, number, slopeXAt, slopeZAt, word, x, y, z } from './record'
+import { depthAt, insideAt, nodeBytes, nodeRowBytes, number, slopeXAt, slopeZAt, word, x, y, z } from './record'
 import { dimensions, vectors } from './variant'
 import {
   add, anyOf, atLeast, atMost, either, floor, gather, less, mul, numberBytes, only, read, sub, Vec, vectorBytes, write,
@@ -16,13 +16,21 @@ import {
   return atMost(last, atLeast(low, floor(along)))
 }
 
+@inline function isInside(depth: Vec, lane: usize): bool {
+  const one = number(oneAt, lane)
+  return anyOf(less(sub(one, one), depth))
+}
+
 /** Where the addresses of the heights of this vector's lanes stand. */
 @inline function rowsOf(lane: usize): usize {
   return word(rowsFirst) + (lane / numberBytes) * 4
 }
 
-/** Depth of one vector of a node (0 above the highest ground) and the slopes there, into the node's row. */
-export function measure(o: usize, row: usize, lane: usize): void {
+/**
+ * Depth of one vector of a node (0 above the highest ground) and the slopes there, into the node's row; whether some lane
+ * is in the ground.
+ */
+export function measure(o: usize, row: usize, lane: usize): bool {
   const rows = rowsOf(lane)
   const perSpacingX = number(perSpacingXAt, lane)
   const alongX = mul(sub(read(o + lane, x), number(firstXAt, lane)), perSpacingX)
@@ -32,9 +40,10 @@ export function measure(o: usize, row: usize, lane: usize): void {
     const left = gather(rows, column, 0)
     const rise = sub(gather(rows, column, numberBytes), left)
     const height = read(o + lane, y)
-    const depth = sub(add(left, mul(rise, u)), height)
-    write(row + lane, depthAt, only(less(height, number(topAt, lane)), depth))
+    const depth = only(less(height, number(topAt, lane)), sub(add(left, mul(rise, u)), height))
+    write(row + lane, depthAt, depth)
     write(row + lane, slopeXAt, mul(rise, perSpacingX))
+    return isInside(depth, lane)
   } else {
     const perSpacingZ = number(perSpacingZAt, lane)
     const alongZ = mul(sub(read(o + lane, z), number(firstZAt, lane)), perSpacingZ)
@@ -50,10 +59,11 @@ export function measure(o: usize, row: usize, lane: usize): void {
     const nearHeight = add(near, mul(nearRise, u))
     const across = sub(add(far, mul(farRise, u)), nearHeight)
     const height = read(o + lane, y)
-    const depth = sub(add(nearHeight, mul(across, w)), height)
-    write(row + lane, depthAt, only(less(height, number(topAt, lane)), depth))
+    const depth = only(less(height, number(topAt, lane)), sub(add(nearHeight, mul(across, w)), height))
+    write(row + lane, depthAt, depth)
     write(row + lane, slopeXAt, mul(add(nearRise, mul(sub(farRise, nearRise), w)), perSpacingX))
     write(row + lane, slopeZAt, mul(across, perSpacingZ))
+    return isInside(depth, lane)
   }
 }
 
@@ -64,19 +74,20 @@ export function measure(o: usize, row: usize, lane: usize): void {
 }
 
 /**
- * Marks the nodes that are lower than the highest ground in some lane and measures the ground under them. A pass of its
- * own before the nodes move: one long chain of operations for every node would leave the processor nothing to overlap.
+ * Measures the ground under nodes that are lower than its highest place in some lane, and marks those that are in it in
+ * some lane. (Not in it, the reference's contact law gives the results of the free step to the bit: it adds 0 to a force
+ * that is never -0, because forces are sums that began with 0.) A pass of its own before the nodes move: one long chain of operations for every node would leave the processor nothing to overlap.
  */
 export function feelGround(): void {
   const end = word(nodesEnd)
   let row = word(nodeTable)
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    const low = isLow(o)
-    store<u32>(row + lowAt, <u32>low)
-    if (low) {
-      measure(o, row, 0)
-      if (vectors > 1) measure(o, row, vectorBytes)
+    let inside: u32 = 0
+    if (isLow(o)) {
+      inside = <u32>measure(o, row, 0)
+      if (vectors > 1) inside |= <u32>measure(o, row, vectorBytes)
     }
+    store<u32>(row + insideAt, inside)
     row += nodeRowBytes
   }
 }

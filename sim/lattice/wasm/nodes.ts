@@ -1,11 +1,11 @@
 // Nodes: node drag, contact, friction and one step of symplectic Euler. Formulas: ../reference/plane-nodes.ts and
-// space-nodes.ts. The loop holds the free step; whatever is more than that (held, felt by a sensor, lower than the highest
-// ground in some lane) goes to special(), where lanes without contact get the results of the free step, bit for bit.
+// space-nodes.ts. The loop holds the free step; whatever is more than that (held, watched by a sensor, in the ground in
+// some lane) goes to special(), where lanes without contact get the results of the free step, bit for bit.
 
 import { dragAt, gravityAt, nodesEnd, nodesFirst, nodeTable, stepAt } from '../lanes/header'
 import { touchPlane } from './plane-touch'
 import {
-  fx, fy, fz, isHeld, lowAt, material, nodeBytes, nodeRowBytes, number, specialAt, touchingAt, vx, wide, word, x,
+  fx, fy, fz, insideAt, isHeld, material, nodeBytes, nodeRowBytes, number, specialAt, touchingAt, vx, wide, word, x,
 } from './record'
 import { touchSpace } from './space-touch'
 import { dimensions, vectors } from './variant'
@@ -38,9 +38,9 @@ import { add, mul, read, sub, Vec, vectorBytes, write } from './vector'
   if (dimensions == 3) write(o, fz + lane, zero)
 }
 
-/** The step of one vector of a node that moves and is low or watched by a sensor. */
-@inline function move(o: usize, row: usize, touching: usize, low: bool, lane: usize, h: Vec, zero: Vec): void {
-  if (low) {
+/** The step of one vector of a node that moves and is in the ground or watched by a sensor. */
+@inline function move(o: usize, row: usize, touching: usize, inside: bool, lane: usize, h: Vec, zero: Vec): void {
+  if (inside) {
     if (dimensions == 3) touchSpace(o + lane, row, touching, lane)
     else touchPlane(o + lane, row, touching, lane)
   } else {
@@ -57,18 +57,18 @@ export function special(o: usize, row: usize): void {
     if (vectors > 1) clearForces(o, vectorBytes, zero)
     return
   }
-  const low = word(row + lowAt) != 0
+  const inside = word(row + insideAt) != 0
   const touching = word(row + touchingAt)
-  move(o, row, touching, low, 0, h, zero)
-  if (vectors > 1) move(o, row, touching, low, vectorBytes, h, zero)
+  move(o, row, touching, inside, 0, h, zero)
+  if (vectors > 1) move(o, row, touching, inside, vectorBytes, h, zero)
 }
 
-/** One step for every node by index, feelGround() having marked the low ones; forces are 0 afterwards. */
+/** One step for every node by index, feelGround() having marked those in the ground; forces are 0 afterwards. */
 export function integrate(): void {
   const end = word(nodesEnd)
   let row = word(nodeTable)
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    // Both words at once: special and low.
+    // Both words at once: special and inside.
     if (load<u64>(row + specialAt) != 0) {
       special(o, row)
     } else {

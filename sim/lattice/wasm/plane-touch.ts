@@ -1,4 +1,4 @@
-// The step of a node in the plane that is lower than the highest ground in some lane (../reference/plane-nodes.ts).
+// The step of a node in the plane that is in the ground in some lane (../reference/plane-nodes.ts).
 // `o` is the node's record plus `lane`, the offset of the vector in hand; feelGround() has measured depth and slope.
 
 import { contactDampingAt, contactStiffnessAt, dragAt, gravityAt, oneAt, rooted, stepAt, tinyAt } from '../lanes/header'

@@ -24,7 +24,7 @@ export const materialBytes: usize = own ? wide : numberBytes
 
 // Row of the node table: inverse mass | friction (2 numbers in 2-D, 3 in 3-D) | what feelGround() finds: depth, slopes
 // along x and z | words: heading (the other node's record or 0), where to tell whether it touches the ground (or 0), what
-// is more than the free step (2 held, 1 a sensor asks), 1 when it is lower than the highest ground in some lane.
+// is more than the free step (2 held, 1 a sensor asks), 1 when it is in the ground in some lane.
 export const frictionAt: usize = (materialBytes + 15) & ~15
 export const depthAt: usize = frictionAt + dimensions * wide
 export const slopeXAt: usize = depthAt + wide
@@ -32,7 +32,7 @@ export const slopeZAt: usize = depthAt + 2 * wide
 export const headingAt: usize = depthAt + dimensions * wide
 export const touchingAt: usize = headingAt + 4
 export const specialAt: usize = headingAt + 8
-export const lowAt: usize = headingAt + 12
+export const insideAt: usize = headingAt + 12
 export const nodeRowBytes: usize = headingAt + 16
 /** In specialAt. */
 export const isHeld: usize = 2

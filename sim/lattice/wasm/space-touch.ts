@@ -1,8 +1,8 @@
-// The step of a node in space that is lower than the highest ground in some lane (../reference/space-nodes.ts).
+// The step of a node in space that is in the ground in some lane (../reference/space-nodes.ts).
 // `o` is the node's record plus `lane`, the offset of the vector in hand; feelGround() has measured depth and slopes.
 
 import {
-  contactDampingAt, contactStiffnessAt, dragAt, gravityAt, oneAt, rooted, stepAt, tinyAt, topAt,
+  contactDampingAt, contactStiffnessAt, dragAt, gravityAt, oneAt, rooted, stepAt, tinyAt,
 } from '../lanes/header'
 import {
   depthAt, dot, frictionAt, fx, fy, fz, headingAt, material, number, slopeXAt, slopeZAt, vx, vy, vz, wide, word, x, y, z,
@@ -39,10 +39,8 @@ export function touchSpace(o: usize, row: usize, touching: usize, lane: usize): 
   write(o, fx, zero)
   write(o, fy, zero)
   write(o, fz, zero)
-  // Above the highest ground the reference adds nothing, not even 0, which would turn -0 into 0.
-  const forceY = choose(less(read(o, y), number(topAt, lane)), add(freeY, f), freeY)
   let v = driven(vx0, h, sub(freeX, mul(f, sx)), perKg, number(gravityAt, lane))
-  let u = driven(vy0, h, forceY, perKg, number(gravityAt + 1, lane))
+  let u = driven(vy0, h, add(freeY, f), perKg, number(gravityAt + 1, lane))
   let w = driven(vz0, h, sub(freeZ, mul(f, sz)), perKg, number(gravityAt + 2, lane))
   if (touching != 0) write(touching, lane, only(pushed, number(oneAt, lane)))
   if (anyOf(pushed)) {

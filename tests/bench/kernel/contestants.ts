@@ -44,13 +44,21 @@ export function contestantsFor(
 }
 
 function moversFor(dimensions: 2 | 3, mover: string): Contestant[] {
-  const kinds: readonly MoverKind[] = ['double', 'double-alone', 'single', 'reference']
+  const kinds: readonly MoverKind[] = [
+    'double',
+    'double-alone',
+    'single',
+    'reference',
+    'crawler',
+    'crawler-kernel',
+  ]
   return kinds.map((kind) => ({
     name: kind,
     program: process.execPath,
     args: [mover, kind, String(dimensions)],
     opening: [],
     replicates: replicatesOf(kind),
+    leastSteps: kind.startsWith('crawler') ? 1 : 64,
   }))
 }
 
@@ -68,7 +76,7 @@ function programsFor(dimensions: 2 | 3, source: string, folder: string): Contest
       })
       if (done.status !== 0) throw new Error(`gcc cannot compile ${source}: ${done.stderr}`)
       const replicates = bytes === 0 ? 1 : (2 * bytes) / (number === 'double' ? 8 : 4)
-      return { name, program, args: [], opening: [`load ${body}`], replicates }
+      return { name, program, args: [], opening: [`load ${body}`], replicates, leastSteps: 64 }
     })
 }
 

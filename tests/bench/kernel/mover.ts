@@ -6,9 +6,13 @@ import { advance } from '../../../sim/lattice/advance.js'
 import { advanceLanes, lanesMost, packLanes, unpackLane } from '../../../sim/lattice/lanes.js'
 import type { Lattice } from '../../../sim/lattice/layout.js'
 import { benchReplicates } from './bodies.js'
+import { evaluationTimer, kernelTimer } from './evaluations.js'
 
-/** double-alone: one replicate, in the module of one lane. */
-export type MoverKind = 'reference' | 'double' | 'double-alone' | 'single'
+/**
+ * double-alone: one replicate, in the module of one lane. crawler and crawler-kernel: whole evaluations and their kernel
+ * alone (evaluations.ts); a step is one evaluation of every founder.
+ */
+export type MoverKind = 'reference' | 'double' | 'double-alone' | 'single' | 'crawler' | 'crawler-kernel'
 
 /** How many replicates a process of this kind moves at a time. */
 export function replicatesOf(kind: MoverKind): number {
@@ -35,6 +39,13 @@ function serveMover(kind: MoverKind, dimensions: 2 | 3): void {
   })
 }
 
+/** A timer that counts its own CPU, in microseconds. */
+function serveTimer(time: (times: number) => number): void {
+  createInterface({ input: process.stdin }).on('line', (line) =>
+    console.log(1000 * time(Number(line.slice(4)))),
+  )
+}
+
 function moverOf(kind: MoverKind, lattices: readonly Lattice[]) {
   const places = (all: readonly Lattice[]) =>
     all.flatMap(({ nodes, stride, dimensions }) =>
@@ -53,5 +64,8 @@ function moverOf(kind: MoverKind, lattices: readonly Lattice[]) {
 
 const [, , kind, dimensions] = process.argv
 if (kind !== undefined && dimensions !== undefined) {
-  serveMover(kind as MoverKind, dimensions === '3' ? 3 : 2)
+  const space = dimensions === '3' ? 3 : 2
+  if (kind === 'crawler') serveTimer(evaluationTimer(space))
+  else if (kind === 'crawler-kernel') serveTimer(kernelTimer(space))
+  else serveMover(kind as MoverKind, space)
 }

@@ -14,6 +14,8 @@ export interface Contestant {
   readonly opening: readonly string[]
   /** Replicates moved by one step. */
   readonly replicates: number
+  /** Steps in a sample, at least. */
+  readonly leastSteps: number
 }
 
 interface Runner {
@@ -84,7 +86,7 @@ function start(contestant: Contestant): Runner {
 /** Until the fast code is there; then finds how many steps a sample has. */
 async function warmUp(runner: Runner): Promise<void> {
   for (const line of runner.contestant.opening) await runner.ask(line)
-  let steps = 200
+  let steps = runner.contestant.leastSteps
   let spent = 0
   let last = 0
   while (spent < warmUpNanoseconds) {
@@ -92,7 +94,10 @@ async function warmUp(runner: Runner): Promise<void> {
     spent += Math.max(last, 1e5)
     if (last < sampleNanoseconds / 2) steps *= 2
   }
-  runner.stepsPerSample = Math.max(64, Math.round((steps * sampleNanoseconds) / last))
+  runner.stepsPerSample = Math.max(
+    runner.contestant.leastSteps,
+    Math.round((steps * sampleNanoseconds) / last),
+  )
 }
 
 export interface Ratio {
