@@ -124,7 +124,7 @@ function puritySentence(view: ProgressView): string {
 export function logLine(view: ProgressView, time: string): string {
   const first = view.best?.estimates[0]
   const best = first
-    ? `, best ${view.best!.id} ${first.objective} ${estimate(first.value, first.unit, first.standardError)} (${view.best!.replicates} replicates)`
+    ? `, best ${view.best!.id} ${first.objective} ${estimate(first.value, first.unit, first.standardError)} (${counted(view.best!.replicates, 'replicate')})`
     : ''
   const isMoving = view.state === 'searching'
   const rate = view.rate && isMoving ? `, ${short(view.rate.simulationsPerSecond)}/s` : ''
