@@ -19,6 +19,7 @@ export {
   lanesMost,
   laneTally,
   packLanes,
+  releaseLanes,
   sampleLanes,
   unpackLane,
 } from './lattice/lanes.js'

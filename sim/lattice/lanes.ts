@@ -10,8 +10,8 @@
 // Between calls the lattices' own `dragNspm` and `hostStrain` may be changed, as with advance(). A lane that has a fault
 // stands still: its lattice holds the state at the fault, advanceLanes() keeps telling the fault, the others go on.
 //
-// Memory is used again from one evaluation to the next, and nothing has to be released (lanes/engine.ts). Calls of any
-// size are fine; the kernel itself is called for at most 64 steps at a time.
+// Memory is used again from one evaluation to the next, and nothing has to be released (lanes/engine.ts); releaseLanes()
+// only spares a copy. Calls of any size are fine; the kernel itself is called for at most 64 steps at a time.
 
 import { type Fault, look } from './advance.js'
 import { demandOneBody, hasOwnMaterial } from './lanes/body.js'
@@ -65,7 +65,7 @@ export function packLanes(
   const variant = variantFor(first.dimensions, lattices.length, precision, hasOwnMaterial(lattices))
   const all = Array.from({ length: variant.lanes }, (_, lane) => lattices[lane] ?? first)
   const places = placesOf(variant, first, heightsCount(all, precision === 'single'))
-  const tenant: Tenant = { module: variant.module, bytes: places.bytes, saved: undefined }
+  const tenant: Tenant = { module: variant.module, bytes: places.bytes, saved: undefined, released: false }
   const origins = firstOrigins(all, precision === 'single')
   let pen: Pen | undefined
   settle(tenant, (engine) => {
@@ -155,6 +155,11 @@ export function sampleLanes(lanes: Lanes, seconds: number): void {
   putEqual(lanes.pen, numberPlace(lanes.pen.variant, sampleSecondsAt), seconds)
   lanes.pen.engine.sample()
   lanes.samples++
+}
+
+/** Says that these lanes are not used any more, which spares saving them when others need the kernel's memory. */
+export function releaseLanes(lanes: Lanes): void {
+  lanes.tenant.released = true
 }
 
 /** What has been sampled of lane i so far. Meaningless after a fault of the lane. */

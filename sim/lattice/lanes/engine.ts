@@ -1,6 +1,7 @@
 // Running modules: each is compiled and instantiated once (synchronously, so that problems stay plain functions) and has
 // one memory, which is used again for every evaluation. One set of lanes at a time lives in it; when another needs
-// the place, what was there is copied out and comes back when it is wanted again. So nobody has to release anything.
+// the place, what was there is copied out and comes back when it is wanted again. So nobody has to release anything;
+// whoever does spares the copy.
 
 import { check } from '../../../shared/check.js'
 import { modules } from './modules.js'
@@ -33,16 +34,19 @@ export interface Tenant {
   readonly bytes: number
   /** Content while another one has the memory. */
   saved: Uint8Array | undefined
+  /** Nobody wants it any more: it need not be saved. */
+  released: boolean
 }
 
 const engines = new Map<string, Engine>()
 
 /** The engine of a module with this tenant's content in its memory. `write` fills it the first time. */
 export function settle(tenant: Tenant, write?: (engine: Engine) => void): Engine {
+  check(!tenant.released, 'lanes that were released are not used again')
   const engine = engineOf(tenant.module)
   if (engine.resident === tenant) return engine
   const last = engine.resident
-  if (last) last.saved = new Uint8Array(engine.memory.buffer).slice(0, last.bytes)
+  if (last && !last.released) last.saved = new Uint8Array(engine.memory.buffer).slice(0, last.bytes)
   makeRoom(engine, tenant)
   engine.resident = tenant
   if (tenant.saved) new Uint8Array(engine.memory.buffer).set(tenant.saved)

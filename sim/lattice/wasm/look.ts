@@ -1,23 +1,23 @@
 // The choke point: which lanes hold a number that is none, or a node deeper in the ground than the contact allows. What
 // exactly is wrong is found by the reference's own look() on the copy of that lane.
 
-import { depthLimitAt, depthLimited, nodesEnd, nodesFirst, nodeTable, topAt } from '../lanes/header'
+import { depthLimitAt, depthLimited, nodesEnd, nodesFirst, nodeTable, oneAt, topAt } from '../lanes/header'
 import { depthOf } from './ground'
-import { isHeld, nodeBytes, nodeRowBytes, number, specialAt, wide, word, y } from './record'
+import { isHeld, nodeBytes, nodeRowBytes, number, specialAt, vx, vy, vz, word, x, y, z } from './record'
 import { dimensions, vectors } from './variant'
 import {
   add, anyOf, bitsOf, differ, either, less, read, sub, Vec, vectorBytes, vectorLanes,
 } from './vector'
 
-/** 0 as long as all numbers of all nodes are finite, no number otherwise. */
-function strangeness(lane: usize): Vec {
+/** The sum of all places and speeds: finite as long as they are. */
+@inline function sumOf(lane: usize): Vec {
   const end = word(nodesEnd)
-  let sum = sub(number(depthLimitAt, lane), number(depthLimitAt, lane))
+  let sum = number(oneAt, lane)
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    for (let c: usize = 0; c < 2 * dimensions * wide; c += wide) {
-      const value = read(o + c, lane)
-      sum = add(sum, sub(value, value))
-    }
+    const first = add(read(o, x + lane), read(o, y + lane))
+    const second = add(read(o, vx + lane), read(o, vy + lane))
+    sum = add(sum, add(first, second))
+    if (dimensions == 3) sum = add(sum, add(read(o, z + lane), read(o, vz + lane)))
   }
   return sum
 }
@@ -36,8 +36,9 @@ function sunk(lane: usize): u32 {
 }
 
 @inline function lookAt(lane: usize): u32 {
-  const sum = strangeness(lane)
-  const bits = bitsOf(differ(sum, sum))
+  const sum = sumOf(lane)
+  const rest = sub(sum, sum)
+  const bits = bitsOf(differ(rest, rest))
   return word(depthLimited) != 0 ? bits | sunk(lane) : bits
 }
 

@@ -38,98 +38,120 @@ import {
   return add(sub(material(p, first, 0, lane), mul(commanded, perLength)), mul(mul(damping, along), perQ))
 }
 
-@inline function keep(at: usize, tension: Vec, length: Vec): void {
-  write(at, 0, atLeast(read(at, 0), tension))
-  write(at, wide, atMost(read(at, wide), length))
-  write(at, 2 * wide, atLeast(read(at, 2 * wide), length))
+@inline function keep(at: usize, lane: usize, tension: Vec, length: Vec): void {
+  write(at, lane, atLeast(read(at, lane), tension))
+  write(at, wide + lane, atMost(read(at, wide + lane), length))
+  write(at, 2 * wide + lane, atLeast(read(at, 2 * wide + lane), length))
 }
 
 /** Adds the work of a strut whose tension is scale * |d|. */
 @inline function keepWork(at: usize, scale: Vec, along: Vec, lane: usize): void {
   const power = mul(neg(scale), along)
   const zero = sub(number(oneAt, lane), number(oneAt, lane))
-  write(at, 0, add(read(at, 0), mul(atLeast(power, zero), number(sampleSecondsAt, lane))))
+  write(at, lane, add(read(at, lane), mul(atLeast(power, zero), number(sampleSecondsAt, lane))))
 }
 
-function samplePassive(at: usize, lane: usize): void {
+@inline function takePassive(p: usize, a: usize, b: usize, at: usize, lane: usize): void {
+  const q = squareOf(a, b, lane)
+  const perQ = div(number(oneAt, lane), q)
+  const length = sqrt(q)
+  const commanded = material(p, 0, 1, lane)
+  const scale = scaleOf(p, 0, commanded, mul(length, perQ), perQ, alongOf(a, b, lane), lane)
+  keep(at, lane, mul(abs(scale), length), length)
+}
+
+function samplePassive(at: usize): void {
   const end = word(passiveEnd)
   for (let p = word(passiveFirst); p < end; p += passiveBytes) {
     const a = word(p + passiveEnds)
     const b = word(p + passiveEnds + 4)
-    const q = squareOf(a, b, lane)
-    const perQ = div(number(oneAt, lane), q)
-    const length = sqrt(q)
-    const commanded = material(p, 0, 1, lane)
-    const scale = scaleOf(p, 0, commanded, mul(length, perQ), perQ, alongOf(a, b, lane), lane)
-    keep(at + lane, mul(abs(scale), length), length)
+    takePassive(p, a, b, at, 0)
+    if (vectors > 1) takePassive(p, a, b, at, vectorBytes)
     at += strutSampleBytes
   }
 }
 
-function sampleActive(at: usize, work: usize, lane: usize): void {
+@inline function takeActive(
+  p: usize, a: usize, b: usize, group: usize, at: usize, work: usize, lane: usize,
+): void {
+  const one = number(oneAt, lane)
+  const q = squareOf(a, b, lane)
+  const perQ = div(one, q)
+  const length = sqrt(q)
+  const perLength = mul(length, perQ)
+  const along = alongOf(a, b, lane)
+  const drive = add(
+    mul(read(group, lane), read(p, activeStrain + lane)),
+    mul(read(group, wide + lane), read(p, activeStrain + wide + lane)),
+  )
+  const commanded = mul(material(p, 0, 1, lane), add(one, drive))
+  const most = mul(material(p, 0, 3, lane), perLength)
+  const free = scaleOf(p, 0, commanded, perLength, perQ, along, lane)
+  const scale = atMost(atLeast(free, neg(most)), most)
+  keep(at, lane, mul(abs(scale), length), length)
+  keepWork(work, scale, along, lane)
+}
+
+function sampleActive(at: usize, work: usize): void {
   const end = word(activeEnd)
   for (let p = word(activeFirst); p < end; p += activeBytes) {
     const a = word(p + activeEnds)
     const b = word(p + activeEnds + 4)
     const group = word(p + activeEnds + 8)
-    const one = number(oneAt, lane)
-    const q = squareOf(a, b, lane)
-    const perQ = div(one, q)
-    const length = sqrt(q)
-    const perLength = mul(length, perQ)
-    const along = alongOf(a, b, lane)
-    const drive = add(
-      mul(read(group, lane), read(p, activeStrain + lane)),
-      mul(read(group, wide + lane), read(p, activeStrain + wide + lane)),
-    )
-    const commanded = mul(material(p, 0, 1, lane), add(one, drive))
-    const most = mul(material(p, 0, 3, lane), perLength)
-    const free = scaleOf(p, 0, commanded, perLength, perQ, along, lane)
-    const scale = atMost(atLeast(free, neg(most)), most)
-    keep(at + lane, mul(abs(scale), length), length)
-    keepWork(work + lane, scale, along, lane)
+    takeActive(p, a, b, group, at, work, 0)
+    if (vectors > 1) takeActive(p, a, b, group, at, work, vectorBytes)
     at += strutSampleBytes
     work += drivenSampleBytes
   }
 }
 
-function sampleGuided(at: usize, work: usize, lane: usize): void {
+function takeGuided(p: usize, a: usize, b: usize, at: usize, work: usize, lane: usize): void {
+  const one = number(oneAt, lane)
+  const q = squareOf(a, b, lane)
+  const perQ = div(one, q)
+  const length = sqrt(q)
+  const perLength = mul(length, perQ)
+  const along = alongOf(a, b, lane)
+  const strain = read(p, guidedStrain + 5 * wide + lane)
+  const commanded = mul(material(p, guidedMaterial, 1, lane), add(one, strain))
+  const most = mul(material(p, guidedMaterial, 3, lane), perLength)
+  const free = scaleOf(p, guidedMaterial, commanded, perLength, perQ, along, lane)
+  const held = atMost(atLeast(free, neg(most)), most)
+  const power = mul(neg(held), along)
+  const powerMost = material(p, guidedMaterial, 4, lane)
+  const scale = choose(less(powerMost, power), mul(held, div(powerMost, power)), held)
+  keep(at, lane, mul(abs(scale), length), length)
+  keepWork(work, scale, along, lane)
+}
+
+function sampleGuided(at: usize, work: usize): void {
   const end = word(guidedEnd)
   for (let p = word(guidedFirst); p < end; p += guidedBytes) {
     const a = word(p)
     const b = word(p + 4)
-    const one = number(oneAt, lane)
-    const q = squareOf(a, b, lane)
-    const perQ = div(one, q)
-    const length = sqrt(q)
-    const perLength = mul(length, perQ)
-    const along = alongOf(a, b, lane)
-    const strain = read(p, guidedStrain + 5 * wide + lane)
-    const commanded = mul(material(p, guidedMaterial, 1, lane), add(one, strain))
-    const most = mul(material(p, guidedMaterial, 3, lane), perLength)
-    const free = scaleOf(p, guidedMaterial, commanded, perLength, perQ, along, lane)
-    const held = atMost(atLeast(free, neg(most)), most)
-    const power = mul(neg(held), along)
-    const powerMost = material(p, guidedMaterial, 4, lane)
-    const scale = choose(less(powerMost, power), mul(held, div(powerMost, power)), held)
-    keep(at + lane, mul(abs(scale), length), length)
-    keepWork(work + lane, scale, along, lane)
+    takeGuided(p, a, b, at, work, 0)
+    if (vectors > 1) takeGuided(p, a, b, at, work, vectorBytes)
     at += strutSampleBytes
     work += drivenSampleBytes
   }
 }
 
-function sampleNodes(lane: usize): void {
+@inline function takeNode(o: usize, at: usize, lane: usize): void {
+  const height = read(o, y + lane)
+  if (anyOf(less(height, number(topAt, lane)))) {
+    const one = number(oneAt, lane)
+    write(at, lane, add(read(at, lane), only(less(sub(one, one), depthOf(o, lane)), one)))
+  }
+  write(at, wide + lane, atMost(read(at, wide + lane), height))
+  write(at, 2 * wide + lane, atLeast(read(at, 2 * wide + lane), height))
+}
+
+function sampleNodes(): void {
   const end = word(nodesEnd)
-  let at = word(nodeSamples) + lane
+  let at = word(nodeSamples)
   for (let o = word(nodesFirst); o < end; o += nodeBytes) {
-    if (anyOf(less(read(o, y + lane), number(topAt, lane)))) {
-      const one = number(oneAt, lane)
-      write(at, 0, add(read(at, 0), only(less(sub(one, one), depthOf(o, lane)), one)))
-    }
-    const height = read(o, y + lane)
-    write(at, wide, atMost(read(at, wide), height))
-    write(at, 2 * wide, atLeast(read(at, 2 * wide), height))
+    takeNode(o, at, 0)
+    if (vectors > 1) takeNode(o, at, vectorBytes)
     at += nodeSampleBytes
   }
 }
@@ -138,18 +160,13 @@ function sampleNodes(lane: usize): void {
   return (word(end) - word(first)) / bytes
 }
 
-@inline function sampleLane(lane: usize): void {
+export function sample(): void {
   const passives = count(passiveFirst, passiveEnd, passiveBytes)
   const actives = count(activeFirst, activeEnd, activeBytes)
   const struts = word(strutSamples)
   const driven = word(drivenSamples)
-  samplePassive(struts, lane)
-  sampleActive(struts + passives * strutSampleBytes, driven, lane)
-  sampleGuided(struts + (passives + actives) * strutSampleBytes, driven + actives * drivenSampleBytes, lane)
-  sampleNodes(lane)
-}
-
-export function sample(): void {
-  sampleLane(0)
-  if (vectors > 1) sampleLane(vectorBytes)
+  samplePassive(struts)
+  sampleActive(struts + passives * strutSampleBytes, driven)
+  sampleGuided(struts + (passives + actives) * strutSampleBytes, driven + actives * drivenSampleBytes)
+  sampleNodes()
 }

@@ -14,6 +14,7 @@ import {
   lanesMost,
   laneTally,
   packLanes,
+  releaseLanes,
   sampleLanes,
   unpackLane,
 } from '../../lattice/lanes.js'
@@ -181,12 +182,14 @@ function runGroup(watch: Watch, lattices: readonly Lattice[]): (Trial | Fault)[]
     }
     if ((frame + 1) % numbers.framesPerLook === 0) noteFaults(watch, lanes, faults)
   }
-  return faults.map((fault, i) => {
+  const results = faults.map((fault, i) => {
     if (fault) return fault
     const [startXM, startYM] = starts[i] as [number, number]
     const tally = laneTally(lanes, i)
     return overstrained(tally, watch) ?? { tally, startXM, startYM, endXM: puckM(machine, lanes, i, 0) }
   })
+  releaseLanes(lanes)
+  return results
 }
 
 function puckM({ puckNode }: Machine, lanes: Lanes, lane: number, axis: 0 | 1): number {

@@ -3,7 +3,14 @@
 
 import type { Stream } from '../../../shared/streams.js'
 import { buildLattice } from '../../lattice/build.js'
-import { advanceLanes, lanePlaceM, laneTally, packLanes, sampleLanes } from '../../lattice/lanes.js'
+import {
+  advanceLanes,
+  lanePlaceM,
+  laneTally,
+  packLanes,
+  releaseLanes,
+  sampleLanes,
+} from '../../lattice/lanes.js'
 import type { DriveGroupSpec, LatticeSpec } from '../../lattice/spec.js'
 import { chooseStep, stepBound } from '../../lattice/stability.js'
 import type { Tally } from '../../lattice/tally.js'
@@ -85,11 +92,13 @@ export function shake(shaking: Shaking, speeds: readonly Speed[]): (Recording | 
       y[n] = lanePlaceM(lanes, lane, sensorNode, 1) - startY
     }
   }
-  return paths.map((path, lane) => {
+  const recordings = paths.map((path, lane) => {
     const fault = lanes.faults[lane]
     if (fault) return { reason: `${fault.reason} at ${fault.seconds.toFixed(2)} s` }
     return { ...path, tally: laneTally(lanes, lane) }
   })
+  releaseLanes(lanes)
+  return recordings
 }
 
 /**
