@@ -22,6 +22,14 @@ export default defineConfig({
         },
       },
       { test: { ...long, name: 'kernel', include: ['tests/kernel/**/*.test.ts'], fileParallelism: false } },
+      {
+        test: {
+          ...long,
+          name: 'determinism',
+          include: ['tests/determinism/**/*.test.ts'],
+          fileParallelism: false,
+        },
+      },
       { test: { ...long, name: 'contract', include: ['tests/contract/**/*.test.ts'] } },
       { test: { ...long, name: 'cluster', include: ['tests/cluster/**/*.test.ts'] } },
       { test: { ...long, name: 'chaos', include: ['tests/chaos/**/*.test.ts'], fileParallelism: false } },

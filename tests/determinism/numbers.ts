@@ -9,8 +9,8 @@ export function digestOf(numbers: ArrayLike<number>): string {
   const view = new DataView(bytes.buffer)
   for (let i = 0; i < numbers.length; i++) {
     const value = numbers[i]!
-    view.setFloat64(8 * i, value === value ? value + 0 : Number.NaN, true)
-    if (value !== value) view.setBigUint64(8 * i, 0x7ff8_0000_0000_0000n, true)
+    if (Number.isNaN(value)) view.setBigUint64(8 * i, 0x7ff8_0000_0000_0000n, true)
+    else view.setFloat64(8 * i, value + 0, true)
   }
   return hex(sha256(bytes))
 }

@@ -27,7 +27,7 @@ test('every test file is run by exactly one phase of npm test', () => {
 test('every vitest project is a phase, and phases name known services only', () => {
   const run = phases.flatMap((phase) => phase.project ?? [])
   expect(run.sort()).toEqual(projects.map((project) => project.test.name).sort())
-  for (const need of phases.flatMap((phase) => phase.needs ?? []))
+  for (const need of phases.flatMap((phase) => [...(phase.needs ?? []), ...(phase.wants ?? [])]))
     expect(Object.keys(services)).toContain(need)
 })
 

@@ -12,8 +12,10 @@ export const sizes = {
 const bin = (...path) => join('node_modules', ...path)
 
 /**
+ * `needs`: services without which the phase is not run. `wants`: services that are looked for; a test that has none
+ * of its own skips itself and says so.
  * @typedef {{ name: string, says: string, commands?: { name: string, args: string[] }[], project?: string,
- *   needs?: string[] }} Phase
+ *   needs?: string[], wants?: string[] }} Phase
  * @type {Phase[]}
  */
 export const phases = [
@@ -36,6 +38,12 @@ export const phases = [
     name: 'kernel',
     says: 'the WebAssembly modules: compiled again, same bits everywhere, fast',
     project: 'kernel',
+  },
+  {
+    name: 'determinism',
+    says: 'golden simulations: the same bits on Node 20, 22 and 24, in Chromium and on emulated aarch64',
+    project: 'determinism',
+    wants: ['node-20', 'node-22', 'node-24', 'node-aarch64', 'chromium'],
   },
   { name: 'contract', says: 'one suite a port, over every adapter', project: 'contract' },
   { name: 'package', says: 'what would be published', project: 'package' },

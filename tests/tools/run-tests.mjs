@@ -116,6 +116,14 @@ function findNeeds(phase, env, without) {
   return missing
 }
 
+/** Puts the paths of what a phase only wants where its tests look; they skip, with the reason, what is not there. */
+function findWants(phase, env, without) {
+  for (const name of phase.wants ?? []) {
+    const found = without.includes(name) ? undefined : findService(name, systemWorld())
+    env[services[name].variable] = found ?? ''
+  }
+}
+
 function addUp(total, counts) {
   total.passed += counts.passed
   total.failed.push(...counts.failed)
@@ -126,6 +134,7 @@ function runPhase(phase, env, scratch, without, total) {
   const names = phase.needs ? listProject(phase, env) : []
   if (phase.needs && names.length === 0) return 'no tests'
   const missing = findNeeds(phase, env, without)
+  findWants(phase, env, without)
   if (missing.length === 0) {
     const counts = phase.commands ? runCommands(phase, env) : runProject(phase, env, scratch)
     addUp(total, counts)

@@ -28,7 +28,7 @@ test('a missing service ends the run with what was not run, a cure, and a non-ze
 test('a service left out knowingly turns its tests into skipped ones, each named with the reason', () => {
   const { lines, last } = npmTest('--only', 'browser', '--without', 'chromium')
   expect(last).toMatch(/^0 passed, 0 failed, \d+ skipped$/)
-  const named = lines.filter((line) => /^skipped: .*replay.* \(--without chromium\)$/.test(line))
+  const named = lines.filter((line) => /^skipped: tests\/browser\/.* \(--without chromium\)$/.test(line))
   expect(last).toBe(`0 passed, 0 failed, ${named.length} skipped`)
   // Exactly one line is the closing line.
   expect(lines.filter((line) => /^\d+ passed, \d+ failed/.test(line))).toHaveLength(1)

@@ -1,8 +1,9 @@
 // Programs that some tests need beside Node: where each is looked for, how it is installed, and its cure.
 //
 // Looked for in this order: an environment variable, PATH, the user's cache. Then, on Debian and Ubuntu: as root
-// it is installed by apt; without root, where `unpack` names packages, they are unpacked into the cache. Every
-// step that changes the machine is said. The machine comes in as `world`, so that tests can have any.
+// it is installed by apt; without root, where `unpack` names packages, they are unpacked into the cache. What has
+// `fetch` (engines.mjs) is always unpacked into the cache. Every step that changes the machine is said. The machine
+// comes in as `world`, so that tests can have any.
 
 import { spawnSync } from 'node:child_process'
 import {
@@ -19,10 +20,12 @@ import {
 } from 'node:fs'
 import { homedir } from 'node:os'
 import { delimiter, join } from 'node:path'
+import { engines, fetchNode } from './engines.mjs'
 
 /**
  * `commands`: names on PATH, best first. `apt`: the package root installs. `unpack`: packages that together
- * hold the program and those of its libraries that a plain system lacks; absent where that cannot work.
+ * hold the program and those of its libraries that a plain system lacks; absent where that cannot work. Instead of both,
+ * `fetch`: what engines.mjs unpacks.
  */
 export const services = {
   chromium: {
@@ -44,6 +47,7 @@ export const services = {
       'liblzf1',
     ],
   },
+  ...engines,
 }
 
 /**
@@ -55,15 +59,22 @@ export const services = {
  * @property {(path: string) => boolean} runs whether this path is a program one may run
  * @property {(packageName: string) => boolean} install by apt, as root
  * @property {(name: string, packages: string[], folder: string) => boolean} unpack into the cache, without root
+ * @property {(what: { npm: string, debs: string[] }, folder: string) => boolean} fetch into the cache
  * @property {(line: string) => void} say
  */
+
+/** In the cache. What is fetched has its version in the name, or an old one would be taken for it. */
+function folderOf(name, world) {
+  const version = services[name].fetch?.npm.split('@').at(-1)
+  return join(world.cache, version === undefined ? name : `${name}-${version}`)
+}
 
 /** @param {string} name @param {World} world */
 function installed(name, world) {
   const row = services[name]
   const folders = (world.env.PATH ?? '').split(delimiter).filter((folder) => folder !== '')
   const onPath = row.commands.flatMap((command) => folders.map((folder) => join(folder, command)))
-  return [...onPath, join(world.cache, name, 'run')].find((path) => world.runs(path))
+  return [...onPath, join(folderOf(name, world), 'run')].find((path) => world.runs(path))
 }
 
 /**
@@ -79,13 +90,21 @@ export function findService(name, world) {
     return undefined
   }
   const found = installed(name, world)
-  if (found !== undefined || !world.debian) return found
+  if (found !== undefined) return found
+  if (row.fetch) {
+    const folder = folderOf(name, world)
+    world.say(
+      `${name} is not here: unpacking ${[row.fetch.npm, ...row.fetch.debs].join(', ')} into ${folder}`,
+    )
+    return world.fetch(row.fetch, folder) ? installed(name, world) : undefined
+  }
+  if (!world.debian) return undefined
   if (world.root) {
     world.say(`${name} is not here: installing the package ${row.apt} with apt-get (as root)`)
     return world.install(row.apt) ? installed(name, world) : undefined
   }
   if (row.unpack === undefined) return undefined
-  const folder = join(world.cache, name)
+  const folder = folderOf(name, world)
   world.say(`${name} is not here and this is not root: unpacking its Debian packages into ${folder}`)
   return world.unpack(name, row.unpack, folder) ? installed(name, world) : undefined
 }
@@ -93,10 +112,19 @@ export function findService(name, world) {
 /** What a person can do about a missing service, with and without root. */
 export function cures(name) {
   const row = services[name]
+  const accept = `  or accept it knowingly: npm test -- --without ${name}`
+  if (row.fetch) {
+    const debs = row.fetch.debs.length === 0 ? '' : ` and apt-get download ${row.fetch.debs.join(' ')}`
+    return [
+      `${name} is missing: it comes by npm pack ${row.fetch.npm}${debs} (Linux, with network)`,
+      `  without: set ${row.variable} to the path of such a node program`,
+      accept,
+    ]
+  }
   return [
     `${name} is missing. With root: apt-get install ${row.apt} (Fedora: dnf install ${name === 'redis-server' ? 'redis' : name})`,
     `  without root: set ${row.variable} to the path of a ${name} program`,
-    `  or accept it knowingly: npm test -- --without ${name}`,
+    accept,
   ]
 }
 
@@ -163,6 +191,7 @@ export function systemWorld() {
     },
     install: installByApt,
     unpack: unpackFromDebs,
+    fetch: fetchNode,
     say: (line) => console.log(line),
   }
 }

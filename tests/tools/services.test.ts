@@ -14,6 +14,7 @@ function machine(programs: string[], change: Partial<World> = {}) {
     runs: (path) => programs.includes(path),
     install: () => false,
     unpack: () => false,
+    fetch: () => false,
     say: (line) => said.push(line),
     ...change,
   }
@@ -65,11 +66,27 @@ test('an install that fails leaves the service missing', () => {
   expect(findService('chromium', machine([], { root: true }).world)).toBeUndefined()
 })
 
+test('another Node is fetched into a folder of its version, on any system and as anybody, and said', () => {
+  for (const root of [true, false]) {
+    const programs: string[] = []
+    const fetch = (_: unknown, folder: string) => programs.push(`${folder}/run`) > 0
+    const { world, said } = machine(programs, { debian: false, root, fetch })
+    const found = findService('node-22', world)
+    expect(found).toMatch(/^\/cache\/node-22-22\.\d+\.\d+\/run$/)
+    expect(said).toHaveLength(1)
+    expect(said[0]).toMatch(/^node-22 is not here: unpacking node-linux-\w+@22\./)
+    expect(findService('node-22', world)).toBe(found)
+    expect(said).toHaveLength(1)
+  }
+  expect(findService('node-22', machine([]).world)).toBeUndefined()
+})
+
 test('the cure names the way with root, the way without, and the way to accept', () => {
   for (const [name, row] of Object.entries(services)) {
     const text = cures(name).join('\n')
-    expect(text).toContain(`With root: apt-get install ${row.apt}`)
-    expect(text).toContain(`without root: set ${row.variable}`)
+    if ('fetch' in row) expect(text).toContain(`npm pack ${row.fetch.npm}`)
+    else expect(text).toContain(`With root: apt-get install ${row.apt}`)
+    expect(text).toMatch(new RegExp(`without(?: root)?: set ${row.variable}`))
     expect(text).toContain(`npm test -- --without ${name}`)
   }
 })

@@ -1,0 +1,24 @@
+// Golden evaluations: one founder of a problem that comes with the program, evaluated as a worker does.
+
+import { randomGenome } from '../../shared/encodings.js'
+import type { Genome } from '../../shared/genome.js'
+import type { AnyProblem } from '../../shared/problem.js'
+import { stream } from '../../shared/streams.js'
+import { evaluate } from '../../sim/evaluate.js'
+
+const seed = 20_261_209
+
+export function founder(problem: AnyProblem, number: number): Genome {
+  return problem.repair(randomGenome(problem.genome, stream(seed, 'founder', 0, number)))
+}
+
+/** Values of all simulations; a failure is the number of its simulation and its reason, as character codes. */
+export function evaluationNumbers(problem: AnyProblem, number: number, replicates: number): number[] {
+  const genome = founder(problem, number)
+  const { values, failures } = evaluate(problem, genome, seed, true, number, 0, replicates)
+  const reasons = failures.flatMap(({ simulation, reason }) => [
+    simulation,
+    ...Array.from(reason, (character) => character.codePointAt(0)!),
+  ])
+  return [...values, ...reasons]
+}
