@@ -6,10 +6,13 @@
 import { writeFileSync } from 'node:fs'
 import { fileURLToPath } from 'node:url'
 import { afterAll, beforeAll, describe, expect, type TestContext, test } from 'vitest'
+import { advance } from '../../sim/lattice/advance.js'
 import { cures, services } from '../tools/services.mjs'
 import { golden } from './digests.js'
 import { engineRoom, type Report } from './engines.js'
-import computeGolden, { type Digests } from './golden.js'
+import computeGolden, { type Digests, machines } from './golden.js'
+import { golden as lattices, situations } from './lattices.js'
+import { evaluateFounder } from './machines.js'
 import { goldenModule } from './module.js'
 import { digestOf } from './numbers.js'
 
@@ -54,6 +57,32 @@ test('reference and kernel give one digest', () => {
   for (const kind of ['plane', 'space'])
     expect(golden[`lattices, ${kind}, 4 lanes`]).toBe(golden[`lattices, ${kind}, reference`])
   expect(new Set(Object.values(golden)).size).toBe(Object.keys(golden).length - 2)
+})
+
+// Without this a digest could be one of laws that nothing feels, or of lattices that soon stand still.
+test.each([2, 3] as const)(
+  'golden lattices in %i dimensions feel every law and have no fault',
+  (dimensions) => {
+    let touched = 0
+    for (let body = 0; body < lattices.bodies; body++) {
+      for (const lattice of situations(dimensions, body, 4)) {
+        expect(advance(lattice, lattices.steps)).toBeUndefined()
+        const { passiveCount, activeCount, guidedCount, dragCount, fillCount, apartCount } = lattice
+        const counts = [passiveCount, activeCount, guidedCount, dragCount, fillCount, apartCount]
+        expect(Math.min(...counts, lattice.prescribedCount, lattice.sweepSteps[1]!)).toBeGreaterThan(0)
+        expect(lattice.sweepSteps[1]! + lattice.driveStartStep).toBeLessThan(lattices.steps)
+        touched += lattice.sensed[0]!
+      }
+    }
+    expect(touched).toBeGreaterThan(0)
+  },
+)
+
+const founders = machines.map(([problem, founder, replicates]) => {
+  return { name: problem.name, failures: () => evaluateFounder(problem, founder, replicates).failures }
+})
+test.each(founders)('the golden founder of $name does not fail', ({ failures }) => {
+  expect(failures()).toEqual([])
 })
 
 test('a digest sees the last bit and the order, and neither the sign of zero nor the kind of no number', () => {

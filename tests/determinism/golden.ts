@@ -2,6 +2,7 @@
 // them, so that this file bundled as a plug-in is one module that runs on every engine and needs nothing of it
 // (module.ts). What they must give is in digests.ts.
 
+import type { AnyProblem } from '../../shared/problem.js'
 import { asProblem } from '../../sim/problem.js'
 import crawler from '../../sim/problems/culvert-crawler/index.js'
 import crawler3d from '../../sim/problems/culvert-crawler-3d/index.js'
@@ -24,13 +25,13 @@ export interface Digests {
  * Problem, number of the founder (chosen because it does not fail), replicates. Every row's name ends with the
  * problem's version: whoever changes results gives a new one.
  */
-const machines: readonly (readonly [problem: unknown, founder: number, replicates: number])[] = [
-  [crawler, 0, 4],
-  [crawler3d, 2, 1],
-  [mount, 2, 1],
-  [pad, 7, 1],
-  [walker, 12, 1],
-  [rake, 2, 1],
+export const machines: readonly (readonly [problem: AnyProblem, founder: number, replicates: number])[] = [
+  [asProblem(crawler), 0, 4],
+  [asProblem(crawler3d), 2, 1],
+  [asProblem(mount), 2, 1],
+  [asProblem(pad), 7, 1],
+  [asProblem(walker), 12, 1],
+  [asProblem(rake), 2, 1],
 ]
 
 const simulations: readonly (readonly [name: string, numbers: () => number[]])[] = [
@@ -46,8 +47,7 @@ const simulations: readonly (readonly [name: string, numbers: () => number[]])[]
   ['lattices, space, 2 lanes', () => lanesNumbers(3, 2, 'double')],
   ['lattices, space, 8 single lanes', () => lanesNumbers(3, 8, 'single')],
   ['controllers', controllerNumbers],
-  ...machines.map(([exported, founder, replicates]) => {
-    const problem = asProblem(exported)
+  ...machines.map(([problem, founder, replicates]) => {
     const name = `${problem.name} ${problem.version}`
     return [name, () => evaluationNumbers(problem, founder, replicates)] as const
   }),

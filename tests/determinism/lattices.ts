@@ -23,8 +23,10 @@ const samples = 24
 const stepsASample = 50
 const sampleSeconds = 0.005
 
+export const golden = { bodies, steps: samples * stepsASample }
+
 /** Situations of a body; with own material (every strut differs between them) in every second body. */
-function situations(dimensions: 2 | 3, body: number, count: number): Lattice[] {
+export function situations(dimensions: 2 | 3, body: number, count: number): Lattice[] {
   const draw = stream(seed, 'spare', body, dimensions)
   const spec = randomBody(draw, dimensions)
   const lattice = buildLattice(spec)

@@ -3,12 +3,22 @@
 // then behaves like `node`.
 
 import { spawnSync } from 'node:child_process'
-import { chmodSync, mkdirSync, mkdtempSync, readdirSync, renameSync, rmSync, writeFileSync } from 'node:fs'
+import {
+  chmodSync,
+  existsSync,
+  mkdirSync,
+  mkdtempSync,
+  readdirSync,
+  renameSync,
+  rmSync,
+  writeFileSync,
+} from 'node:fs'
 import { join } from 'node:path'
 
 /** What emulation needs beside the program: Debian packages, by the processor family of this machine. */
 const emulation = ['qemu-user-static', 'libc6-arm64-cross', 'libstdc++6-arm64-cross', 'libgcc-s1-arm64-cross']
-const emulator = 'qemu-aarch64-static'
+/** Newer releases have an empty qemu-user-static; there qemu-user is the static one. */
+const emulators = { 'qemu-aarch64-static': 'qemu-user-static', 'qemu-aarch64': 'qemu-user' }
 
 const native = process.arch === 'arm64' ? 'arm64' : 'x64'
 const row = (name, version) => ({
@@ -41,16 +51,28 @@ function unpackDebs(names, folder) {
   const debs = readdirSync(folder).filter((file) => file.endsWith('.deb'))
   const unpacked = debs.every((deb) => command('dpkg', ['-x', deb, 'system'], { cwd: folder }))
   for (const deb of debs) rmSync(join(folder, deb))
-  if (!unpacked) return false
+  return unpacked
+}
+
+const programsOf = (folder) => join(folder, 'system', 'usr', 'bin')
+const emulatorIn = (folder) =>
+  Object.keys(emulators).find((name) => existsSync(join(programsOf(folder), name)))
+
+/** The emulator and the libraries of the other family; the emulator's name, or undefined. */
+function unpackEmulation(names, folder) {
+  if (!unpackDebs(names, folder)) return undefined
+  if (emulatorIn(folder) === undefined && !unpackDebs([emulators['qemu-aarch64']], folder)) return undefined
   // The package holds emulators of every family, most of 300 MB.
-  const programs = join(folder, 'system', 'usr', 'bin')
-  for (const file of readdirSync(programs)) if (file !== emulator) rmSync(join(programs, file))
-  return true
+  for (const file of readdirSync(programsOf(folder)))
+    if (!(file in emulators)) rmSync(join(programsOf(folder), file))
+  return emulatorIn(folder)
 }
 
 /** The one file bin/node of a package of the registry, as FOLDER/node. */
 function unpackNode(spec, folder) {
-  if (!command('npm', ['pack', spec, '--silent'], { cwd: folder })) return false
+  // Without a network it should not take long to find out.
+  const patience = ['--fetch-retries=1', '--fetch-retry-mintimeout=1000', '--fetch-retry-maxtimeout=2000']
+  if (!command('npm', ['pack', spec, '--silent', ...patience], { cwd: folder })) return false
   const archive = readdirSync(folder).find((file) => file.endsWith('.tgz'))
   if (archive === undefined) return false
   const unpacked = command('tar', ['-xzf', archive, '--strip-components=2', 'package/bin/node'], {
@@ -69,10 +91,11 @@ export function fetchNode({ npm, debs }, folder) {
   mkdirSync(join(folder, '..'), { recursive: true })
   const half = mkdtempSync(`${folder}-`)
   try {
-    if (debs.length > 0 && !unpackDebs(debs, half)) return false
+    const emulator = debs.length === 0 ? undefined : unpackEmulation(debs, half)
+    if (debs.length > 0 && emulator === undefined) return false
     if (!unpackNode(npm, half)) return false
     const under = `"$here/system/usr/bin/${emulator}" -L "$here/system/usr/aarch64-linux-gnu" `
-    const start = `${debs.length === 0 ? '' : under}"$here/node"`
+    const start = `${emulator === undefined ? '' : under}"$here/node"`
     const script = `#!/bin/sh\nhere=$(dirname "$0")\nexec ${start} "$@"\n`
     writeFileSync(join(half, 'run'), script)
     chmodSync(join(half, 'run'), 0o755)
