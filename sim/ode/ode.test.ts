@@ -1,22 +1,8 @@
-import { createRequire } from 'node:module'
 import { describe, expect, test } from 'vitest'
 import { cos, sin } from '../../shared/detmath/index.js'
+import { Solver } from '../../tests/tools/odex.js'
 import { type EventOf, flow, startMotion } from './flow.js'
 import { type Rates, rungeKutta4 } from './runge-kutta.js'
-
-// odex 2.0.4, Hairer and Wanner's extrapolation code ODEX in JavaScript: a second opinion. It carries no types that
-// a strict compiler takes.
-interface OdexSolver {
-  absoluteTolerance: number
-  relativeTolerance: number
-  solve(
-    rates: (t: number, y: number[]) => number[],
-    from: number,
-    start: number[],
-    to: number,
-  ): { y: number[] }
-}
-const { Solver } = createRequire(import.meta.url)('odex') as { Solver: new (size: number) => OdexSolver }
 
 const pendulum: Rates = (_seconds, state, rate) => {
   rate[0] = state[1]!

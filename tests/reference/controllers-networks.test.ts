@@ -2,7 +2,6 @@
 // the dynamics of small continuous-time recurrent neural networks, 1995 (from memory; formulas derived again).
 
 import { Matrix } from 'ml-matrix'
-import { Solver } from 'odex'
 import { describe, expect, test } from 'vitest'
 import { hex, sha256 } from '../../shared/digests.js'
 import { checkGenome, randomGenome } from '../../shared/encodings.js'
@@ -25,6 +24,7 @@ import { buildLattice } from '../../sim/lattice/build.js'
 import { packLanes, unpackLane } from '../../sim/lattice/lanes.js'
 import type { LatticeSpec } from '../../sim/lattice/spec.js'
 import { varyLattice } from '../../sim/lattice/vary.js'
+import { Solver } from '../tools/odex.js'
 import { orderOf } from './physics-bodies.js'
 
 const digest = (controller: Controller) =>

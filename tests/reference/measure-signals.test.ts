@@ -1,7 +1,6 @@
 // Amplitudes, phases and spectra of signals whose content is known exactly.
 
 import FFT from 'fft.js'
-import { Solver } from 'odex'
 import { describe, expect, test } from 'vitest'
 import { cos, sin } from '../../shared/detmath/trigonometry.js'
 import { hex, sha256 } from '../../shared/digests.js'
@@ -9,6 +8,7 @@ import { Refusal } from '../../shared/refusals.js'
 import { dominantTone, spectralPeaks, spectrum, transformer } from '../../sim/measure/spectrum.js'
 import { fitTones, goertzelSum } from '../../sim/measure/tones.js'
 import { peakRatio, sweptTransmissibility, transmissibility } from '../../sim/measure/transmissibility.js'
+import { Solver } from '../tools/odex.js'
 
 const turn = 2 * Math.PI
 const signal = (count: number, of: (n: number) => number) =>
