@@ -30,7 +30,7 @@ afterAll(() => room?.leave())
 function programOf(name: keyof typeof services, context: TestContext): string {
   const path = process.env[services[name].variable]
   const [cure, instead] = cures(name)
-  return path || context.skip(`no ${name}. ${cure};${instead}; npm test -- --only determinism looks for it`)
+  return path || context.skip(`${cure};${instead?.slice(1)}; npm test -- --only determinism looks for it`)
 }
 
 /** To be called after results were changed on purpose, with new versions of the problems they belong to. */

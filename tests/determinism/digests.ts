@@ -16,6 +16,7 @@ export const golden: { readonly [name: string]: string } = {
   'lattices, space, 2 lanes': '1bd29778fea2743f57c44be69bb832ad0f66e28d5c69ecc8a1c5dafb655b1895',
   'lattices, space, 8 single lanes': 'ea3e31991bdd906fdfcfcca019a1c9fd657f378198462db81fd5f086c168f7da',
   'controllers': '91289771f1d1406ddd4f40c61beb7f50a863162bbd6426a8236e9362d59d67ed',
+  'heap rapier3d-deterministic-0.21.0': '2096bf2726e1103bdf3608675bf0f72d79bb7df2af4cb122909deb5a137a4102',
   'culvert-crawler 2': 'c0b95826515410a897038f4cc049460b272e711d9aad048b563b3167edc680b8',
   'culvert-crawler-3d 1': 'bedea88a1b29fbce7ca616eb8302b8d915fffb1ca8335c629d04e39680854480',
   'pump-mount 1': '9d6963dc01ce101095be32bbefa6d847c82ab7ed6be05e3bb8699339ca15ae1f',

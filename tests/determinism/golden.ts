@@ -10,11 +10,13 @@ import mount from '../../sim/problems/pump-mount/index.js'
 import walker from '../../sim/problems/ramp-walker/index.js'
 import rake from '../../sim/problems/screen-rake/index.js'
 import pad from '../../sim/problems/seal-pad/index.js'
+import { library as library3d } from '../../sim/rigid/rigid3d.js'
 import { controllerNumbers } from './controllers.js'
 import { lanesNumbers, referenceNumbers } from './lattices.js'
 import { evaluationNumbers } from './machines.js'
 import { functionNumbers, modesNumbers, signalNumbers } from './measures.js'
 import { digestOf } from './numbers.js'
+import { heapNumbers } from './rigid.js'
 
 /** Name of a golden simulation: its digest. */
 export interface Digests {
@@ -47,6 +49,7 @@ const simulations: readonly (readonly [name: string, numbers: () => number[]])[]
   ['lattices, space, 2 lanes', () => lanesNumbers(3, 2, 'double')],
   ['lattices, space, 8 single lanes', () => lanesNumbers(3, 8, 'single')],
   ['controllers', controllerNumbers],
+  [`heap ${library3d}`, heapNumbers],
   ...machines.map(([problem, founder, replicates]) => {
     const name = `${problem.name} ${problem.version}`
     return [name, () => evaluationNumbers(problem, founder, replicates)] as const
