@@ -2,7 +2,7 @@
 // milliseconds, in one order and then in the other. What counts is CPU time, and only ratios within a round: neighbours
 // on the machine slow all of a round down, so the ratios stay.
 
-import { type ChildProcessWithoutNullStreams, spawn } from 'node:child_process'
+import { type ChildProcessWithoutNullStreams, spawn, spawnSync } from 'node:child_process'
 import { createInterface } from 'node:readline'
 import { median } from '../statistics.js'
 
@@ -27,6 +27,12 @@ interface Runner {
 
 /** Nanoseconds of CPU a step and replicate of every contestant, by name, one object a round. */
 export type Rounds = readonly { readonly [name: string]: number }[]
+
+/**
+ * All on one processor, where the system can do that: on shared machines one is often half as fast as the next, for as
+ * long as its neighbours are busy, and a process mostly stays where it is.
+ */
+const pinned = spawnSync('taskset', ['-c', '0', 'true']).status === 0 ? ['taskset', '-c', '0'] : []
 
 const sampleNanoseconds = 25e6
 const warmUpNanoseconds = 400e6
@@ -63,7 +69,8 @@ export async function stateAfter(contestant: Contestant, steps: number): Promise
 }
 
 function start(contestant: Contestant): Runner {
-  const child = spawn(contestant.program, contestant.args, { stdio: ['pipe', 'pipe', 'pipe'] })
+  const [program, ...args] = [...pinned, contestant.program, ...contestant.args] as [string, ...string[]]
+  const child = spawn(program, args, { stdio: ['pipe', 'pipe', 'pipe'] })
   const lines = createInterface({ input: child.stdout })
   let errors = ''
   child.stderr.on('data', (data) => {
