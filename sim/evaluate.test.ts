@@ -3,6 +3,7 @@ import { real } from '../shared/encodings.js'
 import { limits } from '../shared/limits.js'
 import type { AnyProblem, SimulationOutcome, Situation } from '../shared/problem.js'
 import { evaluate, evaluateStrict } from './evaluate.js'
+import { buildLattice } from './lattice/build.js'
 import { asProblem, defineProblem } from './problem.js'
 
 type Simulate = (situations: readonly Situation<number>[]) => unknown
@@ -139,4 +140,37 @@ describe('faults of a problem become failed rows with a reason', () => {
     expect(failures[0]!.reason).toMatch(/^leg broke \[31mxxx/)
     expect(failures[0]!.reason).toHaveLength(limits.failureReasonLength)
   })
+})
+
+test('a simulator that refuses a machine is quoted with the part it names, of whatever copy its refusal is', () => {
+  const lattice = {
+    dimensions: 2 as const,
+    nodes: [
+      { positionM: [0, 0], massKg: 1 },
+      { positionM: [1, 0], massKg: -3 },
+    ],
+    struts: [{ a: 0, b: 1, stiffnessNpm: 1, dampingNspm: 0 }],
+    gravityMps2: [0, 0],
+    stepSeconds: 'auto' as const,
+  }
+  const [own] = run(problemOf(() => buildLattice(lattice))).failures
+  expect(own?.reason).toMatch(/^the problem threw: lattice\.nodes\[1\]\.massKg: .*found -3.*mass above 0$/)
+  const stranger = Object.assign(new Error('found 7.'), { where: { field: 'lattice.struts[4]' } })
+  const [other] = run(
+    problemOf(() => {
+      throw stranger
+    }),
+  ).failures
+  expect(other?.reason).toBe('the problem threw: lattice.struts[4]: found 7')
+  const hostile = Object.defineProperty(new Error('odd'), 'where', {
+    get: () => {
+      throw new Error('no')
+    },
+  })
+  const [odd] = run(
+    problemOf(() => {
+      throw hostile
+    }),
+  ).failures
+  expect(odd?.reason).toBe('the problem threw: odd')
 })

@@ -66,7 +66,7 @@ export function evaluateStrict(
     }
     outcomes = problem.simulate(genome, situations)
   } catch (error) {
-    return allFailed(values, rows, `the problem threw: ${textOf(error)}`)
+    return allFailed(values, rows, `the problem threw: ${fieldOf(error)}${textOf(error).replace(/\.$/, '')}`)
   }
   if (!Array.isArray(outcomes) || outcomes.length !== rows) {
     const got = Array.isArray(outcomes) ? `${outcomes.length} outcomes` : typeof outcomes
@@ -148,6 +148,20 @@ function allFailed(values: Float64Array, rows: number, reason: string): StrictEv
 
 function reasonText(reason: string): string {
   return plainText(reason).slice(0, limits.failureReasonLength)
+}
+
+/**
+ * The field that a refusal names, such as the strut of a lattice, before its text. Read by its shape: a bundle has a
+ * Refusal class of its own.
+ */
+function fieldOf(error: unknown): string {
+  try {
+    if (!(error instanceof Error) || !('where' in error)) return ''
+    const where = error.where as { readonly field?: unknown } | null | undefined
+    return typeof where?.field === 'string' ? `${where.field}: ` : ''
+  } catch {
+    return ''
+  }
 }
 
 /** A short text of anything at all, also of things whose own toString throws. */
