@@ -35,6 +35,10 @@ export interface WorkItem {
   readonly isolation: 'shared' | 'alone'
   /** Workers that must not do it: they have simulated it already, or are shut out. */
   readonly avoid: readonly string[]
+  /** Hosts that must not do it. A dispatcher without any other answers with a loss of cause 'handed-back'. */
+  readonly avoidHosts?: readonly string[]
+  /** Only on this class of processor. */
+  readonly onProcessor?: string
 }
 
 /** Who simulated: for the record, blame and confirmation. */
@@ -43,6 +47,15 @@ export interface Executor {
   /** Unique within the record, e.g. 'host-a/4711/t2'. */
   readonly worker: string
   readonly host: string
+  /** Class of its processor: within one, honest machines agree to the bit. */
+  readonly processor?: string
+}
+
+/** A machine that can simulate now. */
+export interface FleetHost {
+  readonly host: string
+  readonly processor: string
+  readonly cores: number
 }
 
 /** How an evaluation was lost, and whether that can be the evaluation's own doing. */
@@ -67,3 +80,5 @@ export type DispatchFact =
       readonly detail: string
       readonly executor: Executor
     }
+  /** Which machines there are now; said at the start and whenever it changes. Never by a dispatcher of one machine. */
+  | { readonly kind: 'fleet'; readonly hosts: readonly FleetHost[] }

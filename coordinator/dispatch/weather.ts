@@ -67,13 +67,16 @@ class WeatherDispatcher implements Dispatcher {
   }
 
   private hold(fact: DispatchFact): Held {
-    const { delayMs, rank } = forecast(this.weather, fact)
+    const { delayMs, rank } = fact.kind === 'fleet' ? { delayMs: 0, rank: 0 } : forecast(this.weather, fact)
     return { fact, releaseMs: performance.now() + delayMs, rank }
   }
 }
 
 /** Delay and place among the answers of the same moment, from the seed and the evaluation's numbers alone. */
-export function forecast(weather: Required<Weather>, fact: DispatchFact): { delayMs: number; rank: number } {
+export function forecast(
+  weather: Required<Weather>,
+  fact: Exclude<DispatchFact, { kind: 'fleet' }>,
+): { delayMs: number; rank: number } {
   const { island, evaluation, attempt, purpose } = fact.item
   const tries =
     2 * Math.min(attempt, limits.attemptsBeforeIsolation + limits.attemptsAlone) +

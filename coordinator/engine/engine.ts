@@ -119,6 +119,7 @@ export class Engine implements Gate {
   }
 
   #takeFact(fact: DispatchFact): void {
+    if (fact.kind === 'fleet') return
     const work = this.#works.find(fact.item.island, fact.item.evaluation)
     if (fact.kind === 'lost') {
       if (work) this.#takeLoss(work, fact)

@@ -37,10 +37,13 @@ export const packageOwners: { readonly [name: string]: string | 'everywhere' } =
   '@dimforge/rapier3d-deterministic-compat': 'sim/rigid',
   '@noble/hashes': 'shared',
   'better-sqlite3': 'coordinator/record',
+  bullmq: 'worker/redis',
   commander: 'coordinator/cli',
   esbuild: 'worker/plugin',
   'fft.js': 'sim/measure',
+  ioredis: 'worker/redis',
   'ml-matrix': 'sim/measure',
+  msgpackr: 'shared/cluster',
   yaml: 'coordinator/cli',
   zod: 'everywhere',
 }

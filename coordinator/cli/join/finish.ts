@@ -75,7 +75,7 @@ export async function retest(
   let answered = 0
   while (!signal.aborted && answered < individuals.length) {
     for (const fact of await dispatcher.facts(retestWaitMs)) {
-      if (fact.item.island !== 0) continue
+      if (fact.kind === 'fleet' || fact.item.island !== 0) continue
       answered++
       if (fact.kind === 'result') tested.set(individuals[fact.item.evaluation]!, fact.result)
     }
