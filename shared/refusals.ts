@@ -216,6 +216,48 @@ export const refusals = {
     cure: 'Check the disk, then run the same command again; nothing acknowledged is lost.',
   },
 
+  // Cluster
+  'queue-unreachable': {
+    exitCode: unreachable,
+    text: 'Redis cannot be reached',
+    cure: 'Check host and port, and that Redis runs there; the same command goes on when it does.',
+  },
+  'queue-access': {
+    exitCode: notPermitted,
+    text: 'Redis does not let us in',
+    cure: 'Check user and password (SKERRY_REDIS or --redis) and what its access rules allow.',
+  },
+  'queue-unfit': {
+    exitCode: configuration,
+    text: 'This Redis cannot carry a search safely',
+    cure: 'Mend the setting named above; `skerry preflight --redis URL` checks all of them.',
+  },
+  'protocol-mismatch': {
+    exitCode: protocol,
+    text: 'Coordinator and worker speak different versions',
+    cure: 'Install the same version of Skerry on both sides.',
+  },
+  'search-name-taken': {
+    exitCode: configuration,
+    text: 'Another search of this name runs on this Redis',
+    cure: 'Give one of them another name in its search file, or use another Redis.',
+  },
+  'plugin-untrusted': {
+    exitCode: notPermitted,
+    text: 'The problem of this search is not signed with the key of this site',
+    cure: 'Give coordinator and workers the same key file with --key.',
+  },
+  'too-large-to-send': {
+    exitCode: configuration,
+    text: 'An evaluation is too large for the queue',
+    cure: 'Make the genome smaller, or read large data from a file beside the problem.',
+  },
+  'rendezvous-missing': {
+    exitCode: unreachable,
+    text: 'No coordinator has said where it is',
+    cure: 'Start `skerry run FILE --record DIR --own-redis`; workers that wait find it.',
+  },
+
   // Simulating
   'no-workers': {
     exitCode: unreachable,
