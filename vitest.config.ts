@@ -31,6 +31,7 @@ export default defineConfig({
         },
       },
       { test: { ...long, name: 'contract', include: ['tests/contract/**/*.test.ts'] } },
+      { test: { ...long, name: 'queue', include: ['tests/queue/**/*.test.ts'], fileParallelism: false } },
       { test: { ...long, name: 'cluster', include: ['tests/cluster/**/*.test.ts'] } },
       { test: { ...long, name: 'chaos', include: ['tests/chaos/**/*.test.ts'], fileParallelism: false } },
       { test: { ...long, name: 'package', include: ['tests/package/**/*.test.ts'] } },

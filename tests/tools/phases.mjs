@@ -46,6 +46,7 @@ export const phases = [
     wants: ['node-20', 'node-22', 'node-24', 'node-aarch64', 'chromium'],
   },
   { name: 'contract', says: 'one suite a port, over every adapter', project: 'contract' },
+  { name: 'queue', says: 'a real Redis and real workers', project: 'queue', needs: ['redis-server'] },
   { name: 'package', says: 'what would be published', project: 'package' },
   { name: 'cluster', says: 'simulated clusters under seeds', project: 'cluster' },
   { name: 'chaos', says: 'real processes, killed', project: 'chaos' },
