@@ -22,8 +22,9 @@ function criticalLoad(
   pieces: number,
   ends: readonly [End, End],
   thrust: (piece: number) => readonly [number, number] = () => [1, 1],
+  wall: Partial<BarSpec> = {},
 ): number {
-  const framework = beam({ pieces })
+  const framework = beam({ pieces, wall })
   const n = framework.unknownCount
   const free = bendingUnknowns(framework, ends)
   const stiffness = partOf(stiffnessMatrix(framework), n, free)
@@ -54,6 +55,23 @@ describe("Euler's columns, P = pi^2 EI / (K L)^2", () => {
   test('clamped and pinned is the root of x = tan x, 4.49340945790906: P = 20.190728556', () => {
     const [coarse, fine] = [16, 32].map((pieces) => criticalLoad(pieces, ['clamped', 'pinned']))
     expect(relative((16 * fine! - coarse!) / 15, 20.190728556)).toBeLessThan(1e-8)
+  })
+
+  test.each([
+    ['pinned', 'pinned', 1],
+    ['clamped', 'free', 2],
+  ] as const)('a column that shears, %s and %s: P = P_e / (1 + P_e / (kappa G A))', (one, other, factor) => {
+    // F. Engesser, Die Knickfestigkeit gerader Staebe, 1891 (from memory; also in Timoshenko and Gere, section 2.17).
+    const euler = (Math.PI / factor) ** 2
+    for (const shearN of [20, 200]) {
+      const truth = euler / (1 + euler / shearN)
+      const [coarse, middle, fine] = [8, 16, 32].map((pieces) =>
+        criticalLoad(pieces, [one, other], undefined, { shearN }),
+      )
+      const order = orderOf(coarse! - truth, middle! - truth)
+      expect(relative(fine!, truth)).toBeLessThan(1e-3)
+      expect(Math.abs(order - 2)).toBeLessThan(0.1)
+    }
   })
 
   test('a column under its own thrust loses stability there in the large-displacement solver too', () => {

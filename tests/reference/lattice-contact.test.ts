@@ -61,13 +61,20 @@ describe('a spring and a dashpot let go at zero force', () => {
     expect(relative(leave(zeta, 2e-5).contact, contact)).toBeLessThan(1e-3)
   })
 
+  test('at first order', () => {
+    const error = (h: number) => Math.abs(leave(0.2, h).e - 0.57174002)
+    // Where the step falls against the end of contact adds a ripple: mean over neighbouring steps.
+    const mean = (h: number) => [1, 1.02, 1.04, 1.06, 1.08].reduce((sum, f) => sum + error(f * h) / 5, 0)
+    expect(Math.abs(orderOf(mean(2e-3), mean(1e-3)) - 1)).toBeLessThan(0.1)
+  })
+
   test.each([
     [0.5, 0.215453761966],
     [0.7, 0.112808450694],
     [0.8, 0.070850300195],
     [0.9, 0.033518449106],
   ])('bilateral, e = %d belongs to zeta = %d', (e, zeta) => {
-    const h = 1e-5
+    const h = 5e-6
     const lattice = oscillator(1, 100, 20 * zeta, h)
     put(lattice, 1, vx, -1)
     advance(lattice, Math.round(Math.PI / (10 * Math.sqrt(1 - zeta * zeta)) / h))
@@ -238,16 +245,16 @@ describe('a jumper of two masses, M = 1 kg over m = 0.5 kg on k = 1000 N/m', () 
   }
 
   test('lifts off when pushed deeper than (M + m) g / k = 14.715 mm, not before', () => {
-    expect(jump(0.0145, 1e6).left).toBe(false)
-    expect(jump(0.015, 1e6).left).toBe(true)
+    expect(jump(0.99 * 0.014715, 1e6).left).toBe(false)
+    expect(jump(1.01 * 0.014715, 1e6).left).toBe(true)
   })
 
   test('pushed 50 mm it leaves at 1.511 m/s, its centre at 1.007 m/s, and rises 51.7 mm; better on firmer ground', () => {
     // v_M = sqrt(k/M) sqrt(push^2 - ((M + m) g / k)^2); momentum and energy (recomputed).
-    const [soft, firm] = [jump(0.05, 1e5), jump(0.05, 4e5)]
+    const [soft, firm] = [jump(0.05, 2.5e5), jump(0.05, 1e6)]
     expect(relative(firm.speed, 1.51111507669)).toBeLessThan(1e-2)
     expect(relative(firm.centre, 1.007410051127)).toBeLessThan(1e-2)
-    expect(relative(firm.rise, 0.051726555103)).toBeLessThan(2e-2)
+    expect(relative(firm.rise, 0.051726555103)).toBeLessThan(1e-2)
     expect(relative(firm.centre, 1.007410051127)).toBeLessThan(relative(soft.centre, 1.007410051127))
   })
 })

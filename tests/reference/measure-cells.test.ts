@@ -136,6 +136,24 @@ describe('cubic lattices', () => {
     near(pull.modulus, modulus)
     near(pull.poisson[0], poisson)
     near(pull.poisson[1], poisson)
+    // Zener's ratio 2 C44 / (C11 - C12), and the bulk modulus (C11 + 2 C12) / 3 of the first: 5/3.
+    const zener = (2 * stiffness[3]![3]!) / (stiffness[0]![0]! - stiffness[0]![1]!)
+    near(zener, (2 * c12) / (c11 - c12))
+    const published = { '1,1,0': 1, '1,0,0.375': 1, '1,0.5,0': 2 / 3, '1,1,1': 7 / 3 }[`${k1},${k2},${k3}`]
+    near(zener, published!)
+    if (k3 === 0 && k2 === 1) near((stiffness[0]![0]! + 2 * stiffness[0]![1]!) / 3, 5 / 3)
+  })
+
+  test.each([
+    [1.5, 1.5, 0],
+    [1, 0, 3 / 8],
+    [2, 1, 3 / 8],
+  ])('isotropic, with nu = 1/4, where k1 = k2 + 8 k3 / 3: %d, %d, %d; not beside it', (k1, k2, k3) => {
+    const of = (first: number) => homogenise(cubic([first, k2, k3])).stiffness
+    const zener = (c: readonly (readonly number[])[]) => (2 * c[3]![3]!) / (c[0]![0]! - c[0]![1]!)
+    near(zener(of(k1)), 1)
+    near(uniaxial(of(k1), 0).poisson[0], 0.25)
+    expect(zener(of(1.1 * k1))).toBeLessThan(0.99)
   })
 
   test('k = 1, 1, 0 is isotropic: any rotation leaves it as it is', () => {
@@ -177,6 +195,7 @@ describe('cubic lattices', () => {
     near(stiffness[0]![0], 2)
     near(stiffness[0]![1], 1)
     near(stiffness[5]![5], 1)
+    near((2 * stiffness[5]![5]!) / (stiffness[0]![0]! - stiffness[0]![1]!), 2)
     near(uniaxial(stiffness, 0).modulus, 4 / 3)
     near(uniaxial(stiffness, 0).poisson[0], 1 / 3)
   })

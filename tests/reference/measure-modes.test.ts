@@ -52,16 +52,24 @@ describe('chains of n equal masses', () => {
   })
 
   test('published samples', () => {
-    const fast = (n: number, ends: 'fixed-fixed' | 'fixed-free') =>
+    const fast = (n: number, ends: 'fixed-fixed' | 'free-free' | 'fixed-free') =>
       naturalModes(chain(n, ends))
         .modes.map(({ radps }) => radps)
         .filter((w) => w > 0)
-    near(fast(3, 'fixed-fixed')[0], 0.76536686473018)
-    near(fast(5, 'fixed-fixed')[0], 0.517638090205041)
+    const samples = [
+      [3, 'fixed-fixed', [0.76536686473018, Math.SQRT2, 1.847759065022573]],
+      [3, 'free-free', [1, 1.732050807568877]],
+      [3, 'fixed-free', [0.445041867912629, 1.246979603717467, 1.801937735804838]],
+      [5, 'fixed-fixed', [0.517638090205041, 1, Math.SQRT2, 1.732050807568877, 1.931851652578137]],
+      [5, 'free-free', [0.618033988749895, 1.175570504584946, 1.618033988749895, 1.902113032590307]],
+    ] as const
+    for (const [n, ends, truths] of samples) {
+      const found = fast(n, ends)
+      expect(found).toHaveLength(truths.length)
+      for (const [i, truth] of truths.entries()) near(found[i], truth)
+    }
     near(fast(10, 'fixed-fixed')[0], 0.28462967654657)
     near(fast(10, 'fixed-fixed')[9], 1.979642883761865)
-    near(fast(3, 'fixed-free')[0], 0.445041867912629)
-    near(fast(3, 'fixed-free')[2], 1.801937735804838)
   })
 
   test('a ring of n has 2 sin(pi q / n), each but the ends twice', () => {
@@ -87,6 +95,23 @@ describe('chains of n equal masses', () => {
       near(mode.dampingRatio, 0.3 / (2 * mode.radps))
     }
   })
+})
+
+test('one mass, m = 1, k = 100: 10 rad/s, 1.5915494309189535 Hz; its dashpot gives c / (2 sqrt(k m))', () => {
+  // c, damped frequency.
+  for (const [c, damped] of [
+    [0, 10],
+    [0.2, 9.999499987499],
+    [1, 9.987492177719],
+    [2, 9.949874371066],
+    [10, 8.660254037844],
+  ] as const) {
+    const mode = naturalModes(row([1, 1], [strut(0, 1, 100, c)], [0])).modes.at(-1)!
+    near(mode.radps, 10)
+    near(mode.radps / turn, 1.5915494309189535)
+    near(mode.dampingRatio, c / 20)
+    near(mode.radps * Math.sqrt(1 - mode.dampingRatio ** 2), damped)
+  }
 })
 
 describe('two masses', () => {

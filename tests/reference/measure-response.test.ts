@@ -58,6 +58,25 @@ describe('steady answers in the frequency domain', () => {
     }
   })
 
+  // The same without damping: 1 / |1 - r^2|; at r = 1 it is refused (below).
+  test.each([
+    [0.1, 1.01010101],
+    [0.5, 1.333333333],
+    [0.8, 2.777777778],
+    [0.9, 5.263157895],
+    [1.2, 2.272727273],
+    [Math.SQRT2, 1],
+    [1.5, 0.8],
+    [2, 0.333333333],
+    [3, 0.125],
+    [5, 0.041666667],
+    [10, 0.01010101],
+  ])('base motion at r = %d, undamped, is transmitted by %d', (r, truth) => {
+    const model = driven([1], [[100, 0]])
+    const value = amplitudeOf(harmonicResponse(model, (10 * r) / turn, base), endOf(model))
+    expect(Math.abs(value - truth)).toBeLessThan(6e-10)
+  })
+
   test.each([
     [0.05, 0.997521620628, 10.062213725341],
     [0.1, 0.990334344317, 5.122773579639],
@@ -87,6 +106,17 @@ describe('steady answers in the frequency domain', () => {
     const peakAt = Math.sqrt(1 - 2 * zeta * zeta)
     const peak = amplitudeOf(harmonicResponse(model, (10 * peakAt) / turn, push), 2)
     near(peak, 1 / (2 * zeta * Math.sqrt(1 - zeta * zeta)))
+  })
+
+  test.each([
+    [0.1, 0.989949493661, 5.025189076296],
+    [0.2, 0.959166304663, 2.551551815399],
+  ])('a force at zeta %d: the peak lies at r = %d and is %d', (zeta, r, peak) => {
+    const model = driven([1], [[100, 20 * zeta]])
+    const at = (ratio: number) =>
+      amplitudeOf(harmonicResponse(model, (10 * ratio) / turn, { forceN: [0, 0, 100, 0] }), 2)
+    near(at(r), peak)
+    for (const beside of [0.999, 1.001]) expect(at(r * beside)).toBeLessThan(peak)
   })
 
   test('a finite chain driven at its base, far end free', () => {
@@ -132,6 +162,31 @@ describe('steady answers in the frequency domain', () => {
       [1.3, 8, 6.628450044e-3],
     ])('w = %d, %d cells: %d of the base arrives', (w, cells, truth) => {
       expect(Math.abs(ends(w, cells) / truth - 1)).toBeLessThan(1e-9)
+    })
+
+    test.each([
+      [1.2, 0.502415484, -5.97874],
+      [1.3, 0.525747975, undefined],
+    ])('w = %d: each cell passes on %d of the motion, %s dB', (w, factor, decibels) => {
+      // e^-arcosh |cos qa|, cos qa = 1 - (2 C (m1 + m2) w^2 - m1 m2 w^4) / (2 C^2). A chain so long that its end is not felt.
+      const masses = Array.from({ length: 60 }, (_, i) => (i % 2 === 0 ? 1 : 2))
+      const model = driven(
+        masses,
+        masses.map((): [number, number] => [1, 0]),
+      )
+      const { real } = harmonicResponse(model, w / turn, base)
+      const found = Math.abs(real[2 * 3]! / real[2 * 1]!)
+      near(found, Math.exp(-Math.acosh(Math.abs(1 - (6 * w * w - 2 * w ** 4) / 2))))
+      expect(Math.abs(found - factor)).toBeLessThan(1e-9)
+      if (decibels) expect(Math.abs(20 * Math.log10(found) - decibels)).toBeLessThan(1e-6)
+    })
+
+    test.each([
+      [4, -24.27045],
+      [8, -48.186822],
+      [16, -96.016746],
+    ])('w = 1.2, %d cells: %d dB', (cells, decibels) => {
+      expect(Math.abs(20 * Math.log10(ends(1.2, cells)) - decibels)).toBeLessThan(1e-6)
     })
 
     test('dashpots of c = 2 zeta change it a little', () => {

@@ -83,6 +83,25 @@ describe('the largest step', () => {
     expect(tightest).toBeGreaterThan(0.67)
   })
 
+  test('both ends of a strut count: whichever way round it is listed, the bound is the same', () => {
+    // The middle of three masses on unequal springs has the largest row: w^2 <= 2 (3 + 5) / 1.
+    const nodes = [0, 1, 2].map((place) => ({ positionM: [place, 0], massKg: 1 }))
+    const strut = (a: number, b: number, stiffnessNpm: number) => ({ a, b, stiffnessNpm, dampingNspm: 0.5 })
+    const rows = [
+      [strut(0, 1, 3), strut(1, 2, 5)],
+      [strut(1, 0, 3), strut(1, 2, 5)],
+      [strut(0, 1, 3), strut(2, 1, 5)],
+      [strut(1, 0, 3), strut(2, 1, 5)],
+    ]
+    for (const struts of rows) {
+      const bound = stepBound({ nodes, struts, gravityMps2: [0, 0], stepSeconds: 1e-3 })
+      expect(bound.highestRadps).toBeCloseTo(4, 12)
+      // Damping 2 (0.5 + 0.5) = 2 z w.
+      expect(bound.dampingRatio).toBeCloseTo(2 / 8, 12)
+      expect(bound.node).toBe(1)
+    }
+  })
+
   test('contact counts: a heavy contact spring makes the step shorter', () => {
     const spec = {
       nodes: [{ positionM: [0, 0], massKg: 1 }],

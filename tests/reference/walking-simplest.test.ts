@@ -103,6 +103,24 @@ describe('the gaits at slope 0.009', () => {
   })
 })
 
+test('a swing foot that comes up to the ramp behind the stance leg is no heel strike', () => {
+  // So slow that the stance leg never gets over: the swing leg has swung there and back by then, and phi - 2 theta grows
+  // through zero while theta is above it.
+  const motion = startStep(stanceAfterStrike(0.2, -0.19), 0.009, h)
+  const clearance = () => motion.state[2]! - 2 * motion.state[0]!
+  let [before, passages] = [clearance(), 0]
+  for (let until = 0.05; until < 11; until += 0.05) {
+    if (endStep(motion, 0.009, until)) break
+    if (before < 0 && clearance() >= 0) {
+      expect(motion.state[0]).toBeGreaterThan(0)
+      passages++
+    }
+    before = clearance()
+  }
+  expect(passages).toBeGreaterThan(0)
+  expect(takeStep(stanceAfterStrike(0.2, -0.19), 0.009, h)).toHaveProperty('fell', 'fell backwards')
+})
+
 describe('other slopes', () => {
   // gamma, theta, theta', period; recomputed.
   const long = [
