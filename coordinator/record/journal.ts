@@ -13,12 +13,13 @@ import type {
   Journal,
   SnapshotRow,
 } from '../engine/ports.js'
-import { type AppendedRows, contentsOf, headAfter } from './chain.js'
+import { type AppendedRows, type AppendHeader, contentsOf, headAfter } from './chain.js'
 import { rollBack } from './database.js'
 import type { GuardedDatabase } from './guard.js'
 import { mayTryAgain } from './guard.js'
 import type { Hold } from './holder.js'
 import type { SqliteReader, Totals } from './reader.js'
+import { RowWriter } from './row-writer.js'
 import {
   bytesOfEvaluations,
   bytesOfNumbers,
@@ -28,9 +29,8 @@ import {
   columnsOfMail,
   textOfFailures,
 } from './rows.js'
-import { type ChainedTable, chainedTables, insertSql } from './schema.js'
-import { snapshotsKept, storeSnapshot } from './states.js'
-import type { Column, Statement } from './storage.js'
+import { storeSnapshot } from './states.js'
+import type { Column } from './storage.js'
 import type { Witness } from './witness.js'
 
 /** Numbers of workers held in memory; beyond that they are looked up again. */
@@ -48,7 +48,8 @@ export class SqliteJournal implements Journal {
   readonly #hold: Hold
   readonly #witness: Witness
   readonly #clock: () => number
-  readonly #inserts: { readonly [table in ChainedTable]: Statement }
+  readonly #writer: RowWriter
+  readonly #mirror: Mirror
   readonly #statements: ReturnType<typeof prepareStatements>
   readonly #workers = new Map<string, number>()
   readonly #commits = new Map<number, number>()
@@ -60,14 +61,15 @@ export class SqliteJournal implements Journal {
     readonly hold: Hold
     readonly witness: Witness
     readonly clock: () => number
+    readonly mirror?: Mirror
   }) {
     this.#database = parts.database
     this.#reader = parts.reader
     this.#hold = parts.hold
     this.#witness = parts.witness
     this.#clock = parts.clock
-    const prepare = (table: ChainedTable) => [table, this.#database.prepare(insertSql(table))] as const
-    this.#inserts = Object.fromEntries(chainedTables.map(prepare)) as { [table in ChainedTable]: Statement }
+    this.#mirror = parts.mirror ?? (() => {})
+    this.#writer = new RowWriter(this.#database, (island) => this.#reader.forgetAhead(island))
     this.#statements = prepareStatements(this.#database)
     const highest = (sql: string) => (this.#database.prepare(sql).get()?.[0] as number | null) ?? 0
     this.#position = {
@@ -101,7 +103,7 @@ export class SqliteJournal implements Journal {
     const contents = contentsOf(added)
     const header = { sequence, epoch: this.#hold.epoch, atMs, arrivals, cpuSeconds, contents }
     return {
-      contents,
+      header,
       position: {
         appends: sequence,
         arrivals,
@@ -115,11 +117,13 @@ export class SqliteJournal implements Journal {
   }
 
   #columnsOf(rows: Append, newWorkers: Map<string, number>): AppendedRows {
-    const number = (row: { readonly worker: string; readonly host: string }) =>
-      this.#workerNumber(row, newWorkers)
+    const number = (row: WorkerNames) => this.#workerNumber(row, newWorkers)
     const results = rows.arrivals.map((row) => columnsOfArrival(row, number(row)))
     const confirmations = this.#columnsOfConfirmations(rows.confirmations, number)
-    const workers = [...newWorkers].map(([key, value]) => [value, ...(JSON.parse(key) as [string, string])])
+    const workers = [...newWorkers].map(([key, value]) => [
+      value,
+      ...(JSON.parse(key) as [string, string, string]),
+    ])
     return {
       workers,
       results,
@@ -131,14 +135,12 @@ export class SqliteJournal implements Journal {
     }
   }
 
-  #workerNumber(
-    row: { readonly worker: string; readonly host: string },
-    newWorkers: Map<string, number>,
-  ): number {
-    const key = JSON.stringify([row.worker, row.host])
+  #workerNumber(row: WorkerNames, newWorkers: Map<string, number>): number {
+    const { worker, host, processor = '' } = row
+    const key = JSON.stringify([worker, host, processor])
     const known = this.#workers.get(key) ?? newWorkers.get(key)
     if (known !== undefined) return known
-    const stored = this.#statements.worker.get(row.worker, row.host)?.[0]
+    const stored = this.#statements.worker.get(worker, host, processor)?.[0]
     if (typeof stored === 'number') {
       if (this.#workers.size >= workersKept) this.#workers.clear()
       this.#workers.set(key, stored)
@@ -203,26 +205,23 @@ export class SqliteJournal implements Journal {
     return last
   }
 
-  #write(added: AppendedRows, next: NextAppend, snapshots: readonly SnapshotRow[]): void {
-    const { begin, append, commit } = this.#statements
-    const { appends, lastMs, arrivals, cpuSeconds, head } = next.position
+  #write(added: AppendedRows, { header, position }: NextAppend, snapshots: readonly SnapshotRow[]): void {
+    const { begin, commit } = this.#statements
+    const stored = snapshots.map(columnsOfSnapshot)
     try {
       begin.run()
       this.#hold.assertHeld()
-      for (const table of chainedTables) {
-        const insert = this.#inserts[table]
-        for (const row of added[table]) {
-          if (insert.run(...row) === 1) continue
-          check(table === 'results', `a row of ${table} is appended once`)
-          this.#overrule(row, appends)
-        }
-      }
-      for (const snapshot of snapshots) this.#writeSnapshot(snapshot)
-      append.run(appends, this.#hold.epoch, lastMs, arrivals, cpuSeconds, next.contents, head)
+      this.#writer.write(header, position.head, added, stored)
+      this.#mirror({ header, head: position.head, rows: added, snapshots: stored })
       commit.run()
     } catch (error) {
       rollBack(this.#database)
-      if (!(error instanceof Refusal) || !mayTryAgain(error) || !this.#isThere(appends, head)) throw error
+      if (
+        !(error instanceof Refusal) ||
+        !mayTryAgain(error) ||
+        !this.#isThere(position.appends, position.head)
+      )
+        throw error
     }
   }
 
@@ -232,25 +231,26 @@ export class SqliteJournal implements Journal {
     const found = this.#statements.head.get(sequence)?.[0]
     return found instanceof Uint8Array && equalBytes(found, head)
   }
-
-  /** Another result of an evaluation: the former one is kept apart, as it was. */
-  #overrule(row: readonly Column[], sequence: number): void {
-    const [island, evaluation, ...rest] = row as [number, number, ...Column[]]
-    this.#statements.setApart.run(sequence, island, evaluation)
-    this.#statements.replace.run(...rest, island, evaluation)
-    this.#reader.forgetAhead(island)
-  }
-
-  #writeSnapshot(row: SnapshotRow): void {
-    const { island, commit, digest, checksum, state } = storeSnapshot(row)
-    this.#statements.snapshot.run(island, commit, digest, checksum, state)
-    this.#statements.forget.run(island, island, snapshotsKept - 1)
-  }
 }
 
 interface NextAppend {
-  readonly contents: Uint8Array
+  readonly header: AppendHeader
   readonly position: Position
+}
+
+/** Keeps what a transaction wrote in a second place, before the transaction counts. May throw a Refusal. */
+export type Mirror = (entry: {
+  readonly header: AppendHeader
+  readonly head: Uint8Array
+  readonly rows: AppendedRows
+  readonly snapshots: readonly (readonly Column[])[]
+}) => void
+
+type WorkerNames = Pick<ArrivalRow, 'worker' | 'host' | 'processor'>
+
+function columnsOfSnapshot(row: SnapshotRow): Column[] {
+  const { island, commit, digest, checksum, state } = storeSnapshot(row)
+  return [island, commit, digest, checksum, state]
 }
 
 function columnsOfArrival(row: ArrivalRow, worker: number): Column[] {
@@ -271,32 +271,11 @@ function prepareStatements(database: GuardedDatabase) {
   return {
     begin: database.prepare('BEGIN IMMEDIATE'),
     commit: database.prepare('COMMIT'),
-    append: database.prepare(
-      `INSERT INTO appends (sequence, epoch, at_ms, arrivals, cpu_seconds, contents, head)
-       VALUES (?, ?, ?, ?, ?, ?, ?)`,
-    ),
     head: database.prepare('SELECT head FROM appends WHERE sequence = ?'),
-    worker: database.prepare('SELECT number FROM workers WHERE worker = ? AND host = ?'),
+    worker: database.prepare('SELECT number FROM workers WHERE worker = ? AND host = ? AND processor = ?'),
     confirmations: database.prepare(
       'SELECT max(number) FROM confirmations WHERE island = ? AND evaluation = ?',
     ),
-    setApart: database.prepare(
-      `INSERT INTO overruled (island, evaluation, number, replaced_in, worker, attempt, cpu_seconds, failures, numbers)
-       SELECT island, evaluation, 1 + (SELECT count(*) FROM overruled AS o
-         WHERE o.island = results.island AND o.evaluation = results.evaluation),
-         ?, worker, attempt, cpu_seconds, failures, numbers FROM results WHERE island = ? AND evaluation = ?`,
-    ),
-    replace: database.prepare(
-      `UPDATE results SET worker = ?, attempt = ?, cpu_seconds = ?, failures = ?, numbers = ?
-       WHERE island = ? AND evaluation = ?`,
-    ),
     birth: database.prepare('SELECT 1 FROM births WHERE id = ?'),
-    snapshot: database.prepare(
-      'INSERT OR REPLACE INTO snapshots (island, number, digest, checksum, state) VALUES (?, ?, ?, ?, ?)',
-    ),
-    forget: database.prepare(
-      `DELETE FROM snapshots WHERE island = ? AND number <
-       (SELECT number FROM snapshots WHERE island = ? ORDER BY number DESC LIMIT 1 OFFSET ?)`,
-    ),
   }
 }
