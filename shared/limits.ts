@@ -67,6 +67,8 @@ export const limits = {
   confirmedInMemory: 100_000,
   /** Rows of one kind in one transaction of the record. */
   appendBatch: 8_192,
+  /** Bytes of a pinned bundle that an agent takes. */
+  pluginBytes: 2 ** 26,
   /** Simulation threads of one machine. */
   threadsMost: 1_024,
   /** Wall time that a simulation may take, as a multiple of the expected: a backstop, never the measure. */

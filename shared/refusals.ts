@@ -232,6 +232,16 @@ export const refusals = {
     text: 'This Redis cannot carry a search safely',
     cure: 'Mend the setting named above; `skerry preflight --redis URL` checks all of them.',
   },
+  'queue-full': {
+    exitCode: unreachable,
+    text: 'The memory of Redis is full',
+    cure: 'Give it more memory (maxmemory) or free some; the search goes on when there is room, nothing is lost.',
+  },
+  'queue-tls': {
+    exitCode: configuration,
+    text: 'Redis cannot be reached safely',
+    cure: 'Mend the address (--redis or SKERRY_REDIS): rediss:// for a Redis with TLS, redis:// without.',
+  },
   'protocol-mismatch': {
     exitCode: protocol,
     text: 'Coordinator and worker speak different versions',
@@ -246,6 +256,16 @@ export const refusals = {
     exitCode: notPermitted,
     text: 'The problem of this search is not signed with the key of this site',
     cure: 'Give coordinator and workers the same key file with --key.',
+  },
+  'key-unfit': {
+    exitCode: configuration,
+    text: 'The key file cannot be used',
+    cure: 'Make one, once for the whole site: (umask 077; openssl rand -hex 32 > FILE)',
+  },
+  'takes-no-work': {
+    exitCode: unreachable,
+    text: 'Work is waiting, cores are free, and this worker gets none',
+    cure: 'Start it again; the supervisor does that by itself when it restarts on exit code 69.',
   },
   'too-large-to-send': {
     exitCode: configuration,
