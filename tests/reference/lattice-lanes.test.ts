@@ -9,14 +9,17 @@ import {
   advanceLanes,
   type Lanes,
   lanePlaceM,
+  lanePlaces,
+  laneStrutBeyond,
   laneTally,
   packLanes,
   sampleLanes,
   unpackLane,
 } from '../../sim/lattice/lanes.js'
 import type { Lattice } from '../../sim/lattice/layout.js'
+import { latticePlaces } from '../../sim/lattice/places.js'
 import type { LatticeSpec } from '../../sim/lattice/spec.js'
-import { newTally, takeSample } from '../../sim/lattice/tally.js'
+import { newTally, strutBeyond, takeSample } from '../../sim/lattice/tally.js'
 import { varyLattice } from '../../sim/lattice/vary.js'
 import { randomBody, randomVariation } from './lattice-bodies.js'
 
@@ -127,6 +130,52 @@ describe.each([2, 3] as const)('in %i dimensions', (dimensions) => {
       expect(lanePlaceM(lanes, i, 3, 1)).toBe(alone[i]!.nodes[3 * alone[i]!.stride + 1])
       expect(Math.max(...tally.workJ)).toBeGreaterThan(0)
       expect(Math.max(...tally.contacts)).toBeGreaterThan(0)
+    }
+  })
+
+  test('samples on the way are those of calls between samples, and places are where the nodes are', () => {
+    const make = situations(8, dimensions, 3, true)
+    const alone = make()
+    const tallies = alone.map(newTally)
+    const lanes = packLanes(make())
+    for (const steps of [300, 210]) {
+      for (const [i, lattice] of alone.entries()) {
+        const seconds = 30 * lattice.stepSeconds
+        const take = () => takeSample(lattice, tallies[i]!, seconds)
+        expect(advance(lattice, steps, { everySteps: 30, take })).toBeUndefined()
+      }
+      expect(advanceLanes(lanes, steps, 30)).toEqual([undefined, undefined, undefined])
+    }
+    for (const [i, lattice] of alone.entries()) {
+      expect(tallies[i]!.samples).toBe(17)
+      expect(laneTally(lanes, i)).toEqual(tallies[i])
+      const { numbers, first, nodeStep, axisStep } = lanePlaces(lanes, i)
+      const here = latticePlaces(lattice)
+      for (let node = 0; node < lattice.nodeCount; node++) {
+        for (let axis = 0; axis < dimensions; axis++) {
+          const there = numbers[first + node * nodeStep + axis * axisStep]
+          expect(there).toBe(here.numbers[here.first + node * here.nodeStep + axis * here.axisStep])
+        }
+      }
+    }
+  })
+
+  test('the first strut beyond its bounds is found in the samples of a lane as in a tally', () => {
+    const make = situations(8, dimensions, 2, false)
+    const [lattice] = make() as [Lattice]
+    const tally = newTally(lattice)
+    advance(lattice, 200, { everySteps: 20, take: () => takeSample(lattice, tally, 0.002) })
+    const lanes = packLanes(make())
+    advanceLanes(lanes, 200, 20)
+    const { shortestM, longestM } = tally
+    const found = (leastM: Float64Array, mostM: Float64Array) => {
+      expect(laneStrutBeyond(lanes, 0, leastM, mostM)).toBe(strutBeyond(tally, leastM, mostM))
+      return strutBeyond(tally, leastM, mostM)
+    }
+    expect(found(shortestM, longestM)).toBe(-1)
+    for (const strut of [0, 3, shortestM.length - 1]) {
+      expect(found(shortestM.with(strut, 1.0001 * shortestM[strut]!), longestM)).toBe(strut)
+      expect(found(shortestM, longestM.with(strut, 0.9999 * longestM[strut]!))).toBe(strut)
     }
   })
 

@@ -11,7 +11,7 @@ describe('a block on a slope', () => {
     stepSeconds,
     bodies: [
       floor({ friction }),
-      { name: 'block', positionM: [0, 0.1], shapes: [box([0.1, 0.1], { friction })] },
+      { name: 'block', positionM: [0, 0.05], shapes: [box([0.1, 0.05], { friction })] },
     ],
   })
 
@@ -31,7 +31,7 @@ describe('a block on a slope', () => {
   })
 
   test.each([0.1, 0.3, 0.5, 0.8, 1])(
-    'with friction %d stays half a degree below its angle and slides half above',
+    'with friction %d stays a hundredth below its angle and slides a hundredth above',
     (friction) => {
       const critical = Math.atan(friction)
       const way = (angle: number) =>
@@ -41,8 +41,12 @@ describe('a block on a slope', () => {
           pass(world, 2)
           return world.pose(1)[0]! - from
         })
-      expect(Math.abs(way(critical - 0.5 * degree))).toBeLessThan(1e-5)
-      expect(way(critical + 0.5 * degree)).toBeGreaterThan(0.05)
+      expect(Math.abs(way(0.99 * critical))).toBeLessThan(1e-5)
+      // From rest at the start: 2 s after the first half second.
+      const above = 1.01 * critical
+      const wanted = (g * (Math.sin(above) - friction * Math.cos(above)) * (2.5 ** 2 - 0.5 ** 2)) / 2
+      expect(way(above)).toBeGreaterThan(0.9 * wanted)
+      expect(way(above)).toBeLessThan(1.1 * wanted)
     },
   )
 
@@ -76,8 +80,8 @@ describe('a block on a slope', () => {
 describe('a block tips', () => {
   // Width 0.2, pushed at height y: tips before it slides when friction exceeds width / (2 y).
   test.each([
-    [0.97, false],
-    [1.03, true],
+    [0.99, false],
+    [1.01, true],
   ])('with %d of the friction at which a push high up tips it: %s', (share, tips) => {
     const [widthM, heightM, pushM] = [0.2, 0.4, 0.35]
     const friction = (share * widthM) / (2 * pushM)
@@ -85,12 +89,12 @@ describe('a block tips', () => {
     const bodies = [floor({ friction }), { name: 'block', positionM: [0, heightM / 2], shapes }]
     run({ gravityMps2: [0, -g], stepSeconds: 1 / 240, bodies }, (world) => {
       pass(world, 0.5)
-      // 2 % more than the weaker of the two needs.
-      const force = 1.02 * Math.min(friction, widthM / (2 * pushM)) * world.massOf(1).massKg * g
+      // Half a hundredth more than the weaker of the two needs.
+      const force = 1.005 * Math.min(friction, widthM / (2 * pushM)) * world.massOf(1).massKg * g
       world.load(1, [force, 0], [-force * (pushM - heightM / 2)])
-      pass(world, 1)
+      pass(world, 2)
       expect(Math.abs(world.pose(1)[2]!) > 0.5).toBe(tips)
-      if (!tips) expect(world.pose(1)[0]!).toBeGreaterThan(0.01)
+      if (!tips) expect(world.pose(1)[0]!).toBeGreaterThan(0.005)
     })
   })
 
@@ -112,7 +116,7 @@ describe('round bodies', () => {
     ['disc', 1 / 2, 2 / 3],
     ['sphere', 2 / 5, 5 / 7],
     ['hoop', 1, 1 / 2],
-  ])('%s: rolls with its share of g sin, and comes from sliding to rolling', (_name, inertia, share) => {
+  ])('%s: rolls with its share of g sin, and comes from sliding to rolling', (name, inertia, share) => {
     const surface = { friction: 0.8 }
     const acceleration = (h: number) => {
       const bodies = [floor(surface), round(0.1, inertia, surface, [0, 0.1])]
@@ -136,15 +140,41 @@ describe('round bodies', () => {
         rolls = v! + 0.1 * spin! < 1e-3
       }
       expect(Math.abs((0.3 * g * world.seconds) / 3 / (1 - share) - 1)).toBeLessThan(1e-2)
+      // mu g x / v0^2 = (1 - share^2) / 2: 0.277777778, 0.244897959, 0.375.
+      const way = { disc: 0.277777778, sphere: 0.244897959, hoop: 0.375 }[name]!
+      expect(Math.abs((0.3 * g * world.pose(1)[0]!) / 9 / way - 1)).toBeLessThan(1e-2)
       pass(world, 0.3)
       expect(Math.abs(world.velocity(1)[0]! / 3 / share - 1)).toBeLessThan(1e-2)
     })
   })
 
+  test.each([
+    ['disc', 1 / 2, 1 / 3],
+    ['sphere', 2 / 5, 2 / 7],
+    ['hoop', 1, 1 / 2],
+  ])(
+    '%s: rolls where friction is %d + %d tan of the slope and more, slides where it is less',
+    (_name, inertia, part) => {
+      // With m k^2 the inertia, mu >= tan q k^2 / (r^2 + k^2).
+      const slip = (share: number) => {
+        const surface = { friction: share * part * Math.tan(20 * degree) }
+        const bodies = [floor(surface), round(0.1, inertia, surface, [0, 0.1])]
+        return run({ gravityMps2: downhill(20 * degree), stepSeconds: 1 / 480, bodies }, (world) => {
+          pass(world, 1.5)
+          const [v, , spin] = world.velocity(1)
+          return (v! + 0.1 * spin!) / v!
+        })
+      }
+      expect(Math.abs(slip(1.02))).toBeLessThan(1e-2)
+      expect(slip(0.9)).toBeGreaterThan(0.05)
+    },
+  )
+
   // cos of the angle where contact ends, over that of the start. Compared where the gap has grown to 2 mm, after the
   // free flight from there, because contact itself ends without a mark. The sliding body misses the class of 1 %: 1.9 %
   // (measured; 4 % at 1/240 s), because pushing overlaps out lifts it a little, and smaller steps than 1/960 s make it
-  // worse again (2.5 % at 1/3840 s, single precision). It is held at 2.5 %.
+  // worse again (2.5 % at 1/3840 s, single precision). It is held at 2.5 %; the lattice meets the class
+  // (lattice-impacts.test.ts).
   test.each([
     ['slides off without friction', 0, 1 / 2, 2 / 3, 0.025],
     ['a solid sphere rolls off', 5, 2 / 5, 10 / 17, 0.01],
@@ -231,7 +261,8 @@ describe('impacts', () => {
 
   test("five balls with gaps hand the striker's speed on whole", () => {
     // Newton's cradle. Touching balls cannot be expressed: an impulse engine has no elastic waves, and hands the speed on
-    // by the order of its solver (0 to 0.67 m/s for the last of five, measured), where linear springs give 0.9424.
+    // by the order of its solver (0 to 0.67 m/s for the last of five, measured), where linear springs give 0.9424: those
+    // are in lattice-impacts.test.ts.
     const bodies = Array.from({ length: 5 }, (_, i) => ({
       name: `ball ${i}`,
       positionM: [0.21 * i - (i === 0 ? 0.3 : 0), 0],
@@ -249,6 +280,7 @@ describe('impacts', () => {
 
 describe('a stack of blocks over the edge of a table', () => {
   // Block i from the top overhangs the next by 1/(2 i): Paterson and Zwick, Overhang, 2007. 0.99 of it stands, 1.01 falls.
+  // Ten blocks cannot be expressed: what their contacts give way adds up to more than a hundredth of the overhang.
   test.each([1, 2, 3, 4, 5])('of %d stands at 0.99 of the harmonic overhang and falls at 1.01', (count) => {
     const drop = (share: number) => {
       const table = {
@@ -261,7 +293,11 @@ describe('a stack of blocks over the edge of a table', () => {
       const blocks = Array.from({ length: count }, (_, i) => {
         edge += share / (2 * (count - i))
         const positionM = [edge - 0.5, 0.05 + 0.1 * i]
-        return { name: `block ${i}`, positionM, shapes: [box([0.5, 0.05], { friction: 0.8, density: 100 })] }
+        return {
+          name: `block ${i}`,
+          positionM,
+          shapes: [box([0.5, 0.05], { friction: 0.8, density: 100 })],
+        }
       })
       const spec = {
         gravityMps2: [0, -g],
@@ -298,10 +334,10 @@ describe('a rimless wheel', () => {
       turn: alpha - Math.PI / 2,
       spinRadps: -start,
       velocityMps: [start * Math.cos(alpha), -start * Math.sin(alpha)],
-      shapes: [{ outline: { kind: 'hull', pointsM }, material: { friction: 2, density: 0 } }],
+      shapes: [{ outline: { kind: 'hull', pointsM }, material: { friction: 1.3, density: 0 } }],
       extra: { massKg: 1, centreM: [0, 0], inertiaKgm2: inertia },
     } as const
-    const bodies = [floor({ friction: 2 }), wheel]
+    const bodies = [floor({ friction: 1.3 }), wheel]
     return run({ gravityMps2: downhill(slope), stepSeconds: h, sizeM: 0.1, bodies }, (world) => {
       const before: number[] = []
       let last = 0

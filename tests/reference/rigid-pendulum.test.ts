@@ -30,7 +30,10 @@ function periodFromFirstQuarter(spec: RigidSpec): number {
 describe('a point mass on a rod', () => {
   const rows = [
     [5, 1.00047617249],
+    [10, 1.00190718814],
+    [20, 1.00766902579],
     [30, 1.0174087976],
+    [45, 1.0399733432],
     [60, 1.07318200715],
     [90, 1.18034059902],
     [120, 1.37288050062],
@@ -49,7 +52,7 @@ describe('a point mass on a rod', () => {
   })
 
   test('nears the period at first order', () => {
-    const order = orderOf((h) => Math.abs(errorOf(30, rows[1][1], h)), [1 / 120, 1 / 960])
+    const order = orderOf((h) => Math.abs(errorOf(30, rows[3][1], h)), [1 / 120, 1 / 960])
     expect(Math.abs(order - 1)).toBeLessThan(0.1)
   })
 
@@ -58,7 +61,7 @@ describe('a point mass on a rod', () => {
     const lost = (h: number) =>
       run(pendulum(hung(1, 90 * degree, mass), [0, 1], h), (world) => {
         const before = world.kineticJ() + world.gravitationalJ()
-        pass(world, 2 * Math.PI * Math.sqrt(1 / g) * rows[3][1])
+        pass(world, 2 * Math.PI * Math.sqrt(1 / g) * rows[6][1])
         return (before - world.kineticJ() - world.gravitationalJ()) / g
       })
     expect(lost(1 / 120)).toBeGreaterThan(0)

@@ -1,7 +1,8 @@
 // Rigid bodies in 3-D: what the library does well (contact, friction) and what it does not (free rotation). Friction:
 // Coulomb; free rotation: Landau and Lifshitz, Mechanics, 1976, sections 36 and 37 (from memory). Numbers recomputed
 // independently. The weakness is measured here so that it stays known: these tests would fail if it went away, and
-// then README.md of sim/rigid must be changed.
+// then README.md of sim/rigid must be changed. A body of point masses on struts turns freely as it should:
+// lattice-rotation.test.ts.
 
 import { describe, expect, test } from 'vitest'
 import { type RigidWorld, withRigid } from '../../sim/rigid/rigid3d.js'

@@ -166,7 +166,6 @@ describe('where running stabilises itself', () => {
     expect(at5(68, 23_390)).toBeUndefined()
   })
 
-  // At these speeds the band of stable angles is 71.7, 70.9 to 71.3, 69.5 to 70.5, and up to 65.5 degrees.
   const stable = (speed: number, degrees: number) =>
     stableApex({ stiffness: 20_000, attack: degrees }, 0.5 * mass * speed * speed + mass * gravity) !==
     undefined
@@ -179,6 +178,20 @@ describe('where running stabilises itself', () => {
   ] as const)('at %d m/s and 20 kN/m %d degrees are stable, 3 more are not', (speed, degrees) => {
     expect(stable(speed, degrees)).toBe(true)
     expect(stable(speed, degrees + 3)).toBe(false)
+  })
+
+  test('the bands: 71.7 at 3.2, 70.9 to 71.3 at 3.5, 69.5 to 70.5 at 4, up to 65.5 at 7 m/s', () => {
+    // To a tenth of a degree.
+    for (const [speed, low, high] of [
+      [3.2, 71.7, 71.7],
+      [3.5, 70.9, 71.3],
+      [4, 69.5, 70.5],
+    ] as const) {
+      for (const inside of [low, high]) expect(stable(speed, inside)).toBe(true)
+      for (const outside of [low - 0.1, high + 0.1]) expect(stable(speed, outside)).toBe(false)
+    }
+    for (const inside of [60, 65.5]) expect(stable(7, inside)).toBe(true)
+    expect(stable(7, 65.6)).toBe(false)
   })
 
   test('at 3 m/s no angle is', () => {
