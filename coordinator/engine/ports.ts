@@ -12,6 +12,8 @@ export interface ArrivalRow {
   readonly evaluation: number
   readonly worker: string
   readonly host: string
+  /** Class of the processor, where it is known. */
+  readonly processor?: string
   readonly attempt: number
   readonly cpuSeconds: number
   readonly result: EvaluationResult
@@ -48,6 +50,7 @@ export interface ConfirmationRow {
   readonly evaluation: number
   readonly worker: string
   readonly host: string
+  readonly processor?: string
   readonly by: 'process' | 'host'
   readonly digest: Uint8Array
   readonly agrees: boolean

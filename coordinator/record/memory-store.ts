@@ -60,7 +60,7 @@ export class MemoryStore implements StoredReader {
   }
 
   #addArrival(row: ArrivalRow): void {
-    const { island, evaluation, worker, host, attempt, cpuSeconds, result } = row
+    const { island, evaluation, worker, host, processor, attempt, cpuSeconds, result } = row
     this.#totals.arrivals += 1
     this.#totals.cpuSeconds += cpuSeconds
     const failures = result.failures.map((failure) => ({ ...failure }))
@@ -69,6 +69,7 @@ export class MemoryStore implements StoredReader {
       evaluation,
       worker,
       host,
+      ...(processor === undefined ? {} : { processor }),
       attempt,
       cpuSeconds,
       result: { values: result.values.slice(), failures },

@@ -68,10 +68,12 @@ const workersKept = 4_096
 const resultColumns = chained.results.columns.join(', ')
 const eventColumns = chained.events.columns.join(', ')
 
+type WorkerNames = Pick<ArrivalRow, 'worker' | 'host' | 'processor'>
+
 export class SqliteReader implements StoredReader {
   readonly #database: GuardedDatabase
   readonly #statements = new Map<string, Statement>()
-  readonly #workers = new Map<number, { readonly worker: string; readonly host: string }>()
+  readonly #workers = new Map<number, WorkerNames>()
   readonly #ahead = new Map<number, ReadAhead>()
   #aheadRows = 0
 
@@ -278,13 +280,18 @@ export class SqliteReader implements StoredReader {
     this.#ahead.set(island, { last, rows: new Map(rows.map((row) => [numberAt(row, 1), row])) })
   }
 
-  #worker(number: number): { readonly worker: string; readonly host: string } {
+  #worker(number: number): WorkerNames {
     const known = this.#workers.get(number)
     if (known) return known
     const row = this.#prepare(selectSql('workers')).get(number)
     if (!row) throw damaged(`worker ${number}`, 'its name is missing')
     if (this.#workers.size >= workersKept) this.#workers.clear()
-    const named = { worker: textAt(row, 1), host: textAt(row, 2) }
+    const processor = textAt(row, 3)
+    const named = {
+      worker: textAt(row, 1),
+      host: textAt(row, 2),
+      ...(processor === '' ? {} : { processor }),
+    }
     this.#workers.set(number, named)
     return named
   }

@@ -104,6 +104,7 @@ export class StoredArrival implements ArrivalRow {
   readonly evaluation: number
   readonly worker: string
   readonly host: string
+  readonly processor?: string
   readonly attempt: number
   readonly cpuSeconds: number
   readonly result: EvaluationResult
@@ -114,6 +115,7 @@ export class StoredArrival implements ArrivalRow {
     this.evaluation = row.evaluation
     this.worker = row.worker
     this.host = row.host
+    if (row.processor !== undefined) this.processor = row.processor
     this.attempt = row.attempt
     this.cpuSeconds = row.cpuSeconds
     this.result = row.result

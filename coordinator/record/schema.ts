@@ -4,7 +4,7 @@
 //   meta           what the search is: plan, text of the search file, pinned plug-in, with digests
 //   holder         which coordinator may write (one row); the fence of every append
 //   appends        one row a transaction: chain head, and the keys of all rows the transaction added
-//   workers        who simulated, as a small number
+//   workers        who simulated, as a small number; processor is the class of its processor, '' where unknown
 //   results        one row an evaluation, as it arrived
 //   overruled      results that another took the place of (in append `replaced_in`), oldest first
 //   commits        one row an island and transaction: commits first .. first + count - 1; `evaluations` is null
@@ -30,7 +30,7 @@ export interface TableShape {
 
 /** Tables under the chain, in the order in which an append names their rows. */
 export const chained = {
-  workers: { columns: ['number', 'worker', 'host'], keys: 1 },
+  workers: { columns: ['number', 'worker', 'host', 'processor'], keys: 1 },
   results: {
     columns: ['island', 'evaluation', 'worker', 'attempt', 'cpu_seconds', 'failures', 'numbers'],
     keys: 2,
@@ -74,7 +74,8 @@ CREATE TABLE appends (
   cpu_seconds REAL NOT NULL, contents BLOB NOT NULL, head BLOB NOT NULL
 ) STRICT;
 CREATE TABLE workers (
-  number INTEGER PRIMARY KEY, worker TEXT NOT NULL, host TEXT NOT NULL, UNIQUE (worker, host)
+  number INTEGER PRIMARY KEY, worker TEXT NOT NULL, host TEXT NOT NULL, processor TEXT NOT NULL,
+  UNIQUE (worker, host, processor)
 ) STRICT;
 CREATE TABLE results (
   island INTEGER NOT NULL, evaluation INTEGER NOT NULL, worker INTEGER NOT NULL, attempt INTEGER NOT NULL,

@@ -120,6 +120,7 @@ function madeUpArrival(island: number, evaluation: number, numbers: number, draw
   return arrival(island, evaluation, result, {
     worker: `host-${thread % 3}/4711/t${thread}`,
     host: `host-${thread % 3}`,
+    ...(thread % 3 === 0 ? {} : { processor: `x64 class ${thread % 3}` }),
     attempt: 1 + draw.below(3),
     cpuSeconds: draw.uniform(),
   })
