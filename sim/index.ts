@@ -9,14 +9,16 @@ export type * from '../shared/making/types.js'
 export type * from '../shared/problem.js'
 export type { Stream } from '../shared/streams.js'
 export * from './controllers/index.js'
-export { advance, type Fault, timeSeconds } from './lattice/advance.js'
+export { advance, type Fault, type OnTheWay, timeSeconds } from './lattice/advance.js'
 export { buildLattice } from './lattice/build.js'
 export { groundHeightM } from './lattice/ground.js'
 export {
   advanceLanes,
   type Lanes,
   lanePlaceM,
+  lanePlaces,
   lanesMost,
+  laneStrutBeyond,
   laneTally,
   packLanes,
   releaseLanes,
@@ -25,9 +27,10 @@ export {
 } from './lattice/lanes.js'
 export type { Lattice } from './lattice/layout.js'
 export * as observe from './lattice/observe.js'
+export { latticePlaces, type NodePlaces } from './lattice/places.js'
 export type * from './lattice/spec.js'
 export { stepBound } from './lattice/stability.js'
-export { newTally, type Tally, takeSample } from './lattice/tally.js'
+export { newTally, strutBeyond, type Tally, takeSample } from './lattice/tally.js'
 export { type Variation, varyLattice } from './lattice/vary.js'
 export * from './measure/index.js'
 export { defineProblem } from './problem.js'

@@ -21,16 +21,32 @@ export function timeSeconds(lattice: Lattice): number {
   return lattice.step * lattice.stepSeconds
 }
 
+/** Something to do on the way: after every `everySteps` steps, counted from the start of the call. */
+export interface OnTheWay {
+  readonly everySteps: number
+  readonly take: (lattice: Lattice) => void
+}
+
 /** Does `steps` steps; the first fault found at a choke point, or nothing. After a fault the state is worthless. */
-export function advance(lattice: Lattice, steps: number): Fault | undefined {
+export function advance(lattice: Lattice, steps: number, onTheWay?: OnTheWay): Fault | undefined {
   let left = steps
+  let untilLook = lookEverySteps
+  let untilTake = onTheWay?.everySteps ?? steps + 1
   while (left > 0) {
-    const some = Math.min(left, lookEverySteps)
+    const some = Math.min(left, untilLook, untilTake)
     if (lattice.dimensions === 2) runPlane(lattice, some)
     else runSpace(lattice, some)
     left -= some
+    untilLook -= some
+    untilTake -= some
+    if (onTheWay && untilTake === 0) {
+      onTheWay.take(lattice)
+      untilTake = onTheWay.everySteps
+    }
+    if (untilLook > 0 && left > 0) continue
     const fault = look(lattice)
     if (fault) return fault
+    untilLook = lookEverySteps
   }
   return undefined
 }

@@ -49,11 +49,17 @@ const offsets = (spec: LatticeSpec, nodes: readonly number[]) => {
   const stride = strideOf(spec)
   return integers(nodes, (node) => node * stride)
 }
-const endsOf = (spec: LatticeSpec, list: readonly { readonly a: number; readonly b: number }[]) =>
-  offsets(
-    spec,
-    list.flatMap(({ a, b }) => [a, b]),
-  )
+/** Both ends of every item, one after the other; a loop, because lists of lists are slow to make flat. */
+function endsOf(spec: LatticeSpec, list: readonly { readonly a: number; readonly b: number }[]): Int32Array {
+  if (list.length === 0) return noOffsets
+  const stride = strideOf(spec)
+  const ends = new Int32Array(2 * list.length)
+  for (let i = 0; i < list.length; i++) {
+    ends[2 * i] = list[i]!.a * stride
+    ends[2 * i + 1] = list[i]!.b * stride
+  }
+  return ends
+}
 
 export function layOutStruts(spec: LatticeSpec) {
   const { struts, actuators = [], guided = [] } = spec
@@ -220,7 +226,11 @@ export function frictionOf(dimensions: 2 | 3, friction: FrictionSpec | undefined
 
 export function layOutFriction(spec: LatticeSpec): Float64Array {
   const dimensions = dimensionsOf(spec)
-  return Float64Array.from(spec.nodes.flatMap(({ friction }) => frictionOf(dimensions, friction)))
+  const coefficients = new Float64Array(dimensions * spec.nodes.length)
+  for (let i = 0; i < spec.nodes.length; i++) {
+    coefficients.set(frictionOf(dimensions, spec.nodes[i]!.friction), dimensions * i)
+  }
+  return coefficients
 }
 
 /** One cell more at each end, as high as the end, makes the ground level beyond. */
@@ -263,6 +273,23 @@ export function layOutContact(contact: ContactSpec | undefined): Float64Array {
   return Float64Array.of(stiffness, damping, exponent === 1.5 ? 1 : 0)
 }
 
+/** Pairs (sine, cosine) of `count` angles, which are mostly the same. */
+function sinesAndCosines(count: number, angleOf: (i: number) => number): Float64Array {
+  const pairs = new Float64Array(2 * count)
+  let known = 0
+  let pair: readonly [number, number] = [0, 1]
+  for (let i = 0; i < count; i++) {
+    const angle = angleOf(i)
+    if (angle !== known) {
+      known = angle
+      pair = sineAndCosine(angle)
+    }
+    pairs[2 * i] = pair[0]
+    pairs[2 * i + 1] = pair[1]
+  }
+  return pairs
+}
+
 /** Groups that nobody gave (guided struts without one) stand still. */
 export function layOutDrive(spec: LatticeSpec, groupCount: number, h: number) {
   const groups: readonly DriveGroupSpec[] = spec.groups?.length
@@ -276,8 +303,8 @@ export function layOutDrive(spec: LatticeSpec, groupCount: number, h: number) {
   const parts = { angularRadps, sweepRadps2, sweepSteps, stepSeconds: h }
   return {
     ...parts,
-    rotation: Float64Array.from(groups.flatMap((_, g) => sineAndCosine(turnAt(parts, g, 0)))),
-    rotationTurn: Float64Array.from(groups.flatMap((_, g) => sineAndCosine(sweepRadps2[g]! * h * h))),
+    rotation: sinesAndCosines(groupCount, (g) => turnAt(parts, g, 0)),
+    rotationTurn: sinesAndCosines(groupCount, (g) => sweepRadps2[g]! * h * h),
     driveStartStep: Math.round((spec.drive?.startSeconds ?? 0) / h),
     rampSteps: Math.round((spec.drive?.rampSeconds ?? 0) / h),
   }

@@ -5,7 +5,8 @@
 //   advanceLanes(lanes, steps)                   the same meaning as advance() on every lane; in double precision also
 //                                                the same bits, whatever the other lanes are
 //   unpackLane(lanes, i)                         copies the state of lane i back into lattices[i] for observe.* and all else
-//   sampleLanes(lanes, seconds), laneTally(...)  what takeSample() keeps (tally.ts), without leaving the kernel
+//   sampleLanes(lanes, seconds), laneTally(...)  what takeSample() keeps (tally.ts), without leaving the kernel;
+//   advanceLanes(lanes, steps, everySteps)       samples on the way
 //
 // Between calls the lattices' own `dragNspm` and `hostStrain` may be changed, as with advance(). A lane that has a fault
 // stands still: its lattice holds the state at the fault, advanceLanes() keeps telling the fault, the others go on.
@@ -13,6 +14,7 @@
 // Memory is used again from one evaluation to the next, and nothing has to be released (lanes/engine.ts); releaseLanes()
 // only spares a copy. Calls of any size are fine; the kernel itself is called for at most 64 steps at a time.
 
+import { check } from '../../shared/check.js'
 import { type Fault, look } from './advance.js'
 import { demandOneBody, hasOwnMaterial } from './lanes/body.js'
 import { prepareDrive, sweepEnds } from './lanes/drive.js'
@@ -22,8 +24,17 @@ import { sampleSecondsAt } from './lanes/header.js'
 import { writeBody } from './lanes/image.js'
 import { type Precision, placesOf, recordsOf, variantFor } from './lanes/layout.js'
 import { numberPlace, type Pen, putEqual } from './lanes/pen.js'
-import { clearSamples, placeM, readState, readTally, writeState, writeWishes } from './lanes/state.js'
+import {
+  clearSamples,
+  placeM,
+  readState,
+  readTally,
+  sampledBeyond,
+  writeState,
+  writeWishes,
+} from './lanes/state.js'
 import { type Lattice, lookEverySteps } from './layout.js'
+import type { NodePlaces } from './places.js'
 import type { Tally } from './tally.js'
 
 export type { Precision } from './lanes/layout.js'
@@ -47,6 +58,8 @@ export interface Lanes {
   /** x, y, z of every lane's origin, m; 0 in double precision. */
   readonly origins: Float64Array
   readonly sweepEnds: readonly number[]
+  /** The step up to which fresh sines lie ready. */
+  preparedStep: number
   /** A bit for every lane that moves. */
   moving: number
 }
@@ -85,37 +98,61 @@ export function packLanes(
     pen: pen!,
     origins,
     sweepEnds: sweepEnds(all),
+    preparedStep: first.groupCount === 0 ? Number.POSITIVE_INFINITY : first.step,
     moving: (1 << lattices.length) - 1,
   }
 }
 
 /**
  * `steps` steps of every lane that has no fault; the fault of every lattice, or undefined. Looks where advance() looks:
- * every 64 steps and at the end of the call.
+ * every 64 steps and at the end of the call. With `sampleEverySteps` a sample is taken after every so many steps of
+ * the call, which costs less than a call for each of them.
  */
-export function advanceLanes(lanes: Lanes, steps: number): readonly (Fault | undefined)[] {
+export function advanceLanes(
+  lanes: Lanes,
+  steps: number,
+  sampleEverySteps = 0,
+): readonly (Fault | undefined)[] {
   const { pen, tenant } = lanes
   settle(tenant)
   writeWishes(pen)
+  if (sampleEverySteps > 0) putSampleSeconds(pen, sampleEverySteps * pen.lanes[0]!.stepSeconds)
   let left = steps
+  let untilLook = lookEverySteps
+  let untilSample = sampleEverySteps > 0 ? sampleEverySteps : steps + 1
   while (left > 0 && lanes.moving !== 0) {
-    const some = Math.min(left, lookEverySteps)
+    const some = Math.min(left, untilLook, untilSample)
     run(lanes, some)
     left -= some
-    const bits = pen.engine.look() & lanes.moving
-    if (bits !== 0) findFaults(lanes, bits)
-    if (lanes.precision === 'single') follow(pen, lanes.origins)
+    untilLook -= some
+    untilSample -= some
+    if (untilSample === 0) {
+      pen.engine.sample()
+      lanes.samples++
+      untilSample = sampleEverySteps
+    }
+    if (untilLook > 0 && left > 0) continue
+    lookAtLanes(lanes)
+    untilLook = lookEverySteps
   }
   return lanes.faults
 }
 
+function lookAtLanes(lanes: Lanes): void {
+  const { pen } = lanes
+  const bits = pen.engine.look() & lanes.moving
+  if (bits !== 0) findFaults(lanes, bits)
+  if (lanes.precision === 'single') follow(pen, lanes.origins)
+}
+
 function run(lanes: Lanes, steps: number): void {
   const { pen } = lanes
-  const { driveStartStep, groupCount } = pen.lanes[0]!
   let left = steps
   while (left > 0) {
-    const since = lanes.step - driveStartStep
-    const some = groupCount === 0 ? left : prepareDrive(pen, since, left, lanes.sweepEnds)
+    if (lanes.step >= lanes.preparedStep) {
+      lanes.preparedStep = lanes.step + prepareDrive(pen, lanes.step, lanes.sweepEnds)
+    }
+    const some = Math.min(left, lanes.preparedStep - lanes.step)
     pen.engine.run(some)
     lanes.step += some
     left -= some
@@ -149,12 +186,40 @@ export function lanePlaceM(lanes: Lanes, i: number, node: number, axis: 0 | 1 | 
   return placeM(lanes.pen, i, node, axis, lanes.origins)
 }
 
+/**
+ * Where the nodes of lane i are, without a copy; good until the next call that takes lanes. Double precision only, where
+ * places are counted from the world's origin. Not for a lane with a fault.
+ */
+export function lanePlaces(lanes: Lanes, i: number): NodePlaces {
+  check(lanes.precision === 'double', 'places in the kernel are those of the world')
+  const { engine, places, sizes, variant } = lanes.pen
+  settle(lanes.tenant)
+  const { numberBytes, wide } = variant
+  const first = places.nodes.first / numberBytes + i
+  return {
+    numbers: engine.numbers,
+    first,
+    nodeStep: sizes.node / numberBytes,
+    axisStep: wide / numberBytes,
+  }
+}
+
+/** As strutBeyond() of the samples of lane i. */
+export function laneStrutBeyond(lanes: Lanes, i: number, leastM: Float64Array, mostM: Float64Array): number {
+  settle(lanes.tenant)
+  return sampledBeyond(lanes.pen, i, leastM, mostM)
+}
+
 /** Takes one sample of every lane inside the kernel, as takeSample() does; `seconds` is the time between samples. */
 export function sampleLanes(lanes: Lanes, seconds: number): void {
   settle(lanes.tenant)
-  putEqual(lanes.pen, numberPlace(lanes.pen.variant, sampleSecondsAt), seconds)
+  putSampleSeconds(lanes.pen, seconds)
   lanes.pen.engine.sample()
   lanes.samples++
+}
+
+function putSampleSeconds(pen: Pen, seconds: number): void {
+  putEqual(pen, numberPlace(pen.variant, sampleSecondsAt), seconds)
 }
 
 /** Says that these lanes are not used any more, which spares saving them when others need the kernel's memory. */

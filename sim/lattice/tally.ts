@@ -65,6 +65,15 @@ export function takeSample(lattice: Lattice, tally: Tally, seconds: number): voi
   sampleNodes(lattice, tally)
 }
 
+/** The first strut that was shorter or longer in some sample than its bounds, one of each for every strut; or -1. */
+export function strutBeyond(tally: Tally, leastM: Float64Array, mostM: Float64Array): number {
+  const { shortestM, longestM } = tally
+  for (let i = 0; i < leastM.length; i++) {
+    if (shortestM[i]! < leastM[i]! || longestM[i]! > mostM[i]!) return i
+  }
+  return -1
+}
+
 /** T / |d| of strut i. */
 function scaleOf(lattice: Lattice, i: number, q: number, along: number): number {
   const { passiveCount, activeCount, stiffnessNpm, stiffnessRestN, dampingNspm, limitN, powerMostW } = lattice

@@ -21,18 +21,14 @@ function nextFresh(since: number, ends: readonly number[]): number {
 }
 
 /**
- * Prepares the next steps, at most `steps` of them; returns how many may be done before this must be called again: at
- * most one of them takes fresh sines.
+ * Lays the next fresh sines ready; returns how many steps from `step` on may be done before this must be called again.
  */
-export function prepareDrive(pen: Pen, since: number, steps: number, ends: readonly number[]): number {
+export function prepareDrive(pen: Pen, step: number, ends: readonly number[]): number {
+  const since = step - pen.lanes[0]!.driveStartStep
   const fresh = nextFresh(since, ends)
-  if (fresh > since + steps) {
-    putWord(pen, freshAt, -1)
-    return steps
-  }
   putWord(pen, freshAt, fresh)
   writeFresh(pen, fresh)
-  return Math.min(steps, nextFresh(fresh, ends) - 1 - since)
+  return nextFresh(fresh, ends) - 1 - since
 }
 
 function writeFresh(pen: Pen, since: number): void {

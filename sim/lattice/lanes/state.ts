@@ -168,6 +168,23 @@ export function readTally(pen: Pen, lane: number, samples: number, origins: Floa
   return tally
 }
 
+/** The first strut of a lane whose sampled lengths left their bounds, or -1. */
+export function sampledBeyond(
+  { engine, variant, places, sizes, lanes }: Pen,
+  lane: number,
+  leastM: Float64Array,
+  mostM: Float64Array,
+): number {
+  const { numbers } = engine
+  const step = sizes.strutSample / variant.numberBytes
+  let at = places.strutSamples.first / variant.numberBytes + lanes.length + lane
+  for (let i = 0; i < leastM.length; i++) {
+    if (numbers[at]! < leastM[i]! || numbers[at + lanes.length]! > mostM[i]!) return i
+    at += step
+  }
+  return -1
+}
+
 /** After the origin of a lane has moved by `by` along y, in single precision: kept heights of nodes follow. */
 export function shiftSamples({ engine, variant, places, lanes }: Pen, lane: number, by: number): void {
   const width = lanes.length

@@ -3,11 +3,14 @@
 
 import { feet, kinds, none } from '../culvert-crawler/genome.js'
 import { assemble, type FootNode, type Machine, type Member, memberOf } from '../culvert-crawler/machine.js'
+import { remembering } from '../culvert-crawler/remember.js'
 import { invertM } from './floor.js'
 import { type Crawler3dGenome, places, placesInColumn, placesPerColumn } from './genome.js'
 
 /** The machine that a (repaired) genome describes. */
-export function buildBody3d(genome: Crawler3dGenome): Machine {
+export const buildBody3d = remembering(machineOf)
+
+function machineOf(genome: Crawler3dGenome): Machine {
   const columns = genome.bays[0]! + 1
   const positionsM = placeNodes(genome, columns)
   const shape = {

@@ -17,7 +17,7 @@ import {
 
 export default defineProblem({
   name: 'culvert-crawler-3d',
-  version: '1',
+  version: '2',
   summary: 'A soft truss of three chains crawls along the round bottom of a pipe, carrying a sensor puck.',
   genome: crawler3dGenome,
   objectives,

@@ -3,9 +3,12 @@
 
 import { type CrawlerGenome, feet, kinds, none, places, placesPerColumn } from './genome.js'
 import { assemble, type Machine, type Member, memberOf } from './machine.js'
+import { remembering } from './remember.js'
 
 /** The machine that a (repaired) genome describes. */
-export function buildBody(genome: CrawlerGenome): Machine {
+export const buildBody = remembering(machineOf)
+
+function machineOf(genome: CrawlerGenome): Machine {
   const columns = genome.bays[0]! + 1
   const positionsM = placeNodes(genome, columns)
   const shape = {

@@ -1,10 +1,9 @@
 // When a crawler counts as broken: a bay turned inside out, or a strut squeezed or torn beyond what rubber does. Looked at
-// in every lane again and again, so in plain loops over flat arrays. A strut that is beyond it between two looks is found
-// at the end, in the samples.
+// in every lane again and again, so in plain loops over flat arrays, where the numbers lie. Struts are judged by the
+// samples, so that nothing is missed between two looks.
 
 import type { Fault } from '../../lattice/advance.js'
-import type { Lattice } from '../../lattice/layout.js'
-import type { Tally } from '../../lattice/tally.js'
+import type { NodePlaces } from '../../lattice/places.js'
 import type { Machine } from './machine.js'
 import { numbers } from './numbers.js'
 
@@ -13,49 +12,49 @@ export interface Watch {
   readonly machine: Machine
   /** Node numbers of every bay, one after the other. */
   readonly bayNodes: Int32Array
-  /** Size of every bay as built, m^2 or m^3. */
-  readonly bayRest: Float64Array
-  /** Least and most squared length of every strut, m^2. */
-  readonly leastSquared: Float64Array
-  readonly mostSquared: Float64Array
+  /** Least size of every bay, m^2 or m^3. */
+  readonly bayLeast: Float64Array
+  /** Least and most length of every strut, m. */
+  readonly leastM: Float64Array
+  readonly mostM: Float64Array
 }
 
 export function watchOf(machine: Machine): Watch {
   const { dimensions, positionsM, bays, members } = machine
-  const places = Float64Array.from(positionsM.flat())
-  const bayNodes = Int32Array.from(bays.flat())
-  const bound = (ratio: number) =>
-    Float64Array.from(members, ({ lengthM }) => ratio * lengthM * (ratio * lengthM))
-  return {
-    machine,
-    bayNodes,
-    bayRest: Float64Array.from(bays, (_, i) => baySize(places, dimensions, dimensions, bayNodes, i)),
-    leastSquared: bound(numbers.strutRatioLeast),
-    mostSquared: bound(numbers.strutRatioMost),
+  const built = new Float64Array(dimensions * positionsM.length)
+  for (let i = 0; i < positionsM.length; i++) built.set(positionsM[i]!, dimensions * i)
+  const places = { numbers: built, first: 0, nodeStep: dimensions, axisStep: 1 }
+  const corners = 2 * dimensions === 4 ? 4 : 6
+  const bayNodes = new Int32Array(corners * bays.length)
+  for (let i = 0; i < bays.length; i++) bayNodes.set(bays[i]!, corners * i)
+  const bayLeast = new Float64Array(bays.length)
+  for (let i = 0; i < bays.length; i++) {
+    bayLeast[i] = numbers.bayLeast * baySize(places, dimensions, bayNodes, i)
   }
+  const leastM = new Float64Array(members.length)
+  const mostM = new Float64Array(members.length)
+  for (let i = 0; i < members.length; i++) {
+    leastM[i] = numbers.strutRatioLeast * members[i]!.lengthM
+    mostM[i] = numbers.strutRatioMost * members[i]!.lengthM
+  }
+  return { machine, bayNodes, bayLeast, leastM, mostM }
 }
 
-/** Signed area (four nodes) or volume (six nodes) of bay i; a node's coordinates are `stride` numbers apart. */
-function baySize(
-  nodes: Float64Array,
-  stride: number,
-  dimensions: number,
-  bays: Int32Array,
-  i: number,
-): number {
-  return dimensions === 2 ? bayArea(nodes, stride, bays, 4 * i) : bayVolume(nodes, stride, bays, 6 * i)
+/** Signed area (four nodes) or volume (six nodes) of bay i. */
+function baySize(places: NodePlaces, dimensions: 2 | 3, bays: Int32Array, i: number): number {
+  return dimensions === 2 ? bayArea(places, bays, 4 * i) : bayVolume(places, bays, 6 * i)
 }
 
 /** Half the cross product of the diagonals; nodes lower, upper, next lower, next upper. */
-function bayArea(nodes: Float64Array, stride: number, bays: Int32Array, at: number): number {
-  const lower = bays[at]! * stride
-  const upper = bays[at + 1]! * stride
-  const nextLower = bays[at + 2]! * stride
-  const nextUpper = bays[at + 3]! * stride
-  const risingX = nodes[nextUpper]! - nodes[lower]!
-  const risingY = nodes[nextUpper + 1]! - nodes[lower + 1]!
-  const fallingX = nodes[upper]! - nodes[nextLower]!
-  const fallingY = nodes[upper + 1]! - nodes[nextLower + 1]!
+function bayArea({ numbers, first, nodeStep, axisStep }: NodePlaces, bays: Int32Array, at: number): number {
+  const lower = first + bays[at]! * nodeStep
+  const upper = first + bays[at + 1]! * nodeStep
+  const nextLower = first + bays[at + 2]! * nodeStep
+  const nextUpper = first + bays[at + 3]! * nodeStep
+  const risingX = numbers[nextUpper]! - numbers[lower]!
+  const risingY = numbers[nextUpper + axisStep]! - numbers[lower + axisStep]!
+  const fallingX = numbers[upper]! - numbers[nextLower]!
+  const fallingY = numbers[upper + axisStep]! - numbers[nextLower + axisStep]!
   return (risingX * fallingY - risingY * fallingX) / 2
 }
 
@@ -63,80 +62,60 @@ function bayArea(nodes: Float64Array, stride: number, bays: Int32Array, at: numb
  * A prism between two triangles, as three tetrahedra: nodes left, right, upper of a column, then of the next. Positive when
  * the next column lies ahead (+x) of a column whose right is at +z.
  */
-function bayVolume(nodes: Float64Array, stride: number, bays: Int32Array, at: number): number {
+function bayVolume(places: NodePlaces, bays: Int32Array, at: number): number {
   return (
-    tetrahedron(nodes, stride, bays, at + 1, at, at + 2, at + 5) +
-    tetrahedron(nodes, stride, bays, at + 1, at, at + 5, at + 3) +
-    tetrahedron(nodes, stride, bays, at + 1, at + 3, at + 5, at + 4)
+    tetrahedron(places, bays, at + 1, at, at + 2, at + 5) +
+    tetrahedron(places, bays, at + 1, at, at + 5, at + 3) +
+    tetrahedron(places, bays, at + 1, at + 3, at + 5, at + 4)
   )
 }
 
 function tetrahedron(
-  nodes: Float64Array,
-  stride: number,
+  { numbers, first, nodeStep, axisStep: y }: NodePlaces,
   bays: Int32Array,
   a: number,
   b: number,
   c: number,
   d: number,
 ): number {
-  const o = bays[a]! * stride
-  const p = bays[b]! * stride
-  const q = bays[c]! * stride
-  const r = bays[d]! * stride
-  const px = nodes[p]! - nodes[o]!
-  const py = nodes[p + 1]! - nodes[o + 1]!
-  const pz = nodes[p + 2]! - nodes[o + 2]!
-  const qx = nodes[q]! - nodes[o]!
-  const qy = nodes[q + 1]! - nodes[o + 1]!
-  const qz = nodes[q + 2]! - nodes[o + 2]!
-  const rx = nodes[r]! - nodes[o]!
-  const ry = nodes[r + 1]! - nodes[o + 1]!
-  const rz = nodes[r + 2]! - nodes[o + 2]!
+  const z = 2 * y
+  const o = first + bays[a]! * nodeStep
+  const p = first + bays[b]! * nodeStep
+  const q = first + bays[c]! * nodeStep
+  const r = first + bays[d]! * nodeStep
+  const px = numbers[p]! - numbers[o]!
+  const py = numbers[p + y]! - numbers[o + y]!
+  const pz = numbers[p + z]! - numbers[o + z]!
+  const qx = numbers[q]! - numbers[o]!
+  const qy = numbers[q + y]! - numbers[o + y]!
+  const qz = numbers[q + z]! - numbers[o + z]!
+  const rx = numbers[r]! - numbers[o]!
+  const ry = numbers[r + y]! - numbers[o + y]!
+  const rz = numbers[r + z]! - numbers[o + z]!
   return (px * (qy * rz - qz * ry) + py * (qz * rx - qx * rz) + pz * (qx * ry - qy * rx)) / 6
 }
 
-/** The first thing that is broken now, or nothing. */
-export function collapse(
-  { nodes, stride, ends, dimensions, step, stepSeconds }: Lattice,
-  watch: Watch,
-): Fault | undefined {
-  const { machine, bayNodes, bayRest, leastSquared, mostSquared } = watch
-  const seconds = step * stepSeconds
-  for (let i = 0; i < bayRest.length; i++) {
-    if (baySize(nodes, stride, dimensions, bayNodes, i) < numbers.bayLeast * bayRest[i]!) {
-      return { reason: `bay ${i + 1} collapsed`, seconds }
-    }
+/** The first bay that has collapsed, or -1. */
+export function collapsedBay(places: NodePlaces, { machine, bayNodes, bayLeast }: Watch): number {
+  for (let i = 0; i < bayLeast.length; i++) {
+    if (baySize(places, machine.dimensions, bayNodes, i) < bayLeast[i]!) return i
   }
-  for (let i = 0; i < leastSquared.length; i++) {
-    const a = ends[2 * i]!
-    const b = ends[2 * i + 1]!
-    let squared = 0
-    for (let axis = 0; axis < dimensions; axis++) {
-      const d = nodes[b + axis]! - nodes[a + axis]!
-      squared += d * d
-    }
-    if (squared < leastSquared[i]! || squared > mostSquared[i]!) {
-      return { reason: lengthWords(machine, i, Math.sqrt(squared), 'is'), seconds }
-    }
-  }
-  return undefined
+  return -1
 }
 
-/** The first strut that was beyond its limits in any sample, told with the time of the end. */
-export function overstrained(tally: Tally, { machine, leastSquared, mostSquared }: Watch): Fault | undefined {
-  const { shortestM, longestM } = tally
-  const seconds = numbers.settleSeconds + numbers.trialSeconds
-  for (let i = 0; i < leastSquared.length; i++) {
-    const [least, most] = [shortestM[i]!, longestM[i]!]
-    if (least * least < leastSquared[i]!) return { reason: lengthWords(machine, i, least, 'was'), seconds }
-    if (most * most > mostSquared[i]!) return { reason: lengthWords(machine, i, most, 'was'), seconds }
-  }
-  return undefined
+export function bayFault(bay: number, seconds: number): Fault {
+  return { reason: `bay ${bay + 1} collapsed`, seconds }
 }
 
-function lengthWords({ members }: Machine, i: number, presentM: number, verb: string): string {
-  const { place, column, lengthM } = members[i]!
+/** Told of a strut whose sampled lengths left their bounds, with the extremes so far. */
+export function strutFault(
+  { machine, leastM }: Watch,
+  strut: number,
+  { shortestM, longestM }: { readonly shortestM: Float64Array; readonly longestM: Float64Array },
+  seconds: number,
+): Fault {
+  const { place, column, lengthM } = machine.members[strut]!
+  const presentM = shortestM[strut]! < leastM[strut]! ? shortestM[strut]! : longestM[strut]!
   const percent = Math.round((100 * presentM) / lengthM)
-  return `${place} of column ${column + 1} ${verb} at ${percent} % of its length`
+  return { reason: `${place} of column ${column + 1} was at ${percent} % of its length`, seconds }
 }

@@ -12,7 +12,7 @@ import { crawlerFrames } from './replay.js'
 
 export default defineProblem({
   name: 'culvert-crawler',
-  version: '2',
+  version: '3',
   summary: 'A soft truss crawls along a culvert with debris on its floor, carrying a sensor puck.',
   genome: crawlerGenome,
   objectives,

@@ -70,7 +70,7 @@ export const numbers = {
   /** Longest step; shorter where a body asks for it. */
   stepSecondsMost: 1e-3,
   framesPerSecond: 25,
-  samplesPerFrame: 4,
+  samplesPerFrame: 2,
   /** Frames between two looks at whether the body is broken, five a second; the last frame is one of them. */
   framesPerLook: 5,
 

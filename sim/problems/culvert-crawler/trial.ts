@@ -5,25 +5,33 @@
 // Conditions run side by side in the lanes of the lattice kernel, and are sampled there. followTrial() does the same on
 // the reference simulator, one condition at a time and bit for bit the same, for replays and checks.
 
-import { advance, type Fault } from '../../lattice/advance.js'
+import { advance, type Fault, look } from '../../lattice/advance.js'
 import { buildLattice } from '../../lattice/build.js'
 import {
   advanceLanes,
   type Lanes,
   lanePlaceM,
+  lanePlaces,
+  laneStrutBeyond,
   lanesMost,
   laneTally,
   packLanes,
   releaseLanes,
-  sampleLanes,
-  unpackLane,
 } from '../../lattice/lanes.js'
 import type { Lattice } from '../../lattice/layout.js'
-import type { FrictionSpec, GroundSpec, LatticeSpec } from '../../lattice/spec.js'
+import { latticePlaces } from '../../lattice/places.js'
+import type {
+  ActuatorSpec,
+  FrictionSpec,
+  GroundSpec,
+  LatticeSpec,
+  NodeSpec,
+  StrutSpec,
+} from '../../lattice/spec.js'
 import { chooseStep, stepBound } from '../../lattice/stability.js'
-import { newTally, type Tally, takeSample } from '../../lattice/tally.js'
+import { newTally, strutBeyond, type Tally, takeSample } from '../../lattice/tally.js'
 import { varyLattice } from '../../lattice/vary.js'
-import { collapse, overstrained, type Watch, watchOf } from './collapse.js'
+import { bayFault, collapsedBay, strutFault, type Watch, watchOf } from './collapse.js'
 import type { Foot, Machine } from './machine.js'
 import { numbers } from './numbers.js'
 
@@ -51,25 +59,10 @@ export type MachineSpec = LatticeSpec & { readonly stepSeconds: number }
 
 /** The body on the steepest floor as a description for the lattice simulator, with the longest step that is safe. */
 export function describeMachine(machine: Machine, steepest: GroundSpec, divide = 1): MachineSpec {
-  const strut = ({ a, b, lengthM: restM, stiffnessNpm }: Machine['members'][number]) => {
-    return { a, b, restM, stiffnessNpm, dampingNspm: stiffnessNpm * numbers.relaxationSeconds }
-  }
-  const headings = headingNodes(machine)
   const spec = {
     dimensions: machine.dimensions,
-    nodes: machine.positionsM.map((positionM, i) => ({
-      positionM,
-      massKg: machine.nodeMassesKg[i]!,
-      ...(headings[i] === undefined ? {} : { headingNode: headings[i] }),
-    })),
-    struts: machine.members.slice(0, machine.passiveCount).map(strut),
-    actuators: machine.members.slice(machine.passiveCount).map((member) => ({
-      ...strut(member),
-      group: member.group,
-      strain: machine.strains[member.group]!,
-      phaseTurns: machine.phaseTurns[member.group]!,
-      forceLimitN: numbers.pressurePa * numbers.boreAreaM2,
-    })),
+    nodes: nodesOf(machine),
+    ...strutsOf(machine),
     groups: Array.from(machine.strains, () => ({ frequencyHz: machine.frequencyHz })),
     gravityMps2: [0, -numbers.gravityMps2, 0].slice(0, machine.dimensions),
     dragNspm: numbers.settleDragNspm,
@@ -87,10 +80,38 @@ export function describeMachine(machine: Machine, steepest: GroundSpec, divide =
   return { ...spec, stepSeconds: whole / divide }
 }
 
-function headingNodes({ positionsM, footNodes }: Machine): (number | undefined)[] {
-  const headings = new Array<number | undefined>(positionsM.length).fill(undefined)
-  for (const { node, toward } of footNodes) headings[node] = toward?.node
-  return headings
+function nodesOf({ positionsM, nodeMassesKg, footNodes }: Machine): NodeSpec[] {
+  const nodes: NodeSpec[] = positionsM.map((positionM, i) => ({ positionM, massKg: nodeMassesKg[i]! }))
+  for (const { node, toward } of footNodes) {
+    if (toward) nodes[node] = { ...nodes[node]!, headingNode: toward.node }
+  }
+  return nodes
+}
+
+function strutsOf({ members, passiveCount, strains, phaseTurns }: Machine) {
+  const struts: StrutSpec[] = []
+  const actuators: ActuatorSpec[] = []
+  const forceLimitN = numbers.pressurePa * numbers.boreAreaM2
+  for (let i = 0; i < members.length; i++) {
+    const { a, b, lengthM: restM, stiffnessNpm, group } = members[i]!
+    const dampingNspm = stiffnessNpm * numbers.relaxationSeconds
+    if (i < passiveCount) struts.push({ a, b, restM, stiffnessNpm, dampingNspm })
+    else {
+      const [strain, phase] = [strains[group]!, phaseTurns[group]!]
+      actuators.push({
+        a,
+        b,
+        restM,
+        stiffnessNpm,
+        dampingNspm,
+        group,
+        strain,
+        phaseTurns: phase,
+        forceLimitN,
+      })
+    }
+  }
+  return { struts, actuators }
 }
 
 /** Friction of every node on a floor. */
@@ -144,8 +165,13 @@ export interface Trial {
   readonly endXM: number
 }
 
-const stepsPerSample = ({ stepSeconds }: Lattice) =>
-  Math.round(frameSeconds / numbers.samplesPerFrame / stepSeconds)
+/** Steps between two samples, and between two looks. */
+function pacesOf({ stepSeconds }: Lattice) {
+  const stepsPerSample = Math.round(frameSeconds / numbers.samplesPerFrame / stepSeconds)
+  return { stepsPerSample, stepsPerLook: stepsPerSample * numbers.samplesPerFrame * numbers.framesPerLook }
+}
+
+const looksPerTrial = framesPerTrial / numbers.framesPerLook
 
 /** One trial for each condition, in order; a fault where the machine broke. */
 export function runTrials<Condition extends Surroundings>(
@@ -168,25 +194,20 @@ export function runTrials<Condition extends Surroundings>(
 function runGroup(watch: Watch, lattices: readonly Lattice[]): (Trial | Fault)[] {
   const { machine } = watch
   const lanes = packLanes(lattices)
-  const [{ driveStartStep, stepSeconds }] = lattices as readonly [Lattice]
   const faults: (Fault | undefined)[] = lattices.map(() => undefined)
-  const steps = stepsPerSample(lattices[0]!)
-  advanceLanes(lanes, driveStartStep)
+  const { stepsPerSample, stepsPerLook } = pacesOf(lattices[0]!)
+  advanceLanes(lanes, lattices[0]!.driveStartStep)
   noteFaults(watch, lanes, faults)
   for (const lattice of lattices) lattice.dragNspm = 0
-  const starts = lattices.map((_, i) => [0, 1].map((axis) => puckM(machine, lanes, i, axis as 0 | 1)))
-  for (let frame = 0; frame < framesPerTrial && faults.includes(undefined); frame++) {
-    for (let i = 0; i < numbers.samplesPerFrame; i++) {
-      advanceLanes(lanes, steps)
-      sampleLanes(lanes, steps * stepSeconds)
-    }
-    if ((frame + 1) % numbers.framesPerLook === 0) noteFaults(watch, lanes, faults)
+  const starts = lattices.map((_, i) => [puckM(machine, lanes, i, 0), puckM(machine, lanes, i, 1)])
+  for (let look = 0; look < looksPerTrial && faults.includes(undefined); look++) {
+    advanceLanes(lanes, stepsPerLook, stepsPerSample)
+    noteFaults(watch, lanes, faults)
   }
   const results = faults.map((fault, i) => {
     if (fault) return fault
     const [startXM, startYM] = starts[i] as [number, number]
-    const tally = laneTally(lanes, i)
-    return overstrained(tally, watch) ?? { tally, startXM, startYM, endXM: puckM(machine, lanes, i, 0) }
+    return { tally: laneTally(lanes, i), startXM, startYM, endXM: puckM(machine, lanes, i, 0) }
   })
   releaseLanes(lanes)
   return results
@@ -196,11 +217,32 @@ function puckM({ puckNode }: Machine, lanes: Lanes, lane: number, axis: 0 | 1): 
   return lanePlaceM(lanes, lane, puckNode, axis)
 }
 
-/** The first fault of every lane stays: the kernel's own, or a collapse. */
+/** The first fault of every lane stays: the kernel's own, a collapsed bay, or a strut beyond its bounds in a sample. */
 function noteFaults(watch: Watch, lanes: Lanes, faults: (Fault | undefined)[]): void {
+  const seconds = lanes.step * lanes.lattices[0]!.stepSeconds
   for (let i = 0; i < faults.length; i++) {
-    faults[i] ??= lanes.faults[i] ?? collapse(unpackLane(lanes, i), watch)
+    if (faults[i]) continue
+    if (lanes.faults[i]) {
+      faults[i] = lanes.faults[i]
+      continue
+    }
+    const bay = collapsedBay(lanePlaces(lanes, i), watch)
+    if (bay >= 0) {
+      faults[i] = bayFault(bay, seconds)
+      continue
+    }
+    const strut = lanes.samples === 0 ? -1 : laneStrutBeyond(lanes, i, watch.leastM, watch.mostM)
+    if (strut >= 0) faults[i] = strutFault(watch, strut, laneTally(lanes, i), seconds)
   }
+}
+
+/** What noteFaults() tells of a lane, of a lattice on the reference simulator. */
+function brokenNow(watch: Watch, lattice: Lattice, tally: Tally): Fault | undefined {
+  const seconds = lattice.step * lattice.stepSeconds
+  const bay = collapsedBay(latticePlaces(lattice), watch)
+  if (bay >= 0) return bayFault(bay, seconds)
+  const strut = tally.samples === 0 ? -1 : strutBeyond(tally, watch.leastM, watch.mostM)
+  return strut >= 0 ? strutFault(watch, strut, tally, seconds) : undefined
 }
 
 /**
@@ -213,23 +255,23 @@ export function followTrial(
   onFrame: (lattice: Lattice) => void = () => {},
 ): Trial | Fault {
   const watch = watchOf(machine)
-  const settled = advance(lattice, lattice.driveStartStep) ?? collapse(lattice, watch)
+  const tally = newTally(lattice)
+  const settled = advance(lattice, lattice.driveStartStep) ?? brokenNow(watch, lattice, tally)
   if (settled) return settled
   lattice.dragNspm = 0
   onFrame(lattice)
   const at = (axis: number) => lattice.nodes[machine.puckNode * lattice.stride + axis]!
   const [startXM, startYM] = [at(0), at(1)]
-  const tally = newTally(lattice)
-  const steps = stepsPerSample(lattice)
-  for (let frame = 0; frame < framesPerTrial; frame++) {
-    for (let i = 0; i < numbers.samplesPerFrame; i++) {
-      const fault = advance(lattice, steps)
-      if (fault) return fault
-      takeSample(lattice, tally, steps * lattice.stepSeconds)
-    }
-    const fault = (frame + 1) % numbers.framesPerLook === 0 ? collapse(lattice, watch) : undefined
-    if (fault) return fault
-    onFrame(lattice)
+  const { stepsPerSample, stepsPerLook } = pacesOf(lattice)
+  const take = () => {
+    takeSample(lattice, tally, stepsPerSample * lattice.stepSeconds)
+    // Between two choke points nobody has looked yet: what has a fault is not drawn.
+    if (tally.samples % numbers.samplesPerFrame === 0 && !look(lattice)) onFrame(lattice)
   }
-  return overstrained(tally, watch) ?? { tally, startXM, startYM, endXM: at(0) }
+  for (let turn = 0; turn < looksPerTrial; turn++) {
+    const fault =
+      advance(lattice, stepsPerLook, { everySteps: stepsPerSample, take }) ?? brokenNow(watch, lattice, tally)
+    if (fault) return fault
+  }
+  return { tally, startXM, startYM, endXM: at(0) }
 }

@@ -16,6 +16,8 @@ export interface Contestant {
   readonly replicates: number
   /** Steps in a sample, at least. */
   readonly leastSteps: number
+  /** CPU until the fast code is there. */
+  readonly warmUpNanoseconds: number
 }
 
 interface Runner {
@@ -35,7 +37,6 @@ export type Rounds = readonly { readonly [name: string]: number }[]
 const pinned = spawnSync('taskset', ['-c', '0', 'true']).status === 0 ? ['taskset', '-c', '0'] : []
 
 const sampleNanoseconds = 25e6
-const warmUpNanoseconds = 400e6
 
 export async function alternate(contestants: readonly Contestant[], count: number): Promise<Rounds> {
   const runners = contestants.map(start)
@@ -96,7 +97,7 @@ async function warmUp(runner: Runner): Promise<void> {
   let steps = runner.contestant.leastSteps
   let spent = 0
   let last = 0
-  while (spent < warmUpNanoseconds) {
+  while (spent < runner.contestant.warmUpNanoseconds) {
     last = Number(await runner.ask(`run ${steps}`))
     spent += Math.max(last, 1e5)
     if (last < sampleNanoseconds / 2) steps *= 2
