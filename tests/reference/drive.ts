@@ -138,16 +138,6 @@ export function randomBits(bits: Uint8Array, draws: Stream): void {
   for (let i = 0; i < bits.length; i++) bits[i] = draws.below(2)
 }
 
-/** Each bit flips with chance 1/n. */
-export function standardBitMutation(bits: Uint8Array, draws: Stream): void {
-  for (let i = 0; i < bits.length; i++) if (draws.below(bits.length) === 0) bits[i]! ^= 1
-}
-
-/** Exactly one bit flips. */
-export function oneBitFlip(bits: Uint8Array, draws: Stream): void {
-  bits[draws.below(bits.length)]! ^= 1
-}
-
 export interface Estimate {
   readonly mean: number
   /** Four standard errors of the mean. */

@@ -1,69 +1,19 @@
-// Runtime theory: exact expected times of (1+1), RLS and (1+lambda) on OneMax and LeadingOnes, through
-// `one-plus-lambda`. Times are iterations (generations) after the first evaluation; offspring are accepted when
-// not worse; each bit flips with chance 1/n (RLS: exactly one bit). The expectations are recomputed by exact
+// Runtime theory: exact expected times of (1+1) and RLS on OneMax and LeadingOnes, through
+// `one-plus-lambda` and the operators of bits. Times are iterations (generations) after the first evaluation; offspring are
+// accepted when not worse; each bit flips with chance 1/n (RLS: exactly one bit). The expectations are recomputed by exact
 // absorbing Markov chains. Seeds were chosen beforehand: 31000 and on; bands are four standard errors.
 
 import { describe, expect, test } from 'vitest'
-import { onePlusLambda } from '../../coordinator/evolution/methods/one-plus-lambda.js'
 import type { Genome } from '../../shared/genome.js'
 import {
-  bitStrings,
-  bitsOf,
-  drive,
-  type Estimate,
-  estimateOf,
+  type Case,
+  expectWithin,
+  flipping,
+  generations,
+  notLeading,
   oneBitFlip,
-  randomBits,
-  standardBitMutation,
-} from './drive.js'
-
-function zeros(genome: Genome): number {
-  let ones = 0
-  for (const bit of bitsOf(genome)) ones += bit
-  return bitsOf(genome).length - ones
-}
-function notLeading(genome: Genome): number {
-  const first = bitsOf(genome).indexOf(0)
-  return first < 0 ? 0 : bitsOf(genome).length - first
-}
-
-interface Case {
-  readonly n: number
-  readonly runs: number
-  readonly expected: number
-  readonly lambda?: number
-}
-
-/** Generations until the best possible score, over runs with seeds 31000, 31001, ... */
-function generations(
-  { n, runs, lambda = 1 }: Case,
-  missing: (genome: Genome) => number,
-  mutate = standardBitMutation,
-  founder = randomBits,
-): Estimate {
-  const times: number[] = []
-  for (let run = 0; run < runs; run++) {
-    const { step, steps, machine } = drive({
-      method: onePlusLambda,
-      population: lambda,
-      variation: bitStrings(n, mutate, founder),
-      score: (genome) => [missing(genome)],
-      seed: 31000 + run,
-      lookahead: lambda,
-    })
-    step()
-    let count = 0
-    for (; machine.members()[0]!.score[0] !== 0; count++) steps(lambda)
-    times.push(count)
-  }
-  return estimateOf(times)
-}
-
-function expectWithin({ mean, band }: Estimate, expected: number): void {
-  // A band so wide that it could hold anything would be no test.
-  expect(band).toBeLessThan(0.2 * expected)
-  expect(Math.abs(mean - expected)).toBeLessThan(band)
-}
+  zeros,
+} from './runtime-bits.js'
 
 const allZeros = (): void => {}
 
@@ -71,28 +21,61 @@ describe('(1+1) EA on OneMax', () => {
   // Exact chains; the expansion of Hwang, Panholzer, Rolin, Tsai and Chen, Probabilistic analysis of the (1+1)
   // evolutionary algorithm, 2018, agrees within 0.05 % at n = 50.
   test.each<Case>([
+    { n: 5, runs: 1000, expected: 16.1063658414 },
     { n: 10, runs: 1000, expected: 47.9865939067 },
     { n: 20, runs: 1000, expected: 130.065272615 },
     { n: 50, runs: 300, expected: 443.1887786288 },
+    { n: 100, runs: 120, expected: 1069.5384972598 },
+    { n: 200, runs: 60, expected: 2509.8251348081 },
   ])('from a random start, n = $n', (one) => {
     expectWithin(generations(one, zeros), one.expected)
   })
 
-  test.each<Case>([{ n: 20, runs: 1000, expected: 146.8073452494 }])('from all zeros, n = $n', (one) => {
-    expectWithin(generations(one, zeros, standardBitMutation, allZeros), one.expected)
+  // The same exact chains.
+  test.each([
+    [20, 0.5, 173.9092],
+    [20, 1.22664, 127.4528518],
+    [20, 2, 148.869],
+    [50, 0.5, 582.6067],
+    [50, 1.1953, 436.580014],
+    [50, 2, 513.4519],
+    [100, 1.17035, 1057.1514825],
+  ])('n = %d, each bit flips with chance %d / n', (n, c, expected) => {
+    const one = { n, runs: 6_000 / n, expected }
+    expectWithin(generations(one, zeros, flipping(c)), expected)
+  })
+
+  test.each<Case>([
+    { n: 5, runs: 1000, expected: 19.925588143 },
+    { n: 10, runs: 1000, expected: 56.1434352965 },
+    { n: 20, runs: 1000, expected: 146.8073452494 },
+    { n: 50, runs: 200, expected: 485.6625270749 },
+    { n: 100, runs: 80, expected: 1154.8922679671 },
+    { n: 200, runs: 40, expected: 2680.9367793591 },
+  ])('from all zeros, n = $n', (one) => {
+    expectWithin(generations(one, zeros, flipping(1), allZeros), one.expected)
   })
 })
 
 describe('one-bit flips (randomised local search) on OneMax', () => {
   // From all zeros this is the coupon collector: n times the n-th harmonic number.
   test.each<Case>([
+    { n: 10, runs: 1000, expected: 22.3590339782 },
     { n: 20, runs: 1000, expected: 58.0918504019 },
+    { n: 50, runs: 400, expected: 190.3029078885 },
     { n: 100, runs: 250, expected: 449.423033708 },
+    { n: 200, runs: 100, expected: 1036.9767535123 },
   ])('from a random start, n = $n', (one) => {
     expectWithin(generations(one, zeros, oneBitFlip), one.expected)
   })
 
-  test.each<Case>([{ n: 50, runs: 400, expected: 224.9602669165 }])('from all zeros, n = $n', (one) => {
+  test.each<Case>([
+    { n: 10, runs: 1000, expected: 29.2896825397 },
+    { n: 20, runs: 500, expected: 71.9547931429 },
+    { n: 50, runs: 400, expected: 224.9602669165 },
+    { n: 100, runs: 120, expected: 518.737751764 },
+    { n: 200, runs: 60, expected: 1175.6061896243 },
+  ])('from all zeros, n = $n', (one) => {
     expectWithin(generations(one, zeros, oneBitFlip, allZeros), one.expected)
   })
 })
@@ -104,10 +87,24 @@ describe('(1+1) EA on LeadingOnes', () => {
     { n: 10, runs: 1000, expected: 84.0587395857 },
     { n: 20, runs: 500, expected: 340.0068653281 },
     { n: 50, runs: 120, expected: 2138.816558553 },
+    { n: 100, runs: 30, expected: 8573.3951808237 },
   ])('standard bit mutation, n = $n', (one) => {
     const { n } = one
     expect((n * n * ((1 - 1 / n) ** (1 - n) - (1 - 1 / n))) / 2).toBeCloseTo(one.expected, 6)
     expectWithin(generations(one, notLeading), one.expected)
+  })
+
+  // Best fixed chance, about 1.59 / n, and 1.59 / n itself: (1 / (2 p^2)) ((1 - p)^(1 - n) - (1 - p)).
+  test.each([
+    [10, 1.478, 77.04315773],
+    [20, 1.5331, 308.66423853],
+    [20, 1.59, 308.93259],
+    [50, 1.56872, 1930.00990239],
+    [50, 1.59, 1930.226042],
+  ])('n = %d, each bit flips with chance %d / n', (n, c, expected) => {
+    const p = c / n
+    expect(Math.abs(((1 - p) ** (1 - n) - (1 - p)) / (2 * p * p) / expected - 1)).toBeLessThan(1e-6)
+    expectWithin(generations({ n, runs: 5_000 / n, expected }, notLeading, flipping(c)), expected)
   })
 
   test('one-bit flips take n^2 / 2', () => {
@@ -116,23 +113,14 @@ describe('(1+1) EA on LeadingOnes', () => {
   })
 })
 
-describe('(1+lambda) EA: parallel generations, exact chains', () => {
-  test.each<Case>([
-    { n: 50, lambda: 2, runs: 200, expected: 226.90010918 },
-    { n: 50, lambda: 8, runs: 200, expected: 65.25907748 },
-    { n: 50, lambda: 32, runs: 150, expected: 25.5593084 },
-    { n: 100, lambda: 16, runs: 60, expected: 88.88145428 },
-  ])('OneMax, n = $n, lambda = $lambda', (one) => {
-    expectWithin(generations(one, zeros), one.expected)
-  })
-
-  // The free bits behind the leading ones are not independent of selection: a chain that takes them so is up to
-  // 24 % off at n = 20, lambda = 64.
-  test.each<Case>([
-    { n: 20, lambda: 8, runs: 600, expected: 46.6651798 },
-    { n: 20, lambda: 64, runs: 300, expected: 10.92310824 },
-    { n: 50, lambda: 16, runs: 80, expected: 145.33300262 },
-  ])('LeadingOnes, n = $n, lambda = $lambda', (one) => {
-    expectWithin(generations(one, notLeading), one.expected)
+describe('a needle in a haystack', () => {
+  // Everything but the one best string is worth the same, so what is not worse must be taken: one-bit flips then walk at
+  // random over the corners of the cube, and from beside the needle need 2^n - 1 steps to it (Kac, Random walk and the
+  // theory of Brownian motion, 1947, from memory: the mean time of return is 2^n).
+  test.each([4, 6])('n = %i: 2^n - 1 steps from beside it', (n) => {
+    const one = { n, runs: 3000, expected: 2 ** n - 1 }
+    const beside = (value: Uint8Array) => value.fill(1, 1)
+    const missing = (genome: Genome) => (zeros(genome) === 0 ? 0 : 1)
+    expectWithin(generations(one, missing, oneBitFlip, beside), one.expected)
   })
 })
