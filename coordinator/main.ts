@@ -360,7 +360,8 @@ export async function rederive(options: RederiveOptions): Promise<RederiveReport
         digest: hex(island.digest),
       })),
       digest: hex(search.digest()),
-      resimulated,
+      resimulated: resimulated.of,
+      agreed: resimulated.agreed,
       exactness: problem.exactness,
     }
   } finally {

@@ -32,6 +32,11 @@ export interface Measure {
 
 /** How far a problem's results repeat (design: bits is the default and what our own kernels promise). */
 export type Exactness = 'bits' | 'bits-per-processor' | 'tolerance' | 'statistical'
+/** How far two simulations of the same may be apart: absolute (in the number's unit) plus relative to the larger. */
+export interface Tolerance {
+  readonly absolute?: number
+  readonly relative?: number
+}
 
 export interface Situation<Condition> {
   readonly condition: Condition
@@ -69,6 +74,11 @@ export interface Problem<S extends GenomeSpec = GenomeSpec, Condition = unknown>
   readonly measures: { readonly [name: string]: Measure }
   readonly cases: readonly string[]
   readonly exactness: Exactness
+  /**
+   * For every objective and measure, with exactness 'tolerance' how far results of honest machines are apart at most,
+   * with 'statistical' what chance hardly ever exceeds.
+   */
+  readonly tolerance?: { readonly [name: string]: Tolerance }
   /** Draws everything random about one simulation. The same stream gives the same condition. */
   readonly drawCondition: (stream: Stream) => Condition
   /** One outcome for each situation, in order. Gets all simulations of an evaluation at once. */

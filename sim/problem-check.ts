@@ -54,6 +54,31 @@ export function checkProblem(value: unknown): asserts value is AnyProblem {
   for (const name of Object.keys(value.objectives as Bag)) {
     demand(!(name in measures), `measures.${name}`, name, 'a name that no objective has')
   }
+  checkTolerance(value)
+}
+
+/** Wanted where results may differ, for every number; refused where they may not. */
+function checkTolerance({ exactness, tolerance, objectives, measures }: Bag): void {
+  const field = 'tolerance'
+  if (exactness !== 'tolerance' && exactness !== 'statistical') {
+    demand(tolerance === undefined, field, tolerance, `nothing, because exactness is '${exactness}'`)
+    return
+  }
+  const wanted = [...Object.keys(objectives as Bag), ...Object.keys(measures as Bag)]
+  demand(isBag(tolerance), field, tolerance, 'an object with one entry for every objective and measure')
+  for (const name of Object.keys(tolerance)) {
+    demand(wanted.includes(name), `${field}.${name}`, name, `one of ${wanted.join(', ')}`)
+  }
+  for (const name of wanted) {
+    const at = `${field}.${name}`
+    const entry = tolerance[name]
+    demand(isBag(entry), at, entry, '{ absolute } or { relative }, or both')
+    const { absolute = 0, relative = 0, ...others } = entry
+    demand(Object.keys(others).length === 0, at, entry, 'absolute and relative, nothing else')
+    demand(isNumber(absolute) && absolute >= 0, `${at}.absolute`, absolute, 'a finite number from 0 on')
+    demand(isNumber(relative) && relative >= 0 && relative < 1, `${at}.relative`, relative, '0 to below 1')
+    demand(absolute > 0 || relative > 0, at, entry, 'an absolute or relative tolerance above 0')
+  }
 }
 
 type FieldCheck = (value: unknown, field: string) => void
@@ -80,6 +105,8 @@ const fields: { readonly [field: string]: FieldCheck } = {
     const options = ['bits', 'bits-per-processor', 'tolerance', 'statistical']
     demand(isOneOf(value, options), field, value, `one of ${options.join(', ')}`)
   },
+  tolerance: (value, field) =>
+    demand(value === undefined || isBag(value), field, value, 'an object or nothing'),
   drawCondition: aFunction,
   simulate: aFunction,
   simulateFiner: perhapsAFunction,

@@ -17,6 +17,7 @@ import type {
   Reduction,
   SimulationOutcome,
   Situation,
+  Tolerance,
   UseOf,
 } from '../shared/problem.js'
 import type { Stream } from '../shared/streams.js'
@@ -46,6 +47,8 @@ export interface ProblemInput<S extends GenomeSpec, Condition> {
   readonly cases?: readonly string[]
   /** 'bits' unless said. */
   readonly exactness?: Exactness
+  /** Asked for with exactness 'tolerance' or 'statistical', for every objective and measure; else not taken. */
+  readonly tolerance?: { readonly [name: string]: Tolerance }
   readonly drawCondition: (stream: Stream) => Condition
   readonly simulate: (genome: GenomeOf<S>, situations: readonly Situation<Condition>[]) => SimulationOutcome[]
   /** As simulate, with the step divided by `divide`; not judged unless given. */
@@ -140,5 +143,15 @@ export function problemPlan(problem: AnyProblem, digest: string) {
       unit,
     })),
     cases: [...problem.cases],
+    // What most problems promise is not said, so that their plans stay as they were.
+    ...(problem.exactness === 'bits' ? {} : { exactness: problem.exactness }),
+    ...(problem.tolerance === undefined ? {} : { tolerances: tolerancesOf(problem, problem.tolerance) }),
   }
+}
+
+/** One entry a column of a result: objectives, then measures, in the order of declaration. */
+function tolerancesOf(problem: AnyProblem, tolerance: { readonly [name: string]: Tolerance }): Tolerance[] {
+  return [...Object.keys(problem.objectives), ...Object.keys(problem.measures)].map((name) => ({
+    ...tolerance[name],
+  }))
 }

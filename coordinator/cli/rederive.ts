@@ -4,6 +4,7 @@ import { exitCodes } from '../../shared/refusals.js'
 import type { Command, CommandInput } from './command.js'
 import { openHouse } from './house.js'
 import { counted } from './numbers.js'
+import type { RederiveReport } from './run-options.js'
 import { columns } from './searchfile/changes.js'
 import { watch } from './watch.js'
 
@@ -55,13 +56,21 @@ async function run(input: CommandInput): Promise<number> {
     `The record agrees with its journal: ${counted(report.islands.length, 'island')}, search digest ${report.digest}.`,
   )
   if (report.resimulated > 0) {
-    const how =
-      report.exactness === 'bits'
-        ? 'to the last bit'
-        : `as exactly as the problem promises (${report.exactness})`
-    output.print(
-      `${counted(report.resimulated, 'evaluation')} simulated again gave the recorded numbers ${how}.`,
-    )
+    output.print(resimulatedLine(report))
   }
   return exitCodes.done
+}
+
+const howExact: { readonly [exactness in RederiveReport['exactness']]: string } = {
+  bits: 'to the last bit',
+  'bits-per-processor': 'to the last bit, on this class of processors',
+  tolerance: "within the problem's tolerances",
+  statistical: "within the problem's tolerances",
+}
+
+function resimulatedLine({ resimulated, agreed = resimulated, exactness }: RederiveReport): string {
+  const all = `${counted(resimulated, 'evaluation')} simulated again`
+  return agreed === resimulated
+    ? `${all} gave the recorded numbers ${howExact[exactness]}.`
+    : `${all}: ${agreed} gave the recorded numbers ${howExact[exactness]}; the problem promises no more than a likeness.`
 }

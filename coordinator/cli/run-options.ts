@@ -1,5 +1,6 @@
 // What `skerry run` asks of coordinator/main.ts, what it hears while the search runs, and what it gets at the end.
 
+import type { Exactness } from '../../shared/problem.js'
 import type { ProgressView } from './progress-view.js'
 import type { ChangeRowFound } from './searchfile/changes.js'
 import type { Finding } from './searchfile/finding.js'
@@ -57,8 +58,10 @@ export interface RederiveReport {
   readonly islands: readonly { readonly name: string; readonly commits: number; readonly digest: string }[]
   readonly digest: string
   readonly resimulated: number
+  /** How many of those agreed: all, unless the problem promises no more than a likeness. */
+  readonly agreed?: number
   /** Of the record: 'bits' unless the problem promises less. */
-  readonly exactness: string
+  readonly exactness: Exactness
 }
 
 /** What coordinator/main.ts offers to the commands. */

@@ -2,7 +2,7 @@
 // evolution and engine read this and never the file. Plain data, structured-cloneable.
 
 import type { GenomeSpec } from '../../shared/genome.js'
-import type { CaseCombination, Direction, Reduction } from '../../shared/problem.js'
+import type { CaseCombination, Direction, Exactness, Reduction, Tolerance } from '../../shared/problem.js'
 import type { Placement, Settings } from './types.js'
 
 export interface ObjectivePlan {
@@ -28,6 +28,10 @@ export interface ProblemPlan {
     readonly unit: string
   }[]
   readonly cases: readonly string[]
+  /** How far results repeat; 'bits' where nothing is said. */
+  readonly exactness?: Exactness
+  /** For exactness 'tolerance' and 'statistical': one entry a column of a result. */
+  readonly tolerances?: readonly Tolerance[]
 }
 
 export type CommitOrder = 'proposal' | 'cost' | 'arrival'

@@ -8,6 +8,7 @@ import { commands } from '../../coordinator/cli/table.js'
 import { methods } from '../../coordinator/evolution/methods/index.js'
 import { crossoverRows, mutationRows, operatorDefaults } from '../../coordinator/evolution/operators/index.js'
 import type { SettingRow, SettingTable } from '../../coordinator/evolution/types.js'
+import { exactnessRules } from '../../shared/exactness.js'
 import { actuatorClasses } from '../../shared/making/actuators.js'
 import { hazards } from '../../shared/making/hazards.js'
 import type { ActuatorClass } from '../../shared/making/types.js'
@@ -134,6 +135,17 @@ export const documentTables: readonly DocumentTable[] = [
     mark: 'actuators',
     head: ['actuator class', 'force', 'stroke either way', 'rate', 'power', 'source'],
     rows: Object.values<ActuatorClass>(actuatorClasses).map(actuatorRow),
+  },
+  {
+    file: 'DEVELOPERS.md',
+    mark: 'exactness',
+    head: ['exactness', 'votes', 'digests', '`rederive --resimulate`'],
+    rows: Object.entries(exactnessRules).map(([name, rule]) => [
+      code(name),
+      rule.votes,
+      rule.digests,
+      rule.resimulate,
+    ]),
   },
   {
     file: 'DEVELOPERS.md',

@@ -3,9 +3,9 @@
 import { describe, expect, it } from 'vitest'
 import { real } from '../../../shared/encodings.js'
 import type { AnyProblem, Measured, SimulationOutcome } from '../../../shared/problem.js'
+import { ulpDistance } from '../../../shared/ulp.js'
 import { defineProblem } from '../../../sim/problem.js'
 import { type TrialPlan, tryProblem } from './trials.js'
-import { ulpDistance } from './ulp.js'
 
 const plan: TrialPlan = { seed: 3, shared: true, replicates: 2, machines: 3, secondsMost: 60 }
 let clock = 0

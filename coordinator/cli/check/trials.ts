@@ -8,10 +8,10 @@ import { idOf } from '../../../shared/ids.js'
 import { limits } from '../../../shared/limits.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import { stream } from '../../../shared/streams.js'
+import { ulpDistance } from '../../../shared/ulp.js'
 import { evaluateStrict, type StrictEvaluation } from '../../../sim/evaluate.js'
 import { columnsOf, simulationsPerReplicate } from '../../../sim/problem.js'
 import { type StepTrial, tryStep } from './step.js'
-import { ulpDistance } from './ulp.js'
 
 export interface TrialPlan {
   readonly seed: number

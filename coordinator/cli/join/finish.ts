@@ -8,6 +8,7 @@ import { renameSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { conditionStream } from '../../../shared/conditions.js'
 import { hex } from '../../../shared/digests.js'
+import { exactnessRules } from '../../../shared/exactness.js'
 import { nameOf } from '../../../shared/ids.js'
 import { limits } from '../../../shared/limits.js'
 import { cautionsOf } from '../../../shared/making/cautions.js'
@@ -235,6 +236,7 @@ function summaryOf(
 
 /** What cannot be repeated to the bit, and why. */
 export function repeatLines(plan: SearchPlan, exactness: AnyProblem['exactness']): string[] {
+  const { said } = exactnessRules[exactness]
   const byArrival = plan.islands.some(({ order }) => order === 'arrival')
   return [
     ...(byArrival
@@ -242,11 +244,7 @@ export function repeatLines(plan: SearchPlan, exactness: AnyProblem['exactness']
           '  Results were taken in the order of arrival: `skerry rederive` can check this search, its file alone cannot repeat it.',
         ]
       : []),
-    ...(exactness === 'bits'
-      ? []
-      : [
-          `  The problem promises "${exactness}", not the same bits: another machine may find something else.`,
-        ]),
+    ...(said === '' ? [] : [`  ${said}`]),
   ]
 }
 

@@ -1,15 +1,16 @@
 // A sample of a record's simulations, run once more: reservoir sampling (Vitter, Random sampling with a
 // reservoir, 1985, algorithm R) over the commits as they are derived again, so that memory does not grow with them.
 
-import { equalBytes, resultDigest } from '../../../shared/digests.js'
+import { resultDigest } from '../../../shared/digests.js'
 import { genomeFromBytes } from '../../../shared/encodings.js'
+import { agree, ruleOf } from '../../../shared/exactness.js'
 import { islandName, nameOf } from '../../../shared/ids.js'
 import type { AnyProblem } from '../../../shared/problem.js'
 import { refuse } from '../../../shared/refusals.js'
 import { type Stream, stream } from '../../../shared/streams.js'
 import { evaluate } from '../../../sim/evaluate.js'
 import { setAsideWorker } from '../../engine/confirmed.js'
-import type { RecordReader } from '../../engine/ports.js'
+import type { ArrivalRow, RecordReader } from '../../engine/ports.js'
 import type { Island } from '../../evolution/island.js'
 import type { SearchPlan } from '../../evolution/plan.js'
 import type { Ticket } from '../../evolution/tickets.js'
@@ -55,8 +56,9 @@ export class Sample {
 }
 
 /**
- * Simulates the sample again and compares digests. Returns how many agreed; what was set aside cannot be simulated
- * and is passed over. @throws Refusal results-disagree
+ * Simulates the sample again and compares, as exactly as the problem promises. Returns how many agreed of how many;
+ * what was set aside cannot be simulated and is passed over.
+ * @throws Refusal results-disagree, unless the problem promises no more than a likeness
  */
 export function resimulate(
   plan: SearchPlan,
@@ -64,8 +66,9 @@ export function resimulate(
   reader: RecordReader,
   sample: Sample,
   signal: AbortSignal,
-): number {
+): { readonly agreed: number; readonly of: number } {
   let agreed = 0
+  let of = 0
   for (const one of sample.drawn()) {
     if (signal.aborted) break
     const recorded = reader.arrival(one.island, one.evaluation)
@@ -79,12 +82,19 @@ export function resimulate(
       one.firstReplicate,
       one.replicates,
     )
-    if (!equalBytes(resultDigest(again), recorded.digest)) {
-      throw refuse('results-disagree', {
-        detail: `evaluation ${one.evaluation} of ${islandName(one.island)} (${nameOf(one.individual)}), simulated by ${recorded.worker}, gives another result here`,
-      })
-    }
-    agreed++
+    of++
+    if (agree(plan.problem, { result: again, digest: resultDigest(again) }, recorded)) agreed++
+    else if (ruleOf(plan.problem).convicts) throw differs(plan, one, recorded)
   }
-  return agreed
+  return { agreed, of }
+}
+
+function differs(plan: SearchPlan, one: Drawn, { worker, processor }: ArrivalRow): Error {
+  const onClass =
+    ruleOf(plan.problem).oneProcessorClass && processor !== undefined
+      ? `; it was simulated on a processor of class ${processor}, and only that class must give it again`
+      : ''
+  return refuse('results-disagree', {
+    detail: `evaluation ${one.evaluation} of ${islandName(one.island)} (${nameOf(one.individual)}), simulated by ${worker}, gives another result here${onClass}`,
+  })
 }
