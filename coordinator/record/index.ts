@@ -18,3 +18,12 @@ export {
 export { type Pinned, type SearchIdentity, sha256Hex } from './pinned.js'
 export type { StoredReader, Totals } from './reader.js'
 export type { DamagedAppend, Verification } from './verify.js'
+export {
+  copyShared,
+  isShared,
+  openShared,
+  type SharedPlace,
+  sharedHolder,
+  watchSharedHolder,
+  workCopyOf,
+} from './shared-folder/open.js'

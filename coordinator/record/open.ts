@@ -25,7 +25,7 @@ import {
   renderTime,
   type Takeover,
 } from './holder.js'
-import { SqliteJournal } from './journal.js'
+import { type Mirror, SqliteJournal } from './journal.js'
 import { differences, type Pinned, readPinned, type SearchIdentity, writeCopies } from './pinned.js'
 import { fileSystemOf, judgePlace } from './place.js'
 import { SqliteReader, type StoredReader } from './reader.js'
@@ -59,6 +59,8 @@ export interface OpenOptions {
   readonly storage?: Storage
   readonly isRunning?: (holder: ProcessIdentity) => boolean
   readonly fileSystem?: (folder: string) => number
+  /** Keeps every append in a second place before it counts (shared-folder/). */
+  readonly mirror?: Mirror
 }
 
 /** Appends that the record once had and has no more. */
@@ -214,7 +216,14 @@ function settle(opening: Opening): OpenRecord {
   witness.say(reader.totals())
   return {
     ...pinned,
-    journal: new SqliteJournal({ database, reader, hold, witness, clock: options.clock }),
+    journal: new SqliteJournal({
+      database,
+      reader,
+      hold,
+      witness,
+      clock: options.clock,
+      ...(options.mirror ? { mirror: options.mirror } : {}),
+    }),
     reader,
     created,
     epoch: hold.epoch,
