@@ -7,6 +7,7 @@ import { checkCommand } from './check.js'
 import type { Command, CommandInput, OptionRow, Output } from './command.js'
 import { demoCommand } from './demo.js'
 import { newCommand } from './new.js'
+import { preflightCommand } from './preflight.js'
 import { progressCommand } from './progress.js'
 import { rederiveCommand } from './rederive.js'
 import { runCommand } from './run.js'
@@ -17,6 +18,7 @@ export const commands: readonly Command[] = [
   runCommand,
   progressCommand,
   rederiveCommand,
+  preflightCommand,
   demoCommand,
 ]
 

@@ -41,8 +41,7 @@ export async function checkServer(
   const facts = await readServer(link)
   const unfit = (found: string, cure: string) =>
     refuse('queue-unfit', { detail: `${link.shown}: ${found}`, cure })
-  const [major = 0, minor = 0] = facts.version.split('.').map(Number)
-  if (major < oldest[0] || (major === oldest[0] && minor < oldest[1]))
+  if (!isNewEnough(facts.version))
     throw unfit(
       `it is version ${facts.version}; at least ${oldest.join('.')} is needed`,
       'Install a newer Redis.',
@@ -62,6 +61,11 @@ export async function checkServer(
     )
   }
   return facts
+}
+
+export function isNewEnough(version: string): boolean {
+  const [major = 0, minor = 0] = version.split('.').map(Number)
+  return major > oldest[0] || (major === oldest[0] && minor >= oldest[1])
 }
 
 function field(info: string, name: string): string | undefined {
