@@ -17,8 +17,8 @@ export {
   type Lanes,
   lanePlaceM,
   lanePlaces,
-  lanesMost,
   laneStrutBeyond,
+  lanesMost,
   laneTally,
   packLanes,
   releaseLanes,
@@ -30,7 +30,7 @@ export * as observe from './lattice/observe.js'
 export { latticePlaces, type NodePlaces } from './lattice/places.js'
 export type * from './lattice/spec.js'
 export { stepBound } from './lattice/stability.js'
-export { newTally, strutBeyond, type Tally, takeSample } from './lattice/tally.js'
+export { actuatorTally, newTally, strutBeyond, type Tally, takeSample } from './lattice/tally.js'
 export { type Variation, varyLattice } from './lattice/vary.js'
 export * from './measure/index.js'
 export { defineProblem } from './problem.js'

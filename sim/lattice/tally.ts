@@ -1,6 +1,7 @@
 // What is measured of a body while it runs, sampled between steps: extremes, work and contacts, as flat arrays. The same
 // sums, in the same order, are kept by the WebAssembly kernel (lanes), where sampling does not leave the kernel.
 
+import { type ActuatorTally, loadedShare } from '../../shared/making/measures.js'
 import { groundHeightM } from './ground.js'
 import type { Lattice } from './layout.js'
 import { commandedStrain } from './observe.js'
@@ -15,6 +16,11 @@ export interface Tally {
   readonly longestM: Float64Array
   /** Mechanical work given to the nodes by every driven strut, J, positive part: what it is pushed gives nothing back. */
   readonly workJ: Float64Array
+  /**
+   * Samples in which the driven strut was under load, as the standard measure duty counts them: its |tension| above a tenth
+   * of its force limit (shared/making/measures.ts). Without a limit there is no load to speak of, and this stays 0.
+   */
+  readonly loadedSamples: Float64Array
   /** Samples in which the node was in the ground. */
   readonly contacts: Float64Array
   /** Lowest and highest y of every node, m. */
@@ -31,6 +37,7 @@ export function newTally({ nodeCount, passiveCount, activeCount, guidedCount }: 
     shortestM: new Float64Array(struts).fill(Number.POSITIVE_INFINITY),
     longestM: new Float64Array(struts),
     workJ: new Float64Array(driven),
+    loadedSamples: new Float64Array(driven),
     contacts: new Float64Array(nodeCount),
     lowestM: new Float64Array(nodeCount).fill(Number.POSITIVE_INFINITY),
     highestM: new Float64Array(nodeCount).fill(Number.NEGATIVE_INFINITY),
@@ -39,11 +46,12 @@ export function newTally({ nodeCount, passiveCount, activeCount, guidedCount }: 
 
 /**
  * Takes one sample; `seconds` is the time between samples. With d, dv from a to b, q = d.d and scale = T / |d| as in the
- * force loops (reference/plane-struts.ts): |T| = |scale| sqrt(q), power given to the nodes = -scale (d . dv).
+ * force loops (reference/plane-struts.ts): |T| = |scale| sqrt(q), power given to the nodes = -scale (d . dv), under load
+ * where |scale| > share * limit / |d|.
  */
 export function takeSample(lattice: Lattice, tally: Tally, seconds: number): void {
-  const { passiveCount, activeCount, guidedCount, ends, nodes, dimensions } = lattice
-  const { peakTensionN, shortestM, longestM, workJ } = tally
+  const { passiveCount, activeCount, guidedCount, ends, nodes, dimensions, limitN } = lattice
+  const { peakTensionN, shortestM, longestM, workJ, loadedSamples } = tally
   tally.samples++
   for (let i = 0; i < passiveCount + activeCount + guidedCount; i++) {
     const a = ends[2 * i]!
@@ -60,9 +68,26 @@ export function takeSample(lattice: Lattice, tally: Tally, seconds: number): voi
     peakTensionN[i] = Math.max(peakTensionN[i]!, Math.abs(scale) * length)
     shortestM[i] = Math.min(shortestM[i]!, length)
     longestM[i] = Math.max(longestM[i]!, length)
-    if (i >= passiveCount) workJ[i - passiveCount]! += Math.max(0, -scale * along) * seconds
+    if (i < passiveCount) continue
+    const j = i - passiveCount
+    workJ[j]! += Math.max(0, -scale * along) * seconds
+    const most = limitN[j]! * (length * (1 / q))
+    if (Math.abs(scale) > loadedShare * most) loadedSamples[j]!++
   }
   sampleNodes(lattice, tally)
+}
+
+/** What was sampled of driven strut j (active, then guided), as the standard measures of actuators take it. */
+export function actuatorTally(tally: Tally, j: number): ActuatorTally {
+  const strut = tally.peakTensionN.length - tally.workJ.length + j
+  return {
+    peakForce: tally.peakTensionN[strut]!,
+    shortest: tally.shortestM[strut]!,
+    longest: tally.longestM[strut]!,
+    workJ: tally.workJ[j]!,
+    loadedSamples: tally.loadedSamples[j]!,
+    samples: tally.samples,
+  }
 }
 
 /** The first strut that was shorter or longer in some sample than its bounds, one of each for every strut; or -1. */

@@ -1,12 +1,13 @@
 // The same body in another situation, and what is sampled while it moves.
 
 import { describe, expect, test } from 'vitest'
+import { actuatorFigures } from '../../shared/making/measures.js'
 import { Refusal } from '../../shared/refusals.js'
 import { advance } from './advance.js'
 import { buildLattice } from './build.js'
 import { lengthM, lengthRateMps, tensionN } from './observe.js'
 import type { LatticeSpec } from './spec.js'
-import { newTally, takeSample } from './tally.js'
+import { actuatorTally, newTally, takeSample } from './tally.js'
 import { type Variation, varyLattice } from './vary.js'
 
 const pad = { forward: 0.3, backward: 0.9 }
@@ -147,6 +148,7 @@ test('a tally keeps what observe.* says, sample by sample', () => {
   const truth = {
     peak: [0, 0, 0, 0],
     work: [0, 0],
+    loaded: [0, 0],
     shortest: [9, 9, 9, 9],
     contacts: [0, 0, 0],
     low: 9,
@@ -159,7 +161,9 @@ test('a tally keeps what observe.* says, sample by sample', () => {
       const tension = tensionN(lattice, i)
       truth.peak[i] = Math.max(truth.peak[i]!, Math.abs(tension))
       truth.shortest[i] = Math.min(truth.shortest[i]!, lengthM(lattice, i))
-      if (i >= 2) truth.work[i - 2]! += Math.max(0, -tension * lengthRateMps(lattice, i)) * 25 * 2e-4
+      if (i < 2) continue
+      truth.work[i - 2]! += Math.max(0, -tension * lengthRateMps(lattice, i)) * 25 * 2e-4
+      if (Math.abs(tension) > 0.1 * lattice.limitN[i - 2]!) truth.loaded[i - 2]!++
     }
     for (let i = 0; i < 3; i++) {
       const [x, y] = [lattice.nodes[6 * i]!, lattice.nodes[6 * i + 1]!]
@@ -178,6 +182,14 @@ test('a tally keeps what observe.* says, sample by sample', () => {
   }
   for (let j = 0; j < 2; j++) expect(tally.workJ[j]).toBeCloseTo(truth.work[j]!, 12)
   expect(truth.work[0]).toBeGreaterThan(0)
+  expect(Array.from(tally.loadedSamples)).toEqual(truth.loaded)
+  // Neither never nor always under load.
+  expect(truth.loaded[0]).toBeGreaterThan(10)
+  expect(truth.loaded[0]).toBeLessThan(190)
+  const { duty, peakForce, stroke } = actuatorFigures(actuatorTally(tally, 0), lattice.restM[2]!, 25 * 2e-4)
+  expect(duty).toBe(truth.loaded[0]! / 200)
+  expect(peakForce).toBe(tally.peakTensionN[2])
+  expect(stroke).toBe((tally.longestM[2]! - tally.shortestM[2]!) / lattice.restM[2]!)
   expect(Array.from(tally.contacts)).toEqual(truth.contacts)
   expect(truth.contacts[0]).toBeGreaterThan(20)
   expect([tally.lowestM[2], tally.highestM[2]]).toEqual([truth.low, truth.high])

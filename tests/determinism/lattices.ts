@@ -37,8 +37,9 @@ export function situations(dimensions: 2 | 3, body: number, count: number): Latt
 
 function numbersOf(lattice: Lattice, tally: Tally): number[] {
   const { nodes, sensed, guidedStrain, rotors, step } = lattice
-  const { peakTensionN, workJ, contacts, highestM, lowestM } = tally
-  const parts = [nodes, sensed, guidedStrain, rotors, peakTensionN, workJ, contacts, highestM, lowestM]
+  const { peakTensionN, workJ, loadedSamples, contacts, highestM, lowestM } = tally
+  const struts = [peakTensionN, workJ, loadedSamples]
+  const parts = [nodes, sensed, guidedStrain, rotors, ...struts, contacts, highestM, lowestM]
   return [step, ...parts.flatMap((part) => Array.from(part))]
 }
 

@@ -129,6 +129,7 @@ describe.each([2, 3] as const)('in %i dimensions', (dimensions) => {
       expect(laneTally(lanes, i)).toEqual(tally)
       expect(lanePlaceM(lanes, i, 3, 1)).toBe(alone[i]!.nodes[3 * alone[i]!.stride + 1])
       expect(Math.max(...tally.workJ)).toBeGreaterThan(0)
+      expect(Math.max(...tally.loadedSamples)).toBeGreaterThan(0)
       expect(Math.max(...tally.contacts)).toBeGreaterThan(0)
     }
   })

@@ -83,4 +83,6 @@ export const grownAt = 23
 export const sampleSecondsAt = 24
 /** A drive group that stands still (sine, cosine), for guided struts without one. */
 export const noGroupAt = 25
-export const numbersCount = 27
+/** Share of its force limit above which a driven strut is under load. */
+export const loadedShareAt = 27
+export const numbersCount = 28

@@ -1,6 +1,7 @@
 // Writing a body into the kernel's memory: lists of struts, fills, sensors and so on, with node numbers turned into
 // addresses. State and what may change between calls are in state.ts, the ground is in terrain.ts.
 
+import { loadedShare } from '../../../shared/making/measures.js'
 import * as header from './header.js'
 import { nodeAt, numberPlace, type Pen, putEqual, putMaterial, putWide, putWideRow, putWord } from './pen.js'
 
@@ -63,6 +64,7 @@ function writeHead(pen: Pen): void {
   // Single precision has no 1e-200.
   equal(header.tinyAt, variant.numberBytes === 8 ? 1e-200 : 1e-30)
   equal(header.stepAt, lattice.stepSeconds)
+  equal(header.loadedShareAt, loadedShare)
   putWideRow(pen, numberPlace(variant, header.gravityAt), 'gravity', 0, lattice.dimensions)
   putWideRow(pen, numberPlace(variant, header.contactStiffnessAt), 'contact', 0, 2)
 }

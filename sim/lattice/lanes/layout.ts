@@ -60,7 +60,7 @@ export function recordsOf({ dimensions, own, wide, materialBytes }: Variant) {
     group: 14 * wide,
     prescribed: 16 + 2 * dimensions * wide + 2 * wide,
     strutSample: 3 * wide,
-    drivenSample: wide,
+    drivenSample: 2 * wide,
     nodeSample: 3 * wide,
   }
 }

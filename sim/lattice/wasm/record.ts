@@ -127,8 +127,8 @@ export const prescribedBytes: usize = prescribedPhase + 2 * wide
   return <usize>numbersAt + n * wide + lane
 }
 
-// What sample() keeps. Strut: largest |tension|, shortest, longest. Driven strut: positive work. Node: times in contact,
-// lowest, highest.
+// What sample() keeps. Strut: largest |tension|, shortest, longest. Driven strut: positive work, times under load. Node:
+// times in contact, lowest, highest.
 export const strutSampleBytes: usize = 3 * wide
-export const drivenSampleBytes: usize = wide
+export const drivenSampleBytes: usize = 2 * wide
 export const nodeSampleBytes: usize = 3 * wide

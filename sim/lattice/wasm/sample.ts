@@ -1,10 +1,10 @@
 // What is kept of the present moment for whoever measures: of struts the largest tension and the shortest and longest
-// length, of driven struts the positive work since the last sample, of nodes contact and the lowest and highest place. The
-// same sums in the same order as takeSample() in ../tally.ts.
+// length, of driven struts the positive work since the last sample and whether they are under load, of nodes contact and
+// the lowest and highest place. The same sums in the same order as takeSample() in ../tally.ts.
 
 import {
-  activeEnd, activeFirst, drivenSamples, guidedEnd, guidedFirst, nodesEnd, nodeSamples, nodesFirst, oneAt, passiveEnd,
-  passiveFirst, sampleSecondsAt, strutSamples, topAt,
+  activeEnd, activeFirst, drivenSamples, guidedEnd, guidedFirst, loadedShareAt, nodesEnd, nodeSamples, nodesFirst, oneAt,
+  passiveEnd, passiveFirst, sampleSecondsAt, strutSamples, topAt,
 } from '../lanes/header'
 import { depthOf } from './ground'
 import {
@@ -44,11 +44,14 @@ import {
   write(at, 2 * wide + lane, atLeast(read(at, 2 * wide + lane), length))
 }
 
-/** Adds the work of a strut whose tension is scale * |d|. */
-@inline function keepWork(at: usize, scale: Vec, along: Vec, lane: usize): void {
+/** Adds the work of a strut whose tension is scale * |d|, and one where that is a load; most: limit / |d|. */
+@inline function keepWork(at: usize, scale: Vec, along: Vec, most: Vec, lane: usize): void {
   const power = mul(neg(scale), along)
-  const zero = sub(number(oneAt, lane), number(oneAt, lane))
+  const one = number(oneAt, lane)
+  const zero = sub(one, one)
   write(at, lane, add(read(at, lane), mul(atLeast(power, zero), number(sampleSecondsAt, lane))))
+  const loaded = less(mul(number(loadedShareAt, lane), most), abs(scale))
+  write(at, wide + lane, add(read(at, wide + lane), only(loaded, one)))
 }
 
 @inline function takePassive(p: usize, a: usize, b: usize, at: usize, lane: usize): void {
@@ -89,7 +92,7 @@ function samplePassive(at: usize): void {
   const free = scaleOf(p, 0, commanded, perLength, perQ, along, lane)
   const scale = atMost(atLeast(free, neg(most)), most)
   keep(at, lane, mul(abs(scale), length), length)
-  keepWork(work, scale, along, lane)
+  keepWork(work, scale, along, most, lane)
 }
 
 function sampleActive(at: usize, work: usize): void {
@@ -121,7 +124,7 @@ function takeGuided(p: usize, a: usize, b: usize, at: usize, work: usize, lane: 
   const powerMost = material(p, guidedMaterial, 4, lane)
   const scale = choose(less(powerMost, power), mul(held, div(powerMost, power)), held)
   keep(at, lane, mul(abs(scale), length), length)
-  keepWork(work, scale, along, lane)
+  keepWork(work, scale, along, most, lane)
 }
 
 function sampleGuided(at: usize, work: usize): void {

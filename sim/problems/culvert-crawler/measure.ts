@@ -1,7 +1,15 @@
 // What is told of a trial as numbers: the objectives and measures of every culvert crawler.
 
+import { actuatorClasses } from '../../../shared/making/actuators.js'
+import {
+  type ActuatorFigures,
+  actuatorFigures,
+  actuatorMeasures,
+  worstFigures,
+} from '../../../shared/making/measures.js'
 import type { SimulationOutcome } from '../../../shared/problem.js'
 import type { Fault } from '../../lattice/advance.js'
+import { actuatorTally } from '../../lattice/tally.js'
 import type { Machine } from './machine.js'
 import { numbers } from './numbers.js'
 import { runTrials, type Surroundings, stepsOf, type Trial, type World } from './trial.js'
@@ -20,15 +28,28 @@ export function measuresUpTo(bays: number, actuators: number) {
     puckTravel: { low: 0, high: 0.2, unit: 'm' },
     costOfTransport: { low: 0, high: costMost, unit: '1' },
     contactDuty: { low: 0, high: 1, unit: '1' },
-    peakForce: { low: 0, high: 50, unit: 'N' },
+    strutForce: { low: 0, high: 50, unit: 'N' },
     bays: { low: 2, high: bays, unit: '1' },
     actuators: { low: 0, high: actuators, unit: '1' },
+    // The standard measures of the only class of actuators, of the hardest-worked one.
+    ...actuatorMeasures(actuatorClasses.bellows),
   } as const
 }
 
 const sum = (values: Float64Array) => values.reduce((a, b) => a + b, 0)
 
-function measure(machine: Machine, { tally, startXM, startYM, endXM }: Trial): SimulationOutcome {
+/** Standard measures of every bellows, number by number the largest. */
+function bellowsFigures({ members, passiveCount }: Machine, { tally }: Trial): ActuatorFigures {
+  const secondsPerSample = 1 / (numbers.framesPerSecond * numbers.samplesPerFrame)
+  return worstFigures(
+    members
+      .slice(passiveCount)
+      .map(({ lengthM }, j) => actuatorFigures(actuatorTally(tally, j), lengthM, secondsPerSample)),
+  )
+}
+
+function measure(machine: Machine, trial: Trial): SimulationOutcome {
+  const { tally, startXM, startYM, endXM } = trial
   const { footNodes, puckNode, massKg, members, passiveCount } = machine
   const distance = endXM - startXM
   const weightN = massKg * numbers.gravityMps2
@@ -40,9 +61,10 @@ function measure(machine: Machine, { tally, startXM, startYM, endXM }: Trial): S
       puckTravel: Math.max(startYM, tally.highestM[puckNode]!) - Math.min(startYM, tally.lowestM[puckNode]!),
       costOfTransport: Math.min(costMost, cost),
       contactDuty: contacts / (tally.samples * footNodes.length),
-      peakForce: tally.peakTensionN.reduce((a, b) => Math.max(a, b), 0),
+      strutForce: tally.peakTensionN.reduce((a, b) => Math.max(a, b), 0),
       bays: machine.bays.length,
       actuators: members.length - passiveCount,
+      ...bellowsFigures(machine, trial),
     },
   }
 }
