@@ -206,6 +206,7 @@ describe('selection intensity that migration adds', () => {
   const phi = (z: number) => Math.exp((-z * z) / 2) / Math.sqrt(2 * Math.PI)
   /** Normal quantiles of 1 - q, recomputed to 40 digits. */
   const quantiles: Readonly<Record<number, number>> = {
+    0.01: 2.326347874040841,
     0.05: 1.644853626951472,
     0.1: 1.2815515655446,
     0.2: 0.841621233572914,
@@ -224,7 +225,8 @@ describe('selection intensity that migration adds', () => {
 
   test('the formulas give the tabulated values', () => {
     expect(added(0.05)).toBeCloseTo(0.1031356404, 9)
-    // Best leave, worst seats, one neighbour: 0.05 and 0.10.
+    // Best leave, worst seats, one neighbour: 0.01, 0.05 and 0.10.
+    expect(2 * added(0.01)).toBeCloseTo(0.0533042844, 9)
     expect(2 * added(0.05)).toBeCloseTo(0.2062712808, 9)
     expect(2 * added(0.1)).toBeCloseTo(0.3509966639, 9)
     // Two neighbours, 0.05 and 0.10; four neighbours, 0.05.
@@ -238,6 +240,7 @@ describe('selection intensity that migration adds', () => {
     readonly share: number
   }
   const rows: readonly (readonly [How['leave'], How['arrive'], How['topology'], number, number])[] = [
+    ['best', 'worst', 'ring', 1, 0.01],
     ['best', 'worst', 'ring', 1, 0.05],
     ['best', 'if-better', 'ring', 1, 0.1],
     ['best', 'random', 'ring', 1, 0.05],

@@ -77,25 +77,33 @@ function expectFates(fates: readonly Fate[], { population, absorption, fixation 
 }
 
 describe('Wright and Fisher: generational, even parents', () => {
-  test('heterozygosity falls by 1 - 1/N a generation', () => {
-    const population = 20
-    const after: number[] = []
-    for (let run = 0; run < 1000; run++) {
-      const { machine, steps } = flat(generational, population, wrightFisher, 26000 + run)
-      steps(20 * population)
-      after.push(heterozygosity(machine.members()))
-    }
-    const { mean, band } = estimateOf(after)
-    expect(Math.abs(mean - (1 - 1 / population) ** 21)).toBeLessThan(band)
-    expect(band).toBeLessThan(0.03)
-  })
+  test.each([
+    [20, 20, 1000],
+    [50, 50, 900],
+  ])(
+    'heterozygosity of %i falls by 1 - 1/N a generation, %i generations',
+    (population, generations, runs) => {
+      const after: number[] = []
+      for (let run = 0; run < runs; run++) {
+        const { machine, steps } = flat(generational, population, wrightFisher, 26000 + run)
+        steps(generations * population)
+        after.push(heterozygosity(machine.members()))
+      }
+      const { mean, band } = estimateOf(after)
+      // Founders all differ: 1 - 1/N at the start. For 50: 0.3641696801 of it.
+      expect(Math.abs(mean - (1 - 1 / population) ** (generations + 1))).toBeLessThan(band)
+      expect(band).toBeLessThan(0.03)
+    },
+  )
 
   test.each<Expected>([
     { population: 10, absorption: 5.75327649, fixation: 17.49562023 },
     { population: 20, absorption: 7.23121926, fixation: 37.27206449 },
+    { population: 50, absorption: 9.12679466, fixation: 96.97119769 },
   ])('fate of one copy among $population', (expected) => {
     const { population } = expected
-    const fates = Array.from({ length: 3000 }, (_, run) =>
+    // Fixed in one of N: enough of those for a band of a fifth.
+    const fates = Array.from({ length: population > 20 ? 8000 : 3000 }, (_, run) =>
       fateOf(flat(generational, population, wrightFisher, 27000 + run), 0, population),
     )
     expectFates(fates, expected)
@@ -120,11 +128,15 @@ describe('Moran: steady state, even parents, random replacement', () => {
     expect(band).toBeLessThan(0.03)
   })
 
-  test('fate of one copy among ten: N(N-1) insertions to fixation', () => {
-    const fates = Array.from({ length: 5000 }, (_, run) =>
-      fateOf(flat(steadyState, 10, moran, 28000 + run), 0, 1),
+  test.each<Expected>([
+    { population: 10, absorption: 28.28968254, fixation: 90 },
+    { population: 50, absorption: 223.96026692, fixation: 2450 },
+  ])('fate of one copy among $population: N(N-1) insertions to fixation', (expected) => {
+    const { population } = expected
+    const fates = Array.from({ length: population > 20 ? 8000 : 5000 }, (_, run) =>
+      fateOf(flat(steadyState, population, moran, 28000 + run), 0, 1),
     )
-    expectFates(fates, { population: 10, absorption: 28.28968254, fixation: 90 })
+    expectFates(fates, expected)
   })
 })
 

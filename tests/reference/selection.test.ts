@@ -47,12 +47,18 @@ describe('intensity and variance on a normal population', () => {
   test.each([
     [2, 0.564189583547756, 0.681690113816],
     [3, 0.846284375321634, 0.559467203797],
+    [4, 1.02937537300396, 0.491715236875],
     [5, 1.16296447364052, 0.447534069021],
+    [6, 1.26720636061147, 0.415927108983],
+    [7, 1.3521783756069, 0.391917776127],
+    [8, 1.42360030604528, 0.372897143287],
     [10, 1.53875273083517, 0.344343823261],
+    [15, 1.73591344494104, 0.301041570314],
     [20, 1.86747505979832, 0.275696615619],
+    [30, 2.04276084417151, 0.245837899547],
   ])('tournament of %i', (size, intensity, variance) => {
     const rules = { size, distinct: true }
-    const sample = selectedNormals(21000 + size, 40, 20000, 1, (values, s) =>
+    const sample = selectedNormals(21000 + size, 40, 12000, 1, (values, s) =>
       tournament(values.length, rules, byRank, s),
     )
     expectMoments(sample, intensity, variance)
@@ -71,14 +77,41 @@ describe('intensity and variance on a normal population', () => {
   })
 
   test.each([
+    [50, 2.24907362938985, 0.215712409964],
+    [100, 2.50759363644168, 0.184404813586],
+  ])('tournament of %i', (size, intensity, variance) => {
+    const rules = { size, distinct: true }
+    const sample = selectedNormals(21000 + size, 2 * size, 4000, 1, (values, s) =>
+      tournament(values.length, rules, byRank, s),
+    )
+    expectMoments(sample, intensity, variance)
+  })
+
+  test.each([
+    [0.05, 2.06271280751, 0.138076516533],
     [0.1, 1.75498331932, 0.169135169277],
+    [0.15, 1.55439183502, 0.194889621385],
+    [0.2, 1.39980960204, 0.218642562075],
+    [0.25, 1.27110629074, 0.241636962162],
+    [0.3, 1.15897538067, 0.264543350846],
+    [0.4, 0.965856333742, 0.311818446769],
     [0.5, 0.797884560803, 0.363380227632],
+    [0.6, 0.643904222495, 0.422256082787],
     [0.8, 0.34995240051, 0.583005946369],
+    [0.9, 0.194998146592, 0.712075542783],
   ])('truncation to the best %d', (fraction, intensity, variance) => {
     const sample = selectedNormals(21200 + 100 * fraction, 1000, 500, 40, (values, s) =>
       truncatedRank(values.length, fraction, s),
     )
     expectMoments(sample, intensity, variance)
+  })
+
+  test('truncation to the best hundredth', () => {
+    // Of 10,000: among fewer the best hundredth is not yet that of the normal distribution.
+    const sample = selectedNormals(21201, 10_000, 60, 100, (values, s) =>
+      truncatedRank(values.length, 0.01, s),
+    )
+    expectMoments(sample, 2.66521422035, 0.0968485950314)
   })
 
   test.each([1.2, 1.5, 2])('linear ranking with pressure %d', (pressure) => {
@@ -158,6 +191,32 @@ describe('distribution over the ranks of ten (chi-square; exact chances)', () =>
   })
 })
 
+describe('who is never even drawn into a tournament: (1 - 1/N)^(t N)', () => {
+  test.each([
+    [2, 0.13397967],
+    [3, 0.04904089],
+    [5, 0.00657048],
+    [7, 0.00088031],
+  ])('a hundred tournaments of %i among a hundred', (size, expected) => {
+    const shares: number[] = []
+    for (let run = 0; run < 300; run++) {
+      const s = stream(21900 + size, 'spare', 0, 0, run)
+      const seen = new Set<number>()
+      for (let k = 0; k < 100; k++) {
+        const compare = (a: number, b: number) => {
+          seen.add(a).add(b)
+          return a - b
+        }
+        tournament(100, { size, distinct: false }, compare, s)
+      }
+      shares.push(1 - seen.size / 100)
+    }
+    const { mean, band } = estimateOf(shares)
+    expect(Math.abs(mean - expected)).toBeLessThan(band)
+    expect(band).toBeLessThan(0.01)
+  })
+})
+
 /** Children are copies of one parent: only the choice of parents is left. */
 const copying: Settings = { crossoverChance: 0, mutationChance: 0, elites: 0 }
 
@@ -165,24 +224,33 @@ describe('share of a generation never selected, through `generational`', () => {
   // (1/N) sum over ranks of (1 - p)^N. The "loss of diversity" of Blickle and Thiele (0.25 for t = 2) is another
   // quantity: Motoki, Calculating the expected loss of diversity of selection schemes, 2002.
   test.each([
-    [1, 0.36416968],
-    [2, 0.42904453],
-    [3, 0.50162025],
-    [5, 0.60397233],
-  ])('tournament of %i, fifty members', (size, expected) => {
+    [1, 50, 0.36416968],
+    [2, 50, 0.42904453],
+    [3, 50, 0.50162025],
+    [5, 50, 0.60397233],
+    [7, 50, 0.66932287],
+    [10, 50, 0.73211413],
+    [2, 10, 0.41477937],
+    [5, 10, 0.59466448],
+    [1, 100, 0.36603234],
+    [2, 100, 0.43070212],
+    [10, 100, 0.73270269],
+    [3, 200, 0.50367417],
+    [2, 1000, 0.43217056],
+  ])('tournament of %i, %i members', (size, population, expected) => {
     const shares: number[] = []
-    for (let run = 0; run < 200; run++) {
+    for (let run = 0; run < Math.max(20, 10_000 / population); run++) {
       const { machine, steps } = drive({
         method: generational,
-        population: 50,
+        population,
         settings: { ...copying, tournament: size },
         variation: labels(),
         score: (genome) => [labelOf(genome)],
         seed: 22000 + run,
       })
-      steps(100)
+      steps(2 * population)
       const chosen = new Set(machine.members().map((member) => labelOf(member.genome)))
-      shares.push(1 - chosen.size / 50)
+      shares.push(1 - chosen.size / population)
     }
     const { mean, band } = estimateOf(shares)
     expect(Math.abs(mean - expected)).toBeLessThan(band)
@@ -190,38 +258,56 @@ describe('share of a generation never selected, through `generational`', () => {
   })
 })
 
-describe('takeover by the best of a hundred, through `generational`', () => {
+describe('takeover by the best of a population, through `generational`', () => {
   interface Takeover {
+    readonly population: number
     readonly size: number
     readonly elites: number
     readonly expected: number
     readonly chance: number
+    /** Standard deviation of the time. */
+    readonly sd: number
   }
   test.each<Takeover>([
-    { size: 2, elites: 0, expected: 9.627801, chance: 0.798754 },
-    { size: 2, elites: 1, expected: 8.714837, chance: 1 },
-    { size: 5, elites: 0, expected: 4.407663, chance: 0.993195 },
-    { size: 5, elites: 1, expected: 4.227573, chance: 1 },
-  ])('tournament of $size, elites $elites', ({ size, elites, expected, chance }) => {
-    const runs = 400
-    const times: number[] = []
-    for (let run = 0; run < runs; run++) {
-      const { machine, steps } = drive({
-        method: generational,
-        population: 100,
-        settings: { ...copying, tournament: size, elites },
-        variation: labels(),
-        score: (genome) => [labelOf(genome) === 0 ? 0 : 1],
-        seed: 23000 + 1000 * size + run,
-      })
-      steps(100)
-      const bests = () => machine.members().filter((member) => member.score[0] === 0).length
-      let generation = 0
-      for (; bests() > 0 && bests() < 100; generation++) steps(100 - elites)
-      if (bests() === 100) times.push(generation)
-    }
-    const { mean, band } = estimateOf(times)
-    expect(Math.abs(mean - expected)).toBeLessThan(band)
-    expect(Math.abs(times.length / runs - chance)).toBeLessThanOrEqual(shareBand(chance, runs))
-  })
+    { population: 20, size: 2, elites: 0, expected: 6.635857, chance: 0.806572, sd: 1.565096 },
+    { population: 20, size: 2, elites: 1, expected: 5.772339, chance: 1, sd: 1.158294 },
+    { population: 50, size: 2, elites: 0, expected: 8.378598, chance: 0.800701, sd: 1.534427 },
+    { population: 50, size: 2, elites: 1, expected: 7.477125, chance: 1, sd: 1.119335 },
+    { population: 100, size: 2, elites: 0, expected: 9.627801, chance: 0.798754, sd: 1.511961 },
+    { population: 100, size: 2, elites: 1, expected: 8.714837, chance: 1, sd: 1.089701 },
+    { population: 100, size: 3, elites: 0, expected: 6.324553, chance: 0.941346, sd: 0.827029 },
+    { population: 100, size: 3, elites: 1, expected: 5.912883, chance: 1, sd: 0.6524 },
+    { population: 100, size: 5, elites: 0, expected: 4.407663, chance: 0.993195, sd: 0.529327 },
+    { population: 100, size: 5, elites: 1, expected: 4.227573, chance: 1, sd: 0.428167 },
+    { population: 100, size: 10, elites: 0, expected: 3.0817, chance: 0.999957, sd: 0.274048 },
+    { population: 100, size: 10, elites: 1, expected: 3.04199, chance: 1, sd: 0.200577 },
+    { population: 200, size: 2, elites: 0, expected: 10.835628, chance: 0.797782, sd: 1.494807 },
+    { population: 200, size: 2, elites: 1, expected: 9.917325, chance: 1, sd: 1.06634 },
+    { population: 1000, size: 3, elites: 0, expected: 8.777051, chance: 0.940567, sd: 0.80775 },
+    { population: 1000, size: 5, elites: 1, expected: 6.006089, chance: 1, sd: 0.304016 },
+  ])(
+    'of $population, tournament of $size, elites $elites',
+    ({ population, size, elites, expected, chance, sd }) => {
+      const runs = Math.min(300, Math.round(20_000 / population))
+      const times: number[] = []
+      for (let run = 0; run < runs; run++) {
+        const { machine, steps } = drive({
+          method: generational,
+          population,
+          settings: { ...copying, tournament: size, elites },
+          variation: labels(),
+          score: (genome) => [labelOf(genome) === 0 ? 0 : 1],
+          seed: 23000 + 1000 * size + run,
+        })
+        steps(population)
+        const bests = () => machine.members().filter((member) => member.score[0] === 0).length
+        let generation = 0
+        for (; bests() > 0 && bests() < population; generation++) steps(population - elites)
+        if (bests() === population) times.push(generation)
+      }
+      const { mean } = estimateOf(times)
+      expect(Math.abs(mean - expected)).toBeLessThan((4 * sd) / Math.sqrt(times.length))
+      expect(Math.abs(times.length / runs - chance)).toBeLessThanOrEqual(shareBand(chance, runs))
+    },
+  )
 })
