@@ -17,6 +17,7 @@ import {
   nearestIsotropic,
   type Point,
 } from '../../sim/frames/index.js'
+import { blockModuli } from '../../sim/measure/block.js'
 import { homogenise as homogeniseSprings } from '../../sim/measure/homogenise.js'
 import { defineProblem, problemPlan } from '../../sim/problem.js'
 import { drivenSearch, gateOf } from '../drive-search.js'
@@ -256,5 +257,103 @@ describe('several nodes a cell, or walls that bend', () => {
   test('welding alone can make an isotropic lattice less than 1/3: thick walls of triangles', () => {
     // nu = (1 - (t/l)^2) / (3 + (t/l)^2).
     expect(moduliOf(homogenise(weldedTriangles(0.5)).stiffness).nu12).toBeCloseTo(0.75 / 3.25, 10)
+  })
+})
+
+describe('cork, rubber and what lies beyond', () => {
+  // nu = (K - G)/(K + G) in the plane, (3 K - 2 G)/(2 (3 K + G)) in space (any handbook of elasticity): 0 for a grid, up to
+  // 1 and 1/2 where the volume is kept. Springs alone stay at 1/3 and 1/4 (above).
+  test('springs along a grid, as cork: nothing happens across', () => {
+    const { stiffness } = homogeniseSprings({
+      vectorsM: [
+        [1, 0],
+        [0, 1],
+      ],
+      nodes: [{ positionM: [0, 0] }],
+      struts: [
+        { a: 0, b: 0, shift: [1, 0], stiffnessNpm: 1 },
+        { a: 0, b: 0, shift: [0, 1], stiffnessNpm: 1 },
+      ],
+    })
+    expect(stiffness[0]![1]).toBe(0)
+  })
+
+  test.each([0, 1, 100, 1e6])('in the plane, areas of %d N/m on springs of nu = 1/3', (area) => {
+    const corner = (x: number, y: number) => ({ node: 0, shift: [x, y] })
+    const shifts = [
+      [1, 0, 1],
+      [0, 1, 1],
+      [1, 1, 0.5],
+      [-1, 1, 0.5],
+    ] as const
+    const { stiffness } = homogeniseSprings({
+      vectorsM: [
+        [1, 0],
+        [0, 1],
+      ],
+      nodes: [{ positionM: [0, 0] }],
+      struts: shifts.map(([x, y, stiffnessNpm]) => ({ a: 0, b: 0, shift: [x, y], stiffnessNpm })),
+      areas: [
+        { corners: [corner(0, 0), corner(1, 0), corner(0, 1)], stiffnessNpm: area },
+        { corners: [corner(1, 0), corner(1, 1), corner(0, 1)], stiffnessNpm: area },
+      ],
+    })
+    const poisson = stiffness[0]![1]! / stiffness[0]![0]!
+    // K = 1 + area, G = 1/2: 1/3, then towards 1.
+    expect(Math.abs(poisson - (0.5 + area) / (1.5 + area))).toBeLessThan(1e-12)
+  })
+
+  test.each([0, 1, 100, 1e6])('in space, volumes of %d Pa on springs of nu = 1/4', (pressure) => {
+    // A cube of edges and face diagonals, a quarter and a half of each (measure-blocks.test.ts), filled with five tetrahedra
+    // one way and five the other, half of the stiffness each: then no corner is preferred.
+    const places = [0, 1].flatMap((x) => [0, 1].flatMap((y) => [0, 1].map((z) => [x, y, z])))
+    const nodes = places.map((positionM) => ({ positionM, massKg: 1 }))
+    const struts = places.flatMap((p, a) =>
+      places.slice(a + 1).flatMap((q, i) => {
+        const apart = p.filter((x, axis) => x !== q[axis]).length
+        const stiffnessNpm = apart === 1 ? 1 / 4 : 1 / 2
+        return apart < 3 ? [{ a, b: a + 1 + i, stiffnessNpm, dampingNspm: 0 }] : []
+      }),
+    )
+    const odd = (i: number) => places[i]!.reduce((sum, x) => sum + x, 0) % 2
+    const all = places.map((_, i) => i)
+    const tetrahedra = [0, 1].flatMap((parity) => {
+      const inner = all.filter((i) => odd(i) === parity)
+      const tips = all.filter((i) => odd(i) !== parity)
+      // The three neighbours of a tip are the inner corners one edge away.
+      const near = (tip: number) =>
+        inner.filter((i) => places[i]!.filter((x, k) => x !== places[tip]![k]).length === 1)
+      return [inner, ...tips.map((tip) => [tip, ...near(tip)])]
+    })
+    const edges = (t: readonly number[]) =>
+      t.slice(1).map((n) => places[n]!.map((x, k) => x - places[t[0]!]![k]!))
+    const volumes = tetrahedra.map((t) => {
+      const [a, b, c] = edges(t) as [number[], number[], number[]]
+      const sixfold =
+        a[0]! * (b[1]! * c[2]! - b[2]! * c[1]!) +
+        a[1]! * (b[2]! * c[0]! - b[0]! * c[2]!) +
+        a[2]! * (b[0]! * c[1]! - b[1]! * c[0]!)
+      const corners = sixfold > 0 ? t : [t[1]!, t[0]!, t[2]!, t[3]!]
+      return {
+        nodes: corners as unknown as readonly [number, number, number, number],
+        stiffnessPa: pressure / 2,
+      }
+    })
+    const filled = pressure > 0 ? { volumes } : {}
+    const spec = {
+      dimensions: 3 as const,
+      nodes,
+      struts,
+      ...filled,
+      gravityMps2: [0, 0, 0],
+      stepSeconds: 'auto' as const,
+    }
+    for (const axis of [0, 1, 2]) {
+      const { modulus, poisson } = blockModuli(spec, axis)
+      // C11 = 3 + B, C12 = 1 + B: 1/4, then towards 1/2.
+      for (const one of poisson)
+        expect(Math.abs(one! - (1 + pressure) / (4 + 2 * pressure))).toBeLessThan(1e-9)
+      expect(Math.abs(modulus / ((2 * (5 + 3 * pressure)) / (4 + 2 * pressure)) - 1)).toBeLessThan(1e-9)
+    }
   })
 })
