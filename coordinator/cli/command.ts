@@ -15,7 +15,7 @@ export interface Output {
   readonly note: (text: string) => void
   /** Bytes to standard output as they are, for redrawing. */
   readonly raw: (text: string) => void
-  /** Aborted on SIGINT and SIGTERM. */
+  /** Aborted on SIGINT, SIGTERM and SIGUSR1. */
   readonly signal: AbortSignal
 }
 

@@ -2,6 +2,7 @@
 // The program: gives the commands a terminal, signals and an exit code. Everything else is in table.ts.
 
 import { readFileSync } from 'node:fs'
+import { constants } from 'node:os'
 import { join } from 'node:path'
 import { emittedRoot } from '../../worker/entry.js'
 import type { Output } from './command.js'
@@ -12,12 +13,13 @@ console.log = console.info = console.debug = console.error
 
 const stopping = new AbortController()
 let signals = 0
-for (const name of ['SIGINT', 'SIGTERM'] as const) {
+// SIGUSR1 is what batch systems send some time before they end a job.
+for (const name of ['SIGINT', 'SIGTERM', 'SIGUSR1'] as const) {
   process.on(name, () => {
     signals += 1
     stopping.abort()
     // Whoever asks a second time means it; the record survives that too.
-    if (signals > 1) process.exit(name === 'SIGINT' ? 130 : 143)
+    if (signals > 1) process.exit(128 + constants.signals[name])
   })
 }
 // A reader that went away (a closed pager) is no error of ours.

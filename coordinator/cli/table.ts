@@ -11,11 +11,13 @@ import { preflightCommand } from './preflight.js'
 import { progressCommand } from './progress.js'
 import { rederiveCommand } from './rederive.js'
 import { runCommand } from './run.js'
+import { workCommand } from './work.js'
 
 export const commands: readonly Command[] = [
   newCommand,
   checkCommand,
   runCommand,
+  workCommand,
   progressCommand,
   rederiveCommand,
   preflightCommand,
