@@ -1,28 +1,26 @@
 // The meeting place: a search file, a record, a pool of threads and the engine become a running search. Everything
 // is decided elsewhere; here the parts are handed to one another.
 
-import { randomBytes } from 'node:crypto'
-import { existsSync, readFileSync, statSync } from 'node:fs'
 import { availableParallelism } from 'node:os'
 import { join, resolve } from 'node:path'
-import { z } from 'zod'
-import { hex } from '../shared/digests.js'
-import { islandName } from '../shared/ids.js'
 import { limits } from '../shared/limits.js'
 import type { AnyProblem } from '../shared/problem.js'
-import { Refusal, refuse } from '../shared/refusals.js'
+import { refuse } from '../shared/refusals.js'
 import { loadPlugin } from '../worker/plugin/load.js'
 import { createPool } from '../worker/pool.js'
 import { Alarms } from './cli/join/alarms.js'
+import { openAlone, refuseIfHeldHere } from './cli/join/alone.js'
 import { type BudgetEnds, finishedBecause, orderBudgetEnds, resumeEnds } from './cli/join/budget-ends.js'
 import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
+import { progressFile } from './cli/join/looking-on.js'
 import { Meter, simulationsLeft } from './cli/join/meter.js'
-import { resimulate, Sample } from './cli/join/resimulate.js'
-import { withSilence } from './cli/join/silence.js'
+import { pause } from './cli/join/pause.js'
+import { placeOf } from './cli/join/place.js'
+import { toolsOf } from './cli/join/tools.js'
 import { progressView } from './cli/join/view.js'
 import type { ProgressView } from './cli/progress-view.js'
-import type { RederiveOptions, RederiveReport, RunEnd, RunOptions } from './cli/run-options.js'
+import type { RunEnd, RunOptions } from './cli/run-options.js'
 import { searchTables } from './cli/search-tables.js'
 import { type OpenedSearch, openSearch, peekName } from './cli/searchfile/open.js'
 import { localDispatcher } from './dispatch/local.js'
@@ -30,29 +28,13 @@ import { underWeather } from './dispatch/weather.js'
 import type { Engine } from './engine/engine.js'
 import { type LoopEnd, type LoopState, runLoop } from './engine/loop.js'
 import type { Dispatcher, RecordReader } from './engine/ports.js'
-import { openEngine, replayRecord } from './engine/recover.js'
-import { searchTools } from './evolution/build.js'
-import type { SearchPlan } from './evolution/plan.js'
-import type { SearchTools } from './evolution/search.js'
-import {
-  nameHolder,
-  type OpenRecord,
-  openRecord,
-  readRecord,
-  recordFolder,
-  type Takeover,
-  thisProcess,
-  watchHolder,
-} from './record/index.js'
+import { openEngine } from './engine/recover.js'
+import { type OpenRecord, recordFolder } from './record/index.js'
 
 /** Commits of an island between two snapshots: a restart replays at most as many. */
 const snapshotCommits = 10_000
 const beatSeconds = 2
 const progressSeconds = 1
-const progressFile = 'progress.json'
-
-const toolsOf = (plan: SearchPlan, problem: AnyProblem): SearchTools =>
-  searchTools(plan, { expectedCost: problem.expectedCost as never, repair: problem.repair as never })
 
 /** Starts the search of a file, or goes on where its record stands. */
 export async function runSearch(options: RunOptions): Promise<RunEnd> {
@@ -62,68 +44,17 @@ export async function runSearch(options: RunOptions): Promise<RunEnd> {
     })
   }
   const name = peekName(options.file, searchTables())
-  if (!options.force && name !== undefined) refuseIfHeldHere(options.record ?? join('records', name))
+  if (!options.force && !options.standby && name !== undefined)
+    refuseIfHeldHere(placeOf(options.record ?? join('records', name), options.scratch))
   const opened = await openSearch(options.file, searchTables(), Date.now())
   if (opened.warnings.length > 0)
     options.tell({ kind: 'warned', file: options.file, findings: opened.warnings })
   for (const warning of opened.bundle.warnings) options.tell({ kind: 'said', sentence: warning })
   const folder = options.record ?? join('records', opened.plan.name)
-  const record = await openAlone(options, opened, folder)
+  const place = placeOf(folder, options.scratch)
+  const record = await openAlone(options, opened, place)
   try {
-    return await runRecord(options, opened, record, folder)
-  } finally {
-    record.close()
-  }
-}
-
-/** Seconds without a sign of life after which a coordinator on another machine counts as gone. */
-const silenceSeconds = 15
-
-/** The record, held by nobody else. A holder on another machine is watched first: its node may have been preempted. */
-async function openAlone(options: RunOptions, opened: OpenedSearch, folder: string): Promise<OpenRecord> {
-  const open = (takeover: Takeover) =>
-    openRecord(folder, {
-      create: {
-        plan: opened.plan,
-        searchText: opened.text,
-        pluginCode: new TextEncoder().encode(opened.bundle.code),
-      },
-      holder: thisProcess(),
-      nonce: randomBytes(16).toString('hex'),
-      clock: Date.now,
-      takeover,
-    })
-  try {
-    return open(options.force ? 'force' : 'if-dead')
-  } catch (fault) {
-    if (!(fault instanceof Refusal) || fault.code !== 'record-in-use' || !isHeldElsewhere(folder)) throw fault
-    const sentence = `The record is held on another machine; waiting ${silenceSeconds} s for a sign of life from there.`
-    options.tell({ kind: 'said', sentence })
-    const seen = await watchHolder(folder, silenceSeconds, (ms) => pause(ms, options.signal))
-    if (!seen || options.signal.aborted) throw fault
-    return open(seen)
-  }
-}
-
-/** A second coordinator on this machine is told at once, before its problem is bundled. */
-function refuseIfHeldHere(folder: string): void {
-  if (!existsSync(recordFolder(folder).database)) return
-  const record = readRecord(folder, { me: thisProcess() })
-  try {
-    const holder = record.holder()
-    if (!holder?.running) return
-    const cure = `Wait for it to end, or stop it: kill ${holder.pid}`
-    throw refuse('record-in-use', { detail: nameHolder(holder), cure })
-  } finally {
-    record.close()
-  }
-}
-
-function isHeldElsewhere(folder: string): boolean {
-  const record = readRecord(folder, { me: thisProcess() })
-  try {
-    const holder = record.holder()
-    return holder !== undefined && holder.running === undefined
+    return await runRecord(options, opened, record, { folder, here: place.here })
   } finally {
     record.close()
   }
@@ -133,7 +64,7 @@ async function runRecord(
   options: RunOptions,
   opened: OpenedSearch,
   record: OpenRecord,
-  folder: string,
+  folders: Pick<Driven, 'folder' | 'here'>,
 ): Promise<RunEnd> {
   for (const sentence of record.notices) options.tell({ kind: 'said', sentence })
   const changes = record.created
@@ -162,7 +93,7 @@ async function runRecord(
   orderChanges(engine, changes, opened)
   const ends = resumeEnds(engine, record.reader, changes, opened.fields.budget)
   const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
-  return await drive({ options, record, folder, engine, problem, cores, ends })
+  return await drive({ options, record, ...folders, engine, problem, cores, ends })
 }
 
 function noteStart(engine: Engine, record: OpenRecord, replayed: number, options: RunOptions): void {
@@ -186,6 +117,8 @@ interface Driven {
   readonly options: RunOptions
   readonly record: OpenRecord
   readonly folder: string
+  /** Where this machine has the database and the pinned plug-in. */
+  readonly here: string
   readonly engine: Engine
   readonly problem: AnyProblem
   readonly cores: number
@@ -226,9 +159,9 @@ async function drive(driven: Driven): Promise<RunEnd> {
   }
 }
 
-function dispatcherOf({ record, folder, cores }: Driven): Dispatcher {
+function dispatcherOf({ record, here, cores }: Driven): Dispatcher {
   const { seed, replicates } = record.plan
-  const pluginFile = resolve(recordFolder(folder).plugin)
+  const pluginFile = resolve(recordFolder(here).plugin)
   const local = localDispatcher((events) =>
     createPool({ pluginFile, seed, sharedConditions: replicates.shared, threads: cores }, events),
   )
@@ -280,91 +213,4 @@ function tellProgress(
   if (state.kind === 'searching') write(folder, progressFile, 'progress', JSON.stringify(view))
 }
 
-function pause(ms: number, signal: AbortSignal): Promise<void> {
-  return new Promise((resolve) => {
-    const timer = setTimeout(done, ms)
-    function done() {
-      clearTimeout(timer)
-      signal.removeEventListener('abort', done)
-      resolve()
-    }
-    signal.addEventListener('abort', done)
-  })
-}
-
-// ------------------------------------------------------------------------------------------ looking on
-
-const shownSchema = z.looseObject({ state: z.string(), digest: z.string(), committed: z.number() })
-
-/** How a search stands, without disturbing it: what its coordinator last showed, or the record itself when none runs. */
-export async function readProgress(folder: string): Promise<ProgressView> {
-  const record = readRecord(folder, { me: thisProcess() })
-  try {
-    const holder = record.holder()
-    if (holder && holder.running !== false) {
-      const shown = shownProgress(folder)
-      if (shown) return shown
-    }
-    const problem = await loadPlugin({ code: new TextDecoder().decode(record.pluginCode) })
-    const { search } = replayRecord(toolsOf(record.plan, problem), record.reader)
-    const begun = search.islands.some((island) => island.counters.commits > 0)
-    const ended = begun && search.islands.every((island) => island.ended)
-    return progressView({
-      search,
-      reader: record.reader,
-      folder,
-      state: ended ? 'finished' : begun ? 'stopped' : 'new',
-      ...(ended ? finishedBecause(record.reader) : begun ? { because: 'no coordinator runs it' } : {}),
-    })
-  } finally {
-    record.close()
-  }
-}
-
-function shownProgress(folder: string): ProgressView | undefined {
-  const path = join(folder, progressFile)
-  if (!existsSync(path) || statSync(path).size === 0) return undefined
-  const parsed = shownSchema.safeParse(JSON.parse(readFileSync(path, 'utf8')))
-  if (!parsed.success) return undefined
-  // Written by a coordinator of this version or another: its own shape is the interface.
-  const shown = parsed.data as unknown as ProgressView
-  return withSilence(shown, (Date.now() - statSync(path).mtimeMs) / 1000)
-}
-
-/** Derives a search again from its journal, compares every digest, and simulates a sample again. */
-export async function rederive(options: RederiveOptions): Promise<RederiveReport> {
-  const record = readRecord(options.record)
-  try {
-    const verification = record.verify()
-    if (!verification.intact) {
-      throw refuse('record-corrupted', {
-        detail: verification.sentences.join(' '),
-        where: { file: recordFolder(options.record).database },
-      })
-    }
-    for (const sentence of verification.sentences) options.tell(sentence)
-    const problem = await loadPlugin({ code: new TextDecoder().decode(record.pluginCode) })
-    const sample = new Sample(record.plan, options.resimulate)
-    const { search, replay } = replayRecord(toolsOf(record.plan, problem), record.reader, {
-      fromStart: true,
-      onCommit: (island, ticket) => sample.offer(island, ticket),
-    })
-    options.tell(
-      `${replay.commits} commits derived again, ${replay.digestsCompared} recorded digests compared and equal.`,
-    )
-    const resimulated = resimulate(record.plan, problem, record.reader, sample, options.signal)
-    return {
-      islands: search.islands.map((island) => ({
-        name: islandName(island.number),
-        commits: island.counters.commits,
-        digest: hex(island.digest),
-      })),
-      digest: hex(search.digest()),
-      resimulated: resimulated.of,
-      agreed: resimulated.agreed,
-      exactness: problem.exactness,
-    }
-  } finally {
-    record.close()
-  }
-}
+export { readProgress, rederive } from './cli/join/looking-on.js'

@@ -18,6 +18,10 @@ export interface RunOptions {
   readonly acceptChanges: boolean
   /** Take the record over from a coordinator that seems alive. */
   readonly force: boolean
+  /** Folder on this machine's own disk for the work copy of a record that lies in a shared folder. */
+  readonly scratch?: string
+  /** Wait until whoever holds the record is gone, then go on in its place. */
+  readonly standby: boolean
   readonly tell: (event: RunEvent) => void
   /** Aborted on SIGINT and SIGTERM: hand back, make durable, return with ended 'interrupted'. */
   readonly signal: AbortSignal

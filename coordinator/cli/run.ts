@@ -33,6 +33,17 @@ export const runOptionRows: readonly OptionRow[] = [
     kind: 'switch',
     help: 'take the record over from a coordinator that holds it; that one can write no more',
   },
+  {
+    flag: '--scratch',
+    value: 'DIR',
+    kind: 'text',
+    help: 'keep the record as a journal that a shared folder can hold, with a work copy in DIR on this machine',
+  },
+  {
+    flag: '--standby',
+    kind: 'switch',
+    help: 'wait until the coordinator that holds the record is gone, then go on in its place',
+  },
 ]
 
 export const runCommand: Command = {
@@ -60,6 +71,8 @@ export async function runAndReport(
     ...given('stopAfter', input.counts['--stop-after']),
     acceptChanges: input.switches['--accept-changes'] ?? false,
     force: input.switches['--force'] ?? false,
+    ...given('scratch', input.texts['--scratch']),
+    standby: input.switches['--standby'] ?? false,
     tell: (event) => hear(event, shown, output),
     signal: output.signal,
   }

@@ -102,7 +102,7 @@ export function readHolder(database: GuardedDatabase): Holder {
 }
 
 /** 'process 4711 on node17, since 2026-12-01 09:00:00 UTC' */
-export function nameHolder(holder: Holder): string {
+export function nameHolder(holder: Pick<Holder, 'pid' | 'host' | 'sinceMs'>): string {
   return `process ${holder.pid} on ${holder.host}, since ${renderTime(holder.sinceMs)}`
 }
 export function renderTime(ms: number): string {
