@@ -11,7 +11,7 @@ import type { AgentQueue, TakenJob } from '../work/port.js'
 import type { RedisAddress } from './address.js'
 import { Link } from './link.js'
 import { markerOf, Queues } from './queues.js'
-import { readAll } from './reading.js'
+import { Reader } from './reading.js'
 import { Tokens } from './tokens.js'
 
 export interface AgentQueueOptions {
@@ -32,6 +32,7 @@ export class RedisAgentQueue implements AgentQueue {
   readonly #waiting: Link
   readonly #queues: Queues
   readonly #tokens: Tokens
+  readonly #announcements = new Reader(announcementSchema)
   #fleet = 1
   #closed = false
 
@@ -63,7 +64,7 @@ export class RedisAgentQueue implements AgentQueue {
 
   async searches(): Promise<Announcement[]> {
     const texts = await this.#link.run((client) => client.hgetall(searchesKey(this.#options.prefix)))
-    return readAll(announcementSchema, texts)
+    return this.#announcements.read(texts)
   }
 
   async plugin(search: string): Promise<Uint8Array | undefined> {

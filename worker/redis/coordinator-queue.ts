@@ -22,7 +22,7 @@ import type { ClusterTimes } from '../../shared/cluster/times.js'
 import type { RedisAddress } from './address.js'
 import { Link } from './link.js'
 import { idOf, keysOf, Queues } from './queues.js'
-import { readAll, readOne } from './reading.js'
+import { Reader, readOne } from './reading.js'
 import { checkServer } from './server.js'
 
 export interface CoordinatorQueueOptions {
@@ -53,6 +53,7 @@ export class RedisCoordinatorQueue {
   readonly #link: Link
   readonly #waiting: Link
   readonly #queues: Queues
+  readonly #heartbeats = new Reader(heartbeatSchema)
   /** Queues that were told how few events to keep, since the last beginning. */
   #told = new Set<string>()
   /** Deliveries of an earlier reader, or of an earlier connection, are read before new ones. */
@@ -219,7 +220,7 @@ export class RedisCoordinatorQueue {
 
   async agents(): Promise<Heartbeat[]> {
     const texts = await this.#link.run((client) => client.hgetall(agentsKey(this.#options.prefix)))
-    return readAll(heartbeatSchema, texts)
+    return this.#heartbeats.read(texts)
   }
 
   async forgetAgent(agent: string): Promise<void> {
