@@ -125,15 +125,16 @@ export class MemoryQueue implements AgentQueue {
     this.active.set(taken.id, taken)
     return taken
   }
-  waitForWork(_: readonly string[], waitMs: number): Promise<void> {
+  waitForWork(_: readonly string[], waitMs: number): Promise<boolean> {
     return new Promise((resolve) => {
-      const done = () => {
+      const done = (isSign: boolean) => {
         clearTimeout(timer)
-        this.waits.delete(done)
-        resolve()
+        this.waits.delete(wake)
+        resolve(isSign)
       }
-      const timer = setTimeout(done, waitMs)
-      this.waits.add(done)
+      const wake = () => done(true)
+      const timer = setTimeout(() => done(false), waitMs)
+      this.waits.add(wake)
     })
   }
   async renew(jobs: readonly TakenJob[]): Promise<readonly TakenJob[]> {
@@ -154,6 +155,8 @@ export class MemoryQueue implements AgentQueue {
     await this.call('handBack')
     this.active.delete(id)
     this.handedBack.push(job.header.dispatch)
+    this.waiting.get(job.header.search)?.unshift(job)
+    for (const wake of this.waits) wake()
   }
   async beat(heartbeat: Heartbeat): Promise<void> {
     await this.call('beat')

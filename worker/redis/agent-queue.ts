@@ -91,7 +91,7 @@ export class RedisAgentQueue implements AgentQueue {
     }
   }
 
-  async waitForWork(searches: readonly string[], waitMs: number): Promise<void> {
+  async waitForWork(searches: readonly string[], waitMs: number): Promise<boolean> {
     const untilMs = performance.now() + waitMs
     const own = queueOf(this.#options.agent)
     const markers = searches.flatMap((search) => {
@@ -100,7 +100,7 @@ export class RedisAgentQueue implements AgentQueue {
     })
     while (!this.#closed) {
       const leftMs = untilMs - performance.now()
-      if (leftMs <= 0) return
+      if (leftMs <= 0) return false
       if (markers.length === 0 || !this.#waiting.connected) {
         await pause(Math.min(leftMs, this.#options.times.commandMs / 10))
         continue
@@ -111,11 +111,12 @@ export class RedisAgentQueue implements AgentQueue {
         const popped = await this.#waiting.run((client) =>
           client.bzpopmin(...markers, Math.max(0.01, blockSeconds)),
         )
-        if (popped) return
+        if (popped) return true
       } catch {
         // The link makes another connection; until then the time passes above.
       }
     }
+    return false
   }
 
   async renew(jobs: readonly TakenJob[]): Promise<readonly TakenJob[]> {

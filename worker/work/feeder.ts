@@ -177,18 +177,16 @@ export class Feeder {
 
   private async waitOnce(hungry: readonly string[]): Promise<void> {
     const { server, nowMs, waitMs, pollMs } = this.options
-    const startMs = nowMs()
-    await server.waitForWork(hungry, waitMs)
-    if (nowMs() - startMs >= 0.9 * waitMs) {
+    if (!(await server.waitForWork(hungry, waitMs))) {
       // No sign of work; a sign can be lost, so it is asked for now and then.
+      this.fruitless = 0
       if (nowMs() - this.polledMs < pollMs) return
-    } else if (this.fruitless > 0) {
+    } else if (this.fruitless++ > 0) {
       // A sign, but others were quicker, again: not at full speed.
-      const ms = Math.min(fruitlessPauseMs * 2 ** (this.fruitless - 1), fruitlessPauseMostMs)
+      const ms = Math.min(fruitlessPauseMs * 2 ** (this.fruitless - 2), fruitlessPauseMostMs)
       await new Promise((resolve) => setTimeout(resolve, ms))
     }
     this.polledMs = nowMs()
-    this.fruitless++
     for (const search of hungry) this.empty.delete(search)
   }
 

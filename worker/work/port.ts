@@ -19,8 +19,8 @@ export interface AgentQueue {
   plugin(search: string): Promise<Uint8Array | undefined>
   /** The next job of this search: first of the agent's own queue, then of the open one. Does not wait. */
   take(search: string): Promise<TakenJob | undefined>
-  /** Resolves when one of these searches may have work, or after that time. */
-  waitForWork(searches: readonly string[], waitMs: number): Promise<void>
+  /** Resolves when one of these searches may have work (true), or after that time (false). */
+  waitForWork(searches: readonly string[], waitMs: number): Promise<boolean>
   /** Renews leases; answers which of them are lost. */
   renew(jobs: readonly TakenJob[]): Promise<readonly TakenJob[]>
   /** Writes answers into the search's results; resolves when the server has them. */

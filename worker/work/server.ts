@@ -88,16 +88,18 @@ export class Server {
     }
   }
 
-  /** Waits for work, at most so long; true when there may be some. No call of its own while nothing answers. */
-  async waitForWork(searches: readonly string[], waitMs: number): Promise<void> {
+  /** Waits for work, at most so long; true when there is a sign of some. Never faster while nothing answers. */
+  async waitForWork(searches: readonly string[], waitMs: number): Promise<boolean> {
     const { queue } = this
-    if (queue === undefined || !this.connected) return pause(waitMs)
     const startMs = performance.now()
     try {
-      await within(queue.waitForWork(searches, waitMs), waitMs + this.options.callMs)
+      if (queue !== undefined && this.connected)
+        return await within(queue.waitForWork(searches, waitMs), waitMs + this.options.callMs)
     } catch {
-      await pause(Math.max(0, waitMs - (performance.now() - startMs)))
+      // As if there had been no sign.
     }
+    await pause(Math.max(0, waitMs - (performance.now() - startMs)))
+    return false
   }
 
   /** Looks whether the server is where it was, and goes after it. Never throws. */
