@@ -12,6 +12,7 @@ import { Alarms } from './cli/join/alarms.js'
 import { openAlone, refuseIfHeldHere } from './cli/join/alone.js'
 import { type BudgetEnds, finishedBecause, orderBudgetEnds, resumeEnds } from './cli/join/budget-ends.js'
 import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
+import { clusterDispatcher } from './cli/join/cluster.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
 import { progressFile } from './cli/join/looking-on.js'
 import { Meter, simulationsLeft } from './cli/join/meter.js'
@@ -128,7 +129,8 @@ interface Driven {
 async function drive(driven: Driven): Promise<RunEnd> {
   const { options, record, folder, engine, cores } = driven
   const dispatcher = dispatcherOf(driven)
-  const meter = new Meter(cores, () => performance.now())
+  const slots = () => (options.redis === undefined ? cores : dispatcher.status().slots)
+  const meter = new Meter(slots, () => performance.now())
   const alarms = new Alarms(engine.search, record.reader, () => performance.now())
   const beat = setInterval(() => record.beat(), beatSeconds * 1000)
   try {
@@ -159,7 +161,12 @@ async function drive(driven: Driven): Promise<RunEnd> {
   }
 }
 
-function dispatcherOf({ record, here, cores }: Driven): Dispatcher {
+function dispatcherOf({ options, record, here, cores, engine }: Driven): Dispatcher {
+  const { redis } = options
+  if (redis !== undefined) {
+    const tell = (sentence: string) => options.tell({ kind: 'said', sentence })
+    return clusterDispatcher({ ...options, redis, tell }, record, engine)
+  }
   const { seed, replicates } = record.plan
   const pluginFile = resolve(recordFolder(here).plugin)
   const local = localDispatcher((events) =>

@@ -22,6 +22,12 @@ export interface RunOptions {
   readonly scratch?: string
   /** Wait until whoever holds the record is gone, then go on in its place. */
   readonly standby: boolean
+  /** Address of the Redis whose workers simulate; without it this machine does. */
+  readonly redis?: string
+  /** Take a Redis that other machines reach without a password. */
+  readonly redisUnprotected: boolean
+  /** File with the key of the site, which signs the problem. */
+  readonly keyFile?: string
   readonly tell: (event: RunEvent) => void
   /** Aborted on SIGINT and SIGTERM: hand back, make durable, return with ended 'interrupted'. */
   readonly signal: AbortSignal

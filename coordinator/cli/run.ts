@@ -1,6 +1,7 @@
 // `skerry run FILE`: starts the search, or continues it. The same command after a preemption.
 
 import { exitCodes } from '../../shared/refusals.js'
+import { addressVariable } from '../../worker/redis/address.js'
 import type { Command, CommandInput, OptionRow, Output } from './command.js'
 import { openHouse } from './house.js'
 import type { RunEnd, RunEvent, RunOptions } from './run-options.js'
@@ -46,22 +47,52 @@ export const runOptionRows: readonly OptionRow[] = [
   },
 ]
 
+const clusterOptionRows: readonly OptionRow[] = [
+  {
+    flag: '--redis',
+    value: 'URL',
+    kind: 'text',
+    help: `let workers simulate that take their work from this Redis, redis://HOST:PORT (default: the variable ${addressVariable}, which hides a password)`,
+  },
+  {
+    flag: '--redis-unprotected',
+    kind: 'switch',
+    help: 'take a Redis that other machines reach without a password',
+  },
+  {
+    flag: '--key',
+    value: 'FILE',
+    kind: 'text',
+    help: 'key of this site: sign the problem, for workers that run nothing unsigned',
+  },
+]
+
 export const runCommand: Command = {
   name: 'run',
   summary: 'Start a search, or continue it where it stopped.',
   arguments: [{ name: 'FILE', help: 'the search file' }],
-  options: runOptionRows,
-  examples: ['skerry run search.yaml', 'skerry run search.yaml --cores 8 --stop-after 20000'],
-  run: (input) => runAndReport(input, input.arguments.FILE!, input.texts['--record']),
+  options: [...runOptionRows, ...clusterOptionRows],
+  examples: [
+    'skerry run search.yaml',
+    'skerry run search.yaml --cores 8 --stop-after 20000',
+    'skerry run search.yaml --redis redis://queue.works.example',
+  ],
+  run: (input) =>
+    runAndReport(input, input.arguments.FILE!, input.texts['--record'], process.env[addressVariable]),
 }
 
-/** Runs the search of `file` with the options given, shows it, and reports its end. */
+/**
+ * Runs the search of `file` with the options given, shows it, and reports its end. `usualRedis`: where no --redis is
+ * given, and there is one for this command.
+ */
 export async function runAndReport(
   input: CommandInput,
   file: string,
   record: string | undefined,
+  usualRedis?: string,
 ): Promise<number> {
   const { output } = input
+  const redis = input.texts['--redis'] ?? usualRedis
   const house = await openHouse()
   const shown = watch(output)
   const options: RunOptions = {
@@ -73,6 +104,9 @@ export async function runAndReport(
     force: input.switches['--force'] ?? false,
     ...given('scratch', input.texts['--scratch']),
     standby: input.switches['--standby'] ?? false,
+    ...given('redis', redis === '' ? undefined : redis),
+    redisUnprotected: input.switches['--redis-unprotected'] ?? false,
+    ...given('keyFile', input.texts['--key']),
     tell: (event) => hear(event, shown, output),
     signal: output.signal,
   }

@@ -10,7 +10,7 @@
 import { existsSync, mkdirSync, statSync } from 'node:fs'
 import { join } from 'node:path'
 import { check } from '../../shared/check.js'
-import { equalBytes } from '../../shared/digests.js'
+import { equalBytes, hex } from '../../shared/digests.js'
 import { Refusal, refuse } from '../../shared/refusals.js'
 import type { Journal } from '../engine/ports.js'
 import { makeDatabase, removeLeftovers } from './create.js'
@@ -73,6 +73,8 @@ export interface OpenRecord extends Pinned {
   readonly journal: Journal
   readonly reader: StoredReader
   readonly created: boolean
+  /** Unlike that of any other record: hexadecimal digest of everything it was begun with, the moment among it. */
+  readonly identity: string
   /** Counts the openings of this record; every append carries it. */
   readonly epoch: number
   /** What was found and done while opening, in sentences for people. */
@@ -226,6 +228,7 @@ function settle(opening: Opening): OpenRecord {
     }),
     reader,
     created,
+    identity: identityOf(database),
     epoch: hold.epoch,
     notices,
     loss,
@@ -236,6 +239,13 @@ function settle(opening: Opening): OpenRecord {
       database.close()
     },
   }
+}
+
+/** The head of append 0, from which the whole chain hangs. */
+function identityOf(database: GuardedDatabase): string {
+  const head = database.prepare('SELECT head FROM appends WHERE sequence = 0').get()?.[0]
+  check(head instanceof Uint8Array, 'a record that was opened has its beginning')
+  return hex(head)
 }
 
 function beatOnce(hold: Hold): Refusal | undefined {

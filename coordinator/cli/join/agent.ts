@@ -1,14 +1,11 @@
 // The worker agent of `skerry work`, joined: its options from the command line and the environment, Redis, a pool.
 
 import { randomBytes } from 'node:crypto'
-import { readFileSync } from 'node:fs'
 import { availableParallelism, homedir, hostname } from 'node:os'
-import { join } from 'node:path'
 import { defaultPrefix, keyName } from '../../../shared/cluster/keys.js'
 import { clusterTimes } from '../../../shared/cluster/times.js'
 import { limits } from '../../../shared/limits.js'
 import { exitCodes, plainText, refuse } from '../../../shared/refusals.js'
-import { emittedRoot } from '../../../worker/entry.js'
 import { createPool } from '../../../worker/pool.js'
 import {
   addressVariable,
@@ -29,6 +26,7 @@ import {
   secondsLeft,
 } from '../../../worker/work/index.js'
 import type { CommandInput, Output } from '../command.js'
+import { version } from './version.js'
 
 /** Serves until the agent ends; its exit code. @throws Refusal when it never got to work */
 export async function serve(input: CommandInput): Promise<number> {
@@ -149,9 +147,4 @@ function endInTime(signal: AbortSignal, leaveMs: number): void {
 /** A handle that somebody left open does not keep the process: everything is answered and closed. */
 function endSoon(exitCode: number): void {
   setTimeout(() => process.exit(exitCode), 200).unref()
-}
-
-function version(): string {
-  const text = readFileSync(join(emittedRoot, '..', 'package.json'), 'utf8')
-  return (JSON.parse(text) as { readonly version: string }).version
 }

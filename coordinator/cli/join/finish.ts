@@ -13,7 +13,7 @@ import { nameOf } from '../../../shared/ids.js'
 import { limits } from '../../../shared/limits.js'
 import { cautionsOf } from '../../../shared/making/cautions.js'
 import type { AnyProblem } from '../../../shared/problem.js'
-import type { EvaluationResult } from '../../../shared/result.js'
+import type { EvaluationResult, LossCause, WorkItem } from '../../../shared/result.js'
 import type { Dispatcher, RecordReader } from '../../engine/ports.js'
 import { drawPictures } from '../../evidence/pictures/draw.js'
 import {
@@ -46,7 +46,7 @@ export const retestReplicates = 24
 const firstFreshReplicate = limits.replicatesMost
 const retestWaitMs = 250
 
-/** Fresh simulations by individual; one whose work was lost or interrupted is missing. Failed simulations are a result. */
+/** Fresh simulations by individual; one that died, or was interrupted, is missing. Failed simulations are a result. */
 export type Retests = ReadonlyMap<Individual, EvaluationResult>
 
 /** Simulates the individuals on the same fresh conditions (each on its own, where the search has them so). */
@@ -57,31 +57,47 @@ export async function retest(
   signal: AbortSignal,
 ): Promise<Retests> {
   const island = search.islands[0]!
-  dispatcher.submit(
-    individuals.map((individual, evaluation) => ({
+  const itemOf = (evaluation: number, attempt: number): WorkItem => {
+    const { id, genome } = individuals[evaluation]!
+    return {
       island: 0,
       evaluation,
-      individual: individual.id,
+      individual: id,
       firstReplicate: firstFreshReplicate,
       replicates: retestReplicates,
-      genome: island.bytesOf(individual.genome),
-      expectedCost: island.tools.expectedCost(individual.genome),
-      attempt: 1,
+      genome: island.bytesOf(genome),
+      expectedCost: island.tools.expectedCost(genome),
+      attempt,
       purpose: 'evaluate',
       isolation: 'shared',
       avoid: [],
-    })),
-  )
+    }
+  }
   const tested = new Map<Individual, EvaluationResult>()
-  let answered = 0
-  while (!signal.aborted && answered < individuals.length) {
+  const open = new Set(individuals.keys())
+  dispatcher.submit([...open].map((evaluation) => itemOf(evaluation, 1)))
+  while (!signal.aborted && open.size > 0) {
     for (const fact of await dispatcher.facts(retestWaitMs)) {
-      if (fact.kind === 'fleet' || fact.item.island !== 0) continue
-      answered++
-      if (fact.kind === 'result') tested.set(individuals[fact.item.evaluation]!, fact.result)
+      if (fact.kind === 'fleet' || fact.item.island !== 0 || !open.has(fact.item.evaluation)) continue
+      const { evaluation, attempt } = fact.item
+      if (fact.kind === 'lost' && isOfTheWorld[fact.cause]) {
+        dispatcher.submit([itemOf(evaluation, attempt + 1)])
+        continue
+      }
+      open.delete(evaluation)
+      if (fact.kind === 'result') tested.set(individuals[evaluation]!, fact.result)
     }
   }
   return tested
+}
+
+/** Losses that say nothing of the individual: its worker went away, and another one may do it. */
+const isOfTheWorld: { readonly [cause in LossCause]: boolean } = {
+  died: false,
+  'time-limit': false,
+  memory: false,
+  'agent-lost': true,
+  'handed-back': true,
 }
 
 /** Whom a finished search simulates again: its best, then the best of every control. */

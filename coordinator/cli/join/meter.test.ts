@@ -21,7 +21,10 @@ it('islands that have ended or are paused have nothing left, and take nothing fr
 
 it('the rate is that of the last half minute, and no time to go is promised where nothing moves', () => {
   let nowMs = 0
-  const meter = new Meter(2, () => nowMs)
+  const meter = new Meter(
+    () => 2,
+    () => nowMs,
+  )
   meter.rate(0, 0, 1000)
   nowMs = 10_000
   expect(meter.rate(100, 12, 900)).toEqual({

@@ -25,13 +25,13 @@ interface Reading {
 const windowMs = 30_000
 
 export class Meter {
-  readonly #cores: number
+  readonly #cores: () => number
   readonly #nowMs: () => number
   #readings: Reading[] = []
   #lastMs: number
 
-  /** `nowMs` is monotonic. */
-  constructor(cores: number, nowMs: () => number) {
+  /** `cores` may change while a search runs; `nowMs` is monotonic. */
+  constructor(cores: () => number, nowMs: () => number) {
     this.#cores = cores
     this.#nowMs = nowMs
     this.#lastMs = nowMs()
@@ -52,11 +52,12 @@ export class Meter {
     const first = this.#readings[0]!
     const seconds = (now.atMs - first.atMs) / 1000
     const perSecond = seconds > 0 ? (now.simulations - first.simulations) / seconds : 0
-    const busy = seconds > 0 ? (now.cpuSeconds - first.cpuSeconds) / seconds / this.#cores : 0
+    const cores = this.#cores()
+    const busy = seconds > 0 && cores > 0 ? (now.cpuSeconds - first.cpuSeconds) / seconds / cores : 0
     return {
       simulationsPerSecond: perSecond,
       busyFraction: Math.min(1, busy),
-      cores: this.#cores,
+      cores,
       ...(perSecond > 0 ? { secondsLeft: left / perSecond } : {}),
     }
   }

@@ -23,6 +23,9 @@ export interface SentJob {
   strayedMs: number | undefined
 }
 
+/** Tries before the last: older ones have been answered. */
+const triesLookedAt = 8
+
 interface Entry {
   readonly item: WorkItem
   job: SentJob | undefined
@@ -110,6 +113,16 @@ export class Book {
   #close(job: SentJob, place: number): void {
     job.open.delete(place)
     if (job.open.size === 0) this.#jobs.delete(job.dispatch)
+  }
+
+  /** Jobs in which earlier tries of the same work travel. */
+  otherTries({ island, evaluation, attempt, purpose }: ItemName): SentJob[] {
+    const jobs: SentJob[] = []
+    for (let earlier = attempt - 1; earlier > 0 && attempt - earlier <= triesLookedAt; earlier--) {
+      const job = this.#entries.get(nameOf({ island, evaluation, attempt: earlier, purpose }))?.job
+      if (job) jobs.push(job)
+    }
+    return jobs
   }
 
   /** What is not answered of the job waits again. */

@@ -47,6 +47,8 @@ export interface RedisDispatcherOptions {
   readonly clock: Clock
   /** A word nobody else has, for instances and numbers of dispatches. */
   readonly nonce: string
+  /** The address as workers are to be started with, without a password. */
+  readonly where?: string
   readonly orders?: () => Orders
   /** Something a person should read once. */
   readonly tell?: (sentence: string) => void
@@ -83,6 +85,7 @@ export class RedisDispatcher implements Dispatcher {
   #lastAnnounceMs = 0
   #lastSweepMs = 0
   #stalledMs: number | undefined
+  #saidFleet: boolean | undefined
   #stopTimer: () => void = () => {}
 
   constructor(options: RedisDispatcherOptions) {
@@ -198,7 +201,24 @@ export class RedisDispatcher implements Dispatcher {
     )
     // Two jobs a thread: nobody is idle while somebody else has a long job before it.
     const most = Math.max(1, Math.ceil(this.#book.outstanding / (2 * threads)))
-    return pack(items, alive, this.#pace, most, this.#loads())
+    return pack(items, alive, this.#pace, { most, load: this.#loads(), holders: this.#holdersOf(items) })
+  }
+
+  /** For items that double an earlier try: who has that. */
+  #holdersOf(items: readonly WorkItem[]): Map<WorkItem, Set<string>> {
+    const hedges = items.filter(({ hedge }) => hedge)
+    if (hedges.length === 0) return new Map()
+    const { search } = this.#options.search
+    const holders = new Map<number, string>()
+    for (const { agent, held } of this.#fleet.alive())
+      for (const dispatch of held[search] ?? []) holders.set(dispatch, agent)
+    const holderOf = ({ dispatch, agent }: SentJob) => agent ?? holders.get(dispatch)
+    return new Map(
+      hedges.map((item) => [
+        item,
+        new Set(this.#book.otherTries(item).flatMap((job) => holderOf(job) ?? [])),
+      ]),
+    )
   }
 
   /** Living agents that this search may use and that take work. */
@@ -441,7 +461,18 @@ export class RedisDispatcher implements Dispatcher {
   }
 
   #tellFleet(): void {
-    this.#give({ kind: 'fleet', hosts: this.#fleet.hosts() })
+    const hosts = this.#fleet.hosts()
+    this.#give({ kind: 'fleet', hosts })
+    const isThere = hosts.length > 0
+    if (isThere === this.#saidFleet) return
+    this.#saidFleet = isThere
+    const cores = hosts.reduce((sum, host) => sum + host.cores, 0)
+    const { where = 'URL' } = this.#options
+    this.#tell(
+      isThere
+        ? `Workers are here: ${this.#fleet.alive().length} on ${hosts.length === 1 ? 'one machine' : `${hosts.length} machines`}, ${cores} cores.`
+        : `No worker is here. The search goes on when one comes: skerry work --redis ${where}`,
+    )
   }
 
   #tellLost(

@@ -18,21 +18,25 @@ export interface Parcels {
   readonly unfit: readonly WorkItem[]
 }
 
-/**
- * `load` of an agent: items addressed to it, a core; it is told what is added. `most`: items in one job, so that
- * every thread gets something.
- */
+export interface Circumstances {
+  /** Items in one job, so that every thread gets something. */
+  readonly most: number
+  /** Items addressed to an agent; told what is added. */
+  readonly load: Map<string, number>
+  /** Agents that have an earlier try of an item already. */
+  readonly holders: ReadonlyMap<WorkItem, ReadonlySet<string>>
+}
+
 export function pack(
   items: readonly WorkItem[],
   alive: readonly Heartbeat[],
   pace: JobPace,
-  most: number,
-  load: Map<string, number>,
+  { most, load, holders }: Circumstances,
 ): Parcels {
   const unfit: WorkItem[] = []
   const groups = new Map<string, { agent: string | undefined; items: WorkItem[] }>()
   for (const item of items) {
-    const agent = addresseeOf(item, alive, load)
+    const agent = addresseeOf(item, alive, load, holders.get(item))
     if (agent === nobody) {
       unfit.push(item)
       continue
@@ -56,7 +60,7 @@ function split(
   for (let from = 0; from < items.length; ) {
     const end = pace.jobEnd(items, from, mostHere)
     const part = items.slice(from, end)
-    parcels.push({ items: part, agent, urgent: part[0]?.purpose === 'confirm' })
+    parcels.push({ items: part, agent, urgent: part.some(isUrgent) })
     from = end
   }
   return parcels
@@ -64,17 +68,19 @@ function split(
 
 /** No agent has an empty name. */
 const nobody = ''
+const nobodyYet: ReadonlySet<string> = new Set()
 
 /** Undefined: anybody may. Agents whose rules are the same for all items need no address. */
 function addresseeOf(
   item: WorkItem,
   alive: readonly Heartbeat[],
   load: Map<string, number>,
+  holders: ReadonlySet<string> = nobodyYet,
 ): string | undefined {
   const constrained =
     item.onProcessor !== undefined || (item.avoidHosts?.length ?? 0) > 0 || item.avoid.length > 0
-  if (!constrained) return undefined
-  const able = alive.filter((heartbeat) => mayRun(item, heartbeat))
+  if (!constrained && holders.size === 0) return undefined
+  const able = alive.filter((heartbeat) => !holders.has(heartbeat.agent) && mayRun(item, heartbeat))
   const working = alive.filter(takesWork)
   if (able.length === working.length && able.length > 0) return undefined
   if (able.length === 0) return mustHaveSomebody(item) || alive.length > 0 ? nobody : undefined
@@ -95,5 +101,10 @@ function loadOf({ agent, cores }: Heartbeat, load: ReadonlyMap<string, number>):
 function groupName(item: WorkItem, agent: string | undefined): string {
   const { purpose, isolation, avoid, avoidHosts } = item
   const avoided = avoid.length === 0 && !avoidHosts ? '' : JSON.stringify([avoid, avoidHosts ?? []])
-  return `${agent ?? ''} ${purpose} ${isolation} ${avoided}`
+  return `${agent ?? ''} ${purpose} ${isolation} ${isUrgent(item)} ${avoided}`
+}
+
+/** Somebody waits for it: an island for a confirmation, or for the one evaluation that holds it up. */
+function isUrgent({ purpose, hedge }: WorkItem): boolean {
+  return purpose === 'confirm' || hedge === true
 }
