@@ -248,12 +248,15 @@ function checkGroups(spec: LatticeSpec): void {
 }
 
 function checkLimits(given: ActuatorLimits, at: string): void {
-  const { forceLimitN, strainLimit, strainRateLimitPerSecond } = given
+  const { actuator, forceLimitN, strainLimit, strainRateLimitPerSecond, powerLimitW } = given
+  const isKind = actuator === undefined || actuator === 'unlimited' || actuator.motion === 'linear'
+  demand(isKind, `${at}.actuator`, isKind || actuator.name, "a class that moves in a line, or 'unlimited'")
   demand(isLimit(forceLimitN), `${at}.forceLimitN`, forceLimitN, 'a force above 0')
   const strained = isLimit(strainLimit) && (strainLimit ?? 0) < 1
   demand(strained, `${at}.strainLimit`, strainLimit, 'a strain above 0 and below 1')
   const rate = strainRateLimitPerSecond
   demand(isLimit(rate), `${at}.strainRateLimitPerSecond`, rate, 'a rate above 0')
+  demand(isLimit(powerLimitW), `${at}.powerLimitW`, powerLimitW, 'a power above 0')
 }
 
 function checkDriven(spec: LatticeSpec, dimensions: number): void {
@@ -265,8 +268,6 @@ function checkDriven(spec: LatticeSpec, dimensions: number): void {
     demand(Math.abs(strut.strain) < 1, `${at}.strain`, strut.strain, 'a strain between -1 and 1')
     demand(Number.isFinite(strut.phaseTurns), `${at}.phaseTurns`, strut.phaseTurns, 'a finite number')
     checkLimits(strut, at)
-    const { powerLimitW } = strut as GuidedSpec
-    demand(powerLimitW === undefined, `${at}.powerLimitW`, powerLimitW, 'a guided strut, which has one')
   }
   for (const [i, strut] of (spec.guided ?? []).entries()) {
     const at = `guided[${i}]`
@@ -286,10 +287,9 @@ function checkDriven(spec: LatticeSpec, dimensions: number): void {
 }
 
 function checkGuided(spec: LatticeSpec, strut: GuidedSpec, at: string): void {
-  const { strain = 0, phaseTurns = 0, powerLimitW, feedback = [] } = strut
+  const { strain = 0, phaseTurns = 0, feedback = [] } = strut
   demand(Math.abs(strain) < 1, `${at}.strain`, strain, 'a strain between -1 and 1')
   demand(Number.isFinite(phaseTurns), `${at}.phaseTurns`, phaseTurns, 'a finite number')
-  demand(isLimit(powerLimitW), `${at}.powerLimitW`, powerLimitW, 'a power above 0')
   for (const [row, { sensor, gain }] of feedback.entries()) {
     const known = spec.sensors?.[sensor] !== undefined
     demand(known, `${at}.feedback[${row}].sensor`, sensor, `one of ${spec.sensors?.length ?? 0} sensors`)

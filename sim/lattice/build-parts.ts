@@ -3,16 +3,9 @@
 import { cos, sin } from '../../shared/detmath/trigonometry.js'
 import { dimensionsOf, distanceM, signedSize } from './build-checks.js'
 import type { Lattice } from './layout.js'
+import type { DrivenLimits } from './limits.js'
 import { turnAt } from './reference/drive.js'
-import type {
-  ActuatorLimits,
-  ContactSpec,
-  DriveGroupSpec,
-  FrictionSpec,
-  GroundSpec,
-  LatticeSpec,
-  StrutSpec,
-} from './spec.js'
+import type { ContactSpec, DriveGroupSpec, FrictionSpec, GroundSpec, LatticeSpec, StrutSpec } from './spec.js'
 
 export const turn = 2 * Math.PI
 const unlimited = Number.POSITIVE_INFINITY
@@ -89,7 +82,10 @@ export interface Strokes {
 }
 
 /** Of actuators, then guided struts; those are limited as they go. */
-export function strokesOf({ groups = [], actuators = [], guided = [] }: LatticeSpec): Strokes {
+export function strokesOf(
+  { groups = [], actuators = [], guided = [] }: LatticeSpec,
+  limits: DrivenLimits,
+): Strokes {
   const count = actuators.length + guided.length
   const strokes = {
     strain: zeros(count),
@@ -100,7 +96,8 @@ export function strokesOf({ groups = [], actuators = [], guided = [] }: LatticeS
   for (let j = 0; j < count; j++) {
     const strut = actuators[j] ?? guided[j - actuators.length]!
     const { frequencyHz, sweep } = (strut.group === undefined ? undefined : groups[strut.group]) ?? still
-    const most = j < actuators.length ? strainMost(strut, Math.max(frequencyHz, sweep?.toHz ?? 0)) : unlimited
+    const most =
+      j < actuators.length ? strainMost(limits, j, Math.max(frequencyHz, sweep?.toHz ?? 0)) : unlimited
     const strain = strut.group === undefined ? 0 : (strut.strain ?? 0)
     strokes.strain[j] = Math.min(most, Math.max(-most, strain))
     const angle = turn * (strut.phaseTurns ?? 0)
@@ -113,9 +110,9 @@ export function strokesOf({ groups = [], actuators = [], guided = [] }: LatticeS
 
 const still: DriveGroupSpec = { frequencyHz: 0 }
 
-function strainMost({ strainLimit, strainRateLimitPerSecond }: ActuatorLimits, fastestHz: number): number {
-  const rate = strainRateLimitPerSecond ?? unlimited
-  return Math.min(strainLimit ?? unlimited, fastestHz > 0 ? rate / (turn * fastestHz) : unlimited)
+function strainMost({ strain, strainRatePerSecond }: DrivenLimits, j: number, fastestHz: number): number {
+  const rate = strainRatePerSecond[j]!
+  return Math.min(strain[j]!, fastestHz > 0 ? rate / (turn * fastestHz) : unlimited)
 }
 
 /**
@@ -142,18 +139,19 @@ export function lagsOf({ groups = [], actuators = [], guided = [] }: LatticeSpec
   )
 }
 
-export function layOutDriven(spec: LatticeSpec, strokes: Strokes) {
+export function layOutDriven(spec: LatticeSpec, strokes: Strokes, limits: DrivenLimits) {
   const { actuators = [], guided = [] } = spec
   const struts = [...actuators, ...guided]
   const lags = lagsOf(spec)
   return {
     group: integers(struts, (strut) => 2 * (strut.group ?? 0)),
     ...turnStrains(strokes, (j) => lags[j]!),
-    limitN: doubles(struts, (strut) => strut.forceLimitN ?? unlimited),
+    limitN: limits.forceN,
+    powerMostW: limits.powerW,
   }
 }
 
-export function layOutGuided({ guided = [] }: LatticeSpec, h: number) {
+export function layOutGuided({ actuators = [], guided = [] }: LatticeSpec, h: number, limits: DrivenLimits) {
   const feedback = guided.flatMap((strut) => strut.feedback ?? [])
   const feedbackFirst = new Int32Array(guided.length + 1)
   for (const [j, strut] of guided.entries()) {
@@ -162,9 +160,8 @@ export function layOutGuided({ guided = [] }: LatticeSpec, h: number) {
   return {
     guidedStrain: zeros(guided.length),
     hostStrain: zeros(guided.length),
-    strokeMost: doubles(guided, (strut) => strut.strainLimit ?? unlimited),
-    strainStepMost: doubles(guided, (strut) => (strut.strainRateLimitPerSecond ?? unlimited) * h),
-    powerMostW: doubles(guided, (strut) => strut.powerLimitW ?? unlimited),
+    strokeMost: limits.strain.slice(actuators.length),
+    strainStepMost: limits.strainRatePerSecond.slice(actuators.length).map((rate) => rate * h),
     feedbackFirst,
     feedbackSensor: integers(feedback, (row) => row.sensor),
     feedbackGain: doubles(feedback, (row) => row.gain),

@@ -88,11 +88,7 @@ describe('a lattice that cannot be is refused, and the field named', () => {
       { actuators: [{ ...active, strainRateLimitPerSecond: Number.NaN }] },
       'actuators[0].strainRateLimitPerSecond',
     ],
-    [
-      'a power limit where no one keeps it',
-      { actuators: [{ ...active, powerLimitW: 1 } as typeof active] },
-      'actuators[0].powerLimitW',
-    ],
+    ['a power limit of 0', { actuators: [{ ...active, powerLimitW: 0 }] }, 'actuators[0].powerLimitW'],
     ['guided by an unknown group', { guided: [{ ...active, group: 3 }] }, 'guided[0].group'],
     ['a power limit below 0', { guided: [{ ...guided, powerLimitW: -1 }] }, 'guided[0].powerLimitW'],
     [

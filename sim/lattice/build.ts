@@ -20,6 +20,7 @@ import {
   strokesOf,
 } from './build-parts.js'
 import type { Lattice, Source } from './layout.js'
+import { drivenLimits } from './limits.js'
 import type { LatticeSpec } from './spec.js'
 import { boundOf, type StepBound, stepRows, stepSafety } from './stability.js'
 
@@ -32,7 +33,8 @@ export type { Lattice } from './layout.js'
 export function buildLattice(spec: LatticeSpec): Lattice {
   checkSpec(spec)
   const rows = stepRows(spec)
-  const strokes = strokesOf(spec)
+  const limits = drivenLimits(spec)
+  const strokes = strokesOf(spec, limits)
   const h = stepOf(spec, boundOf(spec, rows))
   const dimensions = dimensionsOf(spec)
   const stride = 3 * dimensions
@@ -57,8 +59,8 @@ export function buildLattice(spec: LatticeSpec): Lattice {
     friction: layOutFriction(spec),
     heading: dimensions === 3 ? headings(spec, stride) : new Int32Array(0),
     ...layOutStruts(spec),
-    ...layOutDriven(spec, strokes),
-    ...layOutGuided(spec, h),
+    ...layOutDriven(spec, strokes, limits),
+    ...layOutGuided(spec, h, limits),
     ...layOutSensors(spec, h),
     ...layOutFluid(spec),
     ...layOutFills(spec),

@@ -1,6 +1,7 @@
 // Drives, sensors and guided struts: limits of stroke, rate, force and power, feedback, sweeps. Against hand calculation.
 
 import { describe, expect, test } from 'vitest'
+import { actuatorClasses } from '../../shared/making/actuators.js'
 import { addForces, advance } from './advance.js'
 import { buildLattice } from './build.js'
 import { lengthRateMps, powerW, tensionN } from './observe.js'
@@ -8,7 +9,7 @@ import { phaseAt } from './reference/drive.js'
 import type { GuidedSpec, LatticeSpec } from './spec.js'
 
 const h = 1e-3
-const strut = { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 0 }
+const strut = { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 0, actuator: 'unlimited' } as const
 /** Two nodes, 1 m apart, joined by one guided strut; the second one may move. */
 function guidedPair(guided: Partial<GuidedSpec>, rest: Partial<LatticeSpec> = {}) {
   return buildLattice({
@@ -213,5 +214,84 @@ describe('a sweep', () => {
   test('a lag is refused with it: it belongs to one frequency', () => {
     const groups = [{ frequencyHz: 1, lagSeconds: 0.1, sweep: { toHz: 2, seconds: 1 } }]
     expect(() => guidedPair({}, { groups })).toThrow(/no lag with a sweep/)
+  })
+})
+
+describe('without limits of its own', () => {
+  const plain = { a: 0, b: 1, restM: 0.1, stiffnessNpm: 100, dampingNspm: 0 }
+  const drive = { group: 0, strain: 0.9, phaseTurns: 0 }
+  const nodes = [0, 0.1].map((place) => ({ positionM: [place, 0], massKg: 1 }))
+  const spec: LatticeSpec = {
+    nodes,
+    struts: [],
+    groups: [{ frequencyHz: 0.5 }],
+    gravityMps2: [0, 0],
+    stepSeconds: h,
+  }
+  const { bellows, memoryWire, wormGearedMotor } = actuatorClasses
+  // The row's numbers, written out: 50 kPa on a bore of 12 mm, a quarter of the length, 1.2 a second, and a quarter of
+  // force times rate.
+  const forceN = 50e3 * Math.PI * 0.006 * 0.006
+
+  test('an active and a guided strut have those of the small bellows: force, stroke, rate, power', () => {
+    const lattice = buildLattice({
+      ...spec,
+      actuators: [{ ...plain, ...drive }],
+      guided: [{ ...plain, ...drive }],
+    })
+    for (let j = 0; j < 2; j++) {
+      expect(lattice.limitN[j]).toBeCloseTo(forceN, 12)
+      expect(lattice.powerMostW[j]).toBeCloseTo((0.1 * forceN * 1.2) / 4, 12)
+    }
+    // 0.25 needs a rate of 0.785 a second at 0.5 Hz, which it has.
+    expect(lattice.strainCos[0]).toBeCloseTo(0.25, 12)
+    expect(lattice.strokeMost[0]).toBe(0.25)
+    expect(lattice.strainStepMost[0]).toBeCloseTo(1.2 * h, 15)
+    const fast = buildLattice({ ...spec, groups: [{ frequencyHz: 2 }], actuators: [{ ...plain, ...drive }] })
+    expect(fast.strainCos[0]).toBeCloseTo(1.2 / (4 * Math.PI), 12)
+  })
+
+  test('those of the class that is named hold, and single numbers in their place', () => {
+    const wire = { ...plain, ...drive, actuator: memoryWire }
+    const lattice = buildLattice({
+      ...spec,
+      actuators: [wire, { ...wire, powerLimitW: 3, strainLimit: 0.01 }],
+    })
+    expect(lattice.limitN[0]).toBe(memoryWire.forceMost)
+    // 0.04 a second at 0.5 Hz allow 0.0127.
+    expect(lattice.strainCos[0]).toBeCloseTo(0.04 / Math.PI, 12)
+    expect(lattice.powerMostW[0]).toBeCloseTo(0.1 * memoryWire.powerMost, 15)
+    expect([lattice.powerMostW[1], lattice.strainCos[1]]).toEqual([3, expect.closeTo(0.01, 12)])
+  })
+
+  test('nothing limits what says so, and a motor that turns is refused by name', () => {
+    const free = { ...plain, ...drive, actuator: 'unlimited' } as const
+    const lattice = buildLattice({ ...spec, actuators: [free], guided: [free] })
+    expect(Array.from(lattice.limitN)).toEqual([Number.POSITIVE_INFINITY, Number.POSITIVE_INFINITY])
+    expect(Array.from(lattice.powerMostW)).toEqual([Number.POSITIVE_INFINITY, Number.POSITIVE_INFINITY])
+    expect(lattice.strokeMost[0]).toBe(Number.POSITIVE_INFINITY)
+    expect(lattice.strainCos[0]).toBeCloseTo(0.9, 12)
+    const turning = () =>
+      buildLattice({ ...spec, actuators: [{ ...plain, ...drive, actuator: wormGearedMotor }] })
+    expect(turning).toThrow(/worm-geared/)
+  })
+
+  test('an active strut keeps within its power while it drives, takes more in, and tells it', () => {
+    const actuators = [{ ...plain, ...drive, strain: 0.2, actuator: bellows, powerLimitW: 0.01 }]
+    const lattice = buildLattice({ ...spec, groups: [{ frequencyHz: 0.9 }], actuators })
+    let [most, braked, limited] = [0, 0, 0]
+    for (let i = 0; i < 3000; i++) {
+      advance(lattice, 1)
+      most = Math.max(most, powerW(lattice, 0))
+      braked = Math.min(braked, powerW(lattice, 0))
+      addForces(lattice)
+      // On node 1, along -x for tension.
+      expect(-lattice.nodes[10]!).toBeCloseTo(tensionN(lattice, 0), 10)
+      if (powerW(lattice, 0) > 0.00999) limited++
+      for (const at of [4, 5, 10, 11]) lattice.nodes[at] = 0
+    }
+    expect(most).toBeLessThanOrEqual(0.01 + 1e-12)
+    expect(limited).toBeGreaterThan(20)
+    expect(braked).toBeLessThan(-0.011)
   })
 })

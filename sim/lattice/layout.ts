@@ -78,13 +78,13 @@ export interface Lattice {
   readonly group: Int32Array
   readonly strainCos: Float64Array
   readonly strainSin: Float64Array
-  /** Infinity where there is no limit. */
+  /** Infinity where there is no limit; so for all limits. */
   readonly limitN: Float64Array
+  readonly powerMostW: Float64Array
   // Guided struts
   readonly strokeMost: Float64Array
-  /** Largest change of strain in one step: limit of the rate * h; Infinity where there is no limit. */
+  /** Largest change of strain in one step: limit of the rate * h. */
   readonly strainStepMost: Float64Array
-  readonly powerMostW: Float64Array
   /** guidedCount + 1: rows feedbackFirst[j] to feedbackFirst[j + 1] - 1 of the feedback belong to guided strut j. */
   readonly feedbackFirst: Int32Array
   /** Sensor number of every feedback row. */

@@ -79,10 +79,8 @@ export function tensionN(lattice: Lattice, strut: number): number {
   if (driven < 0) return free
   const most = lattice.limitN[driven]!
   const limited = Math.min(most, Math.max(-most, free))
-  const guided = driven - lattice.activeCount
-  if (guided < 0) return limited
   const powerW = -limited * rate
-  const mostW = lattice.powerMostW[guided]!
+  const mostW = lattice.powerMostW[driven]!
   return powerW > mostW ? (limited * mostW) / powerW : limited
 }
 

@@ -2,7 +2,11 @@
 // in space. SI units (m, s, kg, N); the unit is the last part of a name. Types only; build.ts checks a description
 // and lays it out as flat arrays (layout.ts), reference/ and the WebAssembly kernel move it.
 //
+// Active struts have the limits of a real kind of actuator (limits.ts) unless they say 'unlimited'.
+//
 // Axes: x along the ground, y up, z across (3-D only). A vector has as many components as the lattice dimensions.
+
+import type { ActuatorClass } from '../../shared/making/types.js'
 
 export interface NodeSpec {
   readonly positionM: readonly number[]
@@ -40,17 +44,21 @@ export interface StrutSpec {
 }
 
 /**
- * What an actuator can do; unlimited where absent. A strut that is only driven by its group has its stroke made
- * smaller until strain and rate of strain fit (its command is a sine of known frequency). A guided strut is limited
- * in every step.
+ * What an actuator can do: what its class can (limits.ts), except where a number is given here. A strut that is only
+ * driven by its group has its stroke made smaller until strain and rate of strain fit (its command is a sine of known
+ * frequency); a guided strut's are limited in every step. Force and power are limited in every step.
  */
 export interface ActuatorLimits {
+  /** The workshop's small bellows when absent. 'unlimited': nothing limits it but the numbers given here. */
+  readonly actuator?: ActuatorClass | 'unlimited'
   /** Tension and thrust stay within this. */
   readonly forceLimitN?: number
   /** Largest change of the rest length relative to it. */
   readonly strainLimit?: number
   /** Largest rate of the commanded strain, 1/s. */
   readonly strainRateLimitPerSecond?: number
+  /** Most mechanical power that the strut gives to its nodes. */
+  readonly powerLimitW?: number
 }
 
 /**
@@ -77,8 +85,6 @@ export interface GuidedSpec extends StrutSpec, ActuatorLimits {
   /** 0 when absent. */
   readonly phaseTurns?: number
   readonly feedback?: readonly { readonly sensor: number; readonly gain: number }[]
-  /** Most mechanical power that the strut gives to its nodes. */
-  readonly powerLimitW?: number
 }
 
 /**

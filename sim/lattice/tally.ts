@@ -101,7 +101,7 @@ export function strutBeyond(tally: Tally, leastM: Float64Array, mostM: Float64Ar
 
 /** T / |d| of strut i. */
 function scaleOf(lattice: Lattice, i: number, q: number, along: number): number {
-  const { passiveCount, activeCount, stiffnessNpm, stiffnessRestN, dampingNspm, limitN, powerMostW } = lattice
+  const { passiveCount, stiffnessNpm, stiffnessRestN, dampingNspm, limitN, powerMostW } = lattice
   const perQ = 1 / q
   const perLength = Math.sqrt(q) * perQ
   const j = i - passiveCount
@@ -110,9 +110,8 @@ function scaleOf(lattice: Lattice, i: number, q: number, along: number): number 
   if (j < 0) return free
   const most = limitN[j]! * perLength
   const limited = Math.min(most, Math.max(-most, free))
-  if (j < activeCount) return limited
   const powerW = -limited * along
-  const mostW = powerMostW[j - activeCount]!
+  const mostW = powerMostW[j]!
   return powerW > mostW ? limited * (mostW / powerW) : limited
 }
 

@@ -184,8 +184,8 @@ test('a tally keeps what observe.* says, sample by sample', () => {
   expect(truth.work[0]).toBeGreaterThan(0)
   expect(Array.from(tally.loadedSamples)).toEqual(truth.loaded)
   // Neither never nor always under load.
-  expect(truth.loaded[0]).toBeGreaterThan(10)
-  expect(truth.loaded[0]).toBeLessThan(190)
+  expect(truth.loaded[0]).toBeGreaterThan(0)
+  expect(truth.loaded[0]).toBeLessThan(200)
   const { duty, peakForce, stroke } = actuatorFigures(actuatorTally(tally, 0), lattice.restM[2]!, 25 * 2e-4)
   expect(duty).toBe(truth.loaded[0]! / 200)
   expect(peakForce).toBe(tally.peakTensionN[2])

@@ -29,8 +29,8 @@ const rod: LatticeSpec = {
   })),
   struts: [],
   guided: [
-    { a: 0, b: 1, stiffnessNpm: 80, dampingNspm: 0.1 },
-    { a: 1, b: 2, stiffnessNpm: 60, dampingNspm: 0.1 },
+    { a: 0, b: 1, stiffnessNpm: 80, dampingNspm: 0.1, actuator: 'unlimited' },
+    { a: 1, b: 2, stiffnessNpm: 60, dampingNspm: 0.1, actuator: 'unlimited' },
   ],
   sensors: [
     { kind: 'strain', strut: 0, filterSeconds: 0.03 },

@@ -314,15 +314,16 @@ describe('guiding a lattice', () => {
     ...parts,
   })
   const strut = { a: 0, b: 1, stiffnessNpm: 100, dampingNspm: 1 }
+  const ideal = { ...strut, actuator: 'unlimited' } as const
 
   test('an open-loop controller at every step moves a guided strut like its own drive does', () => {
     const driven = buildLattice(
       body({
-        actuators: [{ ...strut, group: 0, strain: 0.1, phaseTurns: 0.2 }],
+        actuators: [{ ...strut, actuator: 'unlimited', group: 0, strain: 0.1, phaseTurns: 0.2 }],
         groups: [{ frequencyHz: 1.5 }],
       }),
     )
-    const guided = buildLattice(body({ guided: [strut] }))
+    const guided = buildLattice(body({ guided: [ideal] }))
     // A command is for the interval after the step that gives it, so it is one interval ahead of the drive's phase.
     const controller = openLoopFrom(
       {
@@ -343,7 +344,7 @@ describe('guiding a lattice', () => {
 
   test('commands are held: 20 steps each, and the sensors of the lattice are what is sensed', () => {
     const sensed: number[] = []
-    const guided = buildLattice(body({ guided: [strut], sensors: [{ kind: 'strain', strut: 0 }] }))
+    const guided = buildLattice(body({ guided: [ideal], sensors: [{ kind: 'strain', strut: 0 }] }))
     const outputs = new Float64Array(1)
     const controller: Controller = {
       stepSeconds: 0.02,
@@ -362,7 +363,7 @@ describe('guiding a lattice', () => {
   })
 
   test('a command that is no number ends the simulation with its reason', () => {
-    const guided = buildLattice(body({ guided: [strut] }))
+    const guided = buildLattice(body({ guided: [ideal] }))
     const lost = phaseOscillators({
       frequenciesHz: [1],
       links: [],
@@ -378,7 +379,7 @@ describe('guiding a lattice', () => {
   test('four lanes under networks that feel give the bits of each replicate run alone', () => {
     const felt = { kind: 'strain', strut: 0, filterSeconds: 0.05 } as const
     const lattice = buildLattice(
-      body({ struts: [strut], guided: [strut, { ...strut, stiffnessNpm: 50 }], sensors: [felt] }),
+      body({ struts: [strut], guided: [ideal, { ...ideal, stiffnessNpm: 50 }], sensors: [felt] }),
     )
     const design: RecurrentDesign = {
       inputs: 1,
@@ -419,7 +420,7 @@ describe('guiding a lattice', () => {
   test('an interval that is no whole number of steps, and a wrong number of commands, are refused', () => {
     expect(stepsPerCommand(0.02, 1e-3)).toBe(20)
     expect(() => stepsPerCommand(0.02, 3e-3)).toThrow(Refusal)
-    const guided = buildLattice(body({ guided: [strut, strut] }))
+    const guided = buildLattice(body({ guided: [ideal, ideal] }))
     const single = openLoopFrom(
       {
         outputs: 1,

@@ -167,7 +167,8 @@ function randomActuator(draw: Stream, strut: StrutSpec, groups: number): Actuato
     group: draw.below(groups),
     strain: 0.02 + 0.1 * draw.uniform(),
     phaseTurns: draw.uniform(),
-    ...(draw.chance(1, 2) ? { forceLimitN: 0.1 + draw.uniform() } : {}),
+    ...(draw.chance(1, 2) ? { forceLimitN: 0.1 + draw.uniform() } : { actuator: 'unlimited' }),
+    ...(draw.chance(1, 2) ? { powerLimitW: 0.001 + 0.01 * draw.uniform() } : {}),
   }
 }
 

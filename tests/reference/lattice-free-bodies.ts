@@ -42,6 +42,7 @@ export function randomBody(
         group: i % 2,
         strain: between(0.02, 0.15),
         phaseTurns: between(0, 1),
+        actuator: 'unlimited' as const,
       }))
     : []
   return {

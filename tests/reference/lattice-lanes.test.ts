@@ -18,7 +18,7 @@ import {
 } from '../../sim/lattice/lanes.js'
 import type { Lattice } from '../../sim/lattice/layout.js'
 import { latticePlaces } from '../../sim/lattice/places.js'
-import type { LatticeSpec } from '../../sim/lattice/spec.js'
+import type { ActuatorLimits, LatticeSpec } from '../../sim/lattice/spec.js'
 import { newTally, strutBeyond, takeSample } from '../../sim/lattice/tally.js'
 import { varyLattice } from '../../sim/lattice/vary.js'
 import { randomBody, randomVariation } from './lattice-bodies.js'
@@ -206,6 +206,10 @@ describe.each([2, 3] as const)('in %i dimensions', (dimensions) => {
   })
 })
 
+const unlimitedPower = <Strut extends ActuatorLimits>(strut: Strut): Strut => {
+  return { ...strut, powerLimitW: Number.POSITIVE_INFINITY }
+}
+
 // Without these the tests above could pass with a law that nobody computes.
 describe.each([2, 3] as const)('every law counts in the random bodies in %i dimensions', (dimensions) => {
   const changes: readonly (readonly [string, (spec: LatticeSpec) => LatticeSpec])[] = [
@@ -214,7 +218,11 @@ describe.each([2, 3] as const)('every law counts in the random bodies in %i dime
       (spec) => ({ ...spec, actuators: spec.actuators!.map((one) => ({ ...one, strain: 0 })) }),
     ],
     ['feedback', (spec) => ({ ...spec, guided: spec.guided!.map(({ feedback: _, ...one }) => one) })],
-    ['power limits', (spec) => ({ ...spec, guided: spec.guided!.map(({ powerLimitW: _, ...one }) => one) })],
+    ['power limits', (spec) => ({ ...spec, guided: spec.guided!.map(unlimitedPower) })],
+    [
+      'power limits of active struts',
+      (spec) => ({ ...spec, actuators: spec.actuators!.map(unlimitedPower) }),
+    ],
     ['drag struts', (spec) => ({ ...spec, dragStruts: [] })],
     ['areas and volumes', (spec) => ({ ...spec, areas: [], volumes: [] })],
     ['pairs kept apart', (spec) => ({ ...spec, keepApart: [] })],

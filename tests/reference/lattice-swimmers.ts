@@ -93,6 +93,7 @@ function buildSwimmer(swimmer: Swimmer, stroke: Stroke, stepSeconds: number | 'a
     restM: lengths[i]!,
     stiffnessNpm,
     dampingNspm,
+    actuator: 'unlimited',
   }))
   const dragStruts = [0, 1, 2].map((a) => ({ a, b: a + 1, normalNspm2, tangentNspm2 }))
   return buildLattice({ nodes, struts, guided, dragStruts, gravityMps2: [0, 0], stepSeconds })

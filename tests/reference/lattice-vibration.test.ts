@@ -107,7 +107,7 @@ describe('a sinusoidal force on one mass', () => {
     const active = { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 20 * zeta }
     const lattice = oscillator(1, 0, 0, h, {
       struts: [],
-      actuators: [{ ...active, group: 0, strain: 0.01, phaseTurns: 0 }],
+      actuators: [{ ...active, actuator: 'unlimited', group: 0, strain: 0.01, phaseTurns: 0 }],
       groups: [{ frequencyHz: (10 * r) / (2 * Math.PI) }],
     })
     advance(lattice, perPeriod * Math.ceil((12 / (zeta * 10)) * ((10 * r) / (2 * Math.PI))))

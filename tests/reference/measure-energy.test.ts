@@ -158,6 +158,7 @@ describe('energy budgets of whole bodies', () => {
           b: 1,
           stiffnessNpm: 300,
           dampingNspm: 0.2,
+          actuator: 'unlimited',
           group: 0,
           strain: 0.15,
           phaseTurns: 0,

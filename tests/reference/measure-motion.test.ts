@@ -138,6 +138,7 @@ describe('a mass driven by an active strut', () => {
           restM: 1,
           stiffnessNpm: 100,
           dampingNspm: 20 * zeta,
+          actuator: 'unlimited',
           group: 0,
           strain: 0.01,
           phaseTurns: 0,
@@ -169,7 +170,17 @@ describe('a mass driven by an active strut', () => {
     const h = 5e-5
     const lattice = oscillator(1, 0, 2, h, {
       actuators: [
-        { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 0, group: 0, strain: 0.01, phaseTurns: 0 },
+        {
+          a: 0,
+          b: 1,
+          restM: 1,
+          stiffnessNpm: 100,
+          dampingNspm: 0,
+          actuator: 'unlimited',
+          group: 0,
+          strain: 0.01,
+          phaseTurns: 0,
+        },
       ],
       groups: [{ frequencyHz: 10 / turn }],
     })

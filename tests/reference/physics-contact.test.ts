@@ -298,7 +298,17 @@ describe('the simplest crawler', () => {
       ],
       struts: [],
       actuators: [
-        { a: 0, b: 1, restM: 1, stiffnessNpm, dampingNspm: 1, group: 0, strain: 0.1, phaseTurns: 0 },
+        {
+          a: 0,
+          b: 1,
+          restM: 1,
+          stiffnessNpm,
+          dampingNspm: 1,
+          actuator: 'unlimited',
+          group: 0,
+          strain: 0.1,
+          phaseTurns: 0,
+        },
       ],
       groups: [{ frequencyHz: 0.1 }],
       gravityMps2: [0, -g],

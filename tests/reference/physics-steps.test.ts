@@ -184,8 +184,8 @@ describe('what a step does', () => {
       nodes,
       struts: [],
       actuators: [
-        { a: 0, b: 1, ...strut, group: 0, strain: 0.1, phaseTurns: 0.15 },
-        { a: 1, b: 2, ...strut, group: 1, strain: 0.2, phaseTurns: 0.6 },
+        { a: 0, b: 1, ...strut, actuator: 'unlimited', group: 0, strain: 0.1, phaseTurns: 0.15 },
+        { a: 1, b: 2, ...strut, actuator: 'unlimited', group: 1, strain: 0.2, phaseTurns: 0.6 },
       ],
       groups: [{ frequencyHz: 1.3, lagSeconds: 0.07 }, { frequencyHz: 0.7 }],
       drive: { startSeconds: 0.5, rampSeconds: 0.25 },
@@ -213,7 +213,17 @@ describe('what a step does', () => {
       oscillator(1, 0, 0, 1e-3, {
         struts: [],
         actuators: [
-          { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 1, group: 0, strain: 0.1, phaseTurns: 0.2 },
+          {
+            a: 0,
+            b: 1,
+            restM: 1,
+            stiffnessNpm: 100,
+            dampingNspm: 1,
+            actuator: 'unlimited',
+            group: 0,
+            strain: 0.1,
+            phaseTurns: 0.2,
+          },
         ],
         groups: [{ frequencyHz: 1.7, lagSeconds: 0.05 }, { frequencyHz: 0.9 }],
         prescribed: [{ node: 0, group: 1, amplitudeM: [0.02, 0.01], phaseTurns: 0.4 }],

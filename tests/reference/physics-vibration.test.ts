@@ -162,7 +162,7 @@ describe('steady answers', () => {
     const strut = { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 2 }
     const lattice = oscillator(1, 0, 0, 5e-5, {
       struts: [],
-      actuators: [{ ...strut, group: 0, strain: 0.01, phaseTurns: 0.3 }],
+      actuators: [{ ...strut, actuator: 'unlimited', group: 0, strain: 0.01, phaseTurns: 0.3 }],
       groups: groupsAt(r),
     })
     expect(relative(amplitude(lattice, 10 * r, Math.ceil(20 * r)) / 0.01, truth)).toBeLessThan(1e-3)
@@ -172,7 +172,7 @@ describe('steady answers', () => {
     const strut = { a: 0, b: 1, restM: 1, stiffnessNpm: 100, dampingNspm: 2 }
     const lattice = oscillator(1, 0, 0, 5e-5, {
       struts: [],
-      actuators: [{ ...strut, group: 0, strain: 0.01, phaseTurns: 0 }],
+      actuators: [{ ...strut, actuator: 'unlimited', group: 0, strain: 0.01, phaseTurns: 0 }],
       groups: [{ frequencyHz: 20 / (2 * Math.PI), lagSeconds: 0.05 }],
     })
     expect(relative(amplitude(lattice, 20, 40) / 0.01, 0.3304093 / Math.SQRT2)).toBeLessThan(1e-3)

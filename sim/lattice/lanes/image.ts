@@ -121,9 +121,10 @@ function writeActive(pen: Pen): void {
   const [{ passiveCount, activeCount, ends, group }] = lanes as readonly [(typeof lanes)[number]]
   for (let j = 0; j < activeCount; j++) {
     const at = places.active.first + j * sizes.active
-    const words = at + 4 * variant.materialBytes
+    const words = at + 5 * variant.materialBytes
     putLaw(pen, at, passiveCount + j)
     putMaterial(pen, at + 3 * variant.materialBytes, 'limitN', j)
+    putMaterial(pen, at + 4 * variant.materialBytes, 'powerMostW', j)
     putEnds(pen, words, ends, passiveCount + j)
     putWord(pen, words + 8, drivenPairAt(pen, group[j]!))
     putWide(pen, at + sizes.activeStrain, 'strainCos', j)
@@ -145,7 +146,7 @@ function writeGuided(pen: Pen): void {
     putWord(pen, at + 16, places.feedback.first + feedbackFirst[j + 1]! * sizes.feedback)
     putLaw(pen, at + 32, passiveCount + driven)
     putMaterial(pen, at + 32 + 3 * variant.materialBytes, 'limitN', driven)
-    putMaterial(pen, at + 32 + 4 * variant.materialBytes, 'powerMostW', j)
+    putMaterial(pen, at + 32 + 4 * variant.materialBytes, 'powerMostW', driven)
     const strain = at + sizes.guidedStrain
     putWide(pen, strain, 'strainCos', driven)
     putWide(pen, strain + variant.wide, 'strainSin', driven)

@@ -38,7 +38,7 @@ export function recordsOf({ dimensions, own, wide, materialBytes }: Variant) {
   const first = own ? 16 : 8
   const friction = round16(materialBytes)
   const heading = friction + 2 * dimensions * wide
-  const activeStrain = 4 * materialBytes + 16
+  const activeStrain = round16(5 * materialBytes + 12)
   const guidedStrain = round16(32 + 5 * materialBytes)
   return {
     node: 3 * dimensions * wide,

@@ -47,7 +47,8 @@ export function addPassivePlane(
 /**
  * As passive struts, for struts whose rest length is commanded: rest (1 + strain sin(wt + phi)), by angle addition
  * from sin wt and cos wt of its group, sin(wt + phi) = sin wt cos phi + cos wt sin phi. Tension is kept within
- * +-limit. `first` is the number of the first of them in the list of struts.
+ * +-limit; then, where the strut would give its nodes more power than it has, p = -T dL/dt > limit, its tension is
+ * scaled down to that power. `first` is the number of the first of them in the list of struts.
  */
 export function addActivePlane(
   first: number,
@@ -60,6 +61,7 @@ export function addActivePlane(
   strainCos: Float64Array,
   strainSin: Float64Array,
   limitN: Float64Array,
+  powerMostW: Float64Array,
   driven: Float64Array,
   nodes: Float64Array,
 ): void {
@@ -78,8 +80,11 @@ export function addActivePlane(
     const perLength = Math.sqrt(q) * perQ
     const commandedN = stiffnessRestN[i]! * (1 + drive)
     const most = limitN[j]! * perLength
-    const free = stiffnessNpm[i]! - commandedN * perLength + dampingNspm[i]! * (dx * dvx + dy * dvy) * perQ
-    const scale = Math.min(most, Math.max(-most, free))
+    const along = dx * dvx + dy * dvy
+    const free = stiffnessNpm[i]! - commandedN * perLength + dampingNspm[i]! * along * perQ
+    let scale = Math.min(most, Math.max(-most, free))
+    const powerW = -scale * along
+    if (powerW > powerMostW[j]!) scale *= powerMostW[j]! / powerW
     const fx = scale * dx
     const fy = scale * dy
     nodes[a + 4]! += fx
@@ -90,8 +95,7 @@ export function addActivePlane(
 }
 
 /**
- * Guided struts: as active ones, the commanded strain being state (guide.ts); then, where the strut would give its
- * nodes more power than it has, p = -T dL/dt > limit, its tension is scaled down to that power.
+ * Guided struts: as active ones, the commanded strain being state (guide.ts).
  */
 export function addGuidedPlane(lattice: Lattice): void {
   const { passiveCount, activeCount, guidedCount, ends, nodes } = lattice
@@ -113,7 +117,8 @@ export function addGuidedPlane(lattice: Lattice): void {
     const free = stiffnessNpm[i]! - commandedN * perLength + dampingNspm[i]! * along * perQ
     let scale = Math.min(most, Math.max(-most, free))
     const powerW = -scale * along
-    if (powerW > powerMostW[j]!) scale *= powerMostW[j]! / powerW
+    const mostW = powerMostW[activeCount + j]!
+    if (powerW > mostW) scale *= mostW / powerW
     const fx = scale * dx
     const fy = scale * dy
     nodes[a + 4]! += fx

@@ -24,7 +24,7 @@ export function addForcesPlane(lattice: Lattice): void {
     dampingNspm: c,
     nodes,
   } = lattice
-  const { group, strainCos, strainSin, limitN, driven } = lattice
+  const { group, strainCos, strainSin, limitN, powerMostW, driven } = lattice
   addPassivePlane(passiveCount, ends, k, kL, c, nodes)
   addActivePlane(
     passiveCount,
@@ -37,6 +37,7 @@ export function addForcesPlane(lattice: Lattice): void {
     strainCos,
     strainSin,
     limitN,
+    powerMostW,
     driven,
     nodes,
   )
@@ -62,7 +63,18 @@ export function runPlane(lattice: Lattice, steps: number): void {
     sensorCount,
     touching,
   } = lattice
-  const { group, strainCos, strainSin, limitN, driven, rotors, rotation, rotationTurn, sweepSteps } = lattice
+  const {
+    group,
+    strainCos,
+    strainSin,
+    limitN,
+    powerMostW,
+    driven,
+    rotors,
+    rotation,
+    rotationTurn,
+    sweepSteps,
+  } = lattice
   const { heightsM, terrain, contact, friction, rampSteps, driveStartStep } = lattice
   const world = Float64Array.of(lattice.stepSeconds, lattice.dragNspm, ...lattice.gravity)
   const senses = sensorCount > 0
@@ -81,6 +93,7 @@ export function runPlane(lattice: Lattice, steps: number): void {
       strainCos,
       strainSin,
       limitN,
+      powerMostW,
       driven,
       nodes,
     )

@@ -51,6 +51,7 @@ export function addActiveSpace(
   strainCos: Float64Array,
   strainSin: Float64Array,
   limitN: Float64Array,
+  powerMostW: Float64Array,
   driven: Float64Array,
   nodes: Float64Array,
 ): void {
@@ -71,9 +72,11 @@ export function addActiveSpace(
     const perLength = Math.sqrt(q) * perQ
     const commandedN = stiffnessRestN[i]! * (1 + drive)
     const most = limitN[j]! * perLength
-    const free =
-      stiffnessNpm[i]! - commandedN * perLength + dampingNspm[i]! * (dx * dvx + dy * dvy + dz * dvz) * perQ
-    const scale = Math.min(most, Math.max(-most, free))
+    const along = dx * dvx + dy * dvy + dz * dvz
+    const free = stiffnessNpm[i]! - commandedN * perLength + dampingNspm[i]! * along * perQ
+    let scale = Math.min(most, Math.max(-most, free))
+    const powerW = -scale * along
+    if (powerW > powerMostW[j]!) scale *= powerMostW[j]! / powerW
     const fx = scale * dx
     const fy = scale * dy
     const fz = scale * dz
@@ -108,7 +111,8 @@ export function addGuidedSpace(lattice: Lattice): void {
     const free = stiffnessNpm[i]! - commandedN * perLength + dampingNspm[i]! * along * perQ
     let scale = Math.min(most, Math.max(-most, free))
     const powerW = -scale * along
-    if (powerW > powerMostW[j]!) scale *= powerMostW[j]! / powerW
+    const mostW = powerMostW[activeCount + j]!
+    if (powerW > mostW) scale *= mostW / powerW
     const fx = scale * dx
     const fy = scale * dy
     const fz = scale * dz

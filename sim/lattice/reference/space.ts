@@ -24,7 +24,7 @@ export function addForcesSpace(lattice: Lattice): void {
     dampingNspm: c,
     nodes,
   } = lattice
-  const { group, strainCos, strainSin, limitN, driven } = lattice
+  const { group, strainCos, strainSin, limitN, powerMostW, driven } = lattice
   addPassiveSpace(passiveCount, ends, k, kL, c, nodes)
   addActiveSpace(
     passiveCount,
@@ -37,6 +37,7 @@ export function addForcesSpace(lattice: Lattice): void {
     strainCos,
     strainSin,
     limitN,
+    powerMostW,
     driven,
     nodes,
   )
@@ -62,7 +63,18 @@ export function runSpace(lattice: Lattice, steps: number): void {
     sensorCount,
     touching,
   } = lattice
-  const { group, strainCos, strainSin, limitN, driven, rotors, rotation, rotationTurn, sweepSteps } = lattice
+  const {
+    group,
+    strainCos,
+    strainSin,
+    limitN,
+    powerMostW,
+    driven,
+    rotors,
+    rotation,
+    rotationTurn,
+    sweepSteps,
+  } = lattice
   const { heightsM, terrain, contact, friction, rampSteps, driveStartStep } = lattice
   const { groundColumns, groundRows, heading } = lattice
   const world = Float64Array.of(lattice.stepSeconds, lattice.dragNspm, ...lattice.gravity)
@@ -82,6 +94,7 @@ export function runSpace(lattice: Lattice, steps: number): void {
       strainCos,
       strainSin,
       limitN,
+      powerMostW,
       driven,
       nodes,
     )

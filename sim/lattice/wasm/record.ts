@@ -41,9 +41,9 @@ export const isHeld: usize = 2
 export const passiveEnds: usize = 3 * materialBytes
 export const passiveBytes: usize = (passiveEnds + 8 + 15) & ~15
 
-// Active strut: stiffness, stiffness * rest, damping, limit | ends, driven pair of its group, - | strainCos, strainSin.
-export const activeEnds: usize = 4 * materialBytes
-export const activeStrain: usize = activeEnds + 16
+// Active strut: stiffness, stiffness * rest, damping, limit, power | ends, driven pair of its group | strainCos, strainSin.
+export const activeEnds: usize = 5 * materialBytes
+export const activeStrain: usize = (activeEnds + 12 + 15) & ~15
 export const activeBytes: usize = activeStrain + 2 * wide
 
 // Guided strut: ends, driven pair of its group, first and end of its feedback rows (8 words in all) | stiffness,

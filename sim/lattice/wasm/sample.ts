@@ -12,9 +12,10 @@ import {
   material, nodeBytes, nodeSampleBytes, number, passiveBytes, passiveEnds, strutSampleBytes, vx, vy, vz, wide, word,
   x, y, z,
 } from './record'
+import { withinPower } from './struts'
 import { dimensions, vectors } from './variant'
 import {
-  abs, add, anyOf, atLeast, atMost, choose, div, less, mul, neg, only, read, sqrt, sub, Vec, vectorBytes, write,
+  abs, add, anyOf, atLeast, atMost, div, less, mul, neg, only, read, sqrt, sub, Vec, vectorBytes, write,
 } from './vector'
 
 @inline function squareOf(a: usize, b: usize, lane: usize): Vec {
@@ -90,7 +91,7 @@ function samplePassive(at: usize): void {
   const commanded = mul(material(p, 0, 1, lane), add(one, drive))
   const most = mul(material(p, 0, 3, lane), perLength)
   const free = scaleOf(p, 0, commanded, perLength, perQ, along, lane)
-  const scale = atMost(atLeast(free, neg(most)), most)
+  const scale = withinPower(atMost(atLeast(free, neg(most)), most), along, material(p, 0, 4, lane))
   keep(at, lane, mul(abs(scale), length), length)
   keepWork(work, scale, along, most, lane)
 }
@@ -120,9 +121,7 @@ function takeGuided(p: usize, a: usize, b: usize, at: usize, work: usize, lane: 
   const most = mul(material(p, guidedMaterial, 3, lane), perLength)
   const free = scaleOf(p, guidedMaterial, commanded, perLength, perQ, along, lane)
   const held = atMost(atLeast(free, neg(most)), most)
-  const power = mul(neg(held), along)
-  const powerMost = material(p, guidedMaterial, 4, lane)
-  const scale = choose(less(powerMost, power), mul(held, div(powerMost, power)), held)
+  const scale = withinPower(held, along, material(p, guidedMaterial, 4, lane))
   keep(at, lane, mul(abs(scale), length), length)
   keepWork(work, scale, along, most, lane)
 }

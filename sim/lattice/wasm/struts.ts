@@ -74,6 +74,16 @@ export function addPassive(): void {
   if (p < end) onePassive(p, one)
 }
 
+/**
+ * T / |d| scaled down to the power that the strut has, where T dL/dt is more. Mostly it is not, in any lane: then the
+ * division is spared.
+ */
+@inline export function withinPower(held: Vec, along: Vec, most: Vec): Vec {
+  const power = mul(neg(held), along)
+  const over = less(most, power)
+  return anyOf(over) ? choose(over, mul(held, div(most, power)), held) : held
+}
+
 @inline function active(p: usize, a: usize, b: usize, group: usize, lane: usize, one: Vec): void {
   const dx = from(a, b, x, lane)
   const dy = from(a, b, y, lane)
@@ -94,7 +104,8 @@ export function addPassive(): void {
   const stiffness = material(p, 0, 0, lane)
   const damping = material(p, 0, 2, lane)
   const free = add(sub(stiffness, mul(commanded, perLength)), mul(mul(damping, along), perQ))
-  pull(a, b, lane, atMost(atLeast(free, neg(most)), most), dx, dy, dz)
+  const held = atMost(atLeast(free, neg(most)), most)
+  pull(a, b, lane, withinPower(held, along, material(p, 0, 4, lane)), dx, dy, dz)
 }
 
 @inline function oneActive(p: usize, one: Vec): void {
@@ -134,10 +145,7 @@ export function addActive(): void {
   const damping = material(p, guidedMaterial, 2, lane)
   const free = add(sub(stiffness, mul(commanded, perLength)), mul(mul(damping, along), perQ))
   const held = atMost(atLeast(free, neg(most)), most)
-  const power = mul(neg(held), along)
-  const powerMost = material(p, guidedMaterial, 4, lane)
-  const scale = choose(less(powerMost, power), mul(held, div(powerMost, power)), held)
-  pull(a, b, lane, scale, dx, dy, dz)
+  pull(a, b, lane, withinPower(held, along, material(p, guidedMaterial, 4, lane)), dx, dy, dz)
 }
 
 export function addGuided(): void {

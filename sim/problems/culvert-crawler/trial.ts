@@ -5,6 +5,7 @@
 // Conditions run side by side in the lanes of the lattice kernel, and are sampled there. followTrial() does the same on
 // the reference simulator, one condition at a time and bit for bit the same, for replays and checks.
 
+import { actuatorClasses } from '../../../shared/making/actuators.js'
 import { advance, type Fault, look } from '../../lattice/advance.js'
 import { buildLattice } from '../../lattice/build.js'
 import {
@@ -91,24 +92,14 @@ function nodesOf({ positionsM, nodeMassesKg, footNodes }: Machine): NodeSpec[] {
 function strutsOf({ members, passiveCount, strains, phaseTurns }: Machine) {
   const struts: StrutSpec[] = []
   const actuators: ActuatorSpec[] = []
-  const forceLimitN = numbers.pressurePa * numbers.boreAreaM2
   for (let i = 0; i < members.length; i++) {
     const { a, b, lengthM: restM, stiffnessNpm, group } = members[i]!
     const dampingNspm = stiffnessNpm * numbers.relaxationSeconds
     if (i < passiveCount) struts.push({ a, b, restM, stiffnessNpm, dampingNspm })
     else {
-      const [strain, phase] = [strains[group]!, phaseTurns[group]!]
-      actuators.push({
-        a,
-        b,
-        restM,
-        stiffnessNpm,
-        dampingNspm,
-        group,
-        strain,
-        phaseTurns: phase,
-        forceLimitN,
-      })
+      const drive = { group, strain: strains[group]!, phaseTurns: phaseTurns[group]! }
+      const actuator = actuatorClasses.bellows
+      actuators.push({ a, b, restM, stiffnessNpm, dampingNspm, ...drive, actuator })
     }
   }
   return { struts, actuators }

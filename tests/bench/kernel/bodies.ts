@@ -110,6 +110,7 @@ export function bytesForC(replicates: readonly Lattice[]): Uint8Array {
     numbers.push(ends[2 * i]! / stride, ends[2 * i + 1]! / stride)
     numbers.push(body.stiffnessNpm[i]!, body.stiffnessRestN[i]!, body.dampingNspm[i]!)
     numbers.push(i < passiveCount ? 0 : body.limitN[i - passiveCount]!)
+    numbers.push(i < passiveCount ? 0 : body.powerMostW[i - passiveCount]!)
   }
   for (const { nodes, friction, strainCos, strainSin } of replicates) {
     for (let n = 0; n < nodeCount; n++) {

@@ -86,7 +86,7 @@ static inline vec atLeast(vec a, vec limit) { return pick(a < limit, limit, a); 
 typedef struct { vec p[DIM][VECTORS], v[DIM][VECTORS], f[DIM][VECTORS]; } Node;
 typedef struct { num perKg; vec friction[DIM][VECTORS]; } Row;
 typedef struct { int a, b; num k, kRest, c; } Passive;
-typedef struct { int a, b; num k, kRest, c, limit; vec strainCos[VECTORS], strainSin[VECTORS]; } Active;
+typedef struct { int a, b; num k, kRest, c, limit, power; vec strainCos[VECTORS], strainSin[VECTORS]; } Active;
 
 static int nodeCount, passiveCount, activeCount, columns, rows, rooted, since;
 static Node *nodes;
@@ -138,8 +138,13 @@ static void addActive(void) {
       vec perLength = root(q) * perQ;
       vec drive = sine * s->strainCos[w] + cosine * s->strainSin[w];
       vec most = s->limit * perLength;
-      vec scale = s->k - s->kRest * (1 + drive) * perLength + s->c * DOT(d, dv) * perQ;
-      pull(a, b, w, atMost(atLeast(scale, -most), most), d);
+      vec along = DOT(d, dv);
+      vec free = s->k - s->kRest * (1 + drive) * perLength + s->c * along * perQ;
+      vec scale = atMost(atLeast(free, -most), most);
+      vec power = -scale * along;
+      mask over = power > all(s->power);
+      if (any(over)) scale = pick(over, scale * (s->power / power), scale);
+      pull(a, b, w, scale, d);
     }
   }
 }
@@ -317,9 +322,11 @@ static void readBody(const char *name) {
   for (int n = 0; n < nodeCount; n++) table[n].perKg = (num)next(file);
   for (int n = 0; n < passiveCount + activeCount; n++) {
     int a = (int)next(file), b = (int)next(file);
-    num k = (num)next(file), kRest = (num)next(file), c = (num)next(file), limit = (num)next(file);
+    num k = (num)next(file), kRest = (num)next(file), c = (num)next(file);
+    num limit = (num)next(file), power = (num)next(file);
     if (n < passiveCount) passive[n] = (Passive){a, b, k, kRest, c};
-    else active[n - passiveCount] = (Active){.a = a, .b = b, .k = k, .kRest = kRest, .c = c, .limit = limit};
+    else active[n - passiveCount] =
+      (Active){.a = a, .b = b, .k = k, .kRest = kRest, .c = c, .limit = limit, .power = power};
   }
   long start = ftell(file);
   int each = nodeCount * 3 * DIM + 2 * activeCount;
