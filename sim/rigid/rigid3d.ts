@@ -19,7 +19,8 @@ import {
   World,
 } from '@dimforge/rapier3d-deterministic-compat'
 import { refuse } from '../../shared/refusals.js'
-import { checkGap, checkRigid, layersOf } from './check.js'
+import { builderOf } from './build.js'
+import { checkGap } from './check.js'
 import type { EngineWorld, MassOf } from './engine.js'
 import { turned, worldPoint } from './joints.js'
 import {
@@ -28,12 +29,10 @@ import {
   contactsFrom,
   distanceM,
   flatPoints,
-  layerWords,
   pairRules,
   type Touch,
 } from './library.js'
 import type { BodySpec, JointSpec, Outline, RigidSpec, ShapeSpec } from './spec.js'
-import { RigidWorld } from './world.js'
 
 export type * from './engine.js'
 export type { Drive } from './motors.js'
@@ -51,51 +50,15 @@ const unturned = [0, 0, 0, 1]
 const turnOf = (turn: BodySpec['turn']) => (turn === undefined || typeof turn === 'number' ? unturned : turn)
 const quaternion = (turn: ArrayLike<number>) => ({ x: turn[0]!, y: turn[1]!, z: turn[2]!, w: turn[3]! })
 
-/** Checks a description and builds it. Throws a Refusal ('impossible-value') that names the body or joint. */
-export function buildRigid(spec: RigidSpec): RigidWorld {
-  checkRigid(spec, 3)
-  const world = new World(vector(spec.gravityMps2))
-  try {
-    return new RigidWorld(library, 3, spec, fill(world, spec))
-  } catch (error) {
-    world.free()
-    throw error
-  }
-}
-
-/** Builds a world, hands it to `use`, and gives its memory back whatever happens. */
-export function withRigid<T>(spec: RigidSpec, use: (world: RigidWorld) => T): T {
-  const world = buildRigid(spec)
-  try {
-    return use(world)
-  } finally {
-    world.free()
-  }
-}
-
-function fill(world: World, spec: RigidSpec): EngineWorld {
-  const { integrationParameters: settings } = world
-  settings.dt = spec.stepSeconds
-  settings.numSolverIterations = spec.solverRounds ?? 4
-  settings.numInternalPgsIterations = spec.solverSweeps ?? 1
-  settings.lengthUnit = spec.sizeM ?? 1
-  if (spec.contactHz !== undefined) settings.contact_natural_frequency = spec.contactHz
-  const bodies = spec.bodies.map((body) => world.createRigidBody(describeBody(body)))
-  const owners = new Map<number, number>()
-  const colliders: Collider[] = []
-  const words = layerWords(layersOf(spec), spec.apart)
-  for (const [i, body] of spec.bodies.entries()) {
-    for (const shape of body.shapes) {
-      const described = describeShape(shape, body, spec, words.get(shape.layer ?? '')!)
-      const collider = world.createCollider(described, bodies[i]!)
-      owners.set(collider.handle, i)
-      colliders.push(collider)
-    }
-  }
-  for (const body of bodies) body.recomputeMassPropertiesFromColliders()
-  for (const joint of spec.joints ?? []) buildJoint(world, joint, spec, bodies)
-  return engineOf(world, spec, bodies, colliders, owners)
-}
+export const { buildRigid, withRigid } = builderOf({
+  name: library,
+  dimensions: 3,
+  createWorld: (gravityMps2) => new World(vector(gravityMps2)),
+  describeBody,
+  describeShape,
+  buildJoint,
+  engineOf,
+})
 
 function describeBody(body: BodySpec): RigidBodyDesc {
   const described = body.fixed ? RigidBodyDesc.fixed() : RigidBodyDesc.dynamic()
