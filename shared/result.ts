@@ -39,6 +39,8 @@ export interface WorkItem {
   readonly avoidHosts?: readonly string[]
   /** Only on this class of processor. */
   readonly onProcessor?: string
+  /** An earlier try is still under way and takes too long: for another worker than the one that has that. */
+  readonly hedge?: true
 }
 
 /** Who simulated: for the record, blame and confirmation. */
@@ -49,6 +51,8 @@ export interface Executor {
   readonly host: string
   /** Class of its processor: within one, honest machines agree to the bit. */
   readonly processor?: string
+  /** Version of the program that simulated, where it is known. */
+  readonly skerry?: string
 }
 
 /** A machine that can simulate now. */

@@ -1,32 +1,42 @@
-// What is believed. A result is accepted at once, or after a second worker has confirmed it: a fraction chosen by
+// What is believed. A result is accepted at once, or after somebody else has confirmed it: a fraction chosen by
 // hash, whatever would become the best so far of an objective on its island, whoever is about to leave an island,
-// and what is reported. A worker that stands alone against two is shut out, and what else it simulated of the
-// living is looked at again; a committed result that turns out wrong is corrected at a stated point.
+// and what is reported. Somebody else is another machine; where there is none it is a fresh process, and what is best
+// or reported is confirmed once more when there is one. How votes are read is votes.ts, whose are used trust.ts, what
+// follows from a difference consequences.ts.
+//
+// Nothing waits for ever: whom to ask is decided anew whenever work is handed out, and a difference that nobody left
+// can settle ends after a while: what was not committed yet is set aside.
 
 import { z } from 'zod'
 import { check } from '../../shared/check.js'
-import { equalBytes, resultDigest } from '../../shared/digests.js'
+import { resultDigest } from '../../shared/digests.js'
+import { agree, ruleOf } from '../../shared/exactness.js'
 import { islandName, nameOf } from '../../shared/ids.js'
 import { limits } from '../../shared/limits.js'
-import { refuse } from '../../shared/refusals.js'
 import type { DispatchFact, EvaluationResult } from '../../shared/result.js'
 import { stream } from '../../shared/streams.js'
 import { columnsOf } from '../evolution/estimate.js'
 import type { Island } from '../evolution/island.js'
 import type { Outcome, Search } from '../evolution/search.js'
 import type { Ticket } from '../evolution/tickets.js'
-import { Confirmed, setAsideWorker } from './confirmed.js'
+import { ArrivalOrder } from './arrival-order.js'
+import { Confirmed, executorOf, setAsideWorker } from './confirmed.js'
+import { Consequences } from './consequences.js'
 import type { EngineCounts } from './counts.js'
 import type { Orders } from './orders.js'
 import type { RecordReader } from './ports.js'
 import { eventRow, type Rows } from './rows.js'
-import { answersOf, answersTolerated, type Vote, verdictOf } from './votes.js'
+import { processOf, type Trust, type Where } from './trust.js'
+import { answersOf, type Verdict, type Vote, verdictOf } from './votes.js'
+import { readingOf, whereNext } from './witnesses.js'
 import { isNeeded, type Purpose, type Work, type Works } from './works.js'
 
 type ResultFact = Extract<DispatchFact, { kind: 'result' }>
 type LossFact = Extract<DispatchFact, { kind: 'lost' }>
 
-const shutOutSchema = z.object({ worker: z.string() })
+const workerOutSchema = z.object({ worker: z.string() })
+const hostOutSchema = z.object({ host: z.string() })
+const pinnedSchema = z.object({ processor: z.string() })
 const correctionSchema = z.object({ fact: z.object({ individual: z.number(), firstReplicate: z.number() }) })
 
 export interface AcceptanceParts {
@@ -36,52 +46,115 @@ export interface AcceptanceParts {
   readonly rows: Rows
   readonly orders: Orders
   readonly counts: EngineCounts
+  readonly trust: Trust
+  /** How long a difference that nobody left can settle, or a class without machines, is waited for. */
+  readonly patienceMs: number
   /** Something may let this island go on; 0: any that waits for confirmations. */
   readonly wake: (island: number) => void
 }
 
 export class Acceptance {
-  readonly shutOut = new Set<string>()
   readonly #parts: AcceptanceParts
+  readonly #consequences: Consequences
   /** What is known of committed results. */
   readonly confirmed: Confirmed
-  /** Workers whose earlier results are to be looked at again once the record has them all. */
-  readonly #suspects: string[] = []
-  /** Islands of order 'arrival': evaluations whose first result is in, in order. */
-  readonly #arrivalOrder = new Map<number, number[]>()
+  /** Somebody is not believed any more: earlier results are to be looked at again once the record has them all. */
+  #suspectsDue = false
+  /** Version of the trust at which everything was judged last. */
+  #judgedVersion = 0
+  /** Differences that nobody left can settle, and since when. */
+  readonly #stuck = new Map<Work, number>()
+  #withoutClassSinceMs: number | undefined
+  #nowMs = 0
+  readonly #arrivalOrder = new ArrivalOrder()
 
   constructor(parts: AcceptanceParts) {
     this.#parts = parts
     this.confirmed = new Confirmed(parts)
-    for (const event of parts.reader.events()) {
-      if (event.kind === 'worker-shut-out') this.shutOut.add(shutOutSchema.parse(event.data).worker)
-      if (event.kind === 'correction') this.confirmed.noteCorrected(correctionSchema.parse(event.data).fact)
-    }
-    this.#suspects.push(...this.shutOut)
+    this.#consequences = new Consequences({ ...parts, confirmed: this.confirmed })
+    for (const { kind, data } of parts.reader.events()) this.#recall(kind, data)
+  }
+
+  /** What an earlier life has decided. */
+  #recall(kind: string, data: unknown): void {
+    const { trust } = this.#parts
+    if (kind === 'worker-shut-out') trust.shutOutWorker(workerOutSchema.parse(data).worker)
+    else if (kind === 'host-shut-out') trust.shutOutHost(hostOutSchema.parse(data).host)
+    else if (kind === 'pinned-to-processor') trust.pinTo(pinnedSchema.parse(data).processor)
+    else if (kind === 'correction') this.confirmed.noteCorrected(correctionSchema.parse(data).fact)
+    this.#suspectsDue = trust.version > 0
   }
 
   /** Takes up what the record has of a ticket. False when it must be simulated. */
   resume(work: Work): boolean {
     const { reader } = this.#parts
     const arrival = reader.arrival(work.island, work.evaluation)
-    const confirmed = reader.isConfirmed(work.island, work.evaluation)
-    if (!arrival || (!confirmed && this.shutOut.has(arrival.worker))) return false
-    const executor = { kind: 'thread', worker: arrival.worker, host: arrival.host } as const
-    work.recorded = { result: arrival.result, digest: arrival.digest, executor }
-    work.confirmed = confirmed || arrival.worker === setAsideWorker
+    if (!arrival || !this.confirmed.isVouched(work.island, work.evaluation)) return false
+    work.recorded = { result: arrival.result, digest: arrival.digest, executor: executorOf(arrival) }
+    const seconds = reader.confirmations(work.island, work.evaluation)
+    work.confirmed = seconds.some(({ agrees }) => agrees) || arrival.worker === setAsideWorker
+    work.confirmedBy = seconds.some(({ agrees, by }) => agrees && by === 'host') ? 'host' : 'process'
     // Somebody contradicted it, and who was right is not known yet.
-    const disputed = reader.confirmations(work.island, work.evaluation).some(({ agrees }) => !agrees)
-    if (disputed) work.spotCheck = true
+    if (seconds.some(({ agrees }) => !agrees)) work.spotCheck = true
     this.#vote(work, work.recorded, 'evaluate')
     return true
+  }
+
+  /** The machines changed, or time passed: what was judged by the former is judged again. */
+  look(nowMs: number): void {
+    this.#nowMs = nowMs
+    const { trust } = this.#parts
+    if (trust.known) this.#choosePin(nowMs)
+    if (trust.version !== this.#judgedVersion) this.#judgeAgain()
+    for (const [work, sinceMs] of this.#stuck)
+      if (nowMs - sinceMs >= this.#parts.patienceMs) this.#giveUp(work)
+  }
+
+  /** With problems that are exact on one class only, one is chosen; when its machines stay away, another. */
+  #choosePin(nowMs: number): void {
+    const { trust, search, patienceMs } = this.#parts
+    const largest = trust.largestClass()
+    if (largest === undefined) return
+    if (trust.pinned === undefined) {
+      if (!ruleOf(search.plan.problem).oneProcessorClass) return
+      const sentence = `The problem promises equal bits on one class of processors: the search uses machines of class "${largest}".`
+      this.#consequences.pin(largest, sentence)
+      return
+    }
+    this.#withoutClassSinceMs = trust.usable.length > 0 ? undefined : (this.#withoutClassSinceMs ?? nowMs)
+    if (this.#withoutClassSinceMs === undefined || nowMs - this.#withoutClassSinceMs < patienceMs) return
+    this.#withoutClassSinceMs = undefined
+    if (largest === trust.pinned) return
+    const sentence = `No machine of processor class "${trust.pinned}" is there any more: the search goes on with class "${largest}".`
+    this.#consequences.pin(largest, sentence)
+  }
+
+  #judgeAgain(): void {
+    const { trust, works, search } = this.#parts
+    do {
+      this.#judgedVersion = trust.version
+      this.#stuck.clear()
+      for (const work of works.all()) this.#dropUnbelieved(work)
+      for (const work of works.all()) if (work.votes.length > 1 && !work.confirmed) this.#judge(work)
+    } while (trust.version !== this.#judgedVersion)
+    for (const island of search.islands) this.#parts.wake(island.number)
+    if (!trust.byHost) return
+    // Confirmed by a process while there was one machine: another can say it now.
+    for (const { best } of search.islands)
+      if (best && best.failedSimulations === 0) this.confirmed.isConfirmed(best)
   }
 
   // ----------------------------------------------------------------------------------------- results
 
   take(work: Work, fact: ResultFact): void {
     const { works, counts, search } = this.#parts
-    if (work[fact.item.purpose].attempt === fact.item.attempt) works.settle(work, fact.item.purpose)
-    if (this.shutOut.has(fact.executor.worker)) {
+    const lane = work[fact.item.purpose]
+    const { attempt } = fact.item
+    if (lane.attempt === attempt || (lane.earlier > 0 && lane.earlier === attempt)) {
+      if (lane.earlier > 0 && lane.attempt === attempt) counts.hedgesFirst++
+      works.settle(work, fact.item.purpose)
+    }
+    if (!this.#parts.trust.accepts(fact.executor)) {
       counts.late++
       if (isNeeded(work, fact.item.purpose)) works.want(work, fact.item.purpose)
       return
@@ -110,28 +183,36 @@ export class Acceptance {
   takeLate(fact: ResultFact): void {
     const { counts, reader, rows } = this.#parts
     counts.late++
-    const known = reader.arrival(fact.item.island, fact.item.evaluation)
-    if (!known || equalBytes(known.digest, fact.digest)) return
+    const { island, evaluation } = fact.item
+    const known = reader.arrival(island, evaluation) ?? rows.findArrival(island, evaluation)
+    if (!known || known.worker === setAsideWorker || !this.#parts.trust.accepts(fact.executor)) return
+    if (agree(this.#parts.search.plan.problem, known, fact)) return
     counts.disagreements++
-    const sentence = `A late result of evaluation ${fact.item.evaluation} of ${islandName(fact.item.island)} by ${fact.executor.worker} differs from the one that was used, by ${known.worker}.`
+    const sentence = `A late result of evaluation ${evaluation} of ${islandName(island)} by ${fact.executor.worker} differs from the one that was used, by ${known.worker}.`
     rows.event(eventRow({ kind: 'late-result-differs', sentence }))
+    // Who is right is found out where it still matters.
+    const work = this.confirmed.workAgain(island, evaluation)
+    if (!work) return
+    work.suspect = true
+    const { result, digest, executor } = fact
+    if (this.#vote(work, { result, digest, executor }, 'confirm')) this.#judge(work)
   }
 
-  /** Counts a vote; false when this worker has voted before. */
+  /** Counts a vote; false when this process has said the same before. */
   #vote(work: Work, vote: Vote, purpose: Purpose): boolean {
     const { works, counts, wake } = this.#parts
-    const { worker } = vote.executor
-    const earlier =
-      work.votes.length > 0 ? work.votes.find((other) => other.executor.worker === worker) : undefined
-    if (earlier) {
+    if (work.votes.length > 0) {
+      const own = processOf(vote.executor.worker)
+      const earlier = work.votes.filter((other) => processOf(other.executor.worker) === own)
+      if (earlier.some((other) => this.#agree(other, vote))) {
+        if (purpose === 'confirm' && !work.confirmed) works.want(work, 'confirm')
+        return false
+      }
       // Whoever contradicts himself is no witness: others must say it.
-      const contradicts = !equalBytes(earlier.digest, vote.digest)
-      if (contradicts) {
+      if (earlier.length > 0) {
         counts.disagreements++
         work.spotCheck = true
       }
-      if (purpose === 'confirm' || contradicts) works.want(work, 'confirm')
-      return false
     }
     work.votes.push(vote)
     work.clearedAt = -1
@@ -140,9 +221,11 @@ export class Acceptance {
     return true
   }
 
+  readonly #agree = (a: Vote, b: Vote): boolean => agree(this.#parts.search.plan.problem, a, b)
+
   #noteArrival({ island, evaluation }: Work): void {
     if (this.#parts.search.island(island).tools.island.order !== 'arrival') return
-    this.#arrivalOrder.set(island, [...(this.#arrivalOrder.get(island) ?? []), evaluation])
+    this.#arrivalOrder.note(island, evaluation)
   }
 
   /** Writes the first vote down where the record does not have it yet. */
@@ -155,7 +238,8 @@ export class Acceptance {
       evaluation: work.evaluation,
       worker: vote.executor.worker,
       host: vote.executor.host,
-      attempt: work.evaluate.attempt,
+      ...processorOf(vote),
+      attempt: Math.max(1, work.evaluate.attempt),
       cpuSeconds,
       result: vote.result,
       digest: vote.digest,
@@ -170,80 +254,140 @@ export class Acceptance {
       evaluation: work.evaluation,
       worker: vote.executor.worker,
       host: vote.executor.host,
+      ...processorOf(vote),
       by: vote.executor.host === first.executor.host ? 'process' : 'host',
       digest: vote.digest,
-      agrees: equalBytes(vote.digest, first.digest),
+      agrees: this.#agree(vote, first),
     })
   }
 
   /** After a vote: is it settled, does it need another, is somebody wrong? */
   #judge(work: Work): void {
-    const { works, counts, search } = this.#parts
-    if (work.votes.length === 1) {
-      if (this.#mustConfirm(search.island(work.island), work)) works.want(work, 'confirm')
-      return
-    }
-    const verdict = verdictOf(work.votes)
-    if (verdict.kind === 'confirmed') this.#settle(work, verdict.vote, verdict.wrong)
-    else {
-      counts.disagreements++
-      if (answersOf(work.votes) > answersTolerated) throw notRepeatable(work)
-      works.want(work, 'confirm')
-    }
+    const { works, search, trust } = this.#parts
+    const reading = readingOf(work, trust, search.plan.problem)
+    const verdict = verdictOf(work.votes, reading)
+    work.disputed = false
+    if (verdict.kind === 'confirmed') this.#settle(work, verdict)
+    else if (verdict.kind === 'unconfirmed') {
+      const must = work.kind === 'again' || this.#mustConfirm(search.island(work.island), work)
+      if (must) works.want(work, 'confirm')
+    } else if (verdict.kind === 'not-deterministic') {
+      this.#consequences.refuseProblem(work, answersOf(work.votes, reading).length)
+    } else this.#dispute(work, verdict)
   }
 
-  #settle(work: Work, right: Vote, wrong: readonly Vote[]): void {
-    const { works, wake } = this.#parts
+  #dispute(
+    work: Work,
+    verdict: Exclude<Verdict, { kind: 'confirmed' | 'unconfirmed' | 'not-deterministic' }>,
+  ): void {
+    const { works, counts } = this.#parts
+    counts.disagreements++
+    work.disputed = true
+    work.onProcessors = verdict.kind === 'disputed' ? verdict.onProcessors : []
+    // Two votes of a class that is used no more, or one of the class and the other not: it is asked there again.
+    works.want(work, 'confirm')
+    if (verdict.kind !== 'processor-dependent') return
+    this.#consequences.pinAfter(work, verdict)
+    this.#suspectsDue = true
+  }
+
+  #settle(work: Work, verdict: Extract<Verdict, { kind: 'confirmed' }>): void {
+    const { works, wake, search } = this.#parts
+    const { vote: right, agreeing, wrong } = verdict
     work.confirmed = true
-    const overruled = !equalBytes(work.votes[0]!.digest, right.digest)
+    work.confirmedBy = verdict.by
+    this.#stuck.delete(work)
+    const overruled = !this.#agree(work.votes[0]!, right)
     if (work.kind === 'first' && overruled) {
-      // Nothing was committed with the wrong one: the right one takes its place.
+      // Nothing was committed with the wrong one: the right one takes its place, and keeps its witnesses.
       work.votes = [right, ...work.votes.filter((vote) => vote !== right)]
       work.clearedAt = -1
       this.#keep(work)
+      for (const other of agreeing) if (other !== right) this.#keepConfirmation(work, other)
     }
     if (work.kind === 'again') {
-      this.confirmed.remember(work.island, work.evaluation)
-      if (overruled) this.#correct(work, right)
+      this.confirmed.remember(work.island, work.evaluation, verdict.by)
+      if (overruled) this.#consequences.correct(work, right)
       works.forget(work)
       wake(0)
     }
-    for (const vote of wrong) this.#convict(vote, work)
+    if (!ruleOf(search.plan.problem).convicts) return
+    // Not filter(): everybody who was wrong is told.
+    for (const vote of wrong) if (this.#consequences.convict(vote, work, verdict)) this.#suspectsDue = true
   }
 
-  /** A committed result was wrong: every island puts it right at a stated point. */
-  #correct(work: Work, right: Vote): void {
-    const { counts, search, orders } = this.#parts
-    counts.corrections++
-    this.confirmed.noteCorrected(work)
-    const sentence = `The result of ${nameOf(work.individual)} (evaluation ${work.evaluation} of ${islandName(work.island)}) was wrong and was corrected.`
-    for (const island of search.islands) {
-      orders.now(island, 'correction', sentence, {
-        fact: 'amend',
-        individual: work.individual,
-        firstReplicate: work.firstReplicate,
-        result: { values: [...right.result.values], failures: [...right.result.failures] },
-      })
-    }
+  /** What nobody vouches for any more is simulated again, unless it is committed. */
+  #dropUnbelieved(work: Work): void {
+    const { works, trust } = this.#parts
+    if (work.kind !== 'first' || work.votes.length === 0) return
+    const first = work.votes[0]!
+    const left = work.votes.filter(({ executor }) => trust.accepts(executor))
+    if (left.length === work.votes.length) return
+    if (work.confirmed && left.some((vote) => this.#agree(vote, first))) return
+    work.votes = left
+    work.confirmed = false
+    work.disputed = false
+    work.clearedAt = -1
+    this.#keep(work)
+    if (left.length === 0) works.want(work, 'evaluate')
+    else if (left.length === 1) this.#judge(work)
   }
 
-  #convict({ executor }: Vote, work: Work): void {
-    const { works, rows } = this.#parts
-    if (this.shutOut.has(executor.worker)) return
-    this.shutOut.add(executor.worker)
-    this.#suspects.push(executor.worker)
-    const sentence = `Worker ${executor.worker} on ${executor.host} gave a wrong result for evaluation ${work.evaluation} of ${islandName(work.island)}: two others agree against it. Its results are not used any more.`
-    rows.event(eventRow({ kind: 'worker-shut-out', sentence, data: { worker: executor.worker } }))
-    for (const other of works.all()) {
-      if (other.kind !== 'first' || other.confirmed) continue
-      const left = other.votes.filter((vote) => vote.executor.worker !== executor.worker)
-      if (left.length === other.votes.length) continue
-      other.votes = left
-      other.clearedAt = -1
-      this.#keep(other)
-      if (left.length === 0) works.want(other, 'evaluate')
-      else if (verdictOf(left).kind === 'disputed') works.want(other, 'confirm')
+  /** Where this work is simulated next; undefined when nobody left can tell anything. */
+  whereFor(work: Work, purpose: Purpose): Where | undefined {
+    if (purpose === 'evaluate' && work.votes.length === 0) return this.#parts.trust.anywhere()
+    const where = whereNext(work, this.#parts.trust)
+    if (!where && !this.#stuck.has(work)) this.#stuck.set(work, this.#nowMs)
+    return where
+  }
+
+  /** Counts why a second simulation was asked for. */
+  noteSecond(work: Work): void {
+    const { counts } = this.#parts
+    if (work.suspect || work.votes.length > 1) counts.rechecks++
+    else if (work.kind === 'first' && work.spotCheck === true) counts.spotChecks++
+    else counts.bestChecks++
+  }
+
+  /** Nobody left can say who is right: what is not committed is given up, what is committed stands as it is. */
+  #giveUp(work: Work): void {
+    const { works, rows, orders, search, wake } = this.#parts
+    this.#stuck.delete(work)
+    const who = [...new Set(work.votes.map(({ executor }) => executor.host))].join(' and ')
+    const sentence = `${nameOf(work.individual)} gave different results on ${who}, and there is no other machine to settle it: ${
+      work.kind === 'first' ? 'it is set aside' : 'its result stands unconfirmed'
+    }. Start a worker on one more machine.`
+    const isFirst = work.kind === 'first'
+    const atCommit = search.island(work.island).counters.commits
+    const { island, evaluation, individual } = work
+    const data = { evaluation, individual }
+    if (isFirst) orders.addImpurity('dispute-unsettled')
+    rows.event(
+      eventRow({ kind: 'dispute-unsettled', island, atCommit, changesSearch: isFirst, sentence, data }),
+    )
+    if (isFirst) this.#failInstead(work, 'machines disagreed about it and nobody could settle it', who)
+    else {
+      this.confirmed.remember(island, evaluation, 'host')
+      works.forget(work)
     }
+    wake(island)
+    wake(0)
+  }
+
+  /** A failed result, always the same, in place of what was simulated. */
+  #failInstead(work: Work, reason: string, host: string): void {
+    const { search, works } = this.#parts
+    const result: EvaluationResult = {
+      values: new Float64Array(work.simulations * columnsOf(search.plan.problem)),
+      failures: Array.from({ length: work.simulations }, (_, simulation) => ({ simulation, reason })),
+    }
+    const executor = { kind: 'process', worker: setAsideWorker, host } as const
+    works.settle(work, 'confirm')
+    work.votes = []
+    work.disputed = false
+    this.#vote(work, { result, digest: resultDigest(result), executor }, 'evaluate')
+    work.confirmed = true
+    this.#keep(work)
   }
 
   // ------------------------------------------------------------------------------------------ losses
@@ -251,11 +395,15 @@ export class Acceptance {
   /** The last try died as well: a failed result, always the same, and the story as an event. */
   setAside(work: Work, fact: LossFact): void {
     const { counts, search, rows, orders, works, wake } = this.#parts
+    if (work.disputed) {
+      this.#giveUp(work)
+      return
+    }
     if (work.votes.length > 0) {
       // It was simulated once and only its confirmation dies: the result stands, unconfirmed, and that is said.
       work.confirmed = true
       if (work.kind === 'again') {
-        this.confirmed.remember(work.island, work.evaluation)
+        this.confirmed.remember(work.island, work.evaluation, 'host')
         works.forget(work)
       }
       const sentence = `The confirmation of ${nameOf(work.individual)} died ${limits.attemptsAlone} times (${fact.cause}); its first result stands unconfirmed.`
@@ -266,15 +414,7 @@ export class Acceptance {
     }
     counts.setAside++
     // The same words whatever the deaths were like: the result enters the digest, the event tells the rest.
-    const reason = 'set aside after its last try'
-    const result: EvaluationResult = {
-      values: new Float64Array(work.simulations * columnsOf(search.plan.problem)),
-      failures: Array.from({ length: work.simulations }, (_, simulation) => ({ simulation, reason })),
-    }
-    const executor = { kind: 'process', worker: setAsideWorker, host: fact.executor.host } as const
-    this.#vote(work, { result, digest: resultDigest(result), executor }, 'evaluate')
-    work.confirmed = true
-    this.#keep(work)
+    this.#failInstead(work, 'set aside after its last try', fact.executor.host)
     orders.addImpurity('set-aside')
     rows.event(
       eventRow({
@@ -295,7 +435,7 @@ export class Acceptance {
     const { works } = this.#parts
     const work = works.find(island.number, ticket.evaluation)
     const vote = work?.votes[0]
-    if (!work || !vote || (work.votes.length > 1 && !work.confirmed)) return undefined
+    if (!work || !vote || (work.disputed && !work.confirmed)) return undefined
     if (this.#mustConfirm(island, work)) {
       works.want(work, 'confirm')
       return undefined
@@ -304,7 +444,7 @@ export class Acceptance {
   }
 
   nextArrival(island: Island): number | undefined {
-    return this.#arrivalOrder.get(island.number)?.find((evaluation) => {
+    return this.#arrivalOrder.of(island.number).find((evaluation) => {
       const ticket = island.ticket(evaluation)
       return ticket !== undefined && this.outcome(island, ticket) !== undefined
     })
@@ -312,15 +452,9 @@ export class Acceptance {
 
   committed(work: Work): void {
     check(work.recorded === work.votes[0], 'what is committed is what the record holds')
-    if (work.confirmed) this.confirmed.remember(work.island, work.evaluation)
+    if (work.confirmed) this.confirmed.remember(work.island, work.evaluation, work.confirmedBy)
     this.#parts.works.forget(work)
-    const order = this.#arrivalOrder.get(work.island)
-    if (order) {
-      this.#arrivalOrder.set(
-        work.island,
-        order.filter((evaluation) => evaluation !== work.evaluation),
-      )
-    }
+    this.#arrivalOrder.forget(work.island, work.evaluation)
   }
 
   /** Spot checks chosen by hash, and results that would become the best so far on any objective. */
@@ -342,19 +476,12 @@ export class Acceptance {
 
   // --------------------------------------------------------------------- confirming what is committed
 
-  /** Looks again at everything alive that a convicted worker has simulated and nobody confirmed. */
+  /** Looks again at everything alive that was simulated by whoever is not believed any more. */
   lookAtSuspects(): void {
-    if (this.#suspects.length === 0) return
-    const { search, reader } = this.#parts
-    const suspects = new Set(this.#suspects.splice(0))
-    for (const island of search.islands) {
-      for (const individual of island.living()) {
-        const suspected = individual.blocks.some((block) => {
-          const arrival = reader.arrival(block.island, block.evaluation)
-          return arrival !== undefined && suspects.has(arrival.worker)
-        })
-        if (suspected) this.confirmed.isConfirmed(individual)
-      }
+    if (!this.#suspectsDue) return
+    this.#suspectsDue = false
+    for (const island of this.#parts.search.islands) {
+      for (const individual of island.living()) this.confirmed.lookAgain(individual)
     }
   }
 }
@@ -363,9 +490,5 @@ function isSetAside(work: Work): boolean {
   return work.votes[0]?.executor.worker === setAsideWorker
 }
 
-function notRepeatable(work: Work): Error {
-  const last = work.firstReplicate + work.replicates - 1
-  return refuse('not-deterministic', {
-    detail: `${nameOf(work.individual)}, replicates ${work.firstReplicate} to ${last}, gave ${answersOf(work.votes)} different results in ${work.votes.length} simulations by ${work.votes.map((vote) => vote.executor.worker).join(', ')}`,
-  })
-}
+const processorOf = ({ executor }: Vote) =>
+  executor.processor === undefined ? {} : { processor: executor.processor }

@@ -3,12 +3,14 @@
 
 import { check } from '../../shared/check.js'
 import { limits } from '../../shared/limits.js'
+import type { Executor } from '../../shared/result.js'
 import { columnsOf } from '../evolution/estimate.js'
 import type { Search } from '../evolution/search.js'
 import type { Block, Individual } from '../evolution/types.js'
-import type { RecordReader } from './ports.js'
+import type { ArrivalRow, RecordReader } from './ports.js'
 import type { Rows } from './rows.js'
-import { newWork, type Works } from './works.js'
+import type { Trust } from './trust.js'
+import { newWork, type Work, type Works } from './works.js'
 
 /** Stands in the record where a worker's name would: nobody simulated this, it was given up. */
 export const setAsideWorker = 'set-aside'
@@ -18,7 +20,11 @@ export interface ConfirmedParts {
   readonly reader: RecordReader
   readonly works: Works
   readonly rows: Rows
+  readonly trust: Trust
 }
+
+/** By whom: another process of the same machine, or another machine. */
+export type Level = 'process' | 'host'
 
 /** A block of replicates of an individual. */
 export interface BlockKey {
@@ -28,8 +34,8 @@ export interface BlockKey {
 
 export class Confirmed {
   readonly #parts: ConfirmedParts
-  /** Committed evaluations of the living that a second worker confirmed, by island. */
-  readonly #evaluations = new Map<number, Set<number>>()
+  /** Committed evaluations of the living that somebody else confirmed, and who, by island. */
+  readonly #evaluations = new Map<number, Map<number, Level>>()
   #count = 0
   /** Blocks that were put right after their commit: two workers agreed on what stands there now. */
   readonly #corrected = new Set<string>()
@@ -42,12 +48,15 @@ export class Confirmed {
     this.#corrected.add(keyOf(block))
   }
 
-  remember(island: number, evaluation: number): void {
-    const known = this.#evaluations.get(island) ?? new Set<number>()
+  isCorrected(block: BlockKey): boolean {
+    return this.#corrected.has(keyOf(block))
+  }
+
+  remember(island: number, evaluation: number, level: Level): void {
+    const known = this.#evaluations.get(island) ?? new Map<number, Level>()
     this.#evaluations.set(island, known)
-    if (known.has(evaluation)) return
-    known.add(evaluation)
-    this.#count++
+    if (!known.has(evaluation)) this.#count++
+    known.set(evaluation, level)
   }
 
   /** Confirmations of the dead are in the record; memory keeps a bounded number. */
@@ -57,7 +66,10 @@ export class Confirmed {
     this.#count = 0
   }
 
-  /** True when every result of the individual was confirmed; asks for what is missing. */
+  /**
+   * True when every result of the individual was confirmed, by another machine where there is one; asks for what is
+   * missing.
+   */
   isConfirmed(individual: Individual): boolean {
     let all = true
     let offset = 0
@@ -73,21 +85,68 @@ export class Confirmed {
   }
 
   #blockConfirmed(individual: number, { island, evaluation, firstReplicate }: Block): boolean {
-    if (this.#corrected.has(keyOf({ individual, firstReplicate }))) return true
-    if (this.#evaluations.get(island)?.has(evaluation)) return true
-    if (!this.#parts.reader.isConfirmed(island, evaluation)) return false
-    this.remember(island, evaluation)
-    return true
+    if (this.isCorrected({ individual, firstReplicate })) return true
+    const level = this.#levelOf(island, evaluation)
+    if (level === undefined || level === 'host') return level !== undefined
+    const { reader, rows, trust } = this.#parts
+    const host = (rows.findArrival(island, evaluation) ?? reader.arrival(island, evaluation))?.host
+    return host === undefined || !trust.elsewhere(new Set([host]))
   }
 
-  /** False for what was set aside: nobody simulated that, and nobody is asked to. */
-  #simulateAgain(individual: Individual, block: Block, values: number): boolean {
+  #levelOf(island: number, evaluation: number): Level | undefined {
+    const known = this.#evaluations.get(island)?.get(evaluation)
+    if (known) return known
+    const agreeing = this.#parts.reader.confirmations(island, evaluation).filter(({ agrees }) => agrees)
+    if (agreeing.length === 0) return undefined
+    const level = agreeing.some(({ by }) => by === 'host') ? 'host' : 'process'
+    this.remember(island, evaluation, level)
+    return level
+  }
+
+  /** True when somebody whose results are used has given what the record has of this evaluation. */
+  isVouched(island: number, evaluation: number): boolean {
+    const { reader, trust } = this.#parts
+    const arrival = reader.arrival(island, evaluation)
+    if (!arrival || trust.accepts(arrival)) return arrival !== undefined
+    return reader.confirmations(island, evaluation).some((row) => row.agrees && trust.accepts(row))
+  }
+
+  /** Asks again for every result of the individual that nobody vouches for any more. */
+  lookAgain(individual: Individual): void {
+    let offset = 0
+    for (const block of individual.blocks) {
+      const length = (individual.values.length / individual.replicates) * block.replicates
+      const key = { individual: individual.id, firstReplicate: block.firstReplicate }
+      if (!this.isCorrected(key) && !this.isVouched(block.island, block.evaluation)) {
+        const work = this.#simulateAgain(individual, block, length)
+        if (work) work.suspect = true
+      }
+      offset += length
+    }
+    check(offset === individual.values.length, 'blocks cover the values of an individual')
+  }
+
+  /** The work of simulating a committed evaluation of somebody living again, or undefined when nobody living has it. */
+  workAgain(island: number, evaluation: number): Work | undefined {
+    for (const individual of this.#parts.search.island(island).living()) {
+      const block = individual.blocks.find((one) => one.island === island && one.evaluation === evaluation)
+      if (!block || this.isCorrected({ individual: individual.id, firstReplicate: block.firstReplicate }))
+        continue
+      const length = (individual.values.length / individual.replicates) * block.replicates
+      return this.#simulateAgain(individual, block, length)
+    }
+    return undefined
+  }
+
+  /** Undefined for what was set aside: nobody simulated that, and nobody is asked to. */
+  #simulateAgain(individual: Individual, block: Block, values: number): Work | undefined {
     const { works, search, rows, reader } = this.#parts
-    if (works.find(block.island, block.evaluation)) return true
+    const inHand = works.find(block.island, block.evaluation)
+    if (inHand) return inHand
     const recorded =
       rows.findArrival(block.island, block.evaluation) ?? reader.arrival(block.island, block.evaluation)
     check(recorded !== undefined, 'a committed result is in the record')
-    if (recorded.worker === setAsideWorker) return false
+    if (recorded.worker === setAsideWorker) return undefined
     const work = newWork({
       island: block.island,
       evaluation: block.evaluation,
@@ -99,12 +158,20 @@ export class Confirmed {
       genome: search.island(block.island).bytesOf(individual.genome),
       kind: 'again',
     })
-    const executor = { kind: 'thread', worker: recorded.worker, host: recorded.host } as const
-    work.votes.push({ result: recorded.result, digest: recorded.digest, executor })
+    work.votes.push({ result: recorded.result, digest: recorded.digest, executor: executorOf(recorded) })
     works.add(work)
     works.want(work, 'confirm')
-    return true
+    return work
   }
+}
+
+/** Who simulated, as the record has it. */
+export function executorOf({
+  worker,
+  host,
+  processor,
+}: Pick<ArrivalRow, 'worker' | 'host' | 'processor'>): Executor {
+  return { kind: 'thread', worker, host, ...(processor === undefined ? {} : { processor }) }
 }
 
 function keyOf({ individual, firstReplicate }: BlockKey): string {

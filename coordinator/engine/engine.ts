@@ -18,10 +18,12 @@ import type { Ticket } from '../evolution/tickets.js'
 import type { Individual } from '../evolution/types.js'
 import { Acceptance } from './acceptance.js'
 import { type EngineCounts, newCounts } from './counts.js'
+import { Hedges } from './hedges.js'
 import { Orders } from './orders.js'
 import type { Append, RecordReader } from './ports.js'
 import { eventRow, Rows } from './rows.js'
 import { targetReached } from './targets.js'
+import { Trust } from './trust.js'
 import { blame, isNeeded, newWork, type Work, Works } from './works.js'
 import type { Schedule, WorldFact } from './world-facts.js'
 
@@ -30,14 +32,26 @@ export interface EngineOptions {
   readonly leaseMs: number
   /** Simulations over all islands after which the search rests; each island goes as far as its part allows. */
   readonly stopAfter?: number
+  /** How long a difference that no machine left can settle is waited for, or a class of processors; 10 minutes. */
+  readonly patienceMs?: number
+  /** Work is sent a second time after so long at the least; 2 s. */
+  readonly hedgeLeastMs?: number
   /** Commits of an island between two snapshots. */
   readonly snapshotCommits: number
+}
+
+export interface NotUsed {
+  readonly hosts: readonly string[]
+  readonly workers: readonly string[]
+  readonly pinned?: string
 }
 
 export class Engine implements Gate {
   readonly search: Search
   readonly counts: EngineCounts = newCounts()
   readonly #works = new Works()
+  readonly #trust = new Trust()
+  readonly #hedges: Hedges
   readonly #rows: Rows
   readonly #orders: Orders
   readonly #acceptance: Acceptance
@@ -48,6 +62,8 @@ export class Engine implements Gate {
   #stopQuotas: ReadonlyMap<number, number> | undefined
   readonly #lastSnapshot = new Map<number, number>()
   #commitsSinceForgetting = 0
+  #saidOverBudget = false
+  #saidNobodyLeft = false
   /** Nobody can move and everything to be reported is confirmed. */
   #settled = false
 
@@ -66,7 +82,10 @@ export class Engine implements Gate {
       works: this.#works,
       orders: this.#orders,
       counts: this.counts,
+      trust: this.#trust,
+      patienceMs: options.patienceMs ?? 600_000,
     })
+    this.#hedges = new Hedges(search, this.#works, this.counts, options.hedgeLeastMs ?? 2_000)
     for (const island of search.islands) this.#takeUp(island)
   }
 
@@ -112,29 +131,47 @@ export class Engine implements Gate {
   take(facts: readonly DispatchFact[], nowMs: number): void {
     check(this.#rows.isEmpty, 'rows are made durable before more facts are taken in')
     this.#acceptance.lookAtSuspects()
-    for (const fact of facts) this.#takeFact(fact)
+    for (const fact of facts) this.#takeFact(fact, nowMs)
+    this.#acceptance.look(nowMs)
     if (this.#options.leaseMs < Number.POSITIVE_INFINITY) this.#sendOverdueAgain(nowMs)
     this.#advance()
     this.#settled = !this.#moves() && this.#confirmBests()
+    if (this.#trust.byHost) this.#hedges.look(nowMs)
+    this.#sayOverBudget()
+    this.#sayNobodyLeft()
   }
 
-  #takeFact(fact: DispatchFact): void {
-    if (fact.kind === 'fleet') return
+  #takeFact(fact: DispatchFact, nowMs: number): void {
+    if (fact.kind === 'fleet') {
+      this.#trust.takeFleet(fact.hosts)
+      return
+    }
     const work = this.#works.find(fact.item.island, fact.item.evaluation)
+    if (work && fact.kind === 'result' && this.#trust.known) this.#hedges.note(work, fact, nowMs)
     if (fact.kind === 'lost') {
-      if (work) this.#takeLoss(work, fact)
+      if (work) this.#takeLoss(work, fact, nowMs)
     } else if (work) this.#acceptance.take(work, fact)
     else this.#acceptance.takeLate(fact)
   }
 
-  #takeLoss(work: Work, fact: Extract<DispatchFact, { kind: 'lost' }>): void {
-    const lane = work[fact.item.purpose]
-    if (lane.attempt !== fact.item.attempt || lane.state !== 'submitted') return
+  #takeLoss(work: Work, fact: Extract<DispatchFact, { kind: 'lost' }>, nowMs: number): void {
+    const { attempt, purpose, isolation } = fact.item
+    const lane = work[purpose]
+    const isUnderWay = lane.attempt === attempt || (lane.earlier > 0 && lane.earlier === attempt)
+    if (!isUnderWay || lane.state !== 'submitted') return
     this.counts.losses++
-    this.#works.settle(work, fact.item.purpose)
-    if (!isNeeded(work, fact.item.purpose)) return
-    if (blame(work, fact.cause, fact.item.isolation) === 'again') this.#works.want(work, fact.item.purpose)
-    else this.#acceptance.setAside(work, fact)
+    if (isNeeded(work, purpose) && blame(work, fact.cause, isolation) === 'set-aside') {
+      this.#works.settle(work, purpose)
+      this.#acceptance.setAside(work, fact)
+      return
+    }
+    // Of two that run side by side the other goes on.
+    if (this.#works.dropTry(work, purpose, attempt)) return
+    this.#works.settle(work, purpose)
+    if (!isNeeded(work, purpose)) return
+    // Where it may run is known better when the machines have changed: not at once again and again.
+    if (fact.cause === 'handed-back' && this.#trust.known) this.#works.putOff(work, purpose, nowMs)
+    this.#works.want(work, purpose)
   }
 
   #sendOverdueAgain(nowMs: number): void {
@@ -161,12 +198,28 @@ export class Engine implements Gate {
   /** The next items to simulate, at most `count`. */
   work(count: number, nowMs: number): WorkItem[] {
     check(this.#rows.isEmpty, 'nothing is sent out before what it follows from is durable')
-    return this.#works.take(
-      count,
-      nowMs + this.#options.leaseMs,
-      (work) => this.#mayRun(work),
-      this.#acceptance.shutOut,
+    // Everything that there is to be used is gone: what is handed out would only come back.
+    if (this.#trust.known && this.#trust.usable.length === 0) return []
+    const items = this.#works.take(count, nowMs, this.#options.leaseMs, (work, purpose) =>
+      this.#mayRun(work) ? this.#acceptance.whereFor(work, purpose) : undefined,
     )
+    for (const item of items) if (item.purpose === 'confirm') this.#noteSecond(item)
+    return items
+  }
+
+  #noteSecond({ island, evaluation, hedge }: WorkItem): void {
+    const work = hedge ? undefined : this.#works.find(island, evaluation)
+    if (work) this.#acceptance.noteSecond(work)
+  }
+
+  /** Machines and processes whose results are not used, and the class of processors the search is pinned to. */
+  get notUsed(): NotUsed {
+    const { shutOutHosts, shutOutWorkers, pinned } = this.#trust
+    return {
+      hosts: [...shutOutHosts],
+      workers: [...shutOutWorkers],
+      ...(pinned === undefined ? {} : { pinned }),
+    }
   }
 
   /** A sentence for the record that changes nothing in the search, with a JSON value that a later start may read. */
@@ -228,6 +281,25 @@ export class Engine implements Gate {
       .filter((best) => best.failedSimulations === 0)
       .map((best) => this.#acceptance.confirmed.isConfirmed(best))
       .every(Boolean)
+  }
+
+  /** Confirming bests has a budget; when it is not enough that is said once, and nothing is left unconfirmed for it. */
+  #sayOverBudget(): void {
+    const { bestChecks, results } = this.counts
+    if (this.#saidOverBudget || results < bestBudgetFrom || bestChecks <= bestBudget * results) return
+    this.#saidOverBudget = true
+    const sentence = `Confirming would-be bests and emigrants took ${bestChecks} of ${results} simulations so far, more than ${bestBudget * 100} %: nothing is used or reported unconfirmed for that.`
+    this.note('bests-over-budget', sentence)
+  }
+
+  /** Machines are there and none may be used: the search waits for others, and says so once. */
+  #sayNobodyLeft(): void {
+    const isSo = this.#trust.known && this.#trust.hosts.length > 0 && this.#trust.usable.length === 0
+    if (isSo && !this.#saidNobodyLeft) {
+      const sentence = `${this.#trust.hosts.length} machines are there, but all are shut out or of another processor class: the search waits for others. Start a worker elsewhere.`
+      this.note('no-usable-machine', sentence)
+    }
+    this.#saidNobodyLeft = isSo
   }
 
   /** Puts the island's whole state among the rows. */
@@ -356,6 +428,9 @@ export class Engine implements Gate {
 }
 
 const forgetEveryCommits = 1000
+/** Part of all simulations that confirming bests should take at most, and after how many it is judged. */
+const bestBudget = 0.01
+const bestBudgetFrom = 5_000
 
 function firstOf(numbers: ReadonlySet<number>): number | undefined {
   for (const number of numbers) return number

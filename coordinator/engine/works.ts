@@ -11,6 +11,7 @@
 import { check } from '../../shared/check.js'
 import { limits } from '../../shared/limits.js'
 import type { LossCause, WorkItem } from '../../shared/result.js'
+import type { Where } from './trust.js'
 import type { Vote } from './votes.js'
 
 export interface Work {
@@ -24,9 +25,17 @@ export interface Work {
   readonly genome: Uint8Array
   /** 'again': committed already, simulated once more because somebody is under suspicion or about to leave. */
   readonly kind: 'first' | 'again'
-  /** One vote a worker. */
+  /** What was simulated, the result that counts first; a process that says the same twice has one vote. */
   votes: Vote[]
   confirmed: boolean
+  /** By another machine, or only by another process of the same. */
+  confirmedBy: 'process' | 'host'
+  /** Votes differ and it is not settled: nothing is committed meanwhile. */
+  disputed: boolean
+  /** Classes of processors on which another simulation would tell most. */
+  onProcessors: readonly string[]
+  /** Asked for again because whoever simulated it is not believed any more. */
+  suspect: boolean
   /** The vote whose result stands in the record: what a replay would commit. */
   recorded: Vote | undefined
   /** Must be simulated a second time whatever it gave; undefined until asked. */
@@ -42,8 +51,19 @@ export interface Work {
 
 export interface Lane {
   state: 'idle' | 'waiting' | 'submitted'
+  /** The newest try that is under way. */
   attempt: number
+  /** An older one that is still under way beside it: the newest is a hedge. 0: none. */
+  earlier: number
+  /** Tries so far. */
+  tries: number
+  sinceMs: number
   leaseEndsMs: number
+  /** Not handed out before: nobody who fits took it. */
+  notBeforeMs: number
+  refusals: number
+  /** Was sent a second time already. */
+  hedged: boolean
 }
 
 export type Purpose = WorkItem['purpose']
@@ -86,13 +106,31 @@ export function newWork(from: WorkDescription): Work {
     kind: from.kind,
     votes: [],
     confirmed: false,
+    confirmedBy: 'process',
+    disputed: false,
+    onProcessors: [],
+    suspect: false,
     recorded: undefined,
     spotCheck: undefined,
     clearedAt: -1,
-    evaluate: { state: 'idle', attempt: 0, leaseEndsMs: Number.POSITIVE_INFINITY },
-    confirm: { state: 'idle', attempt: 0, leaseEndsMs: Number.POSITIVE_INFINITY },
+    evaluate: newLane(),
+    confirm: newLane(),
     sharedDeaths: 0,
     aloneDeaths: 0,
+  }
+}
+
+function newLane(): Lane {
+  return {
+    state: 'idle',
+    attempt: 0,
+    earlier: 0,
+    tries: 0,
+    sinceMs: 0,
+    leaseEndsMs: Number.POSITIVE_INFINITY,
+    notBeforeMs: 0,
+    refusals: 0,
+    hedged: false,
   }
 }
 
@@ -115,6 +153,7 @@ export class Works {
   readonly #byIsland = new Map<number, Map<number, Work>>()
   readonly #confirmQueue = new Queue()
   readonly #evaluateQueue = new Queue()
+  readonly #hedges: { readonly work: Work; readonly purpose: Purpose }[] = []
   #submitted = 0
 
   get submitted(): number {
@@ -161,17 +200,37 @@ export class Works {
     const lane = work[purpose]
     if (lane.state === 'submitted') this.#submitted--
     lane.state = 'idle'
+    lane.earlier = 0
+    lane.hedged = false
     lane.leaseEndsMs = Number.POSITIVE_INFINITY
   }
 
-  /** The next items to submit, at most `count`; `allowed` may hold evaluations back. */
-  take(
-    count: number,
-    leaseEndsMs: number,
-    allowed: (work: Work) => boolean,
-    shutOut: ReadonlySet<string>,
-  ): WorkItem[] {
-    const items: WorkItem[] = []
+  /** Submits once more what is under way, to somebody else, before everything that waits. */
+  hedge(work: Work, purpose: Purpose): void {
+    work[purpose].hedged = true
+    this.#hedges.push({ work, purpose })
+  }
+
+  /** Nobody who fits took it: it is handed out again later, and later each time. */
+  putOff(work: Work, purpose: Purpose, nowMs: number): void {
+    const lane = work[purpose]
+    if (lane.refusals > 0)
+      lane.notBeforeMs = nowMs + Math.min(putOffMostMs, 50 * (1 << Math.min(lane.refusals - 1, 10)))
+    lane.refusals++
+  }
+
+  /** One of two tries under way is lost; false when the lost one was the only one. */
+  dropTry(work: Work, purpose: Purpose, attempt: number): boolean {
+    const lane = work[purpose]
+    if (lane.state !== 'submitted' || lane.earlier === 0) return false
+    if (attempt === lane.attempt) lane.attempt = lane.earlier
+    lane.earlier = 0
+    return true
+  }
+
+  /** The next items to submit, at most `count`; `whereOf` says where, or that one is held back. */
+  take(count: number, nowMs: number, leaseMs: number, whereOf: WhereOf): WorkItem[] {
+    const items = this.#takeHedges(nowMs, leaseMs, whereOf)
     for (const purpose of ['confirm', 'evaluate'] as const) {
       const queue = purpose === 'confirm' ? this.#confirmQueue : this.#evaluateQueue
       const held: Work[] = []
@@ -180,19 +239,39 @@ export class Works {
         if (!work) break
         const lane = work[purpose]
         if (lane.state !== 'waiting' || this.find(work.island, work.evaluation) !== work) continue
-        if (!allowed(work)) {
+        if (!isNeeded(work, purpose)) {
+          lane.state = 'idle'
+          continue
+        }
+        const where = lane.notBeforeMs > nowMs ? undefined : whereOf(work, purpose)
+        if (!where) {
           held.push(work)
           continue
         }
         lane.state = 'submitted'
-        lane.attempt++
-        lane.leaseEndsMs = leaseEndsMs
+        lane.attempt = ++lane.tries
+        lane.sinceMs = nowMs
+        lane.leaseEndsMs = nowMs + leaseMs
         this.#submitted++
-        items.push(itemOf(work, purpose, lane.attempt, shutOut))
+        items.push(itemOf(work, purpose, lane.attempt, where))
       }
       queue.putBack(held)
     }
     return items
+  }
+
+  #takeHedges(nowMs: number, leaseMs: number, whereOf: WhereOf): WorkItem[] {
+    return this.#hedges.splice(0).flatMap(({ work, purpose }) => {
+      const lane = work[purpose]
+      const isUnderWay = lane.state === 'submitted' && lane.earlier === 0
+      if (!isUnderWay || this.find(work.island, work.evaluation) !== work) return []
+      const where = whereOf(work, purpose)
+      if (!where) return []
+      lane.earlier = lane.attempt
+      lane.attempt = ++lane.tries
+      lane.leaseEndsMs = nowMs + leaseMs
+      return [{ ...itemOf(work, purpose, lane.attempt, where), hedge: true as const }]
+    })
   }
 
   /** Submitted lanes whose lease has run out. */
@@ -206,8 +285,14 @@ export class Works {
   }
 }
 
-function itemOf(work: Work, purpose: Purpose, attempt: number, shutOut: ReadonlySet<string>): WorkItem {
-  return {
+/** Longest wait before work that was handed back is handed out again. */
+const putOffMostMs = 5_000
+
+/** Where an item may be simulated; undefined while it is held back. */
+export type WhereOf = (work: Work, purpose: Purpose) => Where | undefined
+
+function itemOf(work: Work, purpose: Purpose, attempt: number, where: Where): WorkItem {
+  const item = {
     island: work.island,
     evaluation: work.evaluation,
     individual: work.individual,
@@ -217,15 +302,17 @@ function itemOf(work: Work, purpose: Purpose, attempt: number, shutOut: Readonly
     expectedCost: work.expectedCost,
     attempt,
     purpose,
-    isolation: work.sharedDeaths >= limits.attemptsBeforeIsolation ? 'alone' : 'shared',
-    avoid:
-      work.votes.length === 0 && shutOut.size === 0
-        ? nobody
-        : [...work.votes.map((vote) => vote.executor.worker), ...shutOut],
+    isolation: work.sharedDeaths >= limits.attemptsBeforeIsolation ? ('alone' as const) : ('shared' as const),
+    avoid: where.avoid,
+  }
+  const { avoidHosts, onProcessor } = where
+  if (avoidHosts === undefined && onProcessor === undefined) return item
+  return {
+    ...item,
+    ...(avoidHosts === undefined ? {} : { avoidHosts }),
+    ...(onProcessor === undefined ? {} : { onProcessor }),
   }
 }
-
-const nobody: readonly string[] = []
 
 /** First in, first out, without moving what stays. */
 class Queue {
