@@ -26,6 +26,7 @@ export class AgentLane {
   /** Items the agent has and has not answered. */
   private readonly held = new Map<number, WorkItem>()
   private waiting: WorkItem[] = []
+  private reportAt = 0
   private agent: Child<AgentOrder, AgentMessage> | undefined
   private isReady = false
   private nextSequence = 1
@@ -51,8 +52,12 @@ export class AgentLane {
     agent.send({ start: this.options })
   }
 
-  /** Takes items; when one must avoid a thread of this agent, a new agent takes over first. */
-  submit(items: readonly WorkItem[]): void {
+  /**
+   * Takes items; when one must avoid a thread of this agent, a new agent takes over first. Answers are gathered until
+   * no more than `reportAt` items are without one, for half a second at most.
+   */
+  submit(items: readonly WorkItem[], reportAt: number): void {
+    this.reportAt = reportAt
     const own = `${this.options.host}/${this.agent?.pid}`
     const isOwn = (worker: string) => worker === own || worker.startsWith(`${own}/`)
     if (items.some(({ avoid }) => avoid.some(isOwn))) this.replace()
@@ -70,7 +75,7 @@ export class AgentLane {
     if (!this.isReady || this.waiting.length === 0 || this.closed) return
     const items = this.waiting
     this.waiting = []
-    this.agent?.send({ items: packBatch(this.nextSequence, items) })
+    this.agent?.send({ items: packBatch(this.nextSequence, items), reportAt: this.reportAt })
     for (const item of items) this.held.set(this.nextSequence++, item)
   }
 
@@ -84,8 +89,10 @@ export class AgentLane {
   private hear(message: AgentMessage): void {
     if (this.closed) return
     if (message.kind === 'answers') {
-      for (const [i, simulated] of unpackDone(message.done).entries()) {
-        this.events.answered(this.settle(message.sequences[i]!), simulated, message.executor)
+      for (const { executor, sequences, done } of message.answers) {
+        for (const [i, simulated] of unpackDone(done).entries()) {
+          this.events.answered(this.settle(sequences[i]!), simulated, executor)
+        }
       }
     } else if (message.kind === 'lost') {
       const { sequence, cause, detail, executor } = message

@@ -1,10 +1,10 @@
-// Confirmation by somebody else: agents of one thread, in processes that never compute a first result. Each serves a
-// limited number of items, so that what a plug-in may keep between calls does not live long; its successor is started
-// when half of them are done, so that nobody waits for it. Where items are so cheap that starting processes would be
-// most of the work, one serves for a stated time instead.
+// Confirmation by somebody else: agents of one thread, in processes that never compute a first result. That is what
+// 'fresh' means here: another process than the one that answered first, and of no great age. One confirms many items,
+// because to start it and let V8 compile the plug-in once more costs about a second of CPU; it leaves when it has done
+// its number of items and has simulated for a stated time, so that what a plug-in may keep between calls does not live
+// long. Its successor is started when half of that is done, so that nobody waits for it.
 
 import type { Executor, WorkItem } from '../shared/result.js'
-import { wallSeconds } from './cpu.js'
 import { AgentLane, type AgentLaneEvents } from './lane-agent.js'
 import type { ThreadsOptions } from './threads.js'
 
@@ -12,7 +12,7 @@ export interface ConfirmLaneOptions {
   readonly agent: ThreadsOptions
   /** Items one process may simulate before a fresh one takes over. */
   readonly itemsMost: number
-  /** Nor is a process replaced before it has served this long, however many items that are. */
+  /** Nor is a process replaced before it has simulated for so long, however many items that are. */
   readonly secondsLeast: number
 }
 
@@ -23,8 +23,8 @@ interface Serving {
   /** Items handed to it so far, and those of them that are not answered. */
   given: number
   open: number
-  /** When it was given its first item. */
-  sinceSeconds: number | undefined
+  /** How long it has simulated. */
+  seconds: number
 }
 
 export class ConfirmLane {
@@ -70,10 +70,10 @@ export class ConfirmLane {
       0,
       Math.max(itemsMost - current.given, this.isOld(current, 1) ? 0 : itemsMost),
     )
-    current.sinceSeconds ??= wallSeconds()
     current.given += items.length
     current.open += items.length
-    current.lane.submit(items)
+    // Nobody is idle until they are all confirmed.
+    current.lane.submit(items, 0)
     if (this.isSpent(current, 0.5)) this.successor ??= this.open()
     if (this.waiting.length > 0) queueMicrotask(() => this.serve())
   }
@@ -82,12 +82,8 @@ export class ConfirmLane {
   private isSpent(serving: Serving, part: number): boolean {
     return serving.given >= part * this.options.itemsMost && this.isOld(serving, part)
   }
-  private isOld({ sinceSeconds }: Serving, part: number): boolean {
-    const { secondsLeast } = this.options
-    return (
-      secondsLeast === 0 ||
-      (sinceSeconds !== undefined && wallSeconds() - sinceSeconds >= part * secondsLeast)
-    )
+  private isOld({ seconds }: Serving, part: number): boolean {
+    return seconds >= part * this.options.secondsLeast
   }
 
   /** The successor, or a fresh one when there is none. */
@@ -103,6 +99,7 @@ export class ConfirmLane {
     const lane = new AgentLane(this.options.agent, {
       ready: () => undefined,
       answered: (item, simulated, executor) => {
+        serving.seconds += simulated.wallSeconds
         settle()
         events.answered(item, simulated, processOf(executor))
       },
@@ -117,7 +114,7 @@ export class ConfirmLane {
       unusable: events.unusable,
       broken: events.broken,
     })
-    const serving: Serving = { lane, given: 0, open: 0, sinceSeconds: undefined }
+    const serving: Serving = { lane, given: 0, open: 0, seconds: 0 }
     lane.start()
     return serving
   }

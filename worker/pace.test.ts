@@ -24,21 +24,29 @@ test('as long as nothing is known, an item travels alone and has the long time l
   expect(pace.limitSeconds(item(1))).toBe(defaultTimeLimit.unmeasuredSeconds)
 })
 
-test('a message lasts a tenth to a fifth of a second of what was measured, dear items counting for more', () => {
+test('a message lasts two to four tenths of a second of what was measured, dear items counting for more', () => {
   const pace = new Pace(defaultTimeLimit)
   for (let i = 0; i < 500; i++) pace.note(item(1 + (i % 3), 2), (1 + (i % 3)) * 2 * 0.001)
   for (const cost of [1, 2, 5]) {
     const seconds = pace.batchLength(many(1000, cost), 1000) * cost * 0.001
-    expect(seconds).toBeGreaterThan(0.1)
-    expect(seconds).toBeLessThanOrEqual(0.2 + 1e-9)
+    expect(seconds).toBeGreaterThan(0.2)
+    expect(seconds).toBeLessThanOrEqual(0.4 + 1e-9)
   }
 })
 
 test('a batch is never longer than the limit or than is offered, and never empty', () => {
   const pace = new Pace(defaultTimeLimit, 1e-9)
   expect(pace.batchLength(many(10_000), 10_000)).toBe(limits.dispatchBatch)
-  expect(pace.batchLength(many(10_000), 3)).toBe(3)
+  expect(new Pace(defaultTimeLimit, 0.02).batchLength(many(10_000), 3)).toBe(3)
   expect(new Pace(defaultTimeLimit, 100).batchLength(many(5), 5)).toBe(1)
+})
+
+test('very cheap items are not split further than messages are worth', () => {
+  const pace = new Pace(defaultTimeLimit, 1e-4)
+  const seconds = pace.batchLength(many(10_000), 3) * 1e-4
+  expect(seconds).toBeGreaterThan(0.015)
+  expect(seconds).toBeLessThan(0.03)
+  expect(pace.batchLength(many(50), 3)).toBe(50)
 })
 
 test('the time limit is 20 times the expected, never under the least', () => {

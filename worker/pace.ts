@@ -23,7 +23,9 @@ export const defaultTimeLimit: TimeLimit = {
 }
 
 /** A message to a thread should last about this long: long against sending it, short against a person's patience. */
-const batchSeconds = 0.2
+const batchSeconds = 0.4
+/** Nor are messages made that last less, however few items are left to share out. */
+const batchSecondsLeast = 0.02
 const memory = 0.99
 
 export class Pace {
@@ -31,7 +33,7 @@ export class Pace {
   private seconds = 0
   private cost = 0
   /** Mean wall seconds of the latest items, 0 until one has returned. */
-  private lastSeconds = 0
+  lastSeconds = 0
 
   /** `secondsPerCost` where it is known beforehand, e.g. from `check`. */
   constructor(limit: TimeLimit, secondsPerCost?: number) {
@@ -60,12 +62,12 @@ export class Pace {
     return Math.max(this.limit.leastSeconds, this.limit.factor * expected)
   }
 
-  /** How many items from the front of `queue` make a batch: at least 1, at most `most`. */
+  /** How many items from the front of `queue` make a batch: at least 1; more than `most` only where they are very cheap. */
   batchLength(queue: Iterable<WorkItem>, most: number): number {
     let seconds = 0
     let count = 0
     for (const item of queue) {
-      if (count >= Math.min(most, limits.dispatchBatch)) break
+      if (count >= limits.dispatchBatch || (count >= most && seconds >= batchSecondsLeast)) break
       seconds += this.expectedSeconds(item) ?? batchSeconds
       if (count > 0 && seconds > batchSeconds) break
       count++

@@ -3,8 +3,8 @@
 //   shared items   threads of an agent process, in batches; the item that kills or hangs a thread is lost
 //   doubtful       items whose agent died, or held too much memory among others: one process, one at a time, so that
 //                  the one that did it is known; the pool's own affair, nobody outside notices
-//   confirm        an agent of one thread, fresh after 500 items (at most every five seconds): never whoever computed
-//                  the first result
+//   confirm        an agent of one thread: never whoever computed the first result. Another process takes over after 500
+//                  items and a minute of simulation
 //   alone          a process, fresh for each item
 //
 // The coordinator's own process never runs a simulation, so nothing a plug-in does can end it.
@@ -29,7 +29,7 @@ export interface PoolOptions extends SimulatorSettings {
   readonly timeLimit?: Partial<TimeLimit>
   /** Wall seconds of one replicate at expected cost 1, where known. */
   readonly secondsPerCost?: number
-  /** Items a confirming process may simulate before a fresh one takes over; 500 in five seconds or more unless said. */
+  /** Items a confirming process may simulate before a fresh one takes over; 500, and a minute, unless said. */
   readonly confirmationsPerProcess?: number
   /** This machine's name unless said. */
   readonly host?: string
@@ -39,6 +39,10 @@ export interface PoolStatus {
   readonly slots: number
   readonly outstanding: number
   readonly wanted: number
+  /** Items that the shared threads have and have not answered, as far as is known here. */
+  readonly queued: number
+  /** What an item takes of late, 0 until one has returned. */
+  readonly secondsEach: number
 }
 
 export interface PoolEvents {
@@ -51,7 +55,8 @@ export interface PoolEvents {
 export interface Pool {
   /** Refuses with 'no-workers' when no thread can load the bundle. */
   start(): Promise<void>
-  submit(items: readonly WorkItem[]): void
+  /** Answers of the shared threads may be gathered until no more than `reportAt` are missing, for half a second at most. */
+  submit(items: readonly WorkItem[], reportAt?: number): void
   status(): PoolStatus
   /** Ends all threads and processes, hung ones as well, within about three seconds. */
   close(): Promise<void>
@@ -61,8 +66,8 @@ const closeSeconds = 3
 const itemsPerProcess = 500
 /** Items a slot has ahead, however long they last: so that results can be taken in by the handful. */
 const aheadLeast = 8
-/** Starting a process costs some tenths of a second of CPU: with cheap items that would be most of the work. */
-const confirmingSecondsLeast = 5
+/** Starting a process and compiling the plug-in in it costs a second of CPU, which is to be nothing against its work. */
+const confirmingSecondsLeast = 60
 
 export function createPool(options: PoolOptions, events: PoolEvents): Pool {
   return new MachinePool(options, events)
@@ -102,7 +107,7 @@ class MachinePool implements Pool {
     })
   }
 
-  submit(items: readonly WorkItem[]): void {
+  submit(items: readonly WorkItem[], reportAt = Number.POSITIVE_INFINITY): void {
     check(!this.closed, 'a closed pool takes no work')
     const shared: WorkItem[] = []
     for (const item of items) {
@@ -111,7 +116,7 @@ class MachinePool implements Pool {
       else shared.push(item)
     }
     this.sharedOutstanding += shared.length
-    this.agent.submit(shared)
+    if (shared.length > 0) this.agent.submit(shared, reportAt)
   }
 
   status(): PoolStatus {
@@ -122,6 +127,8 @@ class MachinePool implements Pool {
       slots,
       outstanding: this.sharedOutstanding + apart,
       wanted: Math.max(0, depth - this.sharedOutstanding),
+      queued: this.sharedOutstanding,
+      secondsEach: this.pace.lastSeconds,
     }
   }
 

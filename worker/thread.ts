@@ -1,7 +1,7 @@
 // The code inside a simulating thread: loads the pinned bundle once, then batch after batch.
 //
 // Everything between two messages is synchronous. Before each item the black box notes which one it is, so that the
-// pool knows whom to ask when this thread dies or hangs; results leave about five times a second.
+// pool knows whom to ask when this thread dies or hangs; results leave when a batch is done, at least every 0.4 s of it.
 
 import { parentPort, workerData } from 'node:worker_threads'
 import { BrokenPromise, check } from '../shared/check.js'
@@ -22,7 +22,7 @@ export interface ThreadSettings extends SimulatorSettings {
   readonly blackbox: SharedArrayBuffer
 }
 
-const flushSeconds = 0.2
+const flushSeconds = 0.4
 
 const port = parentPort
 check(port !== null, 'thread code runs in a thread')

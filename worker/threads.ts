@@ -36,7 +36,7 @@ export interface ThreadsEvents {
   broken(promise: string): void
 }
 
-export const tickSeconds = 0.1
+export const tickSeconds = 0.2
 /** Threads in a row that may die before they are ready. */
 const failedStartsMost = 3
 
@@ -119,8 +119,8 @@ export class Threads {
       for (const lane of this.lanes) {
         if (this.queue.length === 0) return
         if (lane.state !== 'working' || lane.load >= depth) continue
-        // A short queue is shared out, so that nobody idles while another has a long batch.
-        const share = Math.ceil(this.queue.length / this.options.threads)
+        // Batches get shorter with the queue, so that nobody idles while another has a long one.
+        const share = Math.ceil(this.queue.length / (2 * this.options.threads))
         lane.send(this.queue.take(this.pace.batchLength(this.queue, share)))
       }
     }
@@ -139,7 +139,7 @@ export class Threads {
 }
 
 /**
- * Calls back about ten times a second with the seconds that passed. A pause of this process (stopped, swapped, busy)
+ * Calls back about five times a second with the seconds that passed. A pause of this process (stopped, swapped, busy)
  * is no time that a simulation used: it counts as two ticks at most.
  */
 export function everyTick(call: (seconds: number) => void): NodeJS.Timeout {

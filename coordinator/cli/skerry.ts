@@ -5,8 +5,11 @@ import { readFileSync } from 'node:fs'
 import { constants } from 'node:os'
 import { join } from 'node:path'
 import { emittedRoot } from '../../worker/entry.js'
+import { spareHelpersOfCoordinator } from '../../worker/thrift.js'
 import type { Output } from './command.js'
 import { runCommandLine } from './table.js'
+
+spareHelpersOfCoordinator()
 
 // Standard output is the program's own: what a problem prints where it is loaded here goes to standard error.
 console.log = console.info = console.debug = console.error

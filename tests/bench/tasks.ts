@@ -3,6 +3,7 @@
 
 import { fork } from 'node:child_process'
 import { fileURLToPath } from 'node:url'
+import { spareHelpersOfCoordinator } from '../../worker/thrift.js'
 import { runContest } from './contest.js'
 import { continueRecord } from './continuing.js'
 import { runCrawler } from './crawler.js'
@@ -59,6 +60,8 @@ export function runTask<Name extends TaskName>(
 
 /** The other end: waits for the options, runs the task, tells its result. */
 export function serveTask(name: string): void {
+  // As the program itself does.
+  spareHelpersOfCoordinator()
   const task = tasks[name as TaskName] as (options: never) => Promise<unknown>
   // Whoever asked is gone, or has its answer.
   process.on('disconnect', () => process.exit())
