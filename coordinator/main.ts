@@ -1,6 +1,7 @@
 // The meeting place: a search file, a record, a pool of threads and the engine become a running search. Everything
 // is decided elsewhere; here the parts are handed to one another.
 
+import { randomBytes } from 'node:crypto'
 import { availableParallelism } from 'node:os'
 import { join, resolve } from 'node:path'
 import { limits } from '../shared/limits.js'
@@ -8,6 +9,7 @@ import type { AnyProblem } from '../shared/problem.js'
 import { refuse } from '../shared/refusals.js'
 import { loadPlugin } from '../worker/plugin/load.js'
 import { createPool } from '../worker/pool.js'
+import { readKey } from '../worker/work/index.js'
 import { Alarms } from './cli/join/alarms.js'
 import { openAlone, refuseIfHeldHere } from './cli/join/alone.js'
 import { type BudgetEnds, finishedBecause, orderBudgetEnds, resumeEnds } from './cli/join/budget-ends.js'
@@ -16,6 +18,7 @@ import { clusterDispatcher } from './cli/join/cluster.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
 import { progressFile } from './cli/join/looking-on.js'
 import { Meter, simulationsLeft } from './cli/join/meter.js'
+import { type OwnRedisOptions, ownRedis } from './cli/join/own-redis.js'
 import { pause } from './cli/join/pause.js'
 import { placeOf } from './cli/join/place.js'
 import { toolsOf } from './cli/join/tools.js'
@@ -35,6 +38,7 @@ import { type OpenRecord, recordFolder } from './record/index.js'
 /** Commits of an island between two snapshots: a restart replays at most as many. */
 const snapshotCommits = 10_000
 const beatSeconds = 2
+const keyBytes = 32
 const progressSeconds = 1
 
 /** Starts the search of a file, or goes on where its record stands. */
@@ -128,8 +132,11 @@ interface Driven {
 
 async function drive(driven: Driven): Promise<RunEnd> {
   const { options, record, folder, engine, cores } = driven
-  const dispatcher = dispatcherOf(driven)
-  const slots = () => (options.redis === undefined ? cores : dispatcher.status().slots)
+  const key = keyOf(options)
+  const own = key && options.ownRedis ? await ownRedis({ ...ownRedisOptions(driven), key }) : undefined
+  const redis = own?.coordinatorUrl ?? options.redis
+  const dispatcher = dispatcherOf(driven, redis, key)
+  const slots = () => (redis === undefined ? cores : dispatcher.status().slots)
   const meter = new Meter(slots, () => performance.now())
   const alarms = new Alarms(engine.search, record.reader, () => performance.now())
   const beat = setInterval(() => record.beat(), beatSeconds * 1000)
@@ -158,14 +165,29 @@ async function drive(driven: Driven): Promise<RunEnd> {
   } finally {
     clearInterval(beat)
     await dispatcher.close()
+    await own?.close()
   }
 }
 
-function dispatcherOf({ options, record, here, cores, engine }: Driven): Dispatcher {
-  const { redis } = options
+/** Of the site, or made for this run of a coordinator with a Redis of its own. */
+function keyOf({ keyFile, ownRedis: own }: RunOptions): Uint8Array | undefined {
+  if (keyFile !== undefined) return readKey(keyFile)
+  return own ? Uint8Array.from(randomBytes(keyBytes)) : undefined
+}
+
+function ownRedisOptions({ options, record, folder }: Driven): Omit<OwnRedisOptions, 'key'> {
+  const { address, tell } = options
+  return { address, tell, folder, holder: record.epoch }
+}
+
+function dispatcherOf(
+  { options, record, here, cores, engine }: Driven,
+  redis: string | undefined,
+  key: Uint8Array | undefined,
+): Dispatcher {
   if (redis !== undefined) {
     const tell = (sentence: string) => options.tell({ kind: 'said', sentence })
-    return clusterDispatcher({ ...options, redis, tell }, record, engine)
+    return clusterDispatcher({ redisUnprotected: options.redisUnprotected, redis, key, tell }, record, engine)
   }
   const { seed, replicates } = record.plan
   const pluginFile = resolve(recordFolder(here).plugin)

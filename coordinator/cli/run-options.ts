@@ -26,6 +26,10 @@ export interface RunOptions {
   readonly redis?: string
   /** Take a Redis that other machines reach without a password. */
   readonly redisUnprotected: boolean
+  /** Start a Redis that ends with this coordinator, and say in the record's folder where it is. */
+  readonly ownRedis: boolean
+  /** Under which workers reach this machine. */
+  readonly address?: string
   /** File with the key of the site, which signs the problem. */
   readonly keyFile?: string
   readonly tell: (event: RunEvent) => void

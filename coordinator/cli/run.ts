@@ -1,6 +1,6 @@
 // `skerry run FILE`: starts the search, or continues it. The same command after a preemption.
 
-import { exitCodes } from '../../shared/refusals.js'
+import { exitCodes, refuse } from '../../shared/refusals.js'
 import { addressVariable } from '../../worker/redis/address.js'
 import type { Command, CommandInput, OptionRow, Output } from './command.js'
 import { openHouse } from './house.js'
@@ -55,6 +55,17 @@ const clusterOptionRows: readonly OptionRow[] = [
     help: `let workers simulate that take their work from this Redis, redis://HOST:PORT (default: the variable ${addressVariable}, which hides a password)`,
   },
   {
+    flag: '--own-redis',
+    kind: 'switch',
+    help: 'start a Redis for this search alone, which ends with it; workers find it with: skerry work --record DIR',
+  },
+  {
+    flag: '--address',
+    value: 'NAME',
+    kind: 'text',
+    help: 'with --own-redis: name or address under which workers reach this machine (default: its host name)',
+  },
+  {
     flag: '--redis-unprotected',
     kind: 'switch',
     help: 'take a Redis that other machines reach without a password',
@@ -76,6 +87,7 @@ export const runCommand: Command = {
     'skerry run search.yaml',
     'skerry run search.yaml --cores 8 --stop-after 20000',
     'skerry run search.yaml --redis redis://queue.works.example',
+    'skerry run search.yaml --record /shared/culvert --scratch /tmp --own-redis',
   ],
   run: (input) =>
     runAndReport(input, input.arguments.FILE!, input.texts['--record'], process.env[addressVariable]),
@@ -92,7 +104,8 @@ export async function runAndReport(
   usualRedis?: string,
 ): Promise<number> {
   const { output } = input
-  const redis = input.texts['--redis'] ?? usualRedis
+  const ownRedis = input.switches['--own-redis'] ?? false
+  const redis = redisOf(input, ownRedis, usualRedis)
   const house = await openHouse()
   const shown = watch(output)
   const options: RunOptions = {
@@ -104,7 +117,9 @@ export async function runAndReport(
     force: input.switches['--force'] ?? false,
     ...given('scratch', input.texts['--scratch']),
     standby: input.switches['--standby'] ?? false,
-    ...given('redis', redis === '' ? undefined : redis),
+    ...given('redis', redis),
+    ownRedis,
+    ...given('address', input.texts['--address']),
     redisUnprotected: input.switches['--redis-unprotected'] ?? false,
     ...given('keyFile', input.texts['--key']),
     tell: (event) => hear(event, shown, output),
@@ -114,6 +129,17 @@ export async function runAndReport(
   shown.end(end.view)
   reportEnd(output, end)
   return end.ended === 'interrupted' ? exitCodes.interrupted : exitCodes.done
+}
+
+/** @throws Refusal 'usage' for two of them */
+function redisOf(input: CommandInput, ownRedis: boolean, usual: string | undefined): string | undefined {
+  const named = input.texts['--redis']
+  if (ownRedis && named !== undefined)
+    throw refuse('usage', { detail: '--redis and --own-redis; expected one of the two' })
+  if (!ownRedis && input.texts['--address'] !== undefined)
+    throw refuse('usage', { detail: '--address without --own-redis' })
+  const redis = ownRedis ? undefined : (named ?? usual)
+  return redis === '' ? undefined : redis
 }
 
 function given<Name extends string, Value>(name: Name, value: Value | undefined): { [key in Name]?: Value } {

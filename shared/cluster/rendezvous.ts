@@ -16,8 +16,8 @@ export const rendezvousSchema = z.strictObject({
   pid: z.number().int().nonnegative(),
   /** For a person, by that host's clock. */
   writtenAt: z.string().max(64),
-  /** What agents sign and verify pinned problems with, hex. */
-  clusterKey: z.string().length(64).optional(),
+  /** What the coordinator signs pinned problems with, hex. */
+  clusterKey: z.string().min(32).max(2048).optional(),
 })
 export type Rendezvous = z.infer<typeof rendezvousSchema>
 

@@ -71,7 +71,7 @@ test('other bytes than announced are refused and not kept', async () => {
 })
 
 test('with a key: unsigned and wrongly signed bundles are refused before anything is fetched; a signed one runs', async () => {
-  const cache = new PluginCache({ folder: folder(), key })
+  const cache = new PluginCache({ folder: folder(), key: () => key })
   const { bytes, pinned } = bundle('export default 4')
   const never = () => Promise.reject(new Error('fetched'))
   expect((await refusal(cache.file(pinned, never))).detail).toContain('carries no signature')
@@ -83,7 +83,7 @@ test('with a key: unsigned and wrongly signed bundles are refused before anythin
 })
 
 test('the signature of one bundle does not serve another', async () => {
-  const cache = new PluginCache({ folder: folder(), key })
+  const cache = new PluginCache({ folder: folder(), key: () => key })
   const signature = signatureOf(key, bundle('export default 5').pinned.pluginDigest)
   const fault = await refusal(cache.file({ ...bundle('evil').pinned, signature }, async () => undefined))
   expect(fault.code).toBe('plugin-untrusted')

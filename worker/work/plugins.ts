@@ -26,8 +26,8 @@ import { refuse } from '../../shared/refusals.js'
 
 export interface PluginCacheOptions {
   readonly folder: string
-  /** The cluster key, where the site has one. */
-  readonly key?: Uint8Array
+  /** The cluster key, where the site has one; asked for each time, because a coordinator that moved brings its own. */
+  readonly key?: () => Uint8Array | undefined
   readonly bytesMost?: number
 }
 
@@ -52,7 +52,7 @@ export class PluginCache {
    * that do not have the announced digest), 'too-large-to-send', or what the disk did. Undefined when the queue does not have it (yet).
    */
   async file(pinned: Pinned, fetch: PluginFetch): Promise<string | undefined> {
-    mustBeSigned(pinned, this.options.key)
+    mustBeSigned(pinned, this.options.key?.())
     if (pinned.pluginBytes > limits.pluginBytes) {
       throw refuse('too-large-to-send', {
         detail: `the problem of search ${pinned.search} has ${pinned.pluginBytes} bytes; at most ${limits.pluginBytes} are taken`,

@@ -43,3 +43,14 @@ function parseJson(text: string): unknown {
 export function recordLocation(folder: string): QueueLocation {
   return { current: async () => readRendezvous(folder).url }
 }
+
+/** The key that the record's coordinator signs with, as long as it says one. */
+export function recordKey(folder: string): Uint8Array | undefined {
+  try {
+    const { clusterKey } = readRendezvous(folder)
+    return clusterKey === undefined ? undefined : Uint8Array.from(Buffer.from(clusterKey, 'hex'))
+  } catch {
+    // Without the file nothing of this coordinator can be reached either.
+    return undefined
+  }
+}

@@ -23,10 +23,15 @@ import {
   processorClass,
   type QueueLocation,
   readKey,
+  recordKey,
+  recordLocation,
   secondsLeft,
 } from '../../../worker/work/index.js'
 import type { CommandInput, Output } from '../command.js'
 import { version } from './version.js'
+
+/** How long a worker waits for a coordinator that has not started yet, where no --idle-exit says so. */
+const waitSeconds = 3600
 
 /** Serves until the agent ends; its exit code. @throws Refusal when it never got to work */
 export async function serve(input: CommandInput): Promise<number> {
@@ -54,13 +59,12 @@ function agentOptions(
   const cores = coresOf(counts['--cores'])
   const host = plainText(texts['--host'] ?? hostname()).slice(0, 200)
   const agent = `${keyName(host)}-${process.pid}-${randomBytes(2).toString('hex')}`
-  const key = texts['--key']
   const folder = cacheFolder(texts['--cache'], homedir(), env.XDG_CACHE_HOME)
   const idleSeconds = counts['--idle-exit']
   const seconds = secondsLeft(texts['--until'], env, Date.now())
   const nowMs = () => performance.now()
   return {
-    location: locationOf(texts['--redis']),
+    location: locationOf(texts['--redis'], texts['--record']),
     createQueue: (url) =>
       new RedisAgentQueue({
         address: parseAddress(url, env[certificateVariable]),
@@ -69,7 +73,7 @@ function agentOptions(
         times,
       }),
     createPool,
-    cache: new PluginCache({ folder, ...(key === undefined ? {} : { key: readKey(key) }) }),
+    cache: new PluginCache({ folder, key: keyOf(texts['--key'], texts['--record']) }),
     agent,
     host,
     // For tests of clusters with several classes of processors on one machine.
@@ -78,7 +82,7 @@ function agentOptions(
     memoryMB: memoryMB(),
     times,
     skerry: version(),
-    patienceMs: times.leaseMs,
+    patienceMs: texts['--record'] === undefined ? times.leaseMs : (idleSeconds ?? waitSeconds) * 1000,
     nowMs,
     say,
     signal: output.signal,
@@ -95,15 +99,27 @@ function coresOf(asked: number | undefined): number {
   })
 }
 
-/** Where Redis is: told on the command line or in the environment. */
-function locationOf(redis: string | undefined): QueueLocation {
+/** Where Redis is: told on the command line, in a record's folder, or in the environment. */
+function locationOf(redis: string | undefined, record: string | undefined): QueueLocation {
+  if (redis !== undefined && record !== undefined)
+    throw refuse('usage', { detail: '--redis and --record; expected one of the two' })
+  if (record !== undefined) return recordLocation(record)
   const url = redis ?? process.env[addressVariable]
   if (url === undefined || url === '') {
     throw refuse('usage', {
-      detail: `no Redis was named; expected --redis URL, or its address in ${addressVariable}`,
+      detail: `no Redis was named; expected --redis URL, --record DIR, or its address in ${addressVariable}`,
     })
   }
   return fixedLocation(url)
+}
+
+/** The key of the site: of a file, or the one that the record's coordinator brought. */
+function keyOf(file: string | undefined, record: string | undefined): () => Uint8Array | undefined {
+  if (file !== undefined) {
+    const key = readKey(file)
+    return () => key
+  }
+  return () => (record === undefined ? undefined : recordKey(record))
 }
 
 /** Lines for a log: time and sentence, or one JSON object a line. */

@@ -12,7 +12,6 @@ import {
   RedisCoordinatorQueue,
   showAddress,
 } from '../../../worker/redis/index.js'
-import { readKey } from '../../../worker/work/index.js'
 import { RedisDispatcher } from '../../dispatch/redis/dispatcher.js'
 import type { Engine } from '../../engine/engine.js'
 import type { OpenRecord } from '../../record/index.js'
@@ -22,13 +21,13 @@ export interface ClusterOptions {
   /** Address of Redis, with its password. */
   readonly redis: string
   readonly redisUnprotected: boolean
-  /** File with the key of the site; agents that have it run nothing without its signature. */
-  readonly keyFile?: string
+  /** Key of the site; agents that have it run nothing without its signature. */
+  readonly key: Uint8Array | undefined
   readonly tell: (sentence: string) => void
 }
 
 export function clusterDispatcher(
-  { redis, redisUnprotected, keyFile, tell }: ClusterOptions,
+  { redis, redisUnprotected, key, tell }: ClusterOptions,
   record: OpenRecord,
   engine: Engine,
 ): RedisDispatcher {
@@ -61,7 +60,7 @@ export function clusterDispatcher(
       holder: record.epoch,
       pluginDigest: plan.problem.digest,
       pluginBytes: record.pluginCode.length,
-      ...(keyFile === undefined ? {} : { signature: signatureOf(readKey(keyFile), plan.problem.digest) }),
+      ...(key === undefined ? {} : { signature: signatureOf(key, plan.problem.digest) }),
       seed: plan.seed,
       sharedConditions: plan.replicates.shared,
       exactness: plan.problem.exactness ?? 'bits',

@@ -3,6 +3,7 @@
 import { hostname } from 'node:os'
 import { defaultPrefix } from '../../../shared/cluster/keys.js'
 import { protocolVersion } from '../../../shared/cluster/messages.js'
+import { hex } from '../../../shared/digests.js'
 import { type OwnServer, startOwnServer } from '../../../worker/redis/own-server.js'
 import { writeRendezvous } from '../../record/rendezvous.js'
 import type { RunEvent } from '../run-options.js'
@@ -14,7 +15,8 @@ export interface OwnRedisOptions {
   readonly folder: string
   /** The coordinator's hold on the record. */
   readonly holder: number
-  readonly clusterKey: string | undefined
+  /** Workers that are given no key take this one from the record's folder. */
+  readonly key: Uint8Array
   readonly tell: (event: RunEvent) => void
 }
 
@@ -36,7 +38,7 @@ export async function ownRedis(options: OwnRedisOptions): Promise<OwnServer> {
       host: hostname(),
       pid: process.pid,
       writtenAt: new Date().toISOString(),
-      ...(options.clusterKey === undefined ? {} : { clusterKey: options.clusterKey }),
+      clusterKey: hex(options.key),
     })
   } catch (error) {
     await server.close()
