@@ -245,7 +245,8 @@ export class WaitingPool implements Pool {
     this.next()
   }
   status() {
-    return { slots: this.options.threads, outstanding: this.queue.length + this.running, wanted: 0 }
+    const outstanding = this.queue.length + this.running
+    return { slots: this.options.threads, outstanding, wanted: 0, queued: outstanding, secondsEach: 0 }
   }
   async close(): Promise<void> {
     this.closed = true
