@@ -68,13 +68,13 @@ export function assemble(
 }
 
 /** As a full matrix, row by row. */
-export function addInto(matrix: Float64Array, size: number, place?: Int32Array): AddBlock {
+export function addInto(matrix: Float64Array, size: number): AddBlock {
   return (unknowns, values) => {
     for (let i = 0; i < blockSize; i++) {
-      const row = unknowns[i]! < 0 ? -1 : place ? place[unknowns[i]!]! : unknowns[i]!
+      const row = unknowns[i]!
       if (row < 0) continue
       for (let j = 0; j < blockSize; j++) {
-        const column = unknowns[j]! < 0 ? -1 : place ? place[unknowns[j]!]! : unknowns[j]!
+        const column = unknowns[j]!
         if (column < 0) continue
         const at = row * size + column
         matrix[at] = matrix[at]! + values[blockSize * i + j]!

@@ -3,6 +3,7 @@
 
 import { describe, expect, test } from 'vitest'
 import { type Stream, stream } from '../../shared/streams.js'
+import { condense } from '../measure/condense.js'
 import { addInto, assemble } from './assemble.js'
 import { buildFramework } from './build.js'
 import { envelope, factorise, solveFactorised } from './envelope.js'
@@ -11,7 +12,6 @@ import { homogenise } from './homogenise.js'
 import { consistentMass, geometricStiffness, lumpedMass, stiffnessMatrix } from './matrices.js'
 import { moduliOf, turned } from './moduli.js'
 import { inPieces } from './pieces.js'
-import { eliminate } from './semidefinite.js'
 import type { FrameworkSpec } from './spec.js'
 import { squeeze } from './squeeze.js'
 
@@ -177,7 +177,7 @@ describe('solvers', () => {
     expect(diagonal([1, Number.NaN])).toEqual({ negative: 0, lost: 1 })
   })
 
-  test('elimination leaves the Schur complement and counts what nothing holds', () => {
+  test('condensation leaves the Schur complement and counts what nothing holds', () => {
     // Two springs in a row and a free unknown: eliminate the middle one, keep the ends. k1 k2 / (k1 + k2) = 2/3.
     const matrix = Float64Array.from(
       [
@@ -187,7 +187,7 @@ describe('solvers', () => {
         [-2, 0, 0, 2],
       ].flat(),
     )
-    const { kept, mechanisms } = eliminate(matrix, 4, 2)
+    const { kept, mechanisms } = condense(matrix, 4, 2)
     expect(mechanisms).toBe(1)
     for (const [i, value] of [2 / 3, -2 / 3, -2 / 3, 2 / 3].entries()) expect(kept[i]).toBeCloseTo(value, 12)
   })

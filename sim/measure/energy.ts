@@ -12,7 +12,7 @@
 // power of each force law (sim/lattice/reference), e.g. Goldstein, Classical mechanics, 1980 (from memory).
 
 import { addForces } from '../lattice/advance.js'
-import { type Lattice, tiny } from '../lattice/layout.js'
+import type { Lattice } from '../lattice/layout.js'
 import {
   apartJ,
   commandedRestM,
@@ -25,6 +25,7 @@ import {
   lengthRateMps,
   powerW,
 } from '../lattice/observe.js'
+import { coefficientPlane, coefficientSpace } from '../lattice/reference/friction.js'
 
 export interface StoredEnergy {
   readonly kineticJ: number
@@ -217,7 +218,7 @@ function rodPower({ nodes, dragCount, dragEnds, dragNormal, dragDifference, dime
  * nothing.
  */
 function groundLosses(lattice: Lattice): { contactW: number; frictionW: number } {
-  const { nodes, nodeCount, stride, dimensions, inverseMass, contact, terrain } = lattice
+  const { nodes, nodeCount, stride, dimensions, inverseMass, contact, terrain, friction, heading } = lattice
   let [contactW, frictionW] = [0, 0]
   for (let i = 0; i < nodeCount; i++) {
     const o = i * stride
@@ -238,27 +239,13 @@ function groundLosses(lattice: Lattice): { contactW: number; frictionW: number }
     const across = -sinking / longer
     const [tx, ty, tz] = [vx + across * sx, vy - across, vz + across * sz]
     const speed = Math.sqrt(tx * tx + ty * ty + tz * tz)
-    if (speed > 0) frictionW += frictionOf(lattice, i, tx, tz) * f * Math.sqrt(longer) * speed
+    const mu =
+      dimensions === 2
+        ? coefficientPlane(i, tx, friction)
+        : coefficientSpace(i, tx, tz, friction, heading, nodes)
+    if (speed > 0) frictionW += mu * f * Math.sqrt(longer) * speed
   }
   return { contactW, frictionW }
-}
-
-/** Coefficient of friction of a node that slides with (tx, tz) as seen from above; as the integration has it. */
-function frictionOf(lattice: Lattice, node: number, tx: number, tz: number): number {
-  const { dimensions, friction, heading, nodes, stride } = lattice
-  const at = dimensions * node
-  const [forward, backward] = [friction[at]!, friction[at + 1]!]
-  if (dimensions === 2) return tx > 0 ? forward : backward
-  const sideways = friction[at + 2]!
-  if (forward === backward && forward === sideways) return forward
-  const o = node * stride
-  const ahead = heading[node]!
-  const hx = ahead < 0 ? 1 : nodes[ahead]! - nodes[o]!
-  const hz = ahead < 0 ? 0 : nodes[ahead + 2]! - nodes[o + 2]!
-  const lengths = Math.sqrt(hx * hx + hz * hz) * Math.sqrt(tx * tx + tz * tz)
-  const c = (tx * hx + tz * hz) / (lengths + tiny)
-  const along = (c > 0 ? forward : backward) * c
-  return Math.sqrt(along * along + sideways * sideways * Math.max(0, 1 - c * c))
 }
 
 /** Slopes ds/dx and ds/dz of the ground where a node is; as the integration has them. */

@@ -7,9 +7,9 @@
 // Strains in Voigt's order with engineering shear: 1-D xx; 2-D xx, yy, xy; 3-D xx, yy, zz, yz, xz, xy.
 
 import { type CellForms, type CellSpec, cellForms, cellMeasure, type SpringForm } from './cell.js'
+import { condense } from './condense.js'
 import { voigtPairs } from './elasticity.js'
 import { demandDense } from './linear-model.js'
-import { factorise } from './semidefinite.js'
 
 export interface Homogenised {
   readonly dimensions: number
@@ -26,48 +26,37 @@ export interface Homogenised {
 /** Effective stiffness of a periodic cell. Refuses ('impossible-value') a cell that cannot be, naming the field. */
 export function homogenise(cell: CellSpec): Homogenised {
   const described = cellForms(cell)
-  const { dimensions, size, forms } = described
+  const { dimensions, size } = described
   demandDense('cell.nodes', size)
-  const pairs = voigtPairs(dimensions)
-  const strained = forms.map((form) => pairs.map(([p, q]) => underStrain(form, p, q)))
-  const solver = factorise(periodicStiffness(described), size)
-  const relaxed = pairs.map((_, v) => {
-    const right = new Float64Array(size)
-    for (const [f, form] of forms.entries()) addTransposed(form, -form.stiffness * strained[f]![v]!, right)
-    return solver.solve(right)
-  })
+  const strains = voigtPairs(dimensions).length
+  const { kept, mechanisms, follow } = condense(energyMatrix(described), size + strains, strains)
   const cellSize = cellMeasure(cell.vectorsM)
-  // Each spring's e = G e + B w for every unit strain; C is their energy product.
-  const total = forms.map((form, f) => pairs.map((_, v) => strained[f]![v]! + applied(form, relaxed[v]!)))
-  const stiffness = pairs.map((_, v) =>
-    pairs.map((_, w) => {
-      let sum = 0
-      for (const [f, form] of forms.entries()) sum += form.stiffness * total[f]![v]! * total[f]![w]!
-      return sum / cellSize
-    }),
-  )
   return {
     dimensions,
-    stiffness,
+    stiffness: follow.map((_, v) =>
+      Array.from(kept.subarray(v * strains, (v + 1) * strains), (k) => k / cellSize),
+    ),
     cellSize,
-    mechanisms: size - solver.rank - dimensions,
-    fluctuationsM: relaxed.map((w) => w.slice(0, cell.nodes.length * dimensions)),
+    mechanisms: mechanisms - dimensions,
+    fluctuationsM: follow.map((w) => w.slice(0, cell.nodes.length * dimensions)),
   }
 }
 
-/** Stiffness of the cell against displacements that repeat in every cell, row-major. */
-function periodicStiffness({ size, forms }: CellForms): Float64Array {
-  const matrix = new Float64Array(size * size)
-  for (const { stiffness, terms } of forms) {
-    for (const row of terms) {
-      for (const column of terms) {
-        for (const [i, ci] of row.coefficients.entries()) {
-          for (const [j, cj] of column.coefficients.entries()) {
-            matrix[(row.at + i) * size + column.at + j]! += stiffness * ci * cj
-          }
-        }
-      }
+/**
+ * Twice the energy as a matrix, row-major, over the displacements that repeat in every cell, then the mean strains: each
+ * spring's e = B w + G e is one row over both, and gives stiffness times the product of that row with itself.
+ */
+function energyMatrix({ dimensions, size, forms }: CellForms): Float64Array {
+  const pairs = voigtPairs(dimensions)
+  const all = size + pairs.length
+  const matrix = new Float64Array(all * all)
+  for (const form of forms) {
+    const row = new Map<number, number>()
+    for (const { at, coefficients } of form.terms) {
+      for (const [i, c] of coefficients.entries()) row.set(at + i, (row.get(at + i) ?? 0) + c)
     }
+    for (const [v, [p, q]] of pairs.entries()) row.set(size + v, underStrain(form, p, q))
+    for (const [i, ci] of row) for (const [j, cj] of row) matrix[i * all + j]! += form.stiffness * ci * cj
   }
   return matrix
 }
@@ -80,18 +69,4 @@ function underStrain({ terms }: SpringForm, p: number, q: number): number {
     sum += p === q ? c[p]! * placeM[p]! : (c[p]! * placeM[q]! + c[q]! * placeM[p]!) / 2
   }
   return sum
-}
-
-function applied({ terms }: SpringForm, coordinates: Float64Array): number {
-  let sum = 0
-  for (const { at, coefficients } of terms) {
-    for (const [i, c] of coefficients.entries()) sum += c * coordinates[at + i]!
-  }
-  return sum
-}
-
-function addTransposed({ terms }: SpringForm, factor: number, into: Float64Array): void {
-  for (const { at, coefficients } of terms) {
-    for (const [i, c] of coefficients.entries()) into[at + i]! += factor * c
-  }
 }

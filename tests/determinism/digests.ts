@@ -20,7 +20,7 @@ export const golden: { readonly [name: string]: string } = {
   'culvert-crawler 3': '83711f5babd3e7e34e93f05e8931cf7f65a3f78877f6fbc9518c68c9397599f7',
   'culvert-crawler-3d 2': '4accfa313f2498b2c9dc3f241561c72c62147ebde5c0ef727919d0665d254752',
   'pump-mount 1': '9d6963dc01ce101095be32bbefa6d847c82ab7ed6be05e3bb8699339ca15ae1f',
-  'seal-pad 1': 'dbce1f349daca47286576cd710a931a0c76843816076d1d136a0da19909279c5',
+  'seal-pad 2': 'ec1e6fac7e22ac5d8516fa172cedea39baf8df44c01c31008f3b2e32cc002096',
   'ramp-walker 1': '7e229e3caf5f9fa83dd07df783b6e06654bbcd7e04387a3c8d3c42c774f36708',
   'screen-rake 1+rapier2d-deterministic-0.20.0': 'a651088f0c95eaffa36a7f4e40d46d3a71a13704e38a10a5796a3074ece059ca',
 }

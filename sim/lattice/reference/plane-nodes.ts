@@ -1,6 +1,7 @@
 // Nodes in the plane: node drag, contact, friction and one step of symplectic Euler, v += h (f/m + g), x += h v.
 
 import { tiny } from '../layout.js'
+import { coefficientPlane } from './friction.js'
 
 /**
  * One step for every node by index; forces are 0 afterwards. `world`: step, node drag, gravity. `senses`: whether to
@@ -108,7 +109,7 @@ function touch(
     const perLength = 1 / (1 + slope * slope)
     // v* along the ground is (vx + slope vy) / sqrt(1 + slope^2).
     const sliding = vx + slope * vy
-    const mu = sliding > 0 ? friction[2 * i]! : friction[2 * i + 1]!
+    const mu = coefficientPlane(i, sliding, friction)
     const speed = Math.sqrt(sliding * sliding * perLength) + tiny
     const drop = stepSeconds * mu * normalN * Math.sqrt(1 + slope * slope) * perKg
     const change = -Math.min(1, drop / speed) * sliding * perLength

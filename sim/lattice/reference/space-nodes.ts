@@ -1,6 +1,7 @@
 // Nodes in space: as plane-nodes.ts, over a ground of bilinear patches y = s(x, z).
 
 import { tiny } from '../layout.js'
+import { coefficientSpace } from './friction.js'
 
 /**
  * One step for every node by index; forces are 0 afterwards. `world`: step, node drag, gravity. `senses`: whether to
@@ -130,12 +131,6 @@ function touch(
 /**
  * Friction on the velocity of a node that the ground pushes, f, sx and sz in its force fields: with n = (-sx, 1, -sz) / sqrt(1 + sx^2 + sz^2) the
  * part along the ground is v_t = v - (v . n) n, and v_t *= max(0, 1 - h mu N / (m |v_t|)).
- *
- * mu along an ellipse between the coefficients forward or backward (mu_f) and sideways (mu_s) of the node's heading,
- * c the cosine of the angle between v_t and heading as seen from above (a foot that goes up a slope straight ahead does
- * not slide sideways): sqrt((mu_f c)^2 + mu_s^2 (1 - c^2)). Where all three coefficients
- * are equal mu is that number itself: friction does not depend on direction, to the bit. The heading is taken
- * from the other node's place as it is: with a smaller number it has moved already in this step.
  */
 function rub(
   i: number,
@@ -155,25 +150,7 @@ function rub(
   const ty = nodes[o + 4]! - lift
   const tz = nodes[o + 5]! + lift * sz
   const speed = Math.sqrt(tx * tx + ty * ty + tz * tz) + tiny
-  const forward = friction[3 * i]!
-  const backward = friction[3 * i + 1]!
-  const sideways = friction[3 * i + 2]!
-  let mu = forward
-  if (forward !== backward || forward !== sideways) {
-    let hx = 1
-    let hz = 0
-    const ahead = heading[i]!
-    if (ahead >= 0) {
-      const dx = nodes[ahead]! - nodes[o]!
-      const dz = nodes[ahead + 2]! - nodes[o + 2]!
-      const distance = Math.sqrt(dx * dx + dz * dz) + tiny
-      hx = dx / distance
-      hz = dz / distance
-    }
-    const c = (tx * hx + tz * hz) / (Math.sqrt(tx * tx + tz * tz) + tiny)
-    const muF = c > 0 ? forward : backward
-    mu = Math.sqrt(muF * c * (muF * c) + sideways * sideways * Math.max(0, 1 - c * c))
-  }
+  const mu = coefficientSpace(i, tx, tz, friction, heading, nodes)
   const drop = world[0]! * mu * (f * Math.sqrt(squared)) * inverseMass[i]!
   const change = Math.min(1, drop / speed)
   nodes[o + 3]! -= change * tx

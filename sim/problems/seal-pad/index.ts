@@ -68,7 +68,7 @@ const missMost = 20
 export function sealPad(wanted: Wanted = numbers.wanted): Problem<typeof padGenome, CastingCondition> {
   return defineProblem({
     name: 'seal-pad',
-    version: '1',
+    version: '2',
     summary: 'A rubber pad of repeated cells for a hatch seal, toward a wanted Poisson ratio and stiffness.',
     genome: padGenome,
     objectives: {
