@@ -5,7 +5,10 @@ import { forecast, underWeather, type Weather } from './weather.js'
 
 const whole = { seed: 5, maxDelayFactor: 1000, oneIn: 8, baseMs: 0.01 } satisfies Required<Weather>
 
-function factOf(evaluation: number): DispatchFact {
+type AnswerFact = Exclude<DispatchFact, { kind: 'fleet' }>
+const isAnswer = (fact: DispatchFact): fact is AnswerFact => fact.kind !== 'fleet'
+
+function factOf(evaluation: number): AnswerFact {
   return {
     kind: 'result',
     item: { island: 1, evaluation, attempt: 1, purpose: 'evaluate' },
@@ -43,7 +46,7 @@ async function arrivals(weather: Weather): Promise<number[]> {
   dispatcher.submit(numbers.map((evaluation) => ({ evaluation }) as WorkItem))
   const seen: number[] = []
   while (seen.length < numbers.length)
-    seen.push(...(await dispatcher.facts(50)).map(({ item }) => item.evaluation))
+    seen.push(...(await dispatcher.facts(50)).filter(isAnswer).map(({ item }) => item.evaluation))
   expect(await dispatcher.facts(20)).toEqual([])
   expect(dispatcher.status().outstanding).toBe(0)
   return seen

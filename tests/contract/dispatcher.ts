@@ -27,10 +27,13 @@ export interface DispatcherSetting {
   readonly unmeasuredSeconds: number
   readonly megabytes: number
 }
+/** A dispatcher; after start() it has its slots. */
 export type MakeDispatcher = (setting: DispatcherSetting) => Dispatcher
 
 type Result = Extract<DispatchFact, { kind: 'result' }>
 type Lost = Extract<DispatchFact, { kind: 'lost' }>
+/** What an item is answered with; who is there is told beside it. */
+type AnswerFact = Result | Lost
 
 const seed = 20261201
 let folder: string
@@ -76,6 +79,9 @@ function expected(item: WorkItem): EvaluationResult {
   return evaluate(problem, genome, seed, false, item.individual, item.firstReplicate, item.replicates)
 }
 
+function isAnswer(fact: DispatchFact): fact is AnswerFact {
+  return fact.kind !== 'fleet'
+}
 function isResult(fact: DispatchFact): fact is Result {
   return fact.kind === 'result'
 }
@@ -84,20 +90,15 @@ function isLost(fact: DispatchFact): fact is Lost {
 }
 
 /** Submits all and collects until each item has been answered, or fails after `seconds`. */
-async function run(
-  dispatcher: Dispatcher,
-  items: readonly WorkItem[],
-  seconds = 60,
-): Promise<DispatchFact[]> {
-  const key = ({ evaluation, purpose, attempt }: DispatchFact['item']) =>
-    `${evaluation}/${purpose}/${attempt}`
+async function run(dispatcher: Dispatcher, items: readonly WorkItem[], seconds = 60): Promise<AnswerFact[]> {
+  const key = ({ evaluation, purpose, attempt }: AnswerFact['item']) => `${evaluation}/${purpose}/${attempt}`
   const missing = new Set(items.map(key))
-  const facts: DispatchFact[] = []
+  const facts: AnswerFact[] = []
   const untilMs = performance.now() + seconds * 1000
   dispatcher.submit(items)
   while (missing.size > 0) {
     if (performance.now() > untilMs) throw new Error(`not answered: ${[...missing].slice(0, 10).join(', ')}`)
-    for (const fact of await dispatcher.facts(200)) {
+    for (const fact of (await dispatcher.facts(200)).filter(isAnswer)) {
       facts.push(fact)
       missing.delete(key(fact.item))
     }
@@ -186,8 +187,8 @@ function answering(started: Started): void {
     const items = numbers(50).map((n) => itemOf(n))
     dispatcher.submit(items.slice(1))
     expect(dispatcher.status()).toMatchObject({ outstanding: 49, wanted: 0 })
-    const facts: DispatchFact[] = []
-    while (facts.length < 49) facts.push(...(await dispatcher.facts(200)))
+    const facts: AnswerFact[] = []
+    while (facts.length < 49) facts.push(...(await dispatcher.facts(200)).filter(isAnswer))
     expect(dispatcher.status().outstanding).toBe(0)
     expect(dispatcher.status().wanted).toBeGreaterThanOrEqual(2)
   })
@@ -215,7 +216,7 @@ function surviving(started: Started): void {
   const good = numbers(120, 100).map((n) => [n, 'well'] as const)
 
   /** Runs the bad item among good ones; all good ones must be answered well. Gives the facts of the bad one. */
-  async function among(dispatcher: Dispatcher, deed: string): Promise<DispatchFact> {
+  async function among(dispatcher: Dispatcher, deed: string): Promise<AnswerFact> {
     const plan = [...good.slice(0, 60), [1, deed] as const, ...good.slice(60)]
     const items = plan.map(([n, what]) => itemOf(n, what))
     const facts = await run(dispatcher, items)
