@@ -181,13 +181,15 @@ function ownRedisOptions({ options, record, folder }: Driven): Omit<OwnRedisOpti
 }
 
 function dispatcherOf(
-  { options, record, here, cores, engine }: Driven,
+  { options, record, folder, here, cores, engine }: Driven,
   redis: string | undefined,
   key: Uint8Array | undefined,
 ): Dispatcher {
   if (redis !== undefined) {
     const tell = (sentence: string) => options.tell({ kind: 'said', sentence })
-    return clusterDispatcher({ redisUnprotected: options.redisUnprotected, redis, key, tell }, record, engine)
+    const { redisUnprotected, ownRedis: own } = options
+    const found = own ? { workerCommand: `skerry work --record ${folder}` } : {}
+    return clusterDispatcher({ redisUnprotected, redis, key, tell, ...found }, record, engine)
   }
   const { seed, replicates } = record.plan
   const pluginFile = resolve(recordFolder(here).plugin)

@@ -23,11 +23,13 @@ export interface ClusterOptions {
   readonly redisUnprotected: boolean
   /** Key of the site; agents that have it run nothing without its signature. */
   readonly key: Uint8Array | undefined
+  /** How workers are started, where the address of Redis is not all they need. */
+  readonly workerCommand?: string
   readonly tell: (sentence: string) => void
 }
 
 export function clusterDispatcher(
-  { redis, redisUnprotected, key, tell }: ClusterOptions,
+  { redis, redisUnprotected, key, workerCommand, tell }: ClusterOptions,
   record: OpenRecord,
   engine: Engine,
 ): RedisDispatcher {
@@ -51,7 +53,7 @@ export function clusterDispatcher(
     times,
     clock: systemClock,
     nonce: randomBytes(8).toString('hex'),
-    where: showAddress(address),
+    workerCommand: workerCommand ?? `skerry work --redis ${showAddress(address)}`,
     orders: () => ({ shutOut: [...engine.notUsed.hosts] }),
     tell,
     search: {

@@ -47,8 +47,8 @@ export interface RedisDispatcherOptions {
   readonly clock: Clock
   /** A word nobody else has, for instances and numbers of dispatches. */
   readonly nonce: string
-  /** The address as workers are to be started with, without a password. */
-  readonly where?: string
+  /** How a worker is started, for people. */
+  readonly workerCommand?: string
   readonly orders?: () => Orders
   /** Something a person should read once. */
   readonly tell?: (sentence: string) => void
@@ -467,11 +467,11 @@ export class RedisDispatcher implements Dispatcher {
     if (isThere === this.#saidFleet) return
     this.#saidFleet = isThere
     const cores = hosts.reduce((sum, host) => sum + host.cores, 0)
-    const { where = 'URL' } = this.#options
+    const { workerCommand = 'skerry work --redis URL' } = this.#options
     this.#tell(
       isThere
         ? `Workers are here: ${this.#fleet.alive().length} on ${hosts.length === 1 ? 'one machine' : `${hosts.length} machines`}, ${cores} cores.`
-        : `No worker is here. The search goes on when one comes: skerry work --redis ${where}`,
+        : `No worker is here. The search goes on when one comes: ${workerCommand}`,
     )
   }
 
