@@ -1,12 +1,13 @@
 // A whole cluster under one seed: a virtual clock, a coordinator that crashes, a disk that loses what it was
 // writing, workers that die, stall, duplicate, reorder, answer late and lie. The engine is the real one; only the
-// world is made up. One run of a search takes milliseconds, and a failure is repeated by its seed.
+// world is made up (machines.ts has the machines of a fleet, where there is one). One run of a search takes milliseconds, and a failure is repeated by its seed.
 //
 // First comes a phase with faults, then one without that must finish.
 
 import type { Engine } from '../../coordinator/engine/engine.js'
 import type { Journal } from '../../coordinator/engine/ports.js'
 import { openEngine } from '../../coordinator/engine/recover.js'
+import { columnsOf } from '../../coordinator/evolution/estimate.js'
 import type { SearchPlan } from '../../coordinator/evolution/plan.js'
 import { hex, resultDigest } from '../../shared/digests.js'
 import { genomeFromBytes } from '../../shared/encodings.js'
@@ -14,81 +15,10 @@ import type { DispatchFact, EvaluationResult, WorkItem } from '../../shared/resu
 import { type Stream, stream } from '../../shared/streams.js'
 import { fixtureCost, fixtureTools, simulated } from '../fixture.js'
 import { Disk, Fenced, PowerCut } from './disk.js'
+import { type Chosen, Machines, otherBits } from './machines.js'
+import type { Weather } from './weather.js'
 
-export interface Weather {
-  readonly workers: number
-  /** Chances in 1000, each per piece of work. */
-  readonly dies: number
-  readonly stalls: number
-  readonly duplicates: number
-  readonly late: number
-  readonly handsBack: number
-  /** Takes its whole process down once or more, never when it runs alone: no fault of the genome. */
-  readonly deadly: number
-  /** Delivered to two workers. */
-  readonly twice: number
-  /** Answered under the number of another try. */
-  readonly misnumbered: number
-  /** A result held back by up to 1000 times its duration. */
-  readonly delayed: number
-  /** Chances in 1000 per append. */
-  readonly crashes: number
-  /** Chances in 1000 per look: stopped by a signal and started again; replaced while it still believes to be the one. */
-  readonly stopped: number
-  readonly replaced: number
-  /** The search is told to rest after so many simulations, then after the next number, then to finish. */
-  readonly rests: readonly number[]
-  /** Workers that give wrong results, and their chance in 1000. */
-  readonly liars: number
-  readonly lies: number
-  /** Genomes of this size kill whoever simulates them; 0 for none. */
-  readonly poisonSize: number
-}
-
-export const calm: Weather = {
-  workers: 3,
-  dies: 0,
-  stalls: 0,
-  duplicates: 0,
-  late: 0,
-  handsBack: 0,
-  delayed: 0,
-  deadly: 0,
-  twice: 0,
-  misnumbered: 0,
-  crashes: 0,
-  stopped: 0,
-  replaced: 0,
-  rests: [],
-  liars: 0,
-  lies: 0,
-  poisonSize: 0,
-}
-
-/** Bad weather drawn from the seed: every fault at its own strength, many of them none. */
-export function stormOf(seed: number): Weather {
-  const draw = stream(seed, 'weather', 1)
-  const some = (most: number) => (draw.chance(1, 2) ? 0 : 1 + draw.below(most))
-  return {
-    workers: 1 + draw.below(24),
-    dies: some(80),
-    stalls: some(60),
-    duplicates: some(300),
-    late: some(100),
-    handsBack: some(100),
-    delayed: some(200),
-    deadly: some(60),
-    twice: some(100),
-    misnumbered: some(100),
-    crashes: some(20),
-    stopped: some(4),
-    replaced: some(4),
-    rests: [],
-    liars: 0,
-    lies: 0,
-    poisonSize: 0,
-  }
-}
+export { calm, stormOf, type Weather } from './weather.js'
 
 export interface Ending {
   readonly digest: string
@@ -99,6 +29,10 @@ export interface Ending {
   readonly fenced: number
   readonly simulations: number
   readonly liars: readonly string[]
+  readonly machines: Machines | undefined
+  /** Wrong results that were sent by machines, and those of them that the record used. */
+  readonly lies: number
+  readonly liesUsed: number
   readonly status: string
 }
 
@@ -141,6 +75,12 @@ export class World {
   /** Given and durable; a crash in between is told by the record, where the kind is given once. */
   readonly #obeyed = new Set<Order>()
   #looks = 0
+  readonly #machines: Machines | undefined
+  /** The coordinator has not been told yet which machines there are. */
+  #fleetIsNews = true
+  readonly #lies: { readonly island: number; readonly evaluation: number; readonly digest: string }[] = []
+  /** Some of what was handed out, to be done once more. */
+  readonly #old: WorkItem[] = []
 
   constructor(plan: SearchPlan, seed: number, weather: Weather, ...orders: readonly Order[]) {
     this.#plan = plan
@@ -151,6 +91,7 @@ export class World {
     this.#busyUntilMs = new Array<number>(weather.workers).fill(0)
     this.#snapshotCommits = 10 + this.#draw.below(190)
     this.#rests = weather.rests
+    this.#machines = weather.fleet && new Machines(weather.fleet, stream(seed, 'weather', 10))
     this.#journal = this.#disk.takeOver()
     this.#engine = this.#open()
   }
@@ -158,8 +99,10 @@ export class World {
   #open(): Engine {
     this.#journal = this.#disk.takeOver()
     const [stopAfter] = this.#rests
+    this.#fleetIsNews = true
     const { engine } = openEngine(fixtureTools(this.#plan), this.#disk, {
       leaseMs,
+      hedgeLeastMs: 100,
       snapshotCommits: this.#snapshotCommits,
       ...(stopAfter === undefined ? {} : { stopAfter }),
     })
@@ -169,7 +112,7 @@ export class World {
   /** Runs to the end: `stormSteps` looks of the coordinator with faults, then without. */
   run(stormSteps: number, stepsMost = 200_000): Ending {
     for (let step = 0; step < stepsMost; step++) {
-      this.#faulty = step < stormSteps
+      if (this.#faulty && step >= stormSteps) this.#calmDown()
       this.#disk.cutsPerThousand = this.#faulty ? this.#weather.crashes : 0
       try {
         if (this.#look()) break
@@ -186,14 +129,74 @@ export class World {
       crashes: this.#crashes,
       fenced: this.#fenced,
       simulations: this.#simulations,
+      machines: this.#machines,
+      lies: this.#lies.length,
+      liesUsed: this.#lies.filter(({ island, evaluation, digest }) => {
+        const used = this.#disk.arrival(island, evaluation)
+        return used !== undefined && hex(used.digest) === digest
+      }).length,
       liars: Array.from({ length: this.#weather.liars }, (_, worker) => nameOf(worker)),
       status: this.#engine.status(),
     }
   }
 
+  #calmDown(): void {
+    this.#faulty = false
+    this.#machines?.settle()
+    this.#loseWhoLeft()
+    this.#fleetIsNews = true
+  }
+
+  /** What happens to the fleet, the queue and the coordinator between two looks. */
+  #mishaps(): void {
+    const { emptied, frozen, redelivered, fleet, mailTwice } = this.#weather
+    if (this.#machines && fleet && this.#happens(fleet.changes)) {
+      this.#machines.change()
+      this.#loseWhoLeft()
+      this.#fleetIsNews = true
+    }
+    if (this.#happens(emptied)) this.#inFlight.splice(0)
+    if (this.#happens(frozen)) this.#nowMs += 2 * leaseMs
+    if (this.#happens(redelivered) && this.#old.length > 0)
+      this.#simulate(this.#old[this.#draw.below(this.#old.length)]!)
+    if (this.#happens(mailTwice)) {
+      for (const { number } of this.#engine.search.islands) {
+        const mail = this.#disk.lastMail(number)
+        if (mail && !mail.ended) this.#engine.search.post.put(mail)
+      }
+    }
+  }
+
+  /** What was under way on machines that are gone comes back as lost, or not at all. */
+  #loseWhoLeft(): void {
+    const gone = ({ fact }: Arrival) =>
+      fact.kind !== 'fleet' && !this.#machines!.isPresent(fact.executor.host)
+    const lost = this.#inFlight.filter(gone)
+    const left = this.#inFlight.filter((arrival) => !gone(arrival))
+    this.#inFlight.splice(0, this.#inFlight.length, ...left)
+    for (const { fact } of lost) {
+      if (fact.kind !== 'result' || this.#draw.chance(1, 4)) continue
+      const { item, executor } = fact
+      const isolation = 'shared'
+      const detail = 'its machine left'
+      this.#arrive(this.#nowMs + 6_000, {
+        kind: 'lost',
+        item: { ...item, isolation },
+        cause: 'agent-lost',
+        detail,
+        executor,
+      })
+    }
+  }
+
   /** One look of the coordinator; true when there is nothing left to do. */
   #look(): boolean {
+    this.#mishaps()
     const facts = this.#arrived()
+    if (this.#machines && this.#fleetIsNews) {
+      this.#fleetIsNews = false
+      facts.unshift({ kind: 'fleet', hosts: this.#machines.present })
+    }
     this.#letReplacedTry(facts)
     this.#engine.take(facts, this.#nowMs)
     this.#makeDurable()
@@ -213,6 +216,7 @@ export class World {
     this.#makeDurable()
     const items = this.#engine.work(2 * this.#weather.workers, this.#nowMs)
     for (const item of items) {
+      if (this.#weather.redelivered > 0) this.#old[this.#order % 50] = item
       this.#simulate(item)
       if (this.#happens(this.#weather.twice)) this.#simulate(item)
     }
@@ -286,14 +290,30 @@ export class World {
   }
 
   #simulate(item: WorkItem): void {
-    const worker = this.#workerFor(item)
+    const chosen = this.#machines?.choose(item)
+    if (this.#machines && !chosen) {
+      const executor = { kind: 'thread', worker: 'nobody', host: 'nobody' } as const
+      this.#arrive(this.#nowMs + 10, {
+        kind: 'lost',
+        item,
+        cause: 'handed-back',
+        detail: 'nobody fits',
+        executor,
+      })
+      return
+    }
+    const worker = chosen ? 0 : this.#workerFor(item)
     const genome = genomeFromBytes(this.#plan.problem.spec, item.genome)
-    const duration = fixtureCost(genome) * 100 * (1 + this.#draw.below(3))
+    const slow = chosen?.machine.isSlow ? 20 : 1
+    const duration = fixtureCost(genome) * 100 * (1 + this.#draw.below(3)) * slow
     const delay = this.#happens(this.#weather.delayed) ? duration * this.#draw.below(1000) : 0
-    const startMs = Math.max(this.#nowMs, this.#busyUntilMs[worker]!)
+    const startMs = chosen
+      ? this.#machines!.startOf(chosen.executor.worker, this.#nowMs, duration)
+      : Math.max(this.#nowMs, this.#busyUntilMs[worker]!)
     const endMs = startMs + duration
-    this.#busyUntilMs[worker] = endMs
-    const executor = { kind: 'thread', worker: nameOf(worker), host: `h${worker % 5}` } as const
+    if (!chosen) this.#busyUntilMs[worker] = endMs
+    const executor =
+      chosen?.executor ?? ({ kind: 'thread', worker: nameOf(worker), host: `h${worker % 5}` } as const)
     const poison = this.#weather.poisonSize > 0 && genome.size![0] === this.#weather.poisonSize
     if (poison) {
       this.#arrive(endMs, { kind: 'lost', item, cause: 'died', detail: 'killed by the genome', executor })
@@ -317,7 +337,7 @@ export class World {
       if (!this.#happens(this.#weather.late)) return
     }
     this.#simulations++
-    const result = this.#resultOf(item, genome, worker)
+    const result = chosen ? this.#resultOn(item, genome, chosen) : this.#resultOf(item, genome, worker)
     const fact = {
       kind: 'result',
       item: this.#happens(this.#weather.misnumbered)
@@ -330,7 +350,12 @@ export class World {
       wallSeconds: duration / 1000,
     } as const
     this.#arrive(endMs + delay, fact)
-    if (this.#happens(this.#weather.duplicates)) this.#arrive(endMs + delay + this.#draw.below(100_000), fact)
+    if (this.#happens(this.#weather.duplicates)) {
+      for (let copies = 0; copies < 3; copies++) this.#arrive(endMs + delay + this.#draw.below(100_000), fact)
+    }
+    if (this.#happens(this.#weather.foreign)) {
+      this.#arrive(endMs, { ...fact, item: { ...fact.item, evaluation: 1_000_000 + item.evaluation } })
+    }
   }
 
   #resultOf(item: WorkItem, genome: Parameters<typeof fixtureCost>[0], worker: number): EvaluationResult {
@@ -340,6 +365,30 @@ export class World {
     const values = result.values.slice()
     values[this.#draw.below(values.length)] = -5 + 3 * this.#draw.uniform()
     return { values, failures: [] }
+  }
+
+  /** What a machine makes of it: of the other class the last bits may be others, of a bad one anything. */
+  #resultOn(
+    item: WorkItem,
+    genome: Parameters<typeof fixtureCost>[0],
+    { machine }: Chosen,
+  ): EvaluationResult {
+    const fleet = this.#weather.fleet!
+    const truth = simulated(this.#plan, genome, item.firstReplicate, item.replicates)
+    const result = machine.isOther && fleet.otherBits ? otherBits(truth) : truth
+    if (!machine.isBad || !this.#draw.chance(fleet.wrong, 1000)) return result
+    const liar = fleet.lie === 'together' ? 0 : Number(machine.host.slice(1))
+    const repeats = fleet.lie === 'alike' || fleet.lie === 'together'
+    const draw = repeats ? stream(item.evaluation, 'weather', item.island, liar, 11) : this.#draw
+    const values = result.values.slice()
+    if (fleet.lie === 'slight') {
+      // Worse on the first objective: no would-be best, so that only spot checks can find it.
+      for (let at = 0; at < values.length; at += columnsOf(this.#plan.problem))
+        values[at]! += 0.5 + draw.uniform()
+    } else values[draw.below(values.length)] = -5 + 3 * draw.uniform()
+    const lie = { values, failures: [] }
+    this.#lies.push({ island: item.island, evaluation: item.evaluation, digest: hex(resultDigest(lie)) })
+    return lie
   }
 
   /** A worker that may do it: the first free one of a random order, as a queue would have it. */
