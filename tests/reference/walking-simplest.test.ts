@@ -270,8 +270,8 @@ describe('towards chaos', () => {
 
 describe('the law for small slopes', () => {
   // theta = theta0 gamma^(1/3) + theta1 gamma; theta0 = tanh^(2/3)(tau / 2): closed form, tau = pi for the short gait,
-  // tan(tau / 2) = -3 tanh(tau / 2) for the long one. A theta1 of -0.270837 for the long gait does not survive
-  // recomputation, neither from the gait itself nor from the energy of a step: -0.18657.
+  // tan(tau / 2) = -3 tanh(tau / 2) for the long one. theta1 of the long
+  // gait is -0.18657, recomputed twice: from the gait itself and from the energy of a step.
   interface Expansion {
     readonly first: number
     readonly second: number
