@@ -266,6 +266,7 @@ export class Agent {
     this.shares.charge(lane.search, simulatedSeconds - chargedSeconds)
     if (receipt !== undefined) this.licences.release(receipt)
     this.counters.add(lane.takeCounts())
+    this.counters.simulatedSeconds += simulatedSeconds
     void this.feeder.poke()
   }
 

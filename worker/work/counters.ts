@@ -11,6 +11,9 @@ export class Counters {
   /** Items given back unfinished. */
   handedBack = 0
   leasesLost = 0
+  simulatedSeconds = 0
+  /** Unix time. */
+  lastAnswerSeconds = 0
   private readonly nowMs: () => number
   /** Simulations at moments of the last minute. */
   private readonly moments: { readonly ms: number; readonly simulations: number }[] = []

@@ -211,6 +211,7 @@ export class Hands {
         return sent.done
       },
       written: (letters) => {
+        this.options.counters.lastAnswerSeconds = Date.now() / 1000
         for (const { job } of letters) {
           job.unwritten--
           if (job.isComplete) this.finish(job)

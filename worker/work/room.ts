@@ -41,7 +41,7 @@ export class Room {
     check(this.usedCores >= 0 && this.usedMemoryMB >= 0, 'room is given back once')
   }
 
-  get isEmpty(): boolean {
-    return this.usedCores === 0
+  get coresInUse(): number {
+    return this.usedCores
   }
 }

@@ -26,6 +26,7 @@ import {
   recordKey,
   recordLocation,
   secondsLeft,
+  serveMetrics,
 } from '../../../worker/work/index.js'
 import type { CommandInput, Output } from '../command.js'
 import { version } from './version.js'
@@ -44,7 +45,9 @@ export async function serve(input: CommandInput): Promise<number> {
     `Worker ${options.agent} on ${options.host}, ${options.cores} cores, ${options.memoryMB} MB, ${options.processor}.`,
   )
   endInTime(output.signal, options.times.leaveMs)
-  const end = await agent.run()
+  const port = input.counts['--metrics']
+  const close = port === undefined ? undefined : await serveMetrics(port, agent)
+  const end = await agent.run().finally(close)
   lines.end(end.sentence, end.exitCode)
   endSoon(end.exitCode)
   return end.exitCode
