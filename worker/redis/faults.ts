@@ -83,9 +83,9 @@ const faultRows: readonly FaultRow[] = [
     final: true,
   },
   {
-    like: /Protocol error, got/i,
+    like: /Protocol error, got|Unknown RESP type/i,
     code: 'queue-tls',
-    says: 'the other side does not speak as Redis does without TLS',
+    says: 'what answers there does not speak as Redis does',
     cure: ownWords,
     final: true,
   },
@@ -115,6 +115,12 @@ export function asRefusal(fault: unknown, where: string): Refusal {
 export function isFinal(fault: unknown): boolean {
   const words = wordsOf(fault)
   return faultRows.find(({ like }) => like.test(words))?.final ?? false
+}
+
+/** True when the fault says by itself what is wrong. */
+export function isPlain(fault: unknown): boolean {
+  const words = wordsOf(fault)
+  return faultRows.some(({ like }) => like.test(words))
 }
 
 function wordsOf(fault: unknown): string {

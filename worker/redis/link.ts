@@ -8,7 +8,8 @@ import { Redis, type RedisOptions } from 'ioredis'
 import type { ClusterTimes } from '../../shared/cluster/times.js'
 import { type Refusal, refuse } from '../../shared/refusals.js'
 import { type RedisAddress, showAddress } from './address.js'
-import { asRefusal, isFinal } from './faults.js'
+import { greeting, tlsMismatch } from './diagnose.js'
+import { asRefusal, isFinal, isPlain } from './faults.js'
 
 export interface LinkOptions {
   readonly address: RedisAddress
@@ -26,6 +27,7 @@ const bytesPerMs = 125
 export class Link {
   readonly shown: string
   readonly #client: Redis
+  readonly #address: RedisAddress
   readonly #times: ClusterTimes
   #final: Refusal | undefined
   #last: Refusal | undefined
@@ -34,6 +36,7 @@ export class Link {
 
   constructor({ address, times, name, spreadMs = () => 0 }: LinkOptions) {
     this.shown = showAddress(address)
+    this.#address = address
     this.#times = times
     this.#client = new Redis({
       ...connectionOptions(address, times),
@@ -73,8 +76,18 @@ export class Link {
       // The reason comes as an event; the rejected promise only says that the connection was closed.
       const refusal = this.#final ?? this.#last ?? asRefusal(fault, this.shown)
       this.close()
-      throw refusal
+      throw await this.#diagnosed(refusal)
     }
+  }
+
+  async #diagnosed(refusal: Refusal): Promise<Refusal> {
+    if (isPlain(refusal.cause ?? refusal.detail)) return refusal
+    const said = await greeting(this.#address, this.#times.commandMs / 4)
+    if (said !== undefined && isPlain(said)) return asRefusal(said, this.shown)
+    const what = await tlsMismatch(this.#address, this.#times.commandMs)
+    return what === undefined
+      ? refusal
+      : refuse('queue-tls', { detail: `${this.shown}: ${what}`, cause: refusal })
   }
 
   /** Runs a command, or several; refuses at once when there is no connection, and after commandMs when nobody answers. */
@@ -104,8 +117,10 @@ export class Link {
   }
 
   #note(fault: Error): void {
-    this.#last = asRefusal(fault, this.shown)
-    if (isFinal(fault)) this.#final ??= this.#last
+    const refusal = asRefusal(fault, this.shown)
+    // A pipe that breaks after the server has said why must not hide that.
+    if (isPlain(fault) || this.#last === undefined) this.#last = refusal
+    if (isFinal(fault)) this.#final ??= refusal
   }
 
   #silent(what: string): Refusal {
