@@ -62,6 +62,48 @@ export const announcementSchema = z.strictObject({
 })
 export type Announcement = z.infer<typeof announcementSchema>
 
+/**
+ * An announcement of any version, as an agent hears it: of another one no more than who speaks is believed, so that the
+ * agent can say why it does not serve that search.
+ */
+export const heardAnnouncementSchema: z.ZodType<Announcement> = z.union([
+  announcementSchema,
+  z
+    .looseObject({
+      protocol: z.number(),
+      search: name,
+      beat: count.catch(0),
+      skerry: z.string().max(64).catch('?'),
+    })
+    .refine(({ protocol }) => protocol !== protocolVersion)
+    .transform(
+      ({ protocol, search, beat, skerry }): Announcement => ({
+        ...unknownSearch,
+        protocol,
+        search,
+        beat,
+        skerry,
+      }),
+    ),
+])
+
+const unknownSearch = {
+  record: '?',
+  holder: 0,
+  instance: '?',
+  pluginDigest: '0'.repeat(64),
+  pluginBytes: 0,
+  seed: 0,
+  sharedConditions: false,
+  exactness: 'bits',
+  needs: { cores: 1, memoryMB: 1, tokens: {} },
+  tokens: {},
+  share: 1,
+  shutOut: [],
+  draining: [],
+  waiting: false,
+} as const satisfies Partial<Announcement>
+
 /** States of an agent, each with what it means to a person. */
 export const agentStates = {
   starting: 'connects, has taken nothing yet',

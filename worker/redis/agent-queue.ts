@@ -5,7 +5,7 @@
 import { randomBytes } from 'node:crypto'
 import { type Answers, encodeAnswers } from '../../shared/cluster/codec.js'
 import { agentsKey, openQueue, queueOf, searchesKey, searchKeys } from '../../shared/cluster/keys.js'
-import { type Announcement, announcementSchema, type Heartbeat } from '../../shared/cluster/messages.js'
+import { type Announcement, type Heartbeat, heardAnnouncementSchema } from '../../shared/cluster/messages.js'
 import type { ClusterTimes } from '../../shared/cluster/times.js'
 import type { AgentQueue, TakenJob } from '../work/port.js'
 import type { RedisAddress } from './address.js'
@@ -32,7 +32,7 @@ export class RedisAgentQueue implements AgentQueue {
   readonly #waiting: Link
   readonly #queues: Queues
   readonly #tokens: Tokens
-  readonly #announcements = new Reader(announcementSchema)
+  readonly #announcements = new Reader(heardAnnouncementSchema)
   #fleet = 1
   #closed = false
 
