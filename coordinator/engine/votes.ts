@@ -137,14 +137,15 @@ function winnerOf(groups: readonly Group[]): Group | undefined {
   return others.every(({ processor }) => isOn(first, processor)) ? first : undefined
 }
 
-function confirmed(winner: Group, votes: readonly Vote[], { agree }: Reading) {
+function confirmed(winner: Group, votes: readonly Vote[], { agree, counts }: Reading) {
   const agreeing = votes.filter((vote) => agree(winner.vote, vote))
   const hosts = new Set(agreeing.map(({ executor }) => executor.host))
   return {
     kind: 'confirmed',
     vote: winner.vote,
     agreeing,
-    wrong: votes.filter((vote) => !agree(winner.vote, vote)),
+    // Of another class than is used, or shut out already: that is no new offence.
+    wrong: votes.filter((vote) => !agree(winner.vote, vote) && counts(vote.executor)),
     by: hosts.size > 1 ? 'host' : 'process',
   } as const
 }

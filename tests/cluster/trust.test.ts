@@ -6,6 +6,7 @@
 import { describe, expect, it } from 'vitest'
 import type { SearchPlan } from '../../coordinator/evolution/plan.js'
 import { hex } from '../../shared/digests.js'
+import { Refusal } from '../../shared/refusals.js'
 import { stream } from '../../shared/streams.js'
 import { fixtureProblem, islandPlan, mixedPlan, simulated } from '../fixture.js'
 import { type FleetWeather, otherBits, steady } from './machines.js'
@@ -120,6 +121,39 @@ describe('with bad machines', () => {
       return wrongBests(plan, new World(plan, seed, inFleet(fleet)).run(4_000)).length > 0
     })
     expect(seen.length).toBeGreaterThan(10)
+  })
+})
+
+describe('a problem that does not repeat', () => {
+  it('is refused by its name, and no machine is blamed', () => {
+    for (const seed of seedsOf(50)) {
+      // Every machine gives something else each time it is asked.
+      const world = new World(plan, seed, inFleet({ hosts: 12, threads: 2, bad: 12, wrong: 1000 }))
+      let refused: unknown
+      try {
+        world.run(4_000)
+      } catch (fault) {
+        refused = fault
+      }
+      expect(refused, repeat(seed)).toMatchObject({ code: 'not-deterministic' })
+      expect((refused as Refusal).detail, repeat(seed)).toContain(fixtureProblem.name)
+      const kinds = [...world.disk.events()].map(({ kind }) => kind)
+      expect(kinds, repeat(seed)).not.toContain('host-shut-out')
+      expect(kinds, repeat(seed)).not.toContain('worker-shut-out')
+    }
+  })
+
+  it('now and then is refused as well, when more machines than can be faulty seem to be wrong', () => {
+    const seeds = seedsOf(100)
+    const refused = seeds.filter((seed) => {
+      try {
+        new World(long, seed, inFleet({ hosts: 8, threads: 2, bad: 8, wrong: 200 })).run(4_000)
+        return false
+      } catch (fault) {
+        return fault instanceof Refusal && fault.code === 'not-deterministic'
+      }
+    })
+    expect(refused.length).toBe(seeds.length)
   })
 })
 

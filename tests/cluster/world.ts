@@ -96,6 +96,10 @@ export class World {
     this.#engine = this.#open()
   }
 
+  get disk(): Disk {
+    return this.#disk
+  }
+
   #open(): Engine {
     this.#journal = this.#disk.takeOver()
     const [stopAfter] = this.#rests
