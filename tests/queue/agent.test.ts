@@ -3,7 +3,7 @@
 
 import { afterEach, beforeAll, describe, expect, test } from 'vitest'
 import { ensureBuilt } from '../tools/built.js'
-import { pause } from '../tools/redis-server.js'
+import { pause, RedisServer } from '../tools/redis-server.js'
 import { descendants, endless, isAlive, Site, until, Worker } from './agent-site.js'
 
 beforeAll(() => ensureBuilt(), 120_000)
@@ -163,6 +163,32 @@ test('Redis killed and back empty: answers that were under way arrive, and new w
 })
 
 describe('what is wrong is said, with its exit code', () => {
+  test('a coordinator of another version: both are named, and with no other search it ends with 76', async () => {
+    const server = await RedisServer.start()
+    let beat = 0
+    const announce = setInterval(() => {
+      const foreign = { protocol: 99, search: 'weir', skerry: '9.9.9', beat: ++beat, novelty: true }
+      server.ask('HSET', 'skerry:searches', 'weir', JSON.stringify(foreign))
+    }, 300)
+    const worker = new Worker(['--redis', server.url], { SKERRY_TEST_TIME_SCALE: '0.2' })
+    expect(await worker.gone).toBe(76)
+    expect(worker.out).toContain('version 99 of the protocol (Skerry 9.9.9), this worker version 1')
+    clearInterval(announce)
+    await server.close()
+  })
+
+  test('--json: one object a line', async () => {
+    site = await Site.open(0.2)
+    const worker = site.worker('host-a', ['--json', '--idle-exit', '1'])
+    expect(await worker.gone).toBe(0)
+    const lines = worker.out
+      .trim()
+      .split('\n')
+      .map((line) => JSON.parse(line) as { readonly state: string })
+    expect(lines.length).toBeGreaterThanOrEqual(3)
+    expect(lines.at(-1)).toMatchObject({ state: 'gone', exitCode: 0 })
+  })
+
   test.each([
     [[], 64, 'no Redis was named'],
     [['--redis', 'redis://no-such-host.invalid'], 69, 'there is no host of this name'],

@@ -44,7 +44,7 @@ describe('which searches are served', () => {
   test('with a key: an unsigned problem is refused and never run, with 77 in the end; a signed one is served', async () => {
     const folder = mkdtempSync(join(tmpdir(), 'skerry-serving-'))
     const key = new TextEncoder().encode('the key of the water works')
-    const made = scene({ cache: new PluginCache({ folder, key }) })
+    const made = scene({ cache: new PluginCache({ folder, key: () => key }) })
     const { pluginDigest } = made.queue.announce('weir')
     made.queue.add('weir', [100])
     await made.pass(8000)
