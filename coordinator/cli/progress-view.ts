@@ -20,6 +20,8 @@ export interface BestView {
   readonly estimates: readonly EstimateView[]
   /** False while a second simulation is still to confirm it. */
   readonly confirmed: boolean
+  /** By another machine, or only by another process of the same machine; absent while it is not confirmed. */
+  readonly confirmedBy?: 'process' | 'host'
 }
 
 export interface IslandView {

@@ -102,7 +102,8 @@ function bestSentence(best: BestView | undefined): string {
     )
     .join(', ')
   const sample = `mean of ${counted(best.replicates, 'replicate')}`
-  const confirmed = best.confirmed ? '' : ', not confirmed yet'
+  const byOne = best.confirmedBy === 'process' ? ', confirmed on one machine only' : ''
+  const confirmed = best.confirmed ? byOne : ', not confirmed yet'
   return `${best.id}: ${numbers} (${sample}${confirmed}; chosen for being best, so fresh tests will on average be worse)`
 }
 

@@ -2,12 +2,13 @@
 // the simulations that are asked for again. Memory keeps a bounded number; the record has them all.
 
 import { check } from '../../shared/check.js'
+import { equalBytes } from '../../shared/digests.js'
 import { limits } from '../../shared/limits.js'
 import type { Executor } from '../../shared/result.js'
 import { columnsOf } from '../evolution/estimate.js'
 import type { Search } from '../evolution/search.js'
 import type { Block, Individual } from '../evolution/types.js'
-import type { ArrivalRow, RecordReader } from './ports.js'
+import type { ArrivalRow, ConfirmationRow, RecordReader } from './ports.js'
 import type { Rows } from './rows.js'
 import type { Trust } from './trust.js'
 import { newWork, type Work, type Works } from './works.js'
@@ -96,10 +97,8 @@ export class Confirmed {
   #levelOf(island: number, evaluation: number): Level | undefined {
     const known = this.#evaluations.get(island)?.get(evaluation)
     if (known) return known
-    const agreeing = this.#parts.reader.confirmations(island, evaluation).filter(({ agrees }) => agrees)
-    if (agreeing.length === 0) return undefined
-    const level = agreeing.some(({ by }) => by === 'host') ? 'host' : 'process'
-    this.remember(island, evaluation, level)
+    const level = levelOfRows(this.#parts.reader.confirmations(island, evaluation))
+    if (level !== undefined) this.remember(island, evaluation, level)
     return level
   }
 
@@ -163,6 +162,37 @@ export class Confirmed {
     works.want(work, 'confirm')
     return work
   }
+}
+
+function levelOfRows(rows: readonly ConfirmationRow[]): Level | undefined {
+  const agreeing = rows.filter(({ agrees }) => agrees)
+  if (agreeing.length === 0) return undefined
+  return agreeing.some(({ by }) => by === 'host') ? 'host' : 'process'
+}
+
+/**
+ * By whom all results of an individual were confirmed, as the record has it: by other machines, or only by other
+ * processes of the same; undefined when something is not confirmed. What was corrected was confirmed by the two that
+ * agreed against it.
+ */
+export function confirmedBy(
+  reader: Pick<RecordReader, 'confirmations'>,
+  { blocks }: Pick<Individual, 'blocks'>,
+): Level | undefined {
+  const levels = blocks.map(({ island, evaluation }) => {
+    const rows = reader.confirmations(island, evaluation)
+    return levelOfRows(rows) ?? levelOfPairs(rows)
+  })
+  if (levels.includes(undefined)) return undefined
+  return levels.includes('process') ? 'process' : 'host'
+}
+
+function levelOfPairs(rows: readonly ConfirmationRow[]): Level | undefined {
+  for (const row of rows) {
+    const same = rows.filter((other) => other !== row && equalBytes(other.digest, row.digest))
+    if (same.length > 0) return same.some(({ host }) => host !== row.host) ? 'host' : 'process'
+  }
+  return undefined
 }
 
 /** Who simulated, as the record has it. */

@@ -2,6 +2,7 @@
 
 import { hex } from '../../../shared/digests.js'
 import { islandName, nameOf } from '../../../shared/ids.js'
+import { confirmedBy } from '../../engine/confirmed.js'
 import type { RecordReader } from '../../engine/ports.js'
 import { naturalValue, replicateValues, simulationsPerReplicate } from '../../evolution/estimate.js'
 import type { Island } from '../../evolution/island.js'
@@ -60,11 +61,13 @@ export function bestOf(islands: readonly Island[]): Individual | undefined {
 }
 
 export function bestView(plan: SearchPlan, reader: RecordReader, best: Individual): BestView {
+  const by = confirmedBy(reader, best)
   return {
     id: nameOf(best.id),
     replicates: best.replicates,
     estimates: estimatesOf(plan, best),
-    confirmed: best.blocks.every((block) => reader.isConfirmed(block.island, block.evaluation)),
+    confirmed: by !== undefined,
+    ...(by === undefined ? {} : { confirmedBy: by }),
   }
 }
 
