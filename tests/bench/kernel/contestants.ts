@@ -22,7 +22,13 @@ const programs: readonly Program[] = [
   { name: 'C scalar f32', number: 'float', bytes: 0 },
 ]
 
-const warmUpNanoseconds = 400e6
+const stepPace = { warmUpNanoseconds: 400e6, sampleNanoseconds: 25e6 } as const
+/**
+ * What surrounds the kernel is called a few times an evaluation: its fast code takes some hundreds of them, which a search
+ * has behind it within its first minute; and workers evaluate without a break, so that a sample of one or two, after
+ * others have had the processor's caches, would be none of theirs.
+ */
+const evaluationPace = { warmUpNanoseconds: 3e9, sampleNanoseconds: 150e6 } as const
 
 export const compilerWords = ['-O3', '-march=native', '-ffast-math']
 
@@ -61,9 +67,7 @@ function moversFor(dimensions: 2 | 3, mover: string): Contestant[] {
     opening: [],
     replicates: replicatesOf(kind),
     leastSteps: kind.startsWith('crawler') ? 1 : 64,
-    // What surrounds the kernel is called a few times an evaluation: its fast code takes some hundreds of them, which a
-    // search has behind it within its first minute.
-    warmUpNanoseconds: kind.startsWith('crawler') ? 3e9 : warmUpNanoseconds,
+    ...(kind.startsWith('crawler') ? evaluationPace : stepPace),
   }))
 }
 
@@ -82,7 +86,7 @@ function programsFor(dimensions: 2 | 3, source: string, folder: string): Contest
       if (done.status !== 0) throw new Error(`gcc cannot compile ${source}: ${done.stderr}`)
       const replicates = bytes === 0 ? 1 : (2 * bytes) / (number === 'double' ? 8 : 4)
       const opening = [`load ${body}`]
-      return { name, program, args: [], opening, replicates, leastSteps: 64, warmUpNanoseconds }
+      return { name, program, args: [], opening, replicates, leastSteps: 64, ...stepPace }
     })
 }
 

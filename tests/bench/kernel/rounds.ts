@@ -18,6 +18,8 @@ export interface Contestant {
   readonly leastSteps: number
   /** CPU until the fast code is there. */
   readonly warmUpNanoseconds: number
+  /** CPU of one sample. */
+  readonly sampleNanoseconds: number
 }
 
 interface Runner {
@@ -35,8 +37,6 @@ export type Rounds = readonly { readonly [name: string]: number }[]
  * long as its neighbours are busy, and a process mostly stays where it is.
  */
 const pinned = spawnSync('taskset', ['-c', '0', 'true']).status === 0 ? ['taskset', '-c', '0'] : []
-
-const sampleNanoseconds = 25e6
 
 export async function alternate(contestants: readonly Contestant[], count: number): Promise<Rounds> {
   const runners = contestants.map(start)
@@ -93,19 +93,17 @@ function start(contestant: Contestant): Runner {
 
 /** Until the fast code is there; then finds how many steps a sample has. */
 async function warmUp(runner: Runner): Promise<void> {
-  for (const line of runner.contestant.opening) await runner.ask(line)
-  let steps = runner.contestant.leastSteps
+  const { opening, leastSteps, warmUpNanoseconds, sampleNanoseconds } = runner.contestant
+  for (const line of opening) await runner.ask(line)
+  let steps = leastSteps
   let spent = 0
   let last = 0
-  while (spent < runner.contestant.warmUpNanoseconds) {
+  while (spent < warmUpNanoseconds) {
     last = Number(await runner.ask(`run ${steps}`))
     spent += Math.max(last, 1e5)
     if (last < sampleNanoseconds / 2) steps *= 2
   }
-  runner.stepsPerSample = Math.max(
-    runner.contestant.leastSteps,
-    Math.round((steps * sampleNanoseconds) / last),
-  )
+  runner.stepsPerSample = Math.max(leastSteps, Math.round((steps * sampleNanoseconds) / last))
 }
 
 export interface Ratio {
