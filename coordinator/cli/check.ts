@@ -21,6 +21,7 @@ import {
   makingLines,
   tryMaking,
 } from './check/making.js'
+import { preemptionLine } from './check/preemption.js'
 import type { StepTrial } from './check/step.js'
 import { stepLines } from './check/step-lines.js'
 import type { ProblemFault, TrialPlan } from './check/trials.js'
@@ -299,6 +300,7 @@ function measuredLines(measured: Measured, report: CheckReport, opened: OpenedSe
     ...stepLines(measured.step),
     memoryLine(measured.memory),
     costLine(measured),
+    ...preemptionLines(measured, opened),
     ...epochLines(measured.epoch),
     ...adviceLines(measured, opened),
   ]
@@ -325,6 +327,11 @@ function memoryLine({ peakBytes, addedBytes, keptBytesPerSimulation: kept }: Mea
 function costLine({ coreHours }: Measured): string {
   const extra = coreHours.controls + coreHours.confirmation
   return `The whole budget costs about ${hours(coreHours.total)}: search ${hours(coreHours.search)}, controls ${hours(coreHours.controls)}, confirmation ${hours(coreHours.confirmation)}${extra > 0 ? ' and more for every new best' : ' (none)'}. Evolved machines may take longer than random ones.`
+}
+
+function preemptionLines({ secondsPerSimulation }: Measured, { plan }: OpenedSearch): string[] {
+  const simulations = plan.replicates.first * Math.max(1, plan.problem.cases.length)
+  return [preemptionLine(secondsPerSimulation.mean * simulations, false) ?? []].flat()
 }
 
 function epochLines(epoch: EpochMeaning | undefined): string[] {
