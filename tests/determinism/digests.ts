@@ -22,5 +22,5 @@ export const golden: { readonly [name: string]: string } = {
   'pump-mount 1': '9d6963dc01ce101095be32bbefa6d847c82ab7ed6be05e3bb8699339ca15ae1f',
   'seal-pad 2': 'ec1e6fac7e22ac5d8516fa172cedea39baf8df44c01c31008f3b2e32cc002096',
   'ramp-walker 1': '7e229e3caf5f9fa83dd07df783b6e06654bbcd7e04387a3c8d3c42c774f36708',
-  'screen-rake 1+rapier2d-deterministic-0.20.0': 'a651088f0c95eaffa36a7f4e40d46d3a71a13704e38a10a5796a3074ece059ca',
+  'screen-rake 2+rapier2d-deterministic-0.20.0': '52753a2d1edcc911b4b6d963bb048b4470ac3a5d2c10d661697c1a1bce5da74e',
 }

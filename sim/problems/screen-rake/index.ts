@@ -16,30 +16,32 @@ import { runTrial } from './trial.js'
 
 /** Highest value that is kept of the work per mass, J/kg, and the mass below which a machine has cleared nothing. */
 const perKgMost = 10_000
-const kgLeast = 0.05
+const kgLeast = 0.1
+/** Of the strongest motor that is drawn. */
+const torqueMostNm = numbers.motor.forceMost * numbers.strengthMost
 
-/** A machine that stands still needs no energy and has cleared nothing: it gets the highest value, not 0. */
-function energyPerKg(energyJ: number, clearedKg: number): number {
-  return clearedKg < kgLeast ? perKgMost : Math.min(perKgMost, energyJ / clearedKg)
+/**
+ * A machine that stands still needs neither energy nor torque and has cleared nothing: it gets the highest values, not
+ * the lowest, or a search for low ones would breed idlers.
+ */
+function effortObjectives(clearedKg: number, energyJ: number, peakTorqueNm: number) {
+  if (clearedKg < kgLeast) return { energy: perKgMost, peakTorque: torqueMostNm }
+  return { energy: Math.min(perKgMost, energyJ / clearedKg), peakTorque: peakTorqueNm }
 }
 
 function simulateOne(genome: RakeGenome, { condition }: Situation<IntakeCondition>, divide = 1) {
   const result = runTrial(genome, condition, divide)
   if ('reason' in result) return { failed: `${result.reason} at ${result.seconds.toFixed(2)} s` }
-  const { overLip, raised, energyJ, peakTorqueNm, clearedKg, raisedKg, machineKg, motors } = result
-  const share = numbers.raisedCounts
+  const { overLip, raised, totalKg, energyJ, peakTorqueNm, machineKg, motors } = result
+  const cleared = (1 - numbers.raisedCounts) * overLip + numbers.raisedCounts * raised
   const { stroke, power, duty } = worstFigures(motors)
   return {
-    objectives: {
-      cleared: (1 - share) * overLip + share * raised,
-      energy: energyPerKg(energyJ, (1 - share) * clearedKg + share * raisedKg),
-      peakTorque: peakTorqueNm,
-    },
+    objectives: { cleared, ...effortObjectives(cleared * totalKg, energyJ, peakTorqueNm) },
     measures: {
       overLip,
       raised,
       work: energyJ,
-      clearedMass: clearedKg,
+      clearedMass: overLip * totalKg,
       machineMass: machineKg,
       motors: motors.length,
       stroke,
@@ -54,7 +56,7 @@ const { stroke, power, duty } = actuatorMeasures(numbers.motor)
 export default defineProblem({
   name: 'screen-rake',
   // The library's version is part of the problem's: results of two versions are never taken for the same.
-  version: `1+${library}`,
+  version: `2+${library}`,
   summary: 'A motor-driven linkage rakes debris up an intake screen and over its lip into a trough.',
   genome: rakeGenome,
   objectives: {

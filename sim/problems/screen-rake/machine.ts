@@ -4,7 +4,7 @@
 import { atan2 } from '../../../shared/detmath/inverse-trigonometry.js'
 import { cos, sin } from '../../../shared/detmath/trigonometry.js'
 import type { BodySpec, JointSpec, MotorSpec, ShapeSpec } from '../../rigid/spec.js'
-import { layoutOf, poseShare, type RakeGenome, ratioOf } from './genome.js'
+import { layoutOf, pathAt, type RakeGenome, ratioOf, tiltAt } from './genome.js'
 import { driveOf, numbers } from './numbers.js'
 
 export interface Driven {
@@ -34,15 +34,6 @@ export interface Outline {
 
 type Place = readonly [number, number]
 const { degree } = numbers
-
-/** Ranges of the joints: direction of the first link from straight down, then turns against the link before. */
-export const ranges = {
-  shoulder: [-110 * degree, 70 * degree],
-  elbow: [-150 * degree, 150 * degree],
-  wrist: [-120 * degree, 120 * degree],
-} as const
-
-const within = ([low, high]: readonly [number, number], share: number) => low + (high - low) * share
 
 function along(from: Place, turn: number, lengthM: number): Place {
   return [from[0] + lengthM * cos(turn), from[1] + lengthM * sin(turn)]
@@ -155,9 +146,9 @@ function crossBar(at: Place): ShapeSpec {
   return { outline: { kind: 'ball', radiusM }, atM: at, material, layer: 'beam' }
 }
 
-/** Tines and their hooks from a place of a body, turned against its axis. */
-function combBars(genome: RakeGenome, at: Place): [string, Place, Place][] {
-  const turn = genome.combAngle[0]! * degree
+/** Tines and their hooks from a place of a body, turned against its axis by so many degrees. */
+function combBars(genome: RakeGenome, at: Place, degrees = genome.combAngle[0]!): [string, Place, Place][] {
+  const turn = degrees * degree
   const end = along(at, turn, genome.tine[0]!)
   const bars: [string, Place, Place][] = [['comb', at, end]]
   // A hook shorter than a centimetre is only the rounding of the tip.
@@ -167,24 +158,103 @@ function combBars(genome: RakeGenome, at: Place): [string, Place, Place][] {
   return bars
 }
 
-type Builder = (genome: RakeGenome, assembly: Assembly, base: Place) => void
-
-const builders: { readonly [layout in ReturnType<typeof layoutOf>]: Builder } = {
-  'two-arm': (genome, assembly, base) => arms(genome, assembly, base, false),
-  'three-arm': (genome, assembly, base) => arms(genome, assembly, base, true),
-  'sliding-arm': slidingArm,
-  crank: crankMachine,
+interface Reach {
+  /** From straight down. */
+  readonly direction: number
+  readonly distanceM: number
 }
 
-/** Turn of the first link: its joint's place, as the base does not turn. */
-const shoulderTurn = (genome: RakeGenome) => (seconds: number) =>
-  within(ranges.shoulder, poseShare(genome, 0, seconds)) - Math.PI / 2
+/** The way from the base pin to where the comb shall be; a path that goes higher than the pin is led just below it. */
+function reachOf(genome: RakeGenome, base: Place, turns: number): Reach {
+  const [x, y] = pathAt(genome, turns)
+  const [dx, down] = [x - base[0], Math.max(numbers.belowPinM, base[1] - y)]
+  return { direction: atan2(dx, down), distanceM: Math.sqrt(dx * dx + down * down) }
+}
 
-function arms(genome: RakeGenome, assembly: Assembly, base: Place, hasWrist: boolean): void {
+/**
+ * Places of shoulder (turn of the arm) and elbow that put the end of the forearm there, or as near as it reaches. Of the
+ * two ways to bend, the one whose elbow stands out over the water.
+ */
+function bentArms(
+  genome: RakeGenome,
+  base: Place,
+  turns: number,
+): readonly [shoulder: number, elbow: number] {
+  const [a, b] = [genome.links[0]!, genome.links[1]!]
+  const { direction, distanceM } = reachOf(genome, base, turns)
+  const c = Math.min(bendLeast, Math.max(-bendLeast, (distanceM * distanceM - a * a - b * b) / (2 * a * b)))
+  const s = Math.sqrt(1 - c * c)
+  return [direction - Math.PI / 2 - atan2(b * s, a + b * c), atan2(s, c)]
+}
+
+/** Cosine of the least bend of an elbow, stretched or folded: 10 degrees. */
+const bendLeast = cos(10 * degree)
+
+/** Places of shoulder and slide that put the end of the rod there, or as near as it reaches. */
+function stretchedArm(
+  genome: RakeGenome,
+  base: Place,
+  turns: number,
+): readonly [shoulder: number, slideM: number] {
+  const { direction, distanceM } = reachOf(genome, base, turns)
+  return [direction - Math.PI / 2, Math.min(strokeOf(genome), Math.max(0, distanceM - genome.links[0]!))]
+}
+
+const strokeOf = ({ links }: RakeGenome) => 0.8 * Math.min(links[0]!, links[1]!)
+const crankTurn = (turns: number) => 2 * Math.PI * turns
+
+interface Design {
+  readonly genome: RakeGenome
+  readonly base: Place
+  /** The part of the cycle in which it begins, in turns. */
+  readonly start: number
+}
+
+interface Kind {
+  /** Where the comb is fixed, in this part of the cycle. */
+  readonly combAt: (genome: RakeGenome, base: Place, turns: number) => Place
+  readonly build: (design: Design, assembly: Assembly) => void
+}
+
+const kinds: { readonly [layout in ReturnType<typeof layoutOf>]: Kind } = {
+  'two-arm': { combAt: endOfArms, build: (design, assembly) => arms(design, assembly, false) },
+  'three-arm': { combAt: endOfArms, build: (design, assembly) => arms(design, assembly, true) },
+  'sliding-arm': {
+    combAt: (genome, base, turns) => {
+      const [shoulder, slideM] = stretchedArm(genome, base, turns)
+      return along(base, shoulder, genome.links[0]! + slideM)
+    },
+    build: slidingArm,
+  },
+  crank: {
+    combAt: (genome, base, turns) => {
+      const { crankEnd, couplerTurn } = fourBars(genome, base, turns)
+      return along(crankEnd, couplerTurn, genome.links[0]! + genome.links[1]!)
+    },
+    build: crankMachine,
+  },
+}
+
+function endOfArms(genome: RakeGenome, base: Place, turns: number): Place {
+  const [shoulder, elbow] = bentArms(genome, base, turns)
+  return along(along(base, shoulder, genome.links[0]!), shoulder + elbow, genome.links[1]!)
+}
+
+/** Where a joint is told to be, seconds after the start of work. */
+const told =
+  ({ genome, start }: Design, place: (turns: number) => number) =>
+  (seconds: number) =>
+    place(start + seconds / genome.period[0]!)
+
+function arms(design: Design, assembly: Assembly, hasWrist: boolean): void {
+  const { genome, base } = design
   const [armM, forearmM] = [genome.links[0]!, genome.links[1]!]
-  const shoulder = shoulderTurn(genome)
-  const elbow = (seconds: number) => within(ranges.elbow, poseShare(genome, 1, seconds))
-  const wrist = (seconds: number) => within(ranges.wrist, poseShare(genome, 2, seconds))
+  const shoulder = told(design, (turns) => bentArms(genome, base, turns)[0])
+  const elbow = told(design, (turns) => bentArms(genome, base, turns)[1])
+  const wrist = told(design, (turns) => {
+    const [shoulderTurn, elbowTurn] = bentArms(genome, base, turns)
+    return tiltAt(genome, turns) * degree - shoulderTurn - elbowTurn
+  })
   const elbowAt = along(base, shoulder(0), armM)
   const forearmTurn = shoulder(0) + elbow(0)
   const tip: Place = [forearmM, 0]
@@ -199,7 +269,7 @@ function arms(genome: RakeGenome, assembly: Assembly, base: Place, hasWrist: boo
       'comb',
       along(elbowAt, forearmTurn, forearmM),
       forearmTurn + wrist(0),
-      combBars(genome, [0, 0]),
+      combBars(genome, [0, 0], 0),
       { turnedBy: 2 },
     )
   } else assembly.link('forearm', elbowAt, forearmTurn, [forearm, ...combBars(genome, tip)], { turnedBy: 1 })
@@ -209,33 +279,43 @@ function arms(genome: RakeGenome, assembly: Assembly, base: Place, hasWrist: boo
 }
 
 /** The rod's origin is its outer end; it reaches back into the arm. */
-function slidingArm(genome: RakeGenome, assembly: Assembly, base: Place): void {
+function slidingArm(design: Design, assembly: Assembly): void {
+  const { genome, base } = design
   const [armM, rodM] = [genome.links[0]!, genome.links[1]!]
-  const strokeM = 0.8 * Math.min(armM, rodM)
-  const shoulder = shoulderTurn(genome)
-  const slide = (seconds: number) => strokeM * poseShare(genome, 1, seconds)
+  const shoulder = told(design, (turns) => stretchedArm(genome, base, turns)[0])
+  const slide = told(design, (turns) => stretchedArm(genome, base, turns)[1])
   const turn = shoulder(0)
   assembly.link('arm', base, turn, [['arm', [0, 0], [armM, 0]]], { motorAtM: [0.1, 0], turnedBy: 0 })
   const bars: [string, Place, Place][] = [['rod', [-rodM, 0], [0, 0]], ...combBars(genome, [0, 0])]
   assembly.link('rod', along(base, turn, armM + slide(0)), turn, bars)
   assembly.hinge('shoulder', 'intake', 'arm', base, shoulder)
-  assembly.slider('slide', 'arm', 'rod', [armM, 0], strokeM, slide)
+  assembly.slider('slide', 'arm', 'rod', [armM, 0], strokeOf(genome), slide)
+}
+
+/** The four bars in this part of the cycle. */
+function fourBars(genome: RakeGenome, base: Place, turns: number) {
+  const pin = along(base, genome.rockerPinAngle[0]! * degree, genome.rockerPin[0]!)
+  const crankEnd = along(base, crankTurn(turns), genome.crank[0]!)
+  const meet = meetingPoint(crankEnd, genome.links[0]!, pin, genome.rocker[0]!)
+  return {
+    pin,
+    crankEnd,
+    couplerTurn: atan2(meet[1] - crankEnd[1], meet[0] - crankEnd[0]),
+    rockerTurn: atan2(meet[1] - pin[1], meet[0] - pin[0]),
+  }
 }
 
 /** The coupler reaches on beyond the rocker's pin to the comb. */
-function crankMachine(genome: RakeGenome, assembly: Assembly, base: Place): void {
+function crankMachine(design: Design, assembly: Assembly): void {
+  const { genome, base, start } = design
   const [crankM, couplerM, rockerM] = [genome.crank[0]!, genome.links[0]!, genome.rocker[0]!]
-  const crankTurn = (seconds: number) => 2 * Math.PI * (genome.poses[0]! + seconds / genome.period[0]!)
-  const pin = along(base, genome.rockerPinAngle[0]! * degree, genome.rockerPin[0]!)
-  const crankEnd = along(base, crankTurn(0), crankM)
-  const meet = meetingPoint(crankEnd, couplerM, pin, rockerM)
-  const couplerTurn = atan2(meet[1] - crankEnd[1], meet[0] - crankEnd[0])
-  const rockerTurn = atan2(meet[1] - pin[1], meet[0] - pin[0])
+  const { pin, crankEnd, couplerTurn, rockerTurn } = fourBars(genome, base, start)
   const tip: Place = [couplerM + genome.links[1]!, 0]
-  assembly.link('crank', base, crankTurn(0), [['crank', [0, 0], [crankM, 0]]], { turnedBy: 0 })
+  const turn = told(design, crankTurn)
+  assembly.link('crank', base, crankTurn(start), [['crank', [0, 0], [crankM, 0]]], { turnedBy: 0 })
   assembly.link('coupler', crankEnd, couplerTurn, [['coupler', [0, 0], tip], ...combBars(genome, tip)])
   assembly.link('rocker', pin, rockerTurn, [['rocker', [0, 0], [rockerM, 0]]])
-  assembly.hinge('crank pin', 'intake', 'crank', base, crankTurn)
+  assembly.hinge('crank pin', 'intake', 'crank', base, turn)
   assembly.hinge('coupler pin', 'crank', 'coupler', [crankM, 0])
   assembly.hinge('rocker pin', 'intake', 'rocker', pin)
   assembly.hinge('joint pin', 'coupler', 'rocker', [couplerM, 0], undefined, [rockerM, 0])
@@ -251,10 +331,27 @@ function meetingPoint(a: Place, fromA: number, b: Place, fromB: number): Place {
   return [a[0] + (dx * x + dy * y) / distance, a[1] + (dy * x - dx * y) / distance]
 }
 
-/** The machine at its first pose, its motors as strong as given (1 for as their class says). */
+/** A rake is parked with its comb as high as its cycle takes it (to a twenty-fourth of the cycle). */
+const parkingPlaces = 24
+
+function parkedAt(genome: RakeGenome, base: Place): number {
+  const { combAt } = kinds[layoutOf(genome)]
+  let best = 0
+  let highestM = Number.NEGATIVE_INFINITY
+  for (let k = 0; k < parkingPlaces; k++) {
+    const y = combAt(genome, base, k / parkingPlaces)[1]
+    if (y <= highestM) continue
+    highestM = y
+    best = k / parkingPlaces
+  }
+  return best
+}
+
+/** The machine parked, its motors as strong as given (1 for as their class says). */
 export function buildMachine(genome: RakeGenome, strengths: readonly number[] = [1, 1, 1]): Machine {
   const assembly = new Assembly(genome, strengths)
-  builders[layoutOf(genome)](genome, assembly, [genome.baseX[0]!, genome.baseY[0]!])
+  const base: Place = [genome.baseX[0]!, genome.baseY[0]!]
+  kinds[layoutOf(genome)].build({ genome, base, start: parkedAt(genome, base) }, assembly)
   const { bodies, joints, driven, outlines } = assembly
   return { bodies, joints, driven, outlines }
 }

@@ -14,21 +14,23 @@ export const numbers = {
 
   // The intake: a bar screen 0.5 m wide across a small channel. Bars lean back 70 degrees from the horizontal (hand-
   // and machine-raked screens stand at 60 to 80 degrees: common practice, no source). From the lip an apron falls
-  // at 30 degrees into a trough: wet wood slides on steel from about 20 degrees (friction 0.35, assumed).
-  screenWidthM: 0.5,
+  // at 45 degrees into a trough: matted debris slides on wet steel up to a friction of 1 (assumed).
   screenAngle: 70 * degree,
   screenLengthM: 1.2,
   barThicknessM: 0.04,
-  apronAngle: 30 * degree,
+  apronAngle: 45 * degree,
   apronLengthM: 0.3,
   troughDepthM: 0.3,
   troughLengthM: 0.6,
   /** A piece is cleared when its centre is this far behind the lip. */
   clearedBehindM: 0.02,
 
-  // The machine stands over the trough; its base pin lies in this window.
-  baseLowM: [0.2, 1.4],
-  baseHighM: [1.2, 2.1],
+  // The machine hangs from a beam across the channel, above the screen; its base pin lies in this window.
+  baseLowM: [-0.4, 1.4],
+  baseHighM: [0.8, 2.1],
+
+  /** Arms are led no higher than this below their base pin. */
+  belowPinM: 0.1,
 
   // Links: square tube of aluminium, 40 x 40 x 3 mm: 444 mm^2 at 2700 kg/m^3.
   linkWidthM: 0.04,
@@ -48,6 +50,9 @@ export const numbers = {
   motor,
   gears: [1, 2, 4],
   stageEfficiency: 0.9,
+  /** Motors are this strong against their class: with low voltage and wear, or fresh. Assumed. */
+  strengthLeast: 0.85,
+  strengthMost: 1.05,
   /** The rotor as felt at the motor's own shaft: 2e-5 kg m^2 behind a worm of 1:40 (assumed). */
   rotorKgm2: 0.032,
   motorKg: motor.fittingKg + 0.5,
@@ -60,26 +65,28 @@ export const numbers = {
   /** Time in which a drive runs up to its full rate. Assumed. */
   rampSeconds: 0.4,
 
-  // The trial: the water brings debris for 1 s while the machine waits at its first pose, then it works for 12 s.
-  settleSeconds: 1,
-  workSeconds: 12,
-  stepSeconds: 1 / 80,
+  // The trial: the water presses the debris on for half a second while the machine stands parked, then it works for 6 s.
+  settleSeconds: 0.5,
+  workSeconds: 6,
+  stepSeconds: 1 / 60,
   solverRounds: 2,
   solverSweeps: 4,
   sampleSeconds: 0.05,
   framesPerSecond: 20,
   /**
-   * What counts as cleared: the mass behind the lip, and by this share the way that the mass has been raised out of the
-   * water. Without it every machine that only lifts scores like one that stands still, and nothing leads to clearing.
+   * What counts as cleared: a piece behind the lip in full, and this share of its way up to the lip for one that was
+   * only raised. Without it every machine that lifts scores like one that stands still, and nothing leads to clearing.
    */
-  raisedCounts: 0.2,
+  raisedCounts: 0.3,
   /** Deeper than this in the screen or deck at the start, the machine cannot be put up. */
   startDepthMostM: 0.03,
 
-  // Debris. Drag coefficients of blunt bodies about 1.1 (common practice, no source). Turning in water is damped with a
-  // time constant of 0.3 s (assumed).
+  // Debris: bundles that lie across several bars and tines and are hooked in them, so they slide and hardly turn: a
+  // moment of inertia that lets none roll within a trial (assumed). Drag coefficient of blunt bodies about 1.1 (common
+  // practice, no source).
+  pieces: 4,
   dragCoefficient: 1.1,
-  spinSeconds: 0.3,
+  pieceInertiaKgm2: 1,
 } as const
 
 /** Lip of the screen, where its face ends. */

@@ -1,10 +1,13 @@
 // The rake on paper: what it is made of, part by part, its drive table, and the cautions of its own.
 
 import type { Caution } from '../../../shared/problem.js'
-import { layoutOf, posesPerJoint, type RakeGenome, ratioOf } from './genome.js'
+import { layoutOf, type RakeGenome, ratioOf } from './genome.js'
 import { buildMachine, type Outline } from './machine.js'
 import { closingForceN, machineKg } from './making.js'
 import { numbers } from './numbers.js'
+
+/** Poses that are told of a cycle. */
+const posesPerJoint = 12
 
 const mm = (metres: number) => `${(1000 * metres).toFixed(0)} mm`
 const degrees = (radians: number) => `${(radians / numbers.degree).toFixed(0)} degrees`

@@ -37,15 +37,20 @@ function withWholeTurns(genome: RakeGenome): RakeGenome {
   }
 }
 
-/** The first pose of the first joint moved, by as little as a twentieth of its range at a time, until it is clear. */
+/** The base pin moved up, back or both, by as little as 5 cm at a time, until the parked machine is clear. */
 function withClearStart(genome: RakeGenome): RakeGenome {
   if (beginsClear(genome)) return genome
+  const [x, y] = [genome.baseX[0]!, genome.baseY[0]!]
   for (let k = 1; k <= 20; k++) {
-    for (const share of [genome.poses[0]! + 0.05 * k, genome.poses[0]! - 0.05 * k]) {
-      if (share < 0 || share > 1) continue
-      const poses = Float64Array.from(genome.poses)
-      poses[0] = share
-      if (beginsClear({ ...genome, poses })) return { ...genome, poses }
+    for (const [back, up] of [
+      [0, k],
+      [k, 0],
+      [k, k],
+    ] as const) {
+      const [baseX, baseY] = [x + 0.05 * back, y + 0.05 * up]
+      if (baseX > numbers.baseHighM[0] || baseY > numbers.baseHighM[1]) continue
+      const moved = { ...genome, baseX: Float64Array.of(baseX), baseY: Float64Array.of(baseY) }
+      if (beginsClear(moved)) return moved
     }
   }
   return genome

@@ -5,7 +5,7 @@ import type { RigidWorld } from '../../rigid/rigid2d.js'
 import type { RakeGenome } from './genome.js'
 import { buildMachine, type Outline } from './machine.js'
 import { numbers } from './numbers.js'
-import { clumpCorners, type IntakeCondition, type Piece, walls } from './screen.js'
+import { type IntakeCondition, type Piece, walls } from './screen.js'
 import { runTrial } from './trial.js'
 
 /** Frames of the work; a machine that cannot be put up has the one frame of how it was meant to stand. */
@@ -33,7 +33,7 @@ export function rakeFrames(genome: RakeGenome, { condition }: Situation<IntakeCo
       [...machine.bodies].map((body) => [body.name, [...body.positionM, body.turn as number]]),
     )
     for (const [i, piece] of condition.pieces.entries()) {
-      start.set(pieces[i]!.body, [...piece.positionM, piece.turn])
+      start.set(pieces[i]!.body, [...piece.positionM, 0])
     }
     for (const [i, { body }] of all.entries()) poses[i]!.push(Float64Array.from(start.get(body)!))
     positions.push(new Float64Array(2 * machine.joints.length))
@@ -97,17 +97,6 @@ function partShape({ label, from, to, radiusM }: Outline): Shape {
   return { label, role: 'machine', cornersM: corners.flat() }
 }
 
-function pieceShape({ kind, halfM: [along, across] }: Piece): Shape {
-  const shape = { label: kind, role: 'load' } as const
-  if (kind === 'clump') return { ...shape, cornersM: clumpCorners(along).flat() }
-  if (kind === 'plank') {
-    const corners = [
-      [-along, -across],
-      [along, -across],
-      [along, across],
-      [-along, across],
-    ]
-    return { ...shape, cornersM: corners.flat() }
-  }
-  return { ...shape, cornersM: [across - along, 0, along - across, 0], radiusM: across }
+function pieceShape({ kind, radiusM }: Piece): Shape {
+  return { label: kind, role: 'load', cornersM: [0, 0], radiusM }
 }

@@ -6,16 +6,15 @@ import type { Stream } from '../../../shared/streams.js'
 import type { BodySpec, MaterialSpec, ShapeSpec } from '../../rigid/spec.js'
 import { lipM, numbers } from './numbers.js'
 
+/** A bundle of debris, seen along the bars' tops: a disc. */
 export interface Piece {
-  readonly kind: 'branch' | 'plank' | 'clump'
-  /** Along and half across, or radius twice. */
-  readonly halfM: readonly [number, number]
+  readonly kind: 'branches' | 'leaves'
+  readonly radiusM: number
   /** Size across the channel. */
   readonly depthM: number
   readonly densityKgpm3: number
   readonly friction: number
   readonly positionM: readonly [number, number]
-  readonly turn: number
 }
 
 export interface IntakeCondition {
@@ -27,81 +26,56 @@ export interface IntakeCondition {
   readonly pieces: readonly Piece[]
 }
 
-/** Half sizes (along, across) of a kind of piece, from two numbers of 0 to 1. */
-const kinds: { readonly [kind in Piece['kind']]: (a: number, b: number) => readonly [number, number] } = {
-  branch: (a, b) => [0.05 + 0.07 * a, 0.015 + 0.015 * b],
-  plank: (a, b) => [0.05 + 0.05 * a, 0.015 + 0.02 * b],
-  clump: (a) => [0.035 + 0.035 * a, 0.035 + 0.035 * a],
+/** Radii of a kind of piece, m. */
+const radii: { readonly [kind in Piece['kind']]: readonly [number, number] } = {
+  branches: [0.025, 0.045],
+  leaves: [0.035, 0.07],
 }
 
 /**
- * 5 to 9 branches, planks and clumps of leaves, 700 to 1050 kg/m^3 (wood that is or is not full of water), in front of
- * the screen below the water line; water 0.75 to 0.95 m deep at 0.2 to 0.5 m/s; friction of wet debris on bars 0.25 to
- * 0.5; motors at 0.85 to 1.05 of their class. Ranges assumed.
+ * 4 bundles of branches or leaves, full of water (1000 to 1080 kg/m^3: they neither rise by themselves nor sink fast),
+ * lying on the screen below the water line; water 0.75 to 0.95 m deep at 0.2 to 0.5 m/s; friction of wet debris on bars
+ * 0.4 to 0.6 (mean of the two coefficients drawn); motors at 0.85 to 1.05 of their class. Ranges assumed.
  */
 export function drawIntake(stream: Stream): IntakeCondition {
   const between = (low: number, high: number) => low + stream.uniform() * (high - low)
-  const barFriction = between(0.25, 0.5)
+  const barFriction = between(0.3, 0.5)
   const flowMps = between(0.2, 0.5)
   const waterM = between(0.75, 0.95)
-  const strengths = Array.from({ length: 3 }, () => between(0.85, 1.05))
-  const count = 5 + stream.below(5)
-  const names = ['branch', 'plank', 'clump'] as const
-  const pieces = Array.from({ length: count }, (_, i): Piece => {
-    const kind = names[stream.below(3)]!
-    const halfM = kinds[kind](stream.uniform(), stream.uniform())
+  const strengths = Array.from({ length: 3 }, () => between(numbers.strengthLeast, numbers.strengthMost))
+  const pieces = Array.from({ length: numbers.pieces }, (_, i): Piece => {
+    const kind = stream.below(2) === 0 ? 'branches' : 'leaves'
+    const radiusM = between(...radii[kind])
     // One place each along the screen, so that no two begin inside each other.
-    const y = 0.1 + ((i + stream.uniform() * 0.6) / count) * (waterM - 0.2)
+    const y = 0.1 + ((i + stream.uniform() * 0.6) / numbers.pieces) * (waterM - 0.2)
     const face = (y * cos(numbers.screenAngle)) / sin(numbers.screenAngle)
     return {
       kind,
-      halfM,
+      radiusM,
       depthM: between(0.15, 0.4),
-      densityKgpm3: between(700, 1050),
-      friction: between(0.4, 0.7),
-      positionM: [face - between(0.16, 0.3) - (i % 2) * 0.25, y],
-      turn: between(-Math.PI, Math.PI),
+      densityKgpm3: between(1000, 1080),
+      friction: between(0.5, 0.7),
+      positionM: [face - (radiusM + 0.01) / sin(numbers.screenAngle), y],
     }
   })
   return { barFriction, flowMps, waterM, strengths, pieces }
 }
 
-export const massOfPiece = (piece: Piece) => areaOf(piece) * piece.depthM * piece.densityKgpm3
-
-/** Area of the section, m^2. */
-export function areaOf({ kind, halfM: [along, across] }: Piece): number {
-  if (kind === 'plank') return 4 * along * across
-  if (kind === 'clump') return 1.5 * Math.sqrt(3) * along * along
-  return 4 * (along - across) * across + Math.PI * across * across
-}
-
-/** Corners of a clump: a regular hexagon. */
-export function clumpCorners(radiusM: number): [number, number][] {
-  return Array.from({ length: 6 }, (_, i) => [
-    radiusM * cos((i * Math.PI) / 3),
-    radiusM * sin((i * Math.PI) / 3),
-  ])
-}
-
-function shapeOf(piece: Piece): ShapeSpec {
-  const { kind, halfM, depthM, densityKgpm3, friction } = piece
-  const material = { friction, density: densityKgpm3 * depthM }
-  const [along, across] = halfM
-  if (kind === 'plank') return { outline: { kind: 'box', halfM }, material, layer: 'debris' }
-  if (kind === 'clump') {
-    return { outline: { kind: 'hull', pointsM: clumpCorners(along) }, material, layer: 'debris' }
-  }
-  // A capsule lies along its own y axis.
-  const outline = { kind: 'capsule', halfLengthM: along - across, radiusM: across } as const
-  return { outline, turn: Math.PI / 2, material, layer: 'debris' }
-}
+export const volumeOf = ({ radiusM, depthM }: Piece) => Math.PI * radiusM * radiusM * depthM
+export const massOfPiece = (piece: Piece) => volumeOf(piece) * piece.densityKgpm3
 
 export function debrisBodies(pieces: readonly Piece[]): BodySpec[] {
-  return pieces.map((piece, i) => ({
-    name: `${piece.kind} ${i + 1}`,
-    positionM: piece.positionM,
-    turn: piece.turn,
-    shapes: [shapeOf(piece)],
+  return pieces.map(({ kind, radiusM, depthM, densityKgpm3, friction, positionM }, i) => ({
+    name: `${kind} ${i + 1}`,
+    positionM,
+    shapes: [
+      {
+        outline: { kind: 'ball', radiusM },
+        material: { friction, density: densityKgpm3 * depthM },
+        layer: 'debris',
+      },
+    ],
+    extra: { massKg: 1e-6, centreM: [0, 0], inertiaKgm2: numbers.pieceInertiaKgm2 },
   }))
 }
 
@@ -129,17 +103,12 @@ function below(layer: Plate['layer'], from: Place, to: Place, turn: number): Pla
   return { layer, from: [from[0] + x, from[1] + y], to: [to[0] + x, to[1] + y], turn }
 }
 const level = (y: number, from: number, to: number) => below('deck', [from, y], [to, y], 0)
-const upright = (x: number, from: number, to: number): Plate => {
-  return { layer: 'deck', from: [x, from], to: [x, to], turn: Math.PI / 2 }
-}
 
-/** Screen, apron, floor and two walls of the trough, channel floor. */
+/** Screen, apron, floor of the trough, channel floor. */
 export const plates: readonly Plate[] = [
   below('bars', [0, 0], lipM, numbers.screenAngle),
   below('deck', lipM, apronEndM, -numbers.apronAngle),
-  level(troughFloorM, apronEndM[0] - 0.1, troughEndM + 0.1),
-  upright(troughEndM + half, troughFloorM, troughFloorM + 0.8),
-  upright(apronEndM[0] - half, troughFloorM - 0.1, troughFloorM + 0.3),
+  level(troughFloorM, apronEndM[0], troughEndM),
   level(0, -3, 0),
 ]
 
@@ -173,10 +142,5 @@ export const apart: readonly (readonly [string, string])[] = [
 export const walls = {
   screen: [0, 0, ...lipM],
   apron: [...lipM, ...apronEndM],
-  trough: [
-    ...[apronEndM[0], apronEndM[1]],
-    ...[apronEndM[0], troughFloorM],
-    ...[troughEndM, troughFloorM],
-    ...[troughEndM, troughFloorM + 0.8],
-  ],
+  trough: [apronEndM[0], troughFloorM, troughEndM, troughFloorM],
 } as const

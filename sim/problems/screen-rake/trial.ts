@@ -1,7 +1,7 @@
-// One trial: the water brings debris while the machine waits at its first pose, then the machine works for 12 s.
+// One trial: the water presses debris onto the screen while the machine stands parked, then the machine works for 6 s.
 //
 // Water. A piece below the water line is lifted by the weight of the water it displaces and pushed by its drag,
-// 1/2 rho Cd A |w| w with w = flow - velocity and A = length times depth; in the last piece of its height both grade to
+// 1/2 rho Cd A |w| w with w = flow - velocity and A = diameter times depth; in the last piece of its height both grade to
 // nothing. Screen and debris do not change the flow, and the water does not push the machine: its arms are thin and
 // slow.
 
@@ -18,25 +18,23 @@ import { buildMachine, type Machine } from './machine.js'
 import { lipM, numbers } from './numbers.js'
 import {
   apart,
-  areaOf,
   debrisBodies,
   type IntakeCondition,
   massOfPiece,
   type Piece,
   standing,
+  volumeOf,
 } from './screen.js'
 
 export interface RakeFigures {
   /** Share of the debris's mass that is behind the lip at the end. */
   readonly overLip: number
-  /** Mean over all mass of the way from the water line (or the start) to the lip: 1 behind the lip, else the highest reached. */
+  /** Mean over all mass of the share of its way to behind the lip: 1 behind it at the end, else the most that was made. */
   readonly raised: number
+  readonly totalKg: number
   readonly energyJ: number
   /** Largest torque of any geared motor, before its chain stage, N m. */
   readonly peakTorqueNm: number
-  readonly clearedKg: number
-  /** `raised` in kilograms. */
-  readonly raisedKg: number
   readonly machineKg: number
   readonly motors: readonly ActuatorFigures[]
 }
@@ -79,15 +77,13 @@ interface Trial {
   readonly machine: Machine
   readonly condition: IntakeCondition
   readonly firstPiece: number
-  /** Height of every piece after settling, and the largest since. */
+  /** Way from every piece to the goal after settling, and the least since. */
   readonly startM: number[]
-  readonly highestM: number[]
+  readonly leftM: number[]
   readonly tallies: ReturnType<typeof startTally>[]
   fault: Fault | undefined
 }
 
-const stepsPerSecond = Math.round(1 / numbers.stepSeconds)
-const stepsPerSample = Math.round(numbers.sampleSeconds * stepsPerSecond)
 const samplesPerFrame = Math.round(1 / numbers.framesPerSecond / numbers.sampleSeconds)
 
 function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondition): Trial {
@@ -98,7 +94,7 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
     condition,
     firstPiece,
     startM: [],
-    highestM: [],
+    leftM: [],
     tallies: machine.driven.map(startTally),
     fault: undefined,
   }
@@ -107,8 +103,8 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
   const steps = Math.round(numbers.settleSeconds / world.stepSeconds)
   for (let i = 0; i < steps && !trial.fault; i++) trial.fault = advanceOnce(trial)
   for (let i = 0; i < condition.pieces.length; i++) {
-    trial.startM.push(world.pose(firstPiece + i)[1]!)
-    trial.highestM.push(trial.startM[i]!)
+    trial.startM.push(wayLeftM(world, firstPiece + i))
+    trial.leftM.push(trial.startM[i]!)
   }
   // What a drive did while it held still belongs to no working cycle.
   for (const i of machine.driven.keys()) {
@@ -118,6 +114,13 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
     drive.peakEffort = 0
   }
   return trial
+}
+
+/** Straight way from a piece to where it counts as cleared, right behind the lip, m. */
+function wayLeftM(world: RigidWorld, body: number): number {
+  const { pose } = world.peek(body)
+  const [x, y] = [lipM[0] + numbers.clearedBehindM - pose[0]!, lipM[1] - pose[1]!]
+  return Math.sqrt(x * x + y * y)
 }
 
 /** A machine that begins inside screen or deck cannot be put up. */
@@ -145,40 +148,37 @@ function loadPiece(
   { waterM, flowMps }: IntakeCondition,
 ): void {
   const { pose, velocity } = world.peek(body)
-  const y = pose[1]!
-  const [along, across] = piece.halfM
-  const size = (along + across) / 2
-  const wet = Math.min(1, Math.max(0, (waterM - y) / (2 * size) + 0.5))
+  const { radiusM, depthM } = piece
+  const wet = Math.min(1, Math.max(0, (waterM - pose[1]!) / (2 * radiusM) + 0.5))
   if (wet === 0) {
     world.load(body, [0, 0], [0])
     return
   }
-  const [wx, wy, spin] = [flowMps - velocity[0]!, -velocity[1]!, velocity[2]!]
-  const areaM2 = 2 * along * piece.depthM
+  const [wx, wy] = [flowMps - velocity[0]!, -velocity[1]!]
+  const areaM2 = 2 * radiusM * depthM
   const drag =
     0.5 * numbers.waterKgpm3 * numbers.dragCoefficient * areaM2 * Math.sqrt(wx * wx + wy * wy) * wet
-  const lift = numbers.waterKgpm3 * areaOf(piece) * piece.depthM * numbers.gravityMps2 * wet
-  const inertia = (massOfPiece(piece) * (along * along + across * across)) / 3
-  world.load(body, [drag * wx, drag * wy + lift], [(-inertia * spin * wet) / numbers.spinSeconds])
+  const lift = numbers.waterKgpm3 * volumeOf(piece) * numbers.gravityMps2 * wet
+  world.load(body, [drag * wx, drag * wy + lift], [0])
 }
 
 /** Works for the whole time; the fault that ended it, or nothing. */
 function work(trial: Trial, look: Look | undefined): Fault | undefined {
-  const { world, machine, firstPiece, highestM } = trial
+  const { world, machine, firstPiece, leftM } = trial
   const joints = machine.driven.map(({ joint }) => world.joint(joint))
-  const divide = Math.round(numbers.stepSeconds / world.stepSeconds)
+  const stepsPerSample = Math.round(numbers.sampleSeconds / world.stepSeconds)
   const samples = Math.round(numbers.workSeconds / numbers.sampleSeconds)
   for (let i = 0; i < samples; i++) {
     if (i % samplesPerFrame === 0) look?.(world)
-    for (let step = 1; step <= stepsPerSample * divide; step++) {
-      const seconds = (i + step / (stepsPerSample * divide)) * numbers.sampleSeconds
+    for (let step = 1; step <= stepsPerSample; step++) {
+      const seconds = (i + step / stepsPerSample) * numbers.sampleSeconds
       for (const [k, { target }] of machine.driven.entries()) world.command(joints[k]!, target(seconds))
       const fault = advanceOnce(trial)
       if (fault) return fault
     }
     sample(trial, joints)
-    for (let k = 0; k < highestM.length; k++) {
-      highestM[k] = Math.max(highestM[k]!, world.peek(firstPiece + k).pose[1]!)
+    for (let k = 0; k < leftM.length; k++) {
+      leftM[k] = Math.min(leftM[k]!, wayLeftM(world, firstPiece + k))
     }
   }
   return world.look()
@@ -193,16 +193,14 @@ function sample({ world, machine, tallies }: Trial, joints: readonly number[]): 
   }
 }
 
-function figuresOf({ world, machine, condition, firstPiece, startM, highestM, tallies }: Trial): RakeFigures {
-  let [total, clearedKg, raised] = [0, 0, 0]
+function figuresOf({ world, machine, condition, firstPiece, startM, leftM, tallies }: Trial): RakeFigures {
+  let [totalKg, overKg, raisedKg] = [0, 0, 0]
   for (const [i, piece] of condition.pieces.entries()) {
     const massKg = massOfPiece(piece)
-    total += massKg
+    totalKg += massKg
     const isOver = world.pose(firstPiece + i)[0]! > lipM[0] + numbers.clearedBehindM
-    if (isOver) clearedKg += massKg
-    const fromM = Math.max(condition.waterM, startM[i]!)
-    const share = Math.min(1, Math.max(0, highestM[i]! - fromM) / Math.max(0.05, lipM[1] - fromM))
-    raised += massKg * (isOver ? 1 : share)
+    if (isOver) overKg += massKg
+    raisedKg += massKg * (isOver ? 1 : 1 - leftM[i]! / startM[i]!)
   }
   const drives = machine.driven.map(({ joint }) => world.driveOf(world.joint(joint)))
   const motors = drives.map((drive, i) => ({
@@ -213,12 +211,11 @@ function figuresOf({ world, machine, condition, firstPiece, startM, highestM, ta
   let machineKg = 0
   for (let i = 1; i <= machine.bodies.length; i++) machineKg += world.massOf(i).massKg
   return {
-    overLip: clearedKg / total,
-    raised: raised / total,
+    overLip: overKg / totalKg,
+    raised: raisedKg / totalKg,
+    totalKg,
     energyJ: drives.reduce((sum, drive) => sum + drive.workGivenJ, 0),
     peakTorqueNm: motors.reduce((most, { peakForce }) => Math.max(most, peakForce), 0),
-    clearedKg,
-    raisedKg: raised,
     machineKg,
     motors,
   }
