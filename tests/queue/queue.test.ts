@@ -216,6 +216,23 @@ describe('answers', () => {
     expect((await coordinator.deliveries(100)).map(({ answers }) => answers)).toEqual([answersOf(7)])
   })
 
+  test('on their way are kept when the search stands still; nothing else is', async () => {
+    await add(1)
+    await coordinator.putPlugin(Uint8Array.of(1))
+    const agent = await agentOn(server, 'one')
+    await agent.answer(search, answersOf(7))
+    await coordinator.withdraw()
+    expect(server.ask('KEYS', 'skerry:s:*:work:*')).toBe('')
+    const later = await coordinatorOn(server)
+    await later.begin('second')
+    const [left] = await later.deliveries(100)
+    expect(left?.answers).toEqual(answersOf(7))
+    expect(server.ask('TTL', 'skerry:s:pump:results')).toBe('-1')
+    await later.acknowledge([left!.receipt])
+    await later.withdraw()
+    expect(server.ask('KEYS', 'skerry:s:*')).toBe('')
+  })
+
   test('that nobody of ours wrote come with a complaint', async () => {
     server.ask('XADD', 'skerry:s:pump:results', '*', 'b', 'rubbish')
     server.ask('XADD', 'skerry:s:pump:results', '*', 'c', 'rubbish')

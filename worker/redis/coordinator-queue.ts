@@ -44,7 +44,7 @@ interface Place {
 const consumer = 'holder'
 const deliveriesMost = 256
 const scanCount = 1000
-/** What an interrupted search leaves in Redis is forgotten after so long. */
+/** Results that an interrupted search leaves in Redis are forgotten after so long. */
 const leftoverMs = 7 * 86_400_000
 
 export class RedisCoordinatorQueue {
@@ -90,11 +90,11 @@ export class RedisCoordinatorQueue {
   async withdraw(): Promise<void> {
     const { prefix, search } = this.#options
     const { instance, plugin, results } = this.#keys
+    await this.#link.run((client) => client.hdel(searchesKey(prefix), search))
+    await this.#removeQueues()
+    const left = await this.#link.run((client) => client.xlen(results))
     await this.#link.run((client) =>
-      Promise.all([
-        client.hdel(searchesKey(prefix), search),
-        ...[instance, plugin, results].map((key) => client.pexpire(key, leftoverMs)),
-      ]),
+      left === 0 ? client.unlink(instance, plugin, results) : client.pexpire(results, leftoverMs),
     )
   }
 
