@@ -137,7 +137,8 @@ export class Feeder {
     for (const lane of lanes) {
       if (lane.state !== 'ready' || !lane.isFast || this.empty.has(lane.search)) continue
       if (!this.options.server.connected || !this.options.mayTake(lane)) continue
-      if (lane.stashSeconds() < aheadSeconds * lane.options.width) return this.take(lane)
+      const seconds = lane.stashSeconds()
+      if (seconds !== undefined && seconds < aheadSeconds * lane.options.width) return this.take(lane)
     }
     return false
   }

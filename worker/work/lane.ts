@@ -80,6 +80,8 @@ export class SearchLane {
   private readonly deaths = new Set<NodeJS.Timeout>()
   private pool: Pool | undefined
   private usedMs: number
+  /** Expected costs of all that is stashed: adding them up anew for each job would cost more than some simulations. */
+  private stashCost = 0
 
   constructor(options: LaneOptions, events: LaneEvents) {
     this.options = options
@@ -139,16 +141,16 @@ export class SearchLane {
   accept(job: HeldJob): void {
     this.jobs.add(job)
     this.usedMs = this.options.nowMs()
-    this.stash[job.kind].push(...job.pending())
+    const pending = job.pending()
+    this.stash[job.kind].push(...pending)
+    this.stashCost += costOf(pending)
   }
 
-  /** Seconds of one core that the stash should last; items of unknown length count as long ones. */
-  stashSeconds(): number {
-    return kinds.reduce(
-      (sum, kind) =>
-        this.stash[kind].reduce((inner, { item }) => inner + (this.pace.expectedSeconds(item) ?? 1), sum),
-      0,
-    )
+  /** Seconds of one core that the stash should last; undefined as long as nobody knows. */
+  stashSeconds(): number | undefined {
+    const [any] = kinds.flatMap((kind) => this.stash[kind].slice(0, 1))
+    if (any === undefined) return 0
+    return this.pace.expectedSeconds({ ...any.item, expectedCost: this.stashCost, replicates: 1 })
   }
 
   /** True when its simulations are so short that it should always have some ahead. */
@@ -186,6 +188,7 @@ export class SearchLane {
     const next = this.next()
     check(next !== undefined && this.pool !== undefined && this.state === 'ready', 'a grain can begin')
     const pending = this.stash[next.kind].splice(0, next.items)
+    this.stashCost -= costOf(pending)
     const { cores } = this.options.announcement.needs
     const expected = pending.reduce((sum, { item }) => sum + (this.pace.expectedSeconds(item) ?? 1), 0)
     const grain: Grain = {
@@ -237,6 +240,7 @@ export class SearchLane {
   unstash(): { readonly untouched: HeldJob[]; readonly losses: { job: HeldJob; loss: LossMessage }[] } {
     const begun = new Set([...this.running.values()].flatMap(({ waiting }) => waiting.map(({ job }) => job)))
     const stashed = kinds.flatMap((kind) => this.stash[kind].splice(0))
+    this.stashCost = 0
     const untouched = new Set<HeldJob>()
     const losses: { job: HeldJob; loss: LossMessage }[] = []
     for (const { job, index } of stashed) {
@@ -252,6 +256,7 @@ export class SearchLane {
   forget(job: HeldJob): void {
     const rest = this.stash[job.kind].filter((pending) => pending.job !== job)
     this.stash[job.kind].splice(0, Number.POSITIVE_INFINITY, ...rest)
+    this.stashCost = costOf(kinds.flatMap((kind) => this.stash[kind]))
   }
 
   /** What was counted since the last call. */
@@ -283,6 +288,7 @@ export class SearchLane {
 
   private dropped(jobs: readonly HeldJob[]) {
     for (const kind of kinds) this.stash[kind].length = 0
+    this.stashCost = 0
     const open = jobs.filter(({ left }) => left > 0)
     const untouched = open.filter((job) => job.isUntouched)
     const losses = open
@@ -408,4 +414,8 @@ export class SearchLane {
     this.state = 'failed'
     this.events.failed(error)
   }
+}
+
+function costOf(pending: readonly Pending[]): number {
+  return pending.reduce((sum, { item }) => sum + item.expectedCost * item.replicates, 0)
 }
