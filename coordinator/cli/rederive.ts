@@ -21,6 +21,12 @@ export const rederiveCommand: Command = {
       help: 'also simulate N of its evaluations again, evenly chosen',
     },
     {
+      flag: '--rewind',
+      value: 'DIR',
+      kind: 'text',
+      help: 'begin the search again in a new record, from before its first wrong result, with all that is still believed',
+    },
+    {
       flag: '--cores',
       value: 'N',
       kind: 'count',
@@ -39,10 +45,12 @@ async function run(input: CommandInput): Promise<number> {
   const house = await openHouse()
   const shown = watch(output)
   const cores = input.counts['--cores']
+  const rewind = input.texts['--rewind']
   const report = await house.rederive({
     record: input.arguments.RECORD!,
     resimulate: input.counts['--resimulate'] ?? 0,
     ...(cores === undefined ? {} : { cores }),
+    ...(rewind === undefined ? {} : { rewind }),
     tell: shown.say,
     signal: output.signal,
   })

@@ -62,6 +62,8 @@ export interface RederiveOptions {
   readonly record: string
   /** How many evaluations are simulated again. */
   readonly resimulate: number
+  /** Folder of a new record that begins the search again with what is still believed. */
+  readonly rewind?: string
   readonly cores?: number
   readonly tell: (sentence: string) => void
   readonly signal: AbortSignal

@@ -34,9 +34,6 @@ import { isNeeded, type Purpose, type Work, type Works } from './works.js'
 type ResultFact = Extract<DispatchFact, { kind: 'result' }>
 type LossFact = Extract<DispatchFact, { kind: 'lost' }>
 
-const workerOutSchema = z.object({ worker: z.string() })
-const hostOutSchema = z.object({ host: z.string() })
-const pinnedSchema = z.object({ processor: z.string() })
 const correctionSchema = z.object({ fact: z.object({ individual: z.number(), firstReplicate: z.number() }) })
 
 export interface AcceptanceParts {
@@ -72,17 +69,12 @@ export class Acceptance {
     this.#parts = parts
     this.confirmed = new Confirmed(parts)
     this.#consequences = new Consequences({ ...parts, confirmed: this.confirmed })
-    for (const { kind, data } of parts.reader.events()) this.#recall(kind, data)
-  }
-
-  /** What an earlier life has decided. */
-  #recall(kind: string, data: unknown): void {
-    const { trust } = this.#parts
-    if (kind === 'worker-shut-out') trust.shutOutWorker(workerOutSchema.parse(data).worker)
-    else if (kind === 'host-shut-out') trust.shutOutHost(hostOutSchema.parse(data).host)
-    else if (kind === 'pinned-to-processor') trust.pinTo(pinnedSchema.parse(data).processor)
-    else if (kind === 'correction') this.confirmed.noteCorrected(correctionSchema.parse(data).fact)
-    this.#suspectsDue = trust.version > 0
+    // What an earlier life has decided.
+    for (const event of parts.reader.events()) {
+      parts.trust.recall(event)
+      if (event.kind === 'correction') this.confirmed.noteCorrected(correctionSchema.parse(event.data).fact)
+    }
+    this.#suspectsDue = parts.trust.version > 0
   }
 
   /** Takes up what the record has of a ticket. False when it must be simulated. */

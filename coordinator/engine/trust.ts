@@ -2,6 +2,7 @@
 // pinned to. Who counts as one voter follows from it: with two or more machines a machine, because two threads of one
 // bad machine must not outvote an honest one; else a process.
 
+import { z } from 'zod'
 import type { Executor, FleetHost } from '../../shared/result.js'
 import { setAsideWorker } from './confirmed.js'
 
@@ -13,6 +14,10 @@ export interface Where {
 }
 
 export type Simulator = Pick<Executor, 'worker' | 'host' | 'processor'>
+
+const workerOutSchema = z.object({ worker: z.string() })
+const hostOutSchema = z.object({ host: z.string() })
+const pinnedSchema = z.object({ processor: z.string() })
 
 const nobody: readonly string[] = []
 const anywhere: Where = { avoid: nobody }
@@ -61,6 +66,15 @@ export class Trust {
   }
   get byHost(): boolean {
     return this.#usable.length >= 2
+  }
+
+  /** What an event of the record says about it; true when it says something. */
+  recall({ kind, data }: { readonly kind: string; readonly data: unknown }): boolean {
+    if (kind === 'worker-shut-out') this.shutOutWorker(workerOutSchema.parse(data).worker)
+    else if (kind === 'host-shut-out') this.shutOutHost(hostOutSchema.parse(data).host)
+    else if (kind === 'pinned-to-processor') this.pinTo(pinnedSchema.parse(data).processor)
+    else return false
+    return true
   }
 
   takeFleet(hosts: readonly FleetHost[]): void {

@@ -14,6 +14,7 @@ import type { RederiveOptions, RederiveReport } from '../run-options.js'
 import { finishedBecause } from './budget-ends.js'
 import { placeOf } from './place.js'
 import { resimulate, Sample } from './resimulate.js'
+import { rewindInto } from './rewind.js'
 import { withSilence } from './silence.js'
 import { toolsOf } from './tools.js'
 import { progressView } from './view.js'
@@ -80,6 +81,9 @@ export async function rederive(options: RederiveOptions): Promise<RederiveReport
     options.tell(
       `${replay.commits} commits derived again, ${replay.digestsCompared} recorded digests compared and equal.`,
     )
+    if (options.rewind !== undefined) {
+      rewindInto(options.rewind, record, toolsOf(record.plan, problem), options.tell)
+    }
     const resimulated = resimulate(record.plan, problem, record.reader, sample, options.signal)
     return {
       islands: search.islands.map((island) => ({
