@@ -122,7 +122,8 @@ export class Agent {
     const service = this.services.of(lane)
     if (service === undefined || this.services.isDraining(service)) return false
     return (
-      this.reasons.isInTime(lane.durations.p95Seconds()) && this.hands.lanes.get(lane)?.isCrowded !== true
+      this.reasons.isInTime(() => lane.durations.p95Seconds()) &&
+      this.hands.lanes.get(lane)?.isCrowded !== true
     )
   }
 
@@ -199,7 +200,7 @@ export class Agent {
     void this.licences.returnUnused()
     this.hands.sweep(4 * this.options.times.leaseMs)
     for (const lane of this.services.lanes())
-      if (lane.stashed > 0 && !this.reasons.isInTime(lane.nextSeconds())) this.hands.returnStash(lane)
+      if (lane.stashed > 0 && !this.reasons.isInTime(() => lane.nextSeconds())) this.hands.returnStash(lane)
     this.condition.note({ draining: this.isDraining(), busy: this.hands.isBusy })
     const ending = this.reasons.look()
     if (ending !== undefined) this.end(ending)
@@ -350,7 +351,7 @@ export class Agent {
       nowMs,
       lanes: () => this.services.lanes(),
       mayTake: (lane) => this.mayTake(lane),
-      mayBegin: (lane) => this.reasons.isInTime(lane.nextSeconds()),
+      mayBegin: (lane) => this.reasons.isInTime(() => lane.nextSeconds()),
       received: (lane, taken, epoch) => {
         this.reasons.took()
         return this.hands.receive(lane, taken, epoch)

@@ -27,22 +27,22 @@ export class Reasons {
     return this.timeOver() ?? this.notNeeded() ?? this.hopeless() ?? this.ill()
   }
 
-  /** Whether what takes so long ends before this machine is taken away. */
-  isInTime(seconds: number | undefined): boolean {
+  /** Whether what takes so long ends before this machine is taken away; nobody counts where nobody says when. */
+  isInTime(seconds: () => number | undefined): boolean {
     const { untilMs, nowMs, times } = this.agent.options
-    return untilMs === undefined || nowMs() + (seconds ?? 0) * 1000 < untilMs - times.handBackMs
+    return untilMs === undefined || nowMs() + (seconds() ?? 0) * 1000 < untilMs - times.handBackMs
   }
 
   /** No search has evaluations that would end in time. */
   get isTooLate(): boolean {
     const lanes = this.agent.services.lanes()
-    return lanes.length > 0 && lanes.every((lane) => !this.isInTime(lane.durations.p95Seconds()))
+    return lanes.length > 0 && lanes.every((lane) => !this.isInTime(() => lane.durations.p95Seconds()))
   }
 
   private timeOver(): Ending | undefined {
     const { untilMs } = this.agent.options
     if (untilMs === undefined) return undefined
-    if (!this.isInTime(0)) return { sentence: 'The time of this machine is over.' }
+    if (!this.isInTime(() => 0)) return { sentence: 'The time of this machine is over.' }
     if (!this.isTooLate || this.agent.hands.jobs().length > 0) return undefined
     return { sentence: 'No evaluation would end before the time of this machine is over.' }
   }
