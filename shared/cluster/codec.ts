@@ -32,6 +32,8 @@ export interface Answer {
   /** Place in its job. */
   readonly index: number
   readonly item: Pick<WorkItem, 'island' | 'evaluation' | 'attempt' | 'purpose'>
+  /** contentWord() of the item: by it a later coordinator knows the work, whatever number it had. */
+  readonly content?: number
   readonly result: EvaluationResult
   readonly digest: Uint8Array
   readonly executor: Executor
@@ -100,8 +102,37 @@ export function decodeJob(bytes: Uint8Array): Job {
 
 // ------------------------------------------------------------------------------------------ answers
 
-/** Nine numbers an answer: dispatch, index, island, evaluation, attempt, CPU seconds, wall seconds, values, executor. */
-const answerNumbers = 9
+/**
+ * Ten numbers an answer: dispatch, index, island, evaluation, attempt, CPU seconds, wall seconds, values, executor,
+ * content (0: not said).
+ */
+const answerNumbers = 10
+
+/**
+ * A word of 53 bits that tells one piece of work from another: what is simulated, not under which number. No
+ * protection against forgery, which needs none: whoever can write answers can write any. Two multiplicative hashes
+ * (after Fowler, Noll and Vo; and Appleby's MurmurHash, from memory).
+ */
+export function contentWord({
+  individual,
+  firstReplicate,
+  replicates,
+  genome,
+}: Pick<WorkItem, 'individual' | 'firstReplicate' | 'replicates' | 'genome'>): number {
+  let a = 0x811c9dc5
+  let b = 0x9747b28c
+  const mix = (word: number) => {
+    a = Math.imul(a ^ word, 0x01000193)
+    b = Math.imul(b ^ word, 0x5bd1e995)
+    b ^= b >>> 15
+  }
+  for (const count of [individual, firstReplicate, replicates]) {
+    mix((count % 2 ** 32) | 0)
+    mix(Math.floor(count / 2 ** 32))
+  }
+  for (let i = 0; i < genome.length; i++) mix(genome[i]!)
+  return Math.max(1, (a >>> 0) * 2 ** 21 + (b >>> 11))
+}
 
 const answersSchema = z.object({
   header: z.unknown(),
@@ -133,11 +164,11 @@ export function encodeAnswers({ header, answers, losses }: Answers): Uint8Array 
   const failures: [number, EvaluationResult['failures']][] = []
   let end = 0
   for (const [i, answer] of answers.entries()) {
-    const { dispatch, index, item, result, digest, executor, cpuSeconds, wallSeconds } = answer
+    const { dispatch, index, item, content = 0, result, digest, executor, cpuSeconds, wallSeconds } = answer
     let known = executors.findIndex(({ worker }) => worker === executor.worker)
     if (known < 0) known = executors.push(executor) - 1
     const own = [dispatch, index, item.island, item.evaluation, item.attempt, cpuSeconds, wallSeconds]
-    numbers.set([...own, result.values.length, known], i * answerNumbers)
+    numbers.set([...own, result.values.length, known, content], i * answerNumbers)
     purposes[i] = item.purpose === 'confirm' ? 1 : 0
     values.set(result.values, end)
     digests.set(digest, i * digestBytes)
@@ -166,6 +197,7 @@ export function decodeAnswers(bytes: Uint8Array): Answers {
     const result = { values: raw.values.slice(start, end), failures: failures.get(i) ?? [] }
     const digest = raw.digests.slice(i * digestBytes, (i + 1) * digestBytes)
     checkResult(result, digest)
+    const content = natural(at(9))
     return {
       dispatch: natural(at(0)),
       index: natural(at(1)),
@@ -175,6 +207,7 @@ export function decodeAnswers(bytes: Uint8Array): Answers {
         attempt: natural(at(4)),
         purpose: raw.purposes[i] === 1 ? 'confirm' : 'evaluate',
       },
+      ...(content === 0 ? {} : { content }),
       result,
       digest,
       executor: executorOf(executor),

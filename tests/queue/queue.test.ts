@@ -300,7 +300,7 @@ test('announcements, the pinned problem and heartbeats are read as they were wri
   expect(await coordinator.agents()).toEqual([heartbeat])
   await agent.leave('one')
   expect(await coordinator.agents()).toEqual([])
-  await coordinator.end()
+  await coordinator.withdraw()
   expect(server.ask('KEYS', 'skerry:s:*')).toBe('')
   expect(await agent.searches()).toEqual([])
 })

@@ -178,13 +178,6 @@ export class RedisCoordinatorQueue {
     })
   }
 
-  /** What an earlier coordinator of this record left in the open queue, waiting or taken. */
-  async leftJobs(): Promise<Job[]> {
-    const { waiting, active } = await this.#queues.contents(this.#keys.queues, openQueue)
-    const jobs = await this.#queues.jobs(this.#keys.queues, openQueue, [...waiting, ...active])
-    return jobs.flatMap(({ job }) => (job ? [job] : []))
-  }
-
   async deliveries(
     waitMs: number,
   ): Promise<{ receipt: string; answers: Answers | undefined; complaint?: string }[]> {
@@ -240,14 +233,6 @@ export class RedisCoordinatorQueue {
     await this.#link.run((client) => client.unlink(...Object.values(fixed), ...jobs))
     this.#told.delete(queue)
     this.#queues.forget(queues, queue)
-  }
-
-  async end(): Promise<void> {
-    const { prefix, search } = this.#options
-    const { instance, plugin, results } = this.#keys
-    await this.#link.run((client) => client.hdel(searchesKey(prefix), search))
-    await this.#removeQueues()
-    await this.#link.run((client) => client.unlink(instance, plugin, results))
   }
 
   /** All queues of the search, those of agents that are long gone as well. */

@@ -121,16 +121,6 @@ export class Queues {
     return { waiting: dispatchesOf(waiting), active: dispatchesOf(taken) }
   }
 
-  /** The jobs themselves; those that are gone meanwhile are left out. */
-  async jobs(prefix: string, queue: string, dispatches: readonly number[]): Promise<QueuedJob[]> {
-    const base = keysOf(prefix, queue)['']!
-    const ids = dispatches.map(idOf)
-    const data = await this.#link.run((client) =>
-      Promise.all(ids.map((id) => client.hget(base + id, 'data'))),
-    )
-    return ids.flatMap((id, i) => (data[i] ? [{ id, ...decoded(data[i]) }] : []))
-  }
-
   #backend(prefix: string, queue: string): RedisQueueBackend {
     const name = `${prefix}:${queue}`
     const known = this.#backends.get(name)

@@ -5,7 +5,7 @@
 //                         └──▶ failed (cannot be loaded here; the reason is kept)
 
 import { check } from '../../shared/check.js'
-import type { Answer } from '../../shared/cluster/codec.js'
+import { type Answer, contentWord } from '../../shared/cluster/codec.js'
 import type { Announcement, LossMessage } from '../../shared/cluster/messages.js'
 import { limits } from '../../shared/limits.js'
 import type { DispatchFact, Executor, WorkItem } from '../../shared/result.js'
@@ -82,6 +82,7 @@ export class SearchLane {
   private usedMs: number
   /** Expected costs of all that is stashed: adding them up anew for each job would cost more than some simulations. */
   private stashCost = 0
+  private lastExecutor: { readonly from: Executor; readonly executor: Executor } | undefined
 
   constructor(options: LaneOptions, events: LaneEvents) {
     this.options = options
@@ -334,19 +335,14 @@ export class SearchLane {
 
   private hear(fact: DispatchFact): void {
     if (fact.kind === 'fleet') return
-    const entry = this.running.get(keyOf(fact.item))
-    // Of an earlier pool, or of jobs that were given up.
-    if (entry === undefined) return
-    if (fact.kind === 'lost' && fact.cause !== 'time-limit') {
-      this.afterAWhile(() => this.settle(fact))
-      return
-    }
-    this.settle(fact)
+    if (fact.kind === 'lost' && fact.cause !== 'time-limit') this.afterAWhile(() => this.settle(fact))
+    else this.settle(fact)
   }
 
   private settle(fact: Exclude<DispatchFact, { kind: 'fleet' }>): void {
     const key = keyOf(fact.item)
     const entry = this.running.get(key)
+    // Of an earlier pool, or of jobs that were given up.
     if (entry === undefined) return
     this.running.delete(key)
     const { grain, waiting } = entry
@@ -363,16 +359,20 @@ export class SearchLane {
       this.counts.lost++
       grain.simulatedSeconds += ((this.options.nowMs() - grain.begunMs) / 1000) * cores
     }
-    for (const one of waiting) this.write(one, fact)
+    const executor = this.executorOf(fact.executor)
+    for (const one of waiting) this.write(one, fact, executor)
     grain.left--
     this.endIfOver(grain)
   }
 
-  private write({ job, index, item }: Pending, fact: Exclude<DispatchFact, { kind: 'fleet' }>): void {
+  private write(
+    { job, index, item }: Pending,
+    fact: Exclude<DispatchFact, { kind: 'fleet' }>,
+    executor: Executor,
+  ): void {
     if (job.abandoned) return
     job.settle(index)
     const isUrgent = job.left === 0
-    const executor: Executor = { ...fact.executor, processor: this.options.processor }
     const { dispatch } = job
     if (fact.kind === 'lost') {
       const { cause, detail } = fact
@@ -385,6 +385,7 @@ export class SearchLane {
       dispatch,
       index,
       item: { island, evaluation, attempt, purpose },
+      content: contentWord(item),
       result,
       digest,
       executor,
@@ -393,6 +394,14 @@ export class SearchLane {
     }
     if (!this.events.letter({ job, answer }, isUrgent))
       this.events.letter({ job, loss: this.handedBack(job, index) }, isUrgent)
+  }
+
+  /** The pool's executor with this machine's class of processor. One object a message of a thread, not one an answer. */
+  private executorOf(from: Executor): Executor {
+    if (this.lastExecutor?.from !== from) {
+      this.lastExecutor = { from, executor: { ...from, processor: this.options.processor } }
+    }
+    return this.lastExecutor.executor
   }
 
   private endIfOver(grain: Grain): void {

@@ -23,7 +23,7 @@ export interface SentJob {
   strayedMs: number | undefined
 }
 
-/** Tries before the last: older ones have been answered. */
+/** Tries of one work that are looked at: more are hardly ever out. */
 const triesLookedAt = 8
 
 interface Entry {
@@ -51,6 +51,15 @@ export class Book {
   }
   find(name: ItemName): WorkItem | undefined {
     return this.#entries.get(nameOf(name))?.item
+  }
+
+  /** The outstanding try of this work, whichever it is. */
+  findAnyTry({ island, evaluation, purpose }: ItemName): WorkItem | undefined {
+    for (let attempt = 1; attempt <= triesLookedAt; attempt++) {
+      const item = this.find({ island, evaluation, attempt, purpose })
+      if (item) return item
+    }
+    return undefined
   }
 
   add(items: readonly WorkItem[]): void {

@@ -5,6 +5,8 @@ export interface Counters {
   jobs: number
   /** Answers that an item waited for. */
   answers: number
+  /** Answers to an earlier coordinator's jobs that were of use. */
+  inherited: number
   /** Answers of an earlier try, or of an item answered before. */
   late: number
   /** Entries of the results stream that nobody of ours can have written. */
@@ -31,6 +33,7 @@ export function newCounters(): Counters {
   return {
     jobs: 0,
     answers: 0,
+    inherited: 0,
     late: 0,
     malformed: 0,
     foreign: 0,

@@ -84,6 +84,7 @@ export class RedisDispatcher implements Dispatcher {
   #lastKeepMs = 0
   #lastAnnounceMs = 0
   #lastSweepMs = 0
+  #startMs = 0
   #stalledMs: number | undefined
   #saidFleet: boolean | undefined
   #stopTimer: () => void = () => {}
@@ -111,6 +112,7 @@ export class RedisDispatcher implements Dispatcher {
     await this.#beginAnew()
     const news = this.#fleet.look(await queue.agents(), this.#nowMs())
     if (news.changed) this.#tellFleet()
+    this.#startMs = this.#nowMs()
     this.#lastKeepMs = this.#nowMs()
     this.#lastSweepMs = this.#lastKeepMs
     void this.#receive()
@@ -120,6 +122,9 @@ export class RedisDispatcher implements Dispatcher {
   submit(items: readonly WorkItem[]): void {
     if (items.length === 0) return
     this.#book.add(items)
+    const { facts, receipts } = this.#intake.inherit(items)
+    this.#receipts.push(...receipts)
+    for (const fact of facts) this.#give(fact)
     void this.#send()
   }
 
@@ -304,6 +309,8 @@ export class RedisDispatcher implements Dispatcher {
       this.#noteRecovery()
       await this.#lookAtFleet(reset)
       if (this.#nowMs() - this.#lastSweepMs >= times.sweepMs) await this.#sweep()
+      // By now everything that a restart left outstanding has been handed over.
+      if (this.#nowMs() - this.#startMs > times.leaseMs) this.#durable.push(...this.#intake.letGo())
       await this.#send()
     } catch (fault) {
       this.#hear(fault)

@@ -48,11 +48,7 @@ export interface CoordinatorQueue {
   agents(): Promise<Heartbeat[]>
   /** Takes the agent out of the list: it is gone for good. */
   forgetAgent(agent: string): Promise<void>
-  /** Jobs of this search that lie in the open queue, waiting or taken: an earlier coordinator left them. */
-  leftJobs(): Promise<Job[]>
   /** The search stands still: agents are told, results that are on their way are kept for whoever continues it. */
   withdraw(): Promise<void>
-  /** The search is over for the agents; what is left of it is removed. */
-  end(): Promise<void>
   close(): Promise<void>
 }

@@ -462,6 +462,63 @@ describe('the coordinator', () => {
     expect(lossesOf(await factsWithin(2 * times.silentMs)).length).toBe(4)
   })
 
+  describe('(1, 53) a later one of the same record', () => {
+    /** Two jobs are being simulated when the first coordinator dies; the second knows nothing of them. */
+    async function successor(): Promise<{ worker: TestAgent; later: RedisDispatcher }> {
+      await started()
+      const worker = agent('a')
+      await clock.pass(2 * times.heartbeatMs)
+      submit(1, 2)
+      await clock.pass(10)
+      worker.take(2)
+      await dispatcher.close()
+      // Whoever still waits there is let go.
+      await clock.pass(10)
+      queue.closed = false
+      return { worker, later: make({ nonce: 'second', holder: 2 }) }
+    }
+
+    test('uses answers that came before it handed the work over, and sends that work nowhere', async () => {
+      const { worker, later } = await successor()
+      for (const job of [...worker.held]) worker.answer(job)
+      await started(later)
+      expect(resultsOf(await factsWithin(200, later))).toEqual([])
+      later.submit([itemOf(1), itemOf(2, { attempt: 3 }), itemOf(3)])
+      const results = resultsOf(await factsWithin(200, later))
+      expect(results.map(({ item }) => [item.evaluation, item.attempt])).toEqual([
+        [1, 1],
+        [2, 3],
+      ])
+      expect(queue.waiting().flatMap(({ items }) => items.map(({ evaluation }) => evaluation))).toEqual([3])
+      await factsWithin(200, later)
+      expect(queue.state.results).toEqual([])
+      expect(later.counters.inherited).toBe(2)
+    })
+
+    test('uses answers that come after it sent the work again', async () => {
+      const { worker, later } = await successor()
+      await started(later)
+      later.submit([itemOf(1), itemOf(2)])
+      await clock.pass(10)
+      for (const job of [...worker.held]) worker.answer(job)
+      expect(evaluationsOf(resultsOf(await factsWithin(500, later)))).toEqual([1, 2])
+      expect(later.status().outstanding).toBe(0)
+    })
+
+    test('uses none for work of the same number and other contents', async () => {
+      const { worker, later } = await successor()
+      for (const job of [...worker.held]) worker.answer(job)
+      await started(later)
+      await factsWithin(200, later)
+      later.submit([itemOf(1, { genome: Uint8Array.of(99) }), itemOf(2, { replicates: 2 })])
+      expect(resultsOf(await factsWithin(500, later))).toEqual([])
+      expect(later.status().outstanding).toBe(2)
+      await factsWithin(times.leaseMs + 1000, later)
+      expect(later.counters.foreign).toBe(2)
+      expect(queue.state.results).toEqual([])
+    })
+  })
+
   test('two searches of one name: the second is refused while the first lives, and not when it is dead', async () => {
     await started()
     const second = make({ record: 'record-2', nonce: 'second' })
@@ -539,10 +596,11 @@ describe('what anybody could have written', () => {
     expect(dispatcher.status().outstanding).toBe(1)
   })
 
-  test('(35) a number that no job of ours has had: foreign', async () => {
+  test('(35) a number that no job of ours has had, and other contents: foreign', async () => {
     const worker = await oneOut()
     const [job] = worker.take(1)
-    const { header, items } = job!
+    const { header } = job!
+    const items = [itemOf(1, { individual: 77 })]
     for (const dispatch of [1, header.dispatch + 1000, 2 ** 52])
       queue.deliver(answersTo({ header: { ...header, dispatch }, items }, [0], worker))
     expect(resultsOf(await factsWithin(500))).toEqual([])

@@ -8,7 +8,7 @@ import type {
   JobState,
   OutgoingJob,
 } from '../../../coordinator/dispatch/redis/port.js'
-import { type Answers, decodeJob, encodeJob, type Job } from '../../../shared/cluster/codec.js'
+import { type Answers, contentWord, decodeJob, encodeJob, type Job } from '../../../shared/cluster/codec.js'
 import { type Announcement, type Heartbeat, protocolVersion } from '../../../shared/cluster/messages.js'
 import { resultDigest } from '../../../shared/digests.js'
 import { refuse } from '../../../shared/refusals.js'
@@ -189,10 +189,6 @@ export class MemoryQueue implements CoordinatorQueue {
       waiting.has(dispatch) ? 'waiting' : this.state.active.has(dispatch) ? 'active' : 'gone',
     )
   }
-  async leftJobs(): Promise<Job[]> {
-    this.#check()
-    return this.waiting()
-  }
   async deliveries(waitMs: number): Promise<Delivery[]> {
     const untilMs = this.#clock.nowMs() + waitMs
     for (;;) {
@@ -223,9 +219,6 @@ export class MemoryQueue implements CoordinatorQueue {
   async withdraw(): Promise<void> {
     this.#check()
     this.state.announcements.delete(this.#search)
-  }
-  async end(): Promise<void> {
-    this.flush()
   }
   async close(): Promise<void> {
     this.closed = true
@@ -345,6 +338,7 @@ export function answersTo(
         dispatch: job.header.dispatch,
         index,
         item: { island, evaluation, attempt, purpose: job.header.purpose },
+        content: contentWord(job.items[index]!),
         result,
         digest: resultDigest(result),
         executor: { kind: 'thread', worker: `${host}/1/t1`, host, processor },
