@@ -6,6 +6,7 @@ import { join } from 'node:path'
 /** Sizes of the long tests: how many kills, how many seeds. A larger value on request, through the environment. */
 export const sizes = {
   SKERRY_CHAOS_KILLS: '50',
+  SKERRY_CHAOS_SEEDS: '3',
   SKERRY_SEEDS: '2000',
 }
 
@@ -49,6 +50,6 @@ export const phases = [
   { name: 'queue', says: 'a real Redis and real workers', project: 'queue', needs: ['redis-server'] },
   { name: 'package', says: 'what would be published', project: 'package' },
   { name: 'cluster', says: 'simulated clusters under seeds', project: 'cluster' },
-  { name: 'chaos', says: 'real processes, killed', project: 'chaos' },
+  { name: 'chaos', says: 'real processes, killed', project: 'chaos', needs: ['redis-server'] },
   { name: 'browser', says: 'pages in a real browser', project: 'browser', needs: ['chromium'] },
 ]
