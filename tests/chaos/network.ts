@@ -44,8 +44,10 @@ export class Network {
   /** Every packet is lost with this chance in 100, by direction as seen from inside. */
   lose(percent: { readonly out: number; readonly in: number }): void {
     this.heal()
+    const verdict = (chance: number) =>
+      chance === 0 ? '' : chance === 100 ? 'drop;' : `numgen random mod 100 < ${chance} drop;`
     const chain = (hook: string, chance: number) =>
-      `chain ${hook} { type filter hook ${hook} priority 0; numgen random mod 100 < ${chance} drop; }\n`
+      `chain ${hook} { type filter hook ${hook} priority 0; ${verdict(chance)} }\n`
     const rules = `table inet weather {\n${chain('output', percent.out)}${chain('input', percent.in)}}`
     this.inside('nft', rules)
   }
