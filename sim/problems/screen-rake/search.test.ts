@@ -15,8 +15,8 @@ import { asProblem, problemPlan } from '../../problem.js'
 import rake from './index.js'
 
 const problem = asProblem(rake)
-const seeds = (process.env.SKERRY_RAKE_SEEDS ?? '1').split(',').map(Number)
-const simulations = Number(process.env.SKERRY_RAKE_SIMULATIONS ?? 480)
+const seeds = (process.env.SKERRY_RAKE_SEEDS ?? '11').split(',').map(Number)
+const simulations = Number(process.env.SKERRY_RAKE_SIMULATIONS ?? 600)
 const freshConditions = 24
 
 /** As in search.yaml: a child differs from its parent in some of the parts only. */
