@@ -22,6 +22,9 @@ export interface AgentQueueOptions {
   readonly times: ClusterTimes
 }
 
+/** How long an empty queue of the agent's own may go unasked while there is other work. */
+const ownEmptyMs = 50
+
 /** Agents that come back a second: so many connections a server takes without a storm. */
 const returnsPerMs = 0.2
 
@@ -34,6 +37,7 @@ export class RedisAgentQueue implements AgentQueue {
   readonly #tokens: Tokens
   readonly #announcements = new Reader(heardAnnouncementSchema)
   #fleet = 1
+  readonly #ownEmptyUntilMs = new Map<string, number>()
   #closed = false
 
   constructor(options: AgentQueueOptions) {
@@ -76,7 +80,15 @@ export class RedisAgentQueue implements AgentQueue {
 
   async take(search: string): Promise<TakenJob | undefined> {
     const own = queueOf(this.#options.agent)
-    return (await this.#takeFrom(search, own)) ?? (await this.#takeFrom(search, openQueue))
+    // The agent's own queue comes first; where much is taken in a row it is not asked before each job.
+    const isKnownEmpty = (this.#ownEmptyUntilMs.get(search) ?? 0) > performance.now()
+    const order = isKnownEmpty ? [openQueue, own] : [own, openQueue]
+    for (const queue of order) {
+      const taken = await this.#takeFrom(search, queue)
+      if (taken !== undefined) return taken
+      if (queue === own) this.#ownEmptyUntilMs.set(search, performance.now() + ownEmptyMs)
+    }
+    return undefined
   }
 
   async #takeFrom(search: string, queue: string): Promise<TakenJob | undefined> {

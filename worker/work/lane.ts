@@ -55,6 +55,7 @@ export type LaneState = 'closed' | 'opening' | 'ready' | 'failed'
 const fastSeconds = 0.1
 /** How long a handful lasts. */
 const grainSeconds = 0.2
+const companySeconds = 0.02
 /** A process that dies of a signal to our whole group dies before we hear of ours: such a loss waits this long. */
 const deathWaitsMs = 300
 const kinds: readonly Kind[] = ['confirm', 'alone', 'shared']
@@ -163,7 +164,7 @@ export class SearchLane {
   next(): { readonly kind: Kind; readonly demand: Demand; readonly items: number } | undefined {
     for (const kind of kinds) {
       const [first] = this.stash[kind]
-      if (first === undefined || this.isFull(kind)) continue
+      if (first === undefined || this.isFull(kind) || this.waitsForCompany(kind)) continue
       const items = this.grainLength(kind)
       const { cores, memoryMB } = this.options.announcement.needs
       // Two short grains share a place, so that the next waits where its thread is when one ends.
@@ -307,6 +308,15 @@ export class SearchLane {
 
   private isShort(item: WorkItem): boolean {
     return (this.pace.expectedSeconds(item) ?? Number.POSITIVE_INFINITY) < fastSeconds
+  }
+
+  /**
+   * Every thread has something and what is here is next to nothing: a message of its own would cost more than it is
+   * worth. It goes with what comes, or when a thread runs dry.
+   */
+  private waitsForCompany(kind: Kind): boolean {
+    if (kind !== 'shared' || this.grains.size < this.options.width || !this.isFast) return false
+    return (this.stashSeconds() ?? companySeconds) < companySeconds
   }
 
   /** Confirming and lonely items have one process each. */

@@ -211,6 +211,31 @@ describe('needs', () => {
     expect(made.queue.tokens.size).toBe(0)
   })
 
+  test('tokens are counted across agents: two machines together never hold more than the site has', async () => {
+    const one = scene({ cores: 4 })
+    const two = scene({ cores: 4, agent: 'host-b-2-0000', host: 'host-b' }, one.queue)
+    one.queue.announce('weir', {
+      needs: { cores: 1, memoryMB: 10, tokens: { flow: 1 } },
+      tokens: { flow: 3 },
+    })
+    for (let i = 0; i < 12; i++) one.queue.add('weir', [2000])
+    let most = 0
+    const hosts = new Set<string>()
+    for (let i = 0; i < 40; i++) {
+      await one.pass(500)
+      most = Math.max(
+        most,
+        WaitingPool.made.reduce((sum, { running }) => sum + running, 0),
+      )
+      for (const { running, options } of WaitingPool.made) if (running > 0) hosts.add(options.host ?? '')
+    }
+    expect(most).toBe(3)
+    expect(hosts.size).toBe(2)
+    expect(one.queue.answers).toHaveLength(12)
+    expect(one.queue.tokens.size).toBe(0)
+    two.stop()
+  })
+
   test('tokens in use elsewhere: it waits without taking jobs, and without asking all the time', async () => {
     const made = scene()
     made.queue.announce('weir', {
