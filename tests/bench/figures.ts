@@ -1,6 +1,7 @@
 // The table of figures: a row each. Adding one is adding a row; the runner (main.ts) repeats it, prints it and keeps it.
 
 import { cpus, tmpdir } from 'node:os'
+import { clusterFigures } from './cluster/figures.js'
 import { type ContestSeed, contestMeasures } from './contest.js'
 import type { CpuPart } from './crawler.js'
 import { runDemo } from './demo.js'
@@ -199,6 +200,7 @@ export const figures: readonly Figure[] = [
     dependsOnTime: false,
     run: ({ quick, folder, say }) => kernelMeasures(folder, quick, say),
   },
+  ...clusterFigures,
 ]
 
 function wholePathRemark(path: WholePath): string {

@@ -22,6 +22,11 @@ export function cpuSecondsOfEnded(): number {
   return usageOf('self')?.endedSeconds ?? 0
 }
 
+/** CPU seconds of one process, without its children. */
+export function cpuSecondsOf(pid: number): number {
+  return usageOf(String(pid))?.ownSeconds ?? 0
+}
+
 function runningSeconds(parent: string): number {
   return childrenOf(parent).reduce((sum, pid) => {
     const usage = usageOf(pid)

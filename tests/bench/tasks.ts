@@ -4,6 +4,10 @@
 import { fork } from 'node:child_process'
 import { fileURLToPath } from 'node:url'
 import { spareHelpersOfCoordinator } from '../../worker/thrift.js'
+import { runBare, serveBare } from './cluster/bare.js'
+import { holdAgents, runCrowd } from './cluster/crowd.js'
+import { measureMemory } from './cluster/memory.js'
+import { runClusterPath } from './cluster/whole.js'
 import { runContest } from './contest.js'
 import { continueRecord } from './continuing.js'
 import { runCrawler } from './crawler.js'
@@ -22,6 +26,12 @@ export const tasks = {
   continuing: continueRecord,
   crawler: runCrawler,
   contest: runContest,
+  bare: runBare,
+  bareWorker: serveBare,
+  clusterPath: runClusterPath,
+  redisMemory: measureMemory,
+  crowd: runCrowd,
+  crowdAgents: holdAgents,
 }
 export type TaskName = keyof typeof tasks
 type Options<Name extends TaskName> = Parameters<(typeof tasks)[Name]>[0]
