@@ -7,7 +7,6 @@
 //
 // Three loops share the work: sending (at once), receiving (waits at the server), keeping (three looks a heartbeat).
 
-import { BrokenPromise } from '../../../shared/check.js'
 import type { Announcement, Heartbeat } from '../../../shared/cluster/messages.js'
 import { protocolVersion } from '../../../shared/cluster/messages.js'
 import type { ClusterTimes } from '../../../shared/cluster/times.js'
@@ -15,12 +14,14 @@ import { Refusal, refuse } from '../../../shared/refusals.js'
 import type { DispatchFact, WorkItem } from '../../../shared/result.js'
 import type { Dispatcher, DispatchStatus } from '../../engine/ports.js'
 import { Book, type SentJob } from './book.js'
+import { type Clock, pause } from './clock.js'
 import { type Counters, newCounters } from './counters.js'
-import { Fleet, lookMs, takesWork } from './fleet.js'
+import { Fleet, lookMs } from './fleet.js'
+import { Inbox } from './inbox.js'
 import { Intake, type Shape } from './intake.js'
 import { JobPace } from './pace.js'
-import { type Parcel, pack } from './parcels.js'
 import type { CoordinatorQueue } from './port.js'
+import { Sender } from './sender.js'
 
 /** What the record's coordinator may change about its announcement while it runs. */
 export type Orders = Partial<Pick<Announcement, 'shutOut' | 'draining' | 'share' | 'tokens'>>
@@ -30,13 +31,6 @@ export type SearchFacts = Omit<
   Announcement,
   'protocol' | 'instance' | 'beat' | 'waiting' | 'secondsPerCost' | 'shutOut' | 'draining'
 >
-
-export interface Clock {
-  /** Monotonic milliseconds. */
-  nowMs(): number
-  /** Calls back once after so long; the answer calls it off. */
-  after(ms: number, call: () => void): () => void
-}
 
 export interface RedisDispatcherOptions {
   readonly queue: CoordinatorQueue
@@ -56,8 +50,6 @@ export interface RedisDispatcherOptions {
 
 /** Items a slot has ahead at least, so that answers can be taken in by the handful. */
 const aheadLeast = 8
-/** How long facts() waits for company of the first fact. */
-const lingerMs = 20
 /** Refusals after which trying again cannot help. */
 const fatal = new Set(['queue-access', 'queue-tls', 'queue-unfit', 'search-name-taken', 'protocol-mismatch'])
 
@@ -68,19 +60,13 @@ export class RedisDispatcher implements Dispatcher {
   readonly #fleet: Fleet
   readonly #pace: JobPace
   readonly #intake: Intake
-  #inbox: DispatchFact[] = []
-  #receipts: string[] = []
-  #durable: string[] = []
-  #wake: (() => void) | undefined
-  #failure: Error | undefined
+  readonly #inbox: Inbox
+  readonly #sender: Sender
   #closed = false
   /** Which filling of the server our jobs belong to; undefined while it must be begun anew. */
   #instance: string | undefined
   #fillings = 0
-  #numbers = 0
-  readonly #firstNumber: number
   #beat = 0
-  #sending = false
   #lastKeepMs = 0
   #lastAnnounceMs = 0
   #lastSweepMs = 0
@@ -93,14 +79,36 @@ export class RedisDispatcher implements Dispatcher {
     this.#options = options
     this.#fleet = new Fleet(options.times)
     this.#pace = new JobPace(options.times.jobMs)
-    this.#firstNumber = firstNumber(options.search.holder, options.nonce)
+    this.#sender = this.#makeSender()
+    this.#inbox = new Inbox(options.clock, async (receipts) => {
+      await options.queue.acknowledge(receipts)
+      this.#intake.acknowledged(receipts)
+    })
     this.#intake = new Intake({
       search: options.search,
       shape: options.shape,
       book: this.#book,
       pace: this.#pace,
       counters: this.counters,
-      isOurs: (dispatch) => dispatch > this.#firstNumber && dispatch <= this.#firstNumber + this.#numbers,
+      isOurs: (dispatch) => this.#sender.isOurs(dispatch),
+    })
+  }
+
+  #makeSender(): Sender {
+    const { queue, search, nonce, clock, orders } = this.#options
+    return new Sender({
+      queue,
+      search,
+      nonce,
+      clock,
+      book: this.#book,
+      fleet: this.#fleet,
+      pace: this.#pace,
+      counters: this.counters,
+      instance: () => this.#instance,
+      shutOut: () => orders?.().shutOut ?? [],
+      unfit: (items) => this.#handBack(items),
+      fault: (fault) => this.#hear(fault),
     })
   }
 
@@ -123,22 +131,12 @@ export class RedisDispatcher implements Dispatcher {
     if (items.length === 0) return
     this.#book.add(items)
     const { facts, receipts } = this.#intake.inherit(items)
-    this.#receipts.push(...receipts)
-    for (const fact of facts) this.#give(fact)
-    void this.#send()
+    this.#inbox.give(facts, receipts)
+    void this.#sender.send()
   }
 
-  async facts(waitMs: number): Promise<DispatchFact[]> {
-    if (this.#wake !== undefined) throw new BrokenPromise('one caller at a time waits for facts')
-    this.#acknowledge()
-    if (this.#inbox.length === 0 && !this.#failure && !this.#closed) await this.#somethingHappens(waitMs)
-    if (this.#inbox.length > 0 && this.#book.outstanding > 0)
-      await this.#somethingHappens(Math.min(lingerMs, waitMs), true)
-    if (this.#failure !== undefined) throw this.#failure
-    const facts = this.#inbox
-    this.#inbox = []
-    this.#durable.push(...this.#receipts.splice(0))
-    return facts
+  facts(waitMs: number): Promise<DispatchFact[]> {
+    return this.#inbox.take(waitMs, () => this.#book.outstanding)
   }
 
   status(): DispatchStatus {
@@ -157,141 +155,35 @@ export class RedisDispatcher implements Dispatcher {
     if (this.#closed) return
     this.#closed = true
     this.#stopTimer()
-    this.#wake?.()
+    this.#sender.close()
+    this.#inbox.close()
     const { queue, times } = this.#options
     // A server that does not answer keeps nobody from leaving.
-    await Promise.race([queue.withdraw().catch(() => {}), this.#pause(times.handBackMs)])
+    await Promise.race([queue.withdraw().catch(() => {}), pause(this.#options.clock, times.handBackMs)])
     await queue.close()
-  }
-
-  // -------------------------------------------------------------------------------------- sending
-
-  async #send(): Promise<void> {
-    if (this.#sending) return
-    this.#sending = true
-    try {
-      // What is handed over in one go of the caller travels together.
-      await Promise.resolve()
-      while (this.#instance !== undefined && this.#book.waiting.length > 0 && !this.#closed)
-        if (!(await this.#sendWaiting(this.#instance))) return
-    } finally {
-      this.#sending = false
-    }
-  }
-
-  /** False when the server did not take it: the keeper tries again. */
-  async #sendWaiting(instance: string): Promise<boolean> {
-    const { parcels, unfit } = this.#packWaiting()
-    this.#handBack(unfit)
-    const jobs = parcels.map((parcel) => this.#post(parcel, instance))
-    if (jobs.length === 0) return true
-    try {
-      await this.#options.queue.add(jobs.map(({ outgoing }) => outgoing))
-      this.counters.jobs += jobs.length
-      return true
-    } catch (fault) {
-      // Some may have arrived all the same: they go out again under other numbers, and both answers count.
-      for (const { job } of jobs) if (this.#book.job(job.dispatch) === job) this.#book.recall(job)
-      this.#hear(fault)
-      return false
-    }
-  }
-
-  #packWaiting(): ReturnType<typeof pack> {
-    const items = this.#book.takeWaiting()
-    const alive = this.#ableAgents()
-    const threads = Math.max(
-      1,
-      alive.reduce((sum, { cores }) => sum + cores, 0),
-    )
-    // Two jobs a thread: nobody is idle while somebody else has a long job before it.
-    const most = Math.max(1, Math.ceil(this.#book.outstanding / (2 * threads)))
-    return pack(items, alive, this.#pace, { most, load: this.#loads(), holders: this.#holdersOf(items) })
-  }
-
-  /** For items that double an earlier try: who has that. */
-  #holdersOf(items: readonly WorkItem[]): Map<WorkItem, Set<string>> {
-    const hedges = items.filter(({ hedge }) => hedge)
-    if (hedges.length === 0) return new Map()
-    const { search } = this.#options.search
-    const holders = new Map<number, string>()
-    for (const { agent, held } of this.#fleet.alive())
-      for (const dispatch of held[search] ?? []) holders.set(dispatch, agent)
-    const holderOf = ({ dispatch, agent }: SentJob) => agent ?? holders.get(dispatch)
-    return new Map(
-      hedges.map((item) => [
-        item,
-        new Set(this.#book.otherTries(item).flatMap((job) => holderOf(job) ?? [])),
-      ]),
-    )
-  }
-
-  /** Living agents that this search may use and that take work. */
-  #ableAgents(): Heartbeat[] {
-    const shutOut = this.#options.orders?.().shutOut ?? []
-    return this.#fleet
-      .alive()
-      .filter((one) => takesWork(one) && !shutOut.includes(one.agent) && !shutOut.includes(one.host))
-  }
-
-  #loads(): Map<string, number> {
-    const loads = new Map<string, number>()
-    for (const { agent, open } of this.#book.jobs())
-      if (agent !== undefined) loads.set(agent, (loads.get(agent) ?? 0) + open.size)
-    return loads
-  }
-
-  #post({ items, agent, urgent }: Parcel, instance: string) {
-    const { search, record } = this.#options.search
-    const dispatch = this.#firstNumber + ++this.#numbers
-    const job = this.#book.send(dispatch, agent, items, this.#nowMs())
-    const { purpose, isolation, avoid, avoidHosts = [] } = items[0]!
-    const common = { protocol: protocolVersion, search, record, instance, dispatch }
-    const header = { ...common, purpose, isolation, avoid: [...avoid], avoidHosts: [...avoidHosts] }
-    const address = agent === undefined ? {} : { agent }
-    return { job, outgoing: { job: { header, items }, urgent, ...address } }
-  }
-
-  #handBack(items: readonly WorkItem[]): void {
-    if (items.length === 0) return
-    this.#book.forget(items)
-    this.counters.handedBack += items.length
-    this.#tellLost(items, 'handed-back', 'no agent that may do it is there', nobody)
   }
 
   // ------------------------------------------------------------------------------------ receiving
 
   async #receive(): Promise<void> {
     const { queue, times } = this.#options
-    while (!this.#closed && !this.#failure) {
+    while (!this.#closed && !this.#inbox.failed) {
       try {
         const deliveries = await queue.deliveries(times.sweepMs)
         const { facts, receipts } = this.#intake.take(deliveries)
-        this.#inbox.push(...facts)
-        this.#receipts.push(...receipts)
-        if (facts.length > 0) this.#wake?.()
-        else if (receipts.length > 0) this.#durable.push(...this.#receipts.splice(0))
+        if (facts.length > 0) this.#inbox.give(facts, receipts)
+        else this.#inbox.drop(receipts)
       } catch (fault) {
         this.#hear(fault)
-        await this.#pause(Math.ceil(times.heartbeatMs / 4))
+        await pause(this.#options.clock, Math.ceil(times.heartbeatMs / 4))
       }
     }
-  }
-
-  /** What was given out at the last call is durable now. */
-  #acknowledge(): void {
-    const receipts = this.#durable.splice(0)
-    if (receipts.length === 0) return
-    this.#options.queue.acknowledge(receipts).then(
-      () => this.#intake.acknowledged(receipts),
-      () => this.#durable.push(...receipts),
-    )
   }
 
   // -------------------------------------------------------------------------------------- keeping
 
   #keepLater(): void {
-    if (this.#closed || this.#failure) return
+    if (this.#closed || this.#inbox.failed) return
     this.#stopTimer = this.#options.clock.after(lookMs(this.#options.times), () => {
       void this.#keep().then(() => this.#keepLater())
     })
@@ -310,8 +202,8 @@ export class RedisDispatcher implements Dispatcher {
       await this.#lookAtFleet(reset)
       if (this.#nowMs() - this.#lastSweepMs >= times.sweepMs) await this.#sweep()
       // By now everything that a restart left outstanding has been handed over.
-      if (this.#nowMs() - this.#startMs > times.leaseMs) this.#durable.push(...this.#intake.letGo())
-      await this.#send()
+      if (this.#nowMs() - this.#startMs > times.leaseMs) this.#inbox.drop(this.#intake.letGo())
+      await this.#sender.send()
     } catch (fault) {
       this.#hear(fault)
     }
@@ -439,7 +331,7 @@ export class RedisDispatcher implements Dispatcher {
     const { queue, search, times } = this.#options
     const other = await queue.announced(search.search)
     if (!other || other.record === search.record) return
-    await this.#pause(2 * times.heartbeatMs)
+    await pause(this.#options.clock, 2 * times.heartbeatMs)
     const later = await queue.announced(search.search)
     if (!later || later.record === search.record || later.beat === other.beat) return
     throw refuse('search-name-taken', {
@@ -450,8 +342,7 @@ export class RedisDispatcher implements Dispatcher {
   #hear(fault: unknown): void {
     if (this.#closed) return
     if (!(fault instanceof Refusal) || fatal.has(fault.code)) {
-      this.#failure ??= fault instanceof Error ? fault : new Error(String(fault))
-      this.#wake?.()
+      this.#inbox.fail(fault instanceof Error ? fault : new Error(String(fault)))
       return
     }
     if (this.#stalledMs !== undefined) return
@@ -469,7 +360,7 @@ export class RedisDispatcher implements Dispatcher {
 
   #tellFleet(): void {
     const hosts = this.#fleet.hosts()
-    this.#give({ kind: 'fleet', hosts })
+    this.#inbox.give([{ kind: 'fleet', hosts }])
     const isThere = hosts.length > 0
     if (isThere === this.#saidFleet) return
     this.#saidFleet = isThere
@@ -482,6 +373,13 @@ export class RedisDispatcher implements Dispatcher {
     )
   }
 
+  /** Nobody who is there may do these. */
+  #handBack(items: readonly WorkItem[]): void {
+    this.#book.forget(items)
+    this.counters.handedBack += items.length
+    this.#tellLost(items, 'handed-back', 'no agent that may do it is there', nobody)
+  }
+
   #tellLost(
     items: readonly WorkItem[],
     cause: 'agent-lost' | 'handed-back',
@@ -490,13 +388,8 @@ export class RedisDispatcher implements Dispatcher {
   ): void {
     for (const { island, evaluation, attempt, purpose, isolation } of items) {
       const item = { island, evaluation, attempt, purpose, isolation }
-      this.#give({ kind: 'lost', item, cause, detail, executor })
+      this.#inbox.give([{ kind: 'lost', item, cause, detail, executor }])
     }
-  }
-
-  #give(fact: DispatchFact): void {
-    this.#inbox.push(fact)
-    this.#wake?.()
   }
 
   #tell(sentence: string): void {
@@ -506,43 +399,10 @@ export class RedisDispatcher implements Dispatcher {
   #nowMs(): number {
     return this.#options.clock.nowMs()
   }
-
-  #pause(ms: number): Promise<void> {
-    return new Promise((resolve) => {
-      this.#options.clock.after(ms, resolve)
-    })
-  }
-
-  /** Resolves when a fact comes in, on failure, on close(), or after that time; `more`: when there are enough. */
-  #somethingHappens(waitMs: number, more = false): Promise<void> {
-    const enough = more ? Math.ceil(this.#book.outstanding / 4) : 1
-    if (more && this.#inbox.length >= enough) return Promise.resolve()
-    return new Promise((resolve) => {
-      const done = () => {
-        cancel()
-        this.#wake = undefined
-        resolve()
-      }
-      const cancel = this.#options.clock.after(waitMs, done)
-      this.#wake = () => {
-        if (this.#inbox.length >= enough || this.#failure || this.#closed) done()
-      }
-    })
-  }
 }
 
 const nobody = { kind: 'process', worker: 'nobody', host: 'nobody' } as const
 
 function placeOf({ dispatch, agent }: SentJob): { readonly dispatch: number; readonly agent?: string } {
   return agent === undefined ? { dispatch } : { dispatch, agent }
-}
-
-/**
- * Numbers of dispatches begin here: 2^32 for each coordinator. Coordinators of one record differ in `holder`; one that
- * goes on from a backup, and has the number of one that is forgotten, differs in its nonce with all but certainty.
- */
-function firstNumber(holder: number, nonce: string): number {
-  let word = 0
-  for (const character of nonce) word = (Math.imul(word, 31) + character.codePointAt(0)!) >>> 0
-  return ((holder % 2 ** 10) * 2 ** 11 + (word % 2 ** 11)) * 2 ** 32
 }

@@ -1,7 +1,7 @@
 // A queue server in memory, on a virtual clock, that can be emptied, put back to an earlier state, frozen and cut off;
 // and agents that take from it as they are told. For tests of the dispatcher's own logic.
 
-import type { Clock } from '../../../coordinator/dispatch/redis/dispatcher.js'
+import type { Clock } from '../../../coordinator/dispatch/redis/clock.js'
 import type {
   CoordinatorQueue,
   Delivery,
