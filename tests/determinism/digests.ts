@@ -19,8 +19,8 @@ export const golden: { readonly [name: string]: string } = {
   'heap rapier3d-deterministic-0.21.0': '2096bf2726e1103bdf3608675bf0f72d79bb7df2af4cb122909deb5a137a4102',
   'culvert-crawler 3': '83711f5babd3e7e34e93f05e8931cf7f65a3f78877f6fbc9518c68c9397599f7',
   'culvert-crawler-3d 2': '4accfa313f2498b2c9dc3f241561c72c62147ebde5c0ef727919d0665d254752',
-  'pump-mount 1': '9d6963dc01ce101095be32bbefa6d847c82ab7ed6be05e3bb8699339ca15ae1f',
-  'seal-pad 2': 'ec1e6fac7e22ac5d8516fa172cedea39baf8df44c01c31008f3b2e32cc002096',
+  'pump-mount 2': '24d42d827c5d55eea18a91598b9c95b4c5888240e9f63ce879bf26d67a324942',
+  'seal-pad 3': '167ccee85d1b7739893881da7b9c4617da73432db4376b23f505eef278301f2b',
   'ramp-walker 1': '7e229e3caf5f9fa83dd07df783b6e06654bbcd7e04387a3c8d3c42c774f36708',
   'screen-rake 2+rapier2d-deterministic-0.20.0': '52753a2d1edcc911b4b6d963bb048b4470ac3a5d2c10d661697c1a1bce5da74e',
 }

@@ -11,9 +11,8 @@ import {
   levels,
   type MountGenome,
   none,
-  otherEnd,
+  otherEnds,
   places,
-  placesPerJoint,
   slotAt,
 } from './genome.js'
 import { numbers } from './numbers.js'
@@ -74,6 +73,9 @@ export function buildMount(genome: MountGenome): Mount {
   return { positionsM, mountKg, members, top, sensorNode, materialKg, damping: compounds[compound], compound }
 }
 
+/** Columns from 1, levels from 0, which is the base plate. */
+const jointName = (joint: number) => `joint ${(joint % columns) + 1} of level ${Math.floor(joint / columns)}`
+
 function membersOf(
   genome: MountGenome,
   numberOf: Int32Array,
@@ -82,16 +84,18 @@ function membersOf(
   const members: Member[] = []
   for (let row = 1; row < levels; row++) {
     for (let column = 0; column < columns; column++) {
-      for (let place = 0; place < placesPerJoint; place++) {
+      for (const place of places) {
         const option = genome.struts[slotAt(row, column, place)]!
         if (option === none) continue
-        const [a, b] = [numberOf[otherEnd(row, column, place)]!, numberOf[jointAt(row, column)]!]
-        const [from, to] = [positionsM[a]!, positionsM[b]!]
-        const [dx, dy] = [to[0] - from[0], to[1] - from[1]]
-        const lengthM = Math.sqrt(dx * dx + dy * dy)
-        const kind = strutClasses[option - 1]!
-        const name = `${places[place]} of column ${column + 1}, level ${row}`
-        members.push({ name, kind, a, b, lengthM, ...makeOf(kind, lengthM) })
+        for (const other of otherEnds(row, column, place)) {
+          const [a, b] = [numberOf[other]!, numberOf[jointAt(row, column)]!]
+          const [from, to] = [positionsM[a]!, positionsM[b]!]
+          const [dx, dy] = [to[0] - from[0], to[1] - from[1]]
+          const lengthM = Math.sqrt(dx * dx + dy * dy)
+          const kind = strutClasses[option - 1]!
+          const name = `${jointName(other)} to ${jointName(jointAt(row, column))}`
+          members.push({ name, kind, a, b, lengthM, ...makeOf(kind, lengthM) })
+        }
       }
     }
   }

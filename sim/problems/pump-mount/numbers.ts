@@ -38,6 +38,12 @@ export const numbers = {
   // rough bearing. Assumed; without it a search finds mounts that are about to buckle, because they are soft.
   weightsCarried: 2,
 
+  // Room below the sensor: its box hangs over the guard of the coupling, and must not touch it whatever the pump does. The
+  // gap is assumed, and so is what a mount counts worse for each whole room that it lacks, in each case: enough that
+  // no mount gains by lacking any.
+  roomM: 1e-3,
+  lackWeight: 1,
+
   // The mount: moulded struts as thick as their class says and this deep across; bows of strip 10 mm wide.
   depthM: 0.03,
   // A joint: a moulded boss 10 mm across and as deep as the mount (2.5 g) with a steel pin of 4 mm (3 g) and its clips.

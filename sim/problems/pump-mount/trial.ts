@@ -101,21 +101,24 @@ export function shake(shaking: Shaking, speeds: readonly Speed[]): (Recording | 
   return recordings
 }
 
+/** The sensor's farthest way from where it was at rest, m. */
+export function farthestM({ x, y }: Pick<Recording, 'x' | 'y'>): number {
+  let squared = 0
+  for (let n = 0; n < x.length; n++) squared = Math.max(squared, x[n]! * x[n]! + y[n]! * y[n]!)
+  return Math.sqrt(squared)
+}
+
 /**
  * What arrives of a shaking of amplitude `shakeM`. At constant speed: amplitude of the sensor at that frequency, both
  * axes together, over the last `measureSeconds`. Through a change of speed: the sensor's farthest way from rest.
  */
 export function arriving(
-  { x, y }: Recording,
+  { x, y }: Pick<Recording, 'x' | 'y'>,
   speed: Speed,
   samplesPerSecond: number,
   shakeM: number,
 ): number {
-  if (speed.seconds > 0) {
-    let squared = 0
-    for (let n = 0; n < x.length; n++) squared = Math.max(squared, x[n]! * x[n]! + y[n]! * y[n]!)
-    return Math.sqrt(squared) / shakeM
-  }
+  if (speed.seconds > 0) return farthestM({ x, y }) / shakeM
   const from = x.length - Math.round(numbers.measureSeconds * samplesPerSecond)
   const amplitude = (path: Float64Array) =>
     toneAt(path.subarray(Math.max(0, from)), 1 / samplesPerSecond, speed.fromHz).amplitude

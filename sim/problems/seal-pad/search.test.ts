@@ -1,61 +1,54 @@
-// A search of a thousand simulations finds pads nearer to the wanted ratio and stiffness than as many random ones.
+// A search comes nearer to the wanted pair than chance does. Seeds and settings were chosen before either was run with
+// them. The longer comparison that README.md reports, with any seeds: SKERRY_CONTEST=11,12,13,14,15 npx vitest run sim/problems/seal-pad/search.test.ts
 
+import { readFileSync } from 'node:fs'
 import { expect, test } from 'vitest'
-import { searchTools } from '../../../coordinator/evolution/build.js'
-import { defaultOperators } from '../../../coordinator/evolution/operators/index.js'
-import { log } from '../../../shared/detmath/index.js'
 import type { AnyProblem } from '../../../shared/problem.js'
-import { drivenSearch, gateOf } from '../../../tests/drive-search.js'
-import { islandPlan, mixedPlan } from '../../../tests/fixture.js'
-import { evaluate } from '../../evaluate.js'
-import { defineProblem, problemPlan } from '../../problem.js'
+import { bootstrapInterval } from '../../../tests/bench/statistics.js'
+import { type ContestResult, runContest } from '../../../tests/search-contest.js'
 import problem from './index.js'
-import { numbers } from './numbers.js'
-import { smallStrain } from './trial.js'
 
-/** One objective, the sum of the two misses at small strain: the working squeeze, nine tenths of the work, is left out. */
-const pads = defineProblem({
-  ...problem,
-  objectives: { miss: { direction: 'minimise', unit: '1' } },
-  measures: {},
-  simulate: (genome, situations) =>
-    situations.map(({ condition }) => {
-      const small = smallStrain(genome, condition)
-      if ('reason' in small) return { failed: small.reason }
-      const { poisson, modulusPa } = numbers.wanted
-      const { nu21, e2 } = small.moduli
-      return { objectives: { miss: Math.abs(nu21 - poisson) + Math.abs(log(e2 / modulusPa)) } }
-    }),
-}) as unknown as AnyProblem
+const asked = process.env.SKERRY_CONTEST?.split(',').map(Number)
+const isLong = asked !== undefined
+const file = readFileSync(new URL('search.yaml', import.meta.url), 'utf8')
+/** A casting that does not hold misses by as much as a pad without any drawing in does. */
+const failedAs = 8
 
-/** Least sum of the two misses that a method meets within its budget; each individual is simulated once. */
-function leastMiss(method: string, seed: number, simulations: number): number {
-  const operators = defaultOperators(problem.genome)
-  const plan = {
-    ...mixedPlan({
-      seed,
-      problem: problemPlan(pads, '0'.repeat(64)),
-      islands: [islandPlan(1, { method, population: 30, lookahead: 30, share: 1, operators })],
-      controls: [],
-      replicates: { first: 1, topUp: 1, most: 1, shared: true },
-      budget: { simulations },
-    }),
-  }
-  let least = Number.POSITIVE_INFINITY
-  const gate = gateOf((_, { individual, firstReplicate, replicates }) => {
-    const result = evaluate(pads, individual.genome, seed, true, 1, firstReplicate, replicates)
-    if (result.failures.length === 0) least = Math.min(least, result.values[0]!)
-    return result
+/** The search file as it is, or for a short test one island of it. */
+function contest(seed: number): ContestResult {
+  return runContest(file, problem as unknown as AnyProblem, {
+    seed,
+    failedAs,
+    simulations: isLong ? 1_500 : 320,
+    change: (plan) => {
+      if (isLong) return plan
+      const { migration: _, ...rest } = plan
+      return { ...rest, islands: [plan.islands[0]!] }
+    },
   })
-  drivenSearch(plan, gate, searchTools(plan, { expectedCost: () => 1, repair: pads.repair }))
-  return least
 }
 
-test('1,200 simulations of a search come at least twice as near as 1,200 random pads, median of five seeds', () => {
-  // One seed alone may stay in a corner: a median.
-  const median = (method: string) =>
-    [6, 7, 8, 9, 10].map((seed) => leastMiss(method, seed, 1_200)).sort((a, b) => a - b)[2]!
-  const [searched, random] = [median('steady-state'), median('random-sampling')]
-  expect(searched).toBeLessThan(random / 2)
-  expect(searched).toBeLessThan(0.3)
-}, 60_000)
+// One island alone may stay in a corner, no better than chance: a mean of several.
+const seeds = asked ?? [20_261_202, 20_261_203, 20_261_204]
+
+test(`on fresh castings the best of a search misses by less than the best of chance, seeds ${seeds}`, () => {
+  const results = seeds.map(contest)
+  if (isLong) console.log(results.map(sentence).join('\n'))
+  const ahead = results.map(({ better }) => better)
+  if (isLong)
+    console.log('mean and 95 % bootstrap interval of the mean', mean(ahead), bootstrapInterval(ahead))
+  expect(mean(ahead)).toBeGreaterThan(4 * mean(results.map(({ standardError }) => standardError)))
+}, 3_600_000)
+
+const mean = (values: readonly number[]) => values.reduce((a, b) => a + b) / values.length
+
+function sentence({ seed, search, chance, better, standardError }: ContestResult): string {
+  const of = ({ mean, means, failedReplicates }: typeof search) =>
+    `${mean.toFixed(2)} (ratio ${means.poisson!.toFixed(2)} and ${means.poissonAtStrain!.toFixed(2)}, modulus ` +
+    `${(means.modulus! / 1000).toFixed(1)} and ${(means.modulusAtStrain! / 1000).toFixed(1)} kPa, ` +
+    `${(1000 * means.material!).toFixed(0)} g, ${failedReplicates} failed)`
+  return (
+    `seed ${seed}: search ${of(search)}, chance ${of(chance)}, ` +
+    `better by ${better.toFixed(2)} +- ${standardError.toFixed(2)}`
+  )
+}
