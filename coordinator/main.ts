@@ -3,12 +3,12 @@
 
 import { randomBytes } from 'node:crypto'
 import { availableParallelism } from 'node:os'
-import { join, resolve } from 'node:path'
+import { join } from 'node:path'
 import { limits } from '../shared/limits.js'
+import type { Needs } from '../shared/needs.js'
 import type { AnyProblem } from '../shared/problem.js'
 import { refuse } from '../shared/refusals.js'
 import { loadPlugin } from '../worker/plugin/load.js'
-import { createPool } from '../worker/pool.js'
 import { readKey } from '../worker/work/index.js'
 import { Alarms } from './cli/join/alarms.js'
 import { openAlone, refuseIfHeldHere } from './cli/join/alone.js'
@@ -16,6 +16,7 @@ import { type BudgetEnds, finishedBecause, orderBudgetEnds, resumeEnds } from '.
 import { acceptedText, judgeChanges, orderChanges } from './cli/join/changes.js'
 import { clusterDispatcher } from './cli/join/cluster.js'
 import { type Finish, retest, toRetest, write, writeFinish } from './cli/join/finish.js'
+import { dispatcherHere } from './cli/join/here.js'
 import { progressFile } from './cli/join/looking-on.js'
 import { Meter, simulationsLeft } from './cli/join/meter.js'
 import { type OwnRedisOptions, ownRedis } from './cli/join/own-redis.js'
@@ -27,8 +28,6 @@ import type { ProgressView } from './cli/progress-view.js'
 import type { RunEnd, RunOptions } from './cli/run-options.js'
 import { searchTables } from './cli/search-tables.js'
 import { type OpenedSearch, openSearch, peekName } from './cli/searchfile/open.js'
-import { localDispatcher } from './dispatch/local.js'
-import { underWeather } from './dispatch/weather.js'
 import type { Engine } from './engine/engine.js'
 import { type LoopEnd, type LoopState, runLoop } from './engine/loop.js'
 import type { Dispatcher, RecordReader } from './engine/ports.js'
@@ -98,7 +97,16 @@ async function runRecord(
   orderChanges(engine, changes, opened)
   const ends = resumeEnds(engine, record.reader, changes, opened.fields.budget)
   const cores = options.cores ?? opened.fields.cores ?? availableParallelism()
-  return await drive({ options, record, ...folders, engine, problem, cores, ends })
+  return await drive({
+    options,
+    record,
+    ...folders,
+    engine,
+    problem,
+    cores,
+    tokens: opened.fields.tokens,
+    ends,
+  })
 }
 
 function noteStart(engine: Engine, record: OpenRecord, replayed: number, options: RunOptions): void {
@@ -127,6 +135,8 @@ interface Driven {
   readonly engine: Engine
   readonly problem: AnyProblem
   readonly cores: number
+  /** Of each licence, how many the search file says there are. */
+  readonly tokens: Needs['tokens']
   readonly ends: BudgetEnds
 }
 
@@ -181,7 +191,7 @@ function ownRedisOptions({ options, record, folder }: Driven): Omit<OwnRedisOpti
 }
 
 function dispatcherOf(
-  { options, record, folder, here, cores, engine }: Driven,
+  { options, record, folder, here, cores, tokens, engine }: Driven,
   redis: string | undefined,
   key: Uint8Array | undefined,
 ): Dispatcher {
@@ -189,16 +199,9 @@ function dispatcherOf(
     const tell = (sentence: string) => options.tell({ kind: 'said', sentence })
     const { redisUnprotected, ownRedis: own } = options
     const found = own ? { workerCommand: `skerry work --record ${folder}` } : {}
-    return clusterDispatcher({ redisUnprotected, redis, key, tell, ...found }, record, engine)
+    return clusterDispatcher({ redisUnprotected, redis, key, tokens, tell, ...found }, record, engine)
   }
-  const { seed, replicates } = record.plan
-  const pluginFile = resolve(recordFolder(here).plugin)
-  const local = localDispatcher((events) =>
-    createPool({ pluginFile, seed, sharedConditions: replicates.shared, threads: cores }, events),
-  )
-  // For tests of the promise that the order of arrival changes nothing; no option, because nobody else wants it.
-  const weather = process.env.SKERRY_TEST_WEATHER
-  return weather === undefined ? local : underWeather(local, { seed: Number(weather), baseMs: 1, oneIn: 12 })
+  return dispatcherHere({ pluginFile: recordFolder(here).plugin, plan: record.plan, cores, tokens })
 }
 
 const endWord: { readonly [end in LoopEnd]: RunEnd['ended'] } = {

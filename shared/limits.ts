@@ -71,6 +71,12 @@ export const limits = {
   pluginBytes: 2 ** 26,
   /** Simulation threads of one machine. */
   threadsMost: 1_024,
+  /** Megabytes that one simulation may hold where its problem says nothing, and that it may ask for. */
+  megabytesUsual: 1_024,
+  megabytesMost: 4_194_304,
+  /** Kinds of licences of a problem or a search file, and how many of one kind. */
+  tokenKinds: 16,
+  tokensMost: 1_000_000,
   /** Wall time that a simulation may take, as a multiple of the expected: a backstop, never the measure. */
   wallTimeFactor: 20,
 } as const

@@ -8,6 +8,7 @@
 import type { Frames } from './frames.js'
 import type { Genome, GenomeOf, GenomeSpec } from './genome.js'
 import type { noMachine, Parts, Process, Use } from './making/types.js'
+import type { NeedsInput } from './needs.js'
 import type { Stream } from './streams.js'
 
 export type { FrameBody, FrameGroundGrid, FrameLink, FrameMotor, Frames, FrameWall } from './frames.js'
@@ -92,6 +93,11 @@ export interface Problem<S extends GenomeSpec = GenomeSpec, Condition = unknown>
     situations: readonly Situation<Condition>[],
     divide: number,
   ) => SimulationOutcome[]
+  /**
+   * What one simulation asks of its machine and of the site: cores (1 unless said), memoryMB (1,024), and tokens, licences
+   * by name of which it holds so many while it runs. No more run at once than there is room and licences for.
+   */
+  readonly needs?: NeedsInput
   /** Positive integer: what a simulation of this genome should cost, relative to others. */
   readonly expectedCost: (genome: GenomeOf<S>) => number
   /** Makes a freshly varied genome buildable; must be pure and idempotent. */

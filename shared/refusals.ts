@@ -284,6 +284,11 @@ export const refusals = {
     text: 'No worker could be started',
     cure: 'Read the reason named above; `skerry check FILE` tries one simulation by itself.',
   },
+  'machine-too-small': {
+    exitCode: configuration,
+    text: 'This machine has no room for one simulation of this problem',
+    cure: 'Use a larger machine, or --redis with workers on machines that are large enough.',
+  },
   interrupted: {
     exitCode: interrupted,
     text: 'Stopped before the end',

@@ -110,6 +110,7 @@ const fields: { readonly [field: string]: FieldCheck } = {
   drawCondition: aFunction,
   simulate: aFunction,
   simulateFiner: perhapsAFunction,
+  needs: checkNeeds,
   expectedCost: aFunction,
   repair: aFunction,
   frames: perhapsAFunction,
@@ -118,6 +119,44 @@ const fields: { readonly [field: string]: FieldCheck } = {
   process: checkProcess,
   parts: perhapsAFunction,
   use: checkUse,
+}
+
+const wholeUpTo = (value: unknown, most: number) =>
+  Number.isSafeInteger(value) && (value as number) >= 1 && (value as number) <= most
+
+/** One row a field of `needs`. */
+const needRows: { readonly [name: string]: FieldCheck } = {
+  cores: (value, field) => {
+    const { threadsMost } = limits
+    demand(value === undefined || wholeUpTo(value, threadsMost), field, value, `1 to ${threadsMost} cores`)
+  },
+  memoryMB: (value, field) => {
+    const { megabytesMost } = limits
+    const sound = value === undefined || wholeUpTo(value, megabytesMost)
+    demand(sound, field, value, `1 to ${megabytesMost} megabytes, a whole number`)
+  },
+  tokens: (value, field) => {
+    if (value === undefined) return
+    demand(isBag(value), field, value, 'an object with one entry a licence')
+    const names = Object.keys(value)
+    demand(names.length <= limits.tokenKinds, field, `${names.length} kinds`, `at most ${limits.tokenKinds}`)
+    for (const name of names) {
+      const sound = isText(name, limits.nameLength) && word.test(name)
+      demand(sound, `${field}.${name}`, name, 'letters, digits, - and _, beginning with a letter')
+      const count = value[name]
+      demand(wholeUpTo(count, limits.tokensMost), `${field}.${name}`, count, 'a whole number from 1')
+    }
+  },
+}
+
+function checkNeeds(value: unknown, field: string): void {
+  if (value === undefined) return
+  const names = Object.keys(needRows)
+  demand(isBag(value), field, value, `an object with ${names.join(', ')}, or nothing`)
+  for (const name of Object.keys(value)) {
+    demand(Object.hasOwn(needRows, name), `${field}.${name}`, value[name], `one of ${names.join(', ')}`)
+  }
+  for (const [name, check] of Object.entries(needRows)) check(value[name], `${field}.${name}`)
 }
 
 function checkNames(value: unknown, field: string, least: number, most: number): asserts value is Bag {

@@ -62,6 +62,17 @@ describe('defineProblem', () => {
     expect('frames' in problem).toBe(false)
   })
 
+  test('needs go into the plan whole, and plans without any stay as they were', () => {
+    const planned = (change: object) =>
+      problemPlan(asProblem(defineProblem({ ...whole, ...change })), '0'.repeat(64))
+    expect(planned({ needs: { cores: 2, tokens: { flow: 1 } } }).needs).toEqual({
+      cores: 2,
+      memoryMB: 1024,
+      tokens: { flow: 1 },
+    })
+    expect('needs' in planned({})).toBe(false)
+  })
+
   test('types the genome from its specification', () => {
     defineProblem({
       ...whole,
@@ -113,6 +124,13 @@ describe('defineProblem', () => {
       /above 0/,
     ],
     ['a tolerance for bits', { tolerance: { travel: { absolute: 1 } } }, 'tolerance', /exactness is 'bits'/],
+    ['needs of a word', { needs: 'much' }, 'needs', /cores, memoryMB, tokens/],
+    ['a need that is none', { needs: { core: 2 } }, 'needs.core', /one of cores, memoryMB, tokens/],
+    ['half a core', { needs: { cores: 0.5 } }, 'needs.cores', /1 to 1024 cores/],
+    ['no memory', { needs: { memoryMB: 0 } }, 'needs.memoryMB', /found 0, expected 1 to/],
+    ['licences in a list', { needs: { tokens: ['flow'] } }, 'needs.tokens', /one entry a licence/],
+    ['no licence of a kind', { needs: { tokens: { flow: 0 } } }, 'needs.tokens.flow', /from 1/],
+    ['a licence with a colon', { needs: { tokens: { 'a:b': 1 } } }, 'needs.tokens.a:b', /letters, digits/],
     ['no simulate', { simulate: undefined }, 'simulate', /a function/],
     ['an unknown field', { fitness: 1 }, 'fitness', /one of name, version/],
     ['a genome part without bounds', { genome: { a: { kind: 'real', length: 1 } } }, 'genome.a.low', /./],

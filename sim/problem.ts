@@ -4,6 +4,7 @@
 
 import type { GenomeOf, GenomeSpec } from '../shared/genome.js'
 import type { Parts, Process } from '../shared/making/types.js'
+import { type NeedsInput, needsOf } from '../shared/needs.js'
 import type {
   AnyProblem,
   CaseCombination,
@@ -57,6 +58,8 @@ export interface ProblemInput<S extends GenomeSpec, Condition> {
     situations: readonly Situation<Condition>[],
     divide: number,
   ) => SimulationOutcome[]
+  /** 1 core, 1,024 MB and no licences unless said. */
+  readonly needs?: NeedsInput
   /** 1 unless said. */
   readonly expectedCost?: (genome: GenomeOf<S>) => number
   /** Leaves the genome as it is unless said. */
@@ -145,6 +148,7 @@ export function problemPlan(problem: AnyProblem, digest: string) {
     cases: [...problem.cases],
     // What most problems promise is not said, so that their plans stay as they were.
     ...(problem.exactness === 'bits' ? {} : { exactness: problem.exactness }),
+    ...(problem.needs === undefined ? {} : { needs: needsOf(problem.needs) }),
     ...(problem.tolerance === undefined ? {} : { tolerances: tolerancesOf(problem, problem.tolerance) }),
   }
 }

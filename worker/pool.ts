@@ -11,6 +11,7 @@
 
 import { hostname } from 'node:os'
 import { BrokenPromise, check } from '../shared/check.js'
+import { limits } from '../shared/limits.js'
 import { refuse } from '../shared/refusals.js'
 import type { DispatchFact, Executor, WorkItem } from '../shared/result.js'
 import { AgentLane } from './lane-agent.js'
@@ -227,7 +228,7 @@ function threadsOptions(options: PoolOptions) {
   return {
     settings: { pluginFile, seed, sharedConditions },
     threads,
-    megabytes: options.megabytes ?? 1024,
+    megabytes: options.megabytes ?? limits.megabytesUsual,
     timeLimit: options.timeLimit ?? {},
     host: options.host ?? hostname(),
     ...(secondsPerCost === undefined ? {} : { secondsPerCost }),

@@ -2,7 +2,9 @@
 
 import { availableParallelism } from 'node:os'
 import { noMachine } from '../../shared/making/types.js'
+import { type Needs, needsOf, needsWords, placesFor } from '../../shared/needs.js'
 import { exitCodes } from '../../shared/refusals.js'
+import { memoryMB } from '../../worker/work/machine.js'
 import type { IslandPlan } from '../evolution/plan.js'
 import {
   type DriftExpectation,
@@ -78,6 +80,8 @@ export interface CheckReport {
   readonly failedBecause?: string
   /** Why the fresh process did not run; absent when it did. */
   readonly freshNotRun?: string
+  /** What a simulation asks for, and how many this machine runs at once; absent where the problem says nothing. */
+  readonly needs?: Needs & { readonly atOnceHere: number }
   /** Absent where the problem declares no process or no parts. */
   readonly making?: MakingTrial
   readonly cautions: DeclaredCautions
@@ -176,10 +180,28 @@ export async function checkSearch(
     failedSimulations: trials.failed,
     ...(trials.failedBecause === undefined ? {} : { failedBecause: trials.failedBecause }),
     ...(fresh.notRun === undefined ? {} : { freshNotRun: fresh.notRun }),
+    ...needsHere(opened),
     ...(making.trial === undefined ? {} : { making: making.trial }),
     cautions: declaredCautions(problem, plan.seed),
     ...(binding.length === 0 ? { measured: measure(opened, trials) } : {}),
   }
+}
+
+function needsHere({ plan, fields }: OpenedSearch): Pick<CheckReport, 'needs'> {
+  const { needs } = plan.problem
+  if (needs === undefined) return {}
+  const cores = fields.cores ?? availableParallelism()
+  return {
+    needs: { ...needs, atOnceHere: placesFor(needs, { cores, memoryMB: memoryMB(), tokens: fields.tokens }) },
+  }
+}
+
+function needsLines({ needs }: CheckReport): string[] {
+  if (needs === undefined) return []
+  const { atOnceHere } = needs
+  const here =
+    atOnceHere === 0 ? 'not even one fits on this machine' : `this machine runs ${atOnceHere} at once`
+  return [`A simulation takes ${needsWords(needs)}; ${here}.`]
 }
 
 function isExact(exactness: string): boolean {
@@ -192,7 +214,8 @@ function measure(opened: OpenedSearch, trials: ProcessTrials): Measured {
   const secondsPerSimulation = spreadOf(machines.map((machine) => machine.secondsPerSimulation))
   const aroundCost = spreadOf(machines.map((machine) => machine.secondsPerSimulation / machine.expectedCost))
   const workers = fields.workersExpected ?? fields.cores ?? availableParallelism()
-  const search = (plan.budget.simulations * secondsPerSimulation.mean) / 3600
+  const { cores } = needsOf(plan.problem.needs)
+  const search = (plan.budget.simulations * secondsPerSimulation.mean * cores) / 3600
   const controls = search * plan.controls.length
   const confirmation = search * plan.confirm.fraction
   const drift = driftOf(
@@ -260,6 +283,7 @@ function printReport(output: Output, opened: OpenedSearch, report: CheckReport):
   output.print('')
   for (const line of faultLines(report, problem.exactness)) say(line)
   for (const line of makeLines(report, problem)) say(line)
+  for (const line of needsLines(report)) say(line)
   const { measured } = report
   if (measured) for (const line of measuredLines(measured, report, opened)) say(line)
   output.print('')

@@ -2,6 +2,7 @@
 // evolution and engine read this and never the file. Plain data, structured-cloneable.
 
 import type { GenomeSpec } from '../../shared/genome.js'
+import type { Needs } from '../../shared/needs.js'
 import type { CaseCombination, Direction, Exactness, Reduction, Tolerance } from '../../shared/problem.js'
 import type { Placement, Settings } from './types.js'
 
@@ -30,6 +31,8 @@ export interface ProblemPlan {
   readonly cases: readonly string[]
   /** How far results repeat; 'bits' where nothing is said. */
   readonly exactness?: Exactness
+  /** What one simulation asks of a machine and of the site; as usual (shared/needs.ts) where nothing is said. */
+  readonly needs?: Needs
   /** For exactness 'tolerance' and 'statistical': one entry a column of a result. */
   readonly tolerances?: readonly Tolerance[]
 }

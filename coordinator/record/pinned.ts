@@ -40,11 +40,20 @@ export function metaOf({ plan, searchText, pluginCode }: Pinned, createdMs: numb
   ]
 }
 
+const needs = z.object({
+  cores: z.number().int().positive(),
+  memoryMB: z.number().int().positive(),
+  tokens: z.record(z.string(), z.number().int().positive()),
+})
 const planSchema = z.looseObject({
   name: z.string(),
   seed: z.number().int().nonnegative(),
   semantics: z.number().int(),
-  problem: z.looseObject({ name: z.string(), digest: z.string().regex(/^[0-9a-f]{64}$/) }),
+  problem: z.looseObject({
+    name: z.string(),
+    digest: z.string().regex(/^[0-9a-f]{64}$/),
+    needs: needs.optional(),
+  }),
   islands: z.array(z.looseObject({ island: z.number().int().positive() })),
 })
 

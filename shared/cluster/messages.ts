@@ -20,7 +20,7 @@ export type Exactness = (typeof exactnesses)[number]
 /** What one simulation asks of a machine. */
 export const needsSchema = z.strictObject({
   cores: z.number().int().min(1).max(limits.threadsMost).default(1),
-  memoryMB: z.number().int().min(1).max(4_194_304).default(1024),
+  memoryMB: z.number().int().min(1).max(limits.megabytesMost).default(limits.megabytesUsual),
   /** Licences: how many of each token one simulation holds. */
   tokens: z.record(z.string().max(64), z.number().int().min(1)).default({}),
 })

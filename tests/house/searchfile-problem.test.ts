@@ -54,6 +54,29 @@ describe('what `skerry new` writes', () => {
   })
 })
 
+describe('a problem that says what a simulation needs', () => {
+  const asking = problemText.replace(
+    "version: '1',",
+    "version: '1', needs: { cores: 2, tokens: { flow: 1 } },",
+  )
+  const here = `${searchText('mount', 4)}\ntokens: { flow: 3 }\ncores: 7\n`
+  it('has it in its plan and in the report, with how many run at once and two core-hours an hour', async () => {
+    const opened = await openSearch(folderWith(asking, here), searchTables())
+    expect(opened.plan.problem.needs).toEqual({ cores: 2, memoryMB: 1024, tokens: { flow: 1 } })
+    const report = await checkSearch(opened, { machines: 2, secondsMost: 10 })
+    expect(report.needs).toMatchObject({ cores: 2, tokens: { flow: 1 } })
+    // Three by cores and licences; fewer where this machine has less memory than 3 GB.
+    expect(report.needs!.atOnceHere).toBeLessThanOrEqual(3)
+    expect(report.needs!.atOnceHere).toBeGreaterThanOrEqual(1)
+    const { coreHours, secondsPerSimulation } = report.measured!
+    const hours = (opened.plan.budget.simulations * secondsPerSimulation.mean) / 3600
+    expect(coreHours.search / hours).toBeCloseTo(2, 9)
+  })
+  it('is refused with a search file that names no such licence', async () => {
+    expect((await refusal(folderWith(asking))).message).toContain('flow')
+  })
+})
+
 describe('a problem that takes its process along', () => {
   const rest = (inSimulate: string) => `
 import { defineProblem, real } from 'skerry'

@@ -315,6 +315,26 @@ describe('an impossible value', () => {
     expect(findings.map(({ field }) => field)).toEqual(['islands[0].method', 'islands[1].method'])
     expect(findings[0]!.expected).toContain('nsga-ii')
   })
+  it('is refused with its reason: a licence that the site does not have, with the name that was meant', () => {
+    const solving = { ...problem, needs: { cores: 1, memoryMB: 1024, tokens: { 'flow-solver': 2 } } }
+    expect(refused(`${goodFile}tokens: { flow-solvr: 4 }\n`, solving)).toMatchObject({
+      code: 'impossible-value',
+      field: 'tokens',
+      found: 'nothing of the licence flow-solver',
+      advice: 'The problem asks for "flow-solver": did the file mean that by "flow-solvr"?',
+    })
+    expect(refused(goodFile, solving).advice).toContain('tokens: { flow-solver: 2 }')
+    expect(refused(`${goodFile}tokens: { flow-solver: 1 }\n`, solving)).toMatchObject({
+      field: 'tokens.flow-solver',
+      found: '1 of the licence flow-solver',
+    })
+    expect(plan(`${goodFile}tokens: { flow-solver: 2 }\n`, solving).findings).toEqual([])
+  })
+  it('is refused: licences that are no numbers, and names that are none', () => {
+    expect(refused(`${goodFile}tokens: { flow: many }\n`)).toMatchObject({ field: 'tokens.flow' })
+    expect(refused(`${goodFile}tokens: { "a:b": 1 }\n`).expected).toContain('letters, digits')
+    expect(refused(`${goodFile}tokens: 3\n`)).toMatchObject({ code: 'wrong-type', field: 'tokens' })
+  })
   it('is refused at once: thousands of islands', () => {
     const text = edited('count: 3,', 'count: 1000,').replace('count: 1\n', 'count: 1000\n')
     const finding = refused(text)
@@ -334,6 +354,9 @@ describe('an impossible value', () => {
 })
 
 describe('a poor value', () => {
+  it('is a warning: a licence that nobody asks for', () => {
+    expect(warned(`${goodFile}tokens: { flow: 3 }\n`).field).toBe('tokens.flow')
+  })
   it('is a warning: a lookahead above the population', () => {
     expect(warned(edited('population: 40, lookahead: 6', 'population: 5, lookahead: 6')).field).toBe(
       'islands[0].lookahead',

@@ -3,9 +3,9 @@
 
 import { randomBytes } from 'node:crypto'
 import { defaultPrefix, keyName } from '../../../shared/cluster/keys.js'
-import { needsSchema } from '../../../shared/cluster/messages.js'
 import { signatureOf } from '../../../shared/cluster/signature.js'
 import { clusterTimes } from '../../../shared/cluster/times.js'
+import { type Needs, needsOf } from '../../../shared/needs.js'
 import {
   certificateVariable,
   parseAddress,
@@ -25,11 +25,13 @@ export interface ClusterOptions {
   readonly key: Uint8Array | undefined
   /** How workers are started, where the address of Redis is not all they need. */
   readonly workerCommand?: string
+  /** Of each licence, how many the whole site has. */
+  readonly tokens: Needs['tokens']
   readonly tell: (sentence: string) => void
 }
 
 export function clusterDispatcher(
-  { redis, redisUnprotected, key, workerCommand, tell }: ClusterOptions,
+  { redis, redisUnprotected, key, workerCommand, tokens, tell }: ClusterOptions,
   record: OpenRecord,
   engine: Engine,
 ): RedisDispatcher {
@@ -66,8 +68,8 @@ export function clusterDispatcher(
       seed: plan.seed,
       sharedConditions: plan.replicates.shared,
       exactness: plan.problem.exactness ?? 'bits',
-      needs: needsSchema.parse({}),
-      tokens: {},
+      needs: needsOf(plan.problem.needs),
+      tokens,
       share: 1,
       skerry: version(),
     },

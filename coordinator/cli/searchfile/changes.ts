@@ -38,6 +38,7 @@ export const changeTable: { readonly [field: string]: ChangeRow } = {
   control: { kind: 'branch', because: 'a control must spend the whole budget of the search' },
   confirm: { kind: 'free', because: 'confirmation delays a commit, it never changes one' },
   genomes: { kind: 'branch', because: 'genomes not kept so far cannot be brought back' },
+  tokens: { kind: 'free', because: 'the result does not depend on how many run at once' },
   cores: { kind: 'free', because: 'the result does not depend on the machine' },
   port: { kind: 'free', because: 'the result does not depend on it' },
 }

@@ -141,6 +141,7 @@ export function planSearch(
     tables,
     casesPerReplicate: Math.max(1, problem?.cases.length ?? 1),
     objectives: problem?.objectives.length,
+    ...(problem === undefined ? {} : { tokens: problem.needs?.tokens ?? {} }),
     ...known,
   }
   const related = relationFindings(located, subject, soundFields(read))

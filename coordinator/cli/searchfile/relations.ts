@@ -5,10 +5,12 @@
 // hide it.
 
 import { limits } from '../../../shared/limits.js'
+import type { Needs } from '../../../shared/needs.js'
 import { splitBudget } from '../../evolution/budget.js'
 import { topologies } from '../../evolution/migration.js'
 import { defaultSettings } from '../../evolution/settings.js'
-import type { Finding } from './finding.js'
+import { eitherOf, type Finding } from './finding.js'
+import { nearestName } from './nearest.js'
 import type { FieldKey, IslandGroup, SearchFile } from './schema.js'
 import type { MethodRow, SearchTables } from './tables.js'
 import type { FieldPath } from './text.js'
@@ -20,6 +22,8 @@ export interface Subject {
   /** Simulations that one replicate costs, at least 1. */
   readonly casesPerReplicate: number
   readonly objectives: number | undefined
+  /** Licences that one simulation holds; absent where the problem could not be loaded. */
+  readonly tokens?: Needs['tokens']
   /** Time now in milliseconds, for `until`; absent where there is no clock. */
   readonly nowMs?: number
   /** Mean expected cost of an evaluation; absent where the problem could not be asked. */
@@ -116,6 +120,24 @@ export const impossible: { readonly [rule: string]: Rule } = {
         found: `${name} ${value} on an island of ${population}`,
         expected: `at most ${population}, because ${memberCounts[name]}`,
       }
+    }),
+  ),
+
+  licencesMissing: rule(['tokens'], ({ file, tokens = {} }) =>
+    Object.entries(tokens).flatMap(([name, count]): Complaint[] => {
+      const there = file.tokens[name]
+      if (there !== undefined && there >= count) return []
+      const meant = there === undefined ? nearestName(name, Object.keys(file.tokens)) : undefined
+      return [
+        {
+          path: there === undefined ? ['tokens'] : ['tokens', name],
+          found: `${there ?? 'nothing'} of the licence ${name}`,
+          expected: `${count} or more, because one simulation of the problem holds so many`,
+          advice: meant
+            ? `The problem asks for "${name}": did the file mean that by "${meant}"?`
+            : `Say how many the site has: tokens: { ${name}: ${count} }`,
+        },
+      ]
     }),
   ),
 
@@ -360,6 +382,18 @@ export const poor: { readonly [rule: string]: Rule } = {
         advice: 'Without the field the islands never exchange anybody.',
       },
     ]
+  }),
+
+  licencesUnused: rule(['tokens'], ({ file, tokens }) => {
+    if (tokens === undefined) return []
+    return Object.keys(file.tokens)
+      .filter((name) => !Object.hasOwn(tokens, name))
+      .map((name) => ({
+        path: ['tokens', name],
+        found: `the licence ${name}, which the problem does not ask for`,
+        expected: Object.keys(tokens).length === 0 ? 'no licences' : eitherOf(Object.keys(tokens)),
+        advice: 'Delete it, or name it in the needs of the problem.',
+      }))
   }),
 
   unevenTopUps: rule(['replicates'], ({ file }) => {

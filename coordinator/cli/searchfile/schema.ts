@@ -108,6 +108,15 @@ const migration = z.strictObject(
   'a map with every, emigrants, topology and lag, or the word none',
 )
 
+const licences = 'a map from licence (letters, digits, - and _) to how many the site has of it'
+const tokens = z
+  .record(z.string().regex(/^[A-Za-z][A-Za-z0-9_-]{0,63}$/), whole(0, limits.tokensMost), licences)
+  .refine(
+    (given) => Object.keys(given).length <= limits.tokenKinds,
+    `at most ${limits.tokenKinds} kinds of licences`,
+  )
+  .default({})
+
 /** Every field of the top level. */
 export const fields = {
   name: z
@@ -144,6 +153,7 @@ export const fields = {
     })
     .prefault({}),
   genomes: oneOf(['all', 'survivors', 'none']).default('survivors'),
+  tokens,
   cores: whole(1, limits.threadsMost).optional(),
   port: whole(0, 65_535).optional(),
 } as const
