@@ -123,14 +123,15 @@ test('kill -9 leaves no process behind (row 29)', async () => {
 })
 
 test('stopped past its lease and continued: what it had is answered late, once, and it goes on (row 32)', async () => {
-  site = await Site.open(0.1)
+  site = await Site.open(0.3)
   const worker = site.worker('host-a')
   await site.add([quick])
   await until('at work', () => site!.answers.length === 1)
   const late = await site.add([80, 80])
   await until('begun', async () => (await site!.stateOf(late)) === 'active')
   worker.kill('SIGSTOP')
-  await pause(2500)
+  // A lease is 4.5 s here.
+  await pause(6000)
   worker.kill('SIGCONT')
   const next = await site.add([quick])
   await until('both answered', () => site!.answers.length === 4)
