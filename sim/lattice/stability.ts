@@ -55,7 +55,7 @@ export function steepestSlope(ground: GroundSpec | undefined): number {
 }
 
 /** Contact stiffness and damping of one node at the depth limit, N/m and N s/m, on level ground. */
-function contactAtLimit(contact: ContactSpec): { stiffnessNpm: number; dampingNspm: number } {
+export function contactAtLimit(contact: ContactSpec): { stiffnessNpm: number; dampingNspm: number } {
   const root = contact.exponent === 1.5 ? Math.sqrt(contact.depthLimitM) : 1
   return {
     stiffnessNpm: contact.stiffness * contact.exponent * root,
@@ -159,14 +159,18 @@ export function boundOf(
     highestSquared = Math.max(highestSquared, k / massKg)
     highestRate = Math.max(highestRate, c / massKg)
   }
+  return { ...boundOfRates(highestSquared, highestRate), node: fastest }
+}
+
+/** The bound from the highest row of stiffness over mass, 1/s^2, and of damping over mass, 1/s. */
+export function boundOfRates(highestSquared: number, highestRate: number): Omit<StepBound, 'node'> {
   const highestRadps = Math.sqrt(highestSquared)
   if (highestRadps === 0) {
     const limitSeconds = highestRate > 0 ? 2 / highestRate : Number.POSITIVE_INFINITY
-    return { highestRadps, dampingRatio: 0, limitSeconds, node: fastest }
+    return { highestRadps, dampingRatio: 0, limitSeconds }
   }
   const dampingRatio = highestRate / (2 * highestRadps)
-  const limitSeconds = stableStepSeconds(highestRadps, dampingRatio)
-  return { highestRadps, dampingRatio, limitSeconds, node: fastest }
+  return { highestRadps, dampingRatio, limitSeconds: stableStepSeconds(highestRadps, dampingRatio) }
 }
 
 /** The longest step that divides `wholeSeconds` into a multiple of `parts` and is at most `mostSeconds` and safe. */

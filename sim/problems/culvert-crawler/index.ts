@@ -3,10 +3,11 @@
 
 import { defineProblem } from '../../problem.js'
 import { buildBody } from './body.js'
+import { crawlerCost } from './cost.js'
 import { culvert, drawCulvert } from './floor.js'
 import { crawlerGenome, repairCrawler } from './genome.js'
 import { crawlerProcess, partsOf, useOf } from './making.js'
-import { costOf, measuresUpTo, objectives, simulateMachine } from './measure.js'
+import { measuresUpTo, objectives, simulateMachine } from './measure.js'
 import { cautionsOf, describeCrawler } from './paper.js'
 import { crawlerFrames } from './replay.js'
 
@@ -21,7 +22,7 @@ export default defineProblem({
   simulate: (genome, situations) => simulateMachine(buildBody(genome), culvert, situations),
   simulateFiner: (genome, situations, divide) =>
     simulateMachine(buildBody(genome), culvert, situations, divide),
-  expectedCost: (genome) => costOf(buildBody(genome), culvert),
+  expectedCost: (genome) => crawlerCost(genome, culvert.slopeMost),
   repair: repairCrawler,
   frames: crawlerFrames,
   describe: describeCrawler,

@@ -86,11 +86,14 @@ export function simulateMachine<Condition extends Surroundings>(
   return runTrials(machine, world, conditions, divide).map((result) => outcomeOf(machine, result))
 }
 
-/** In units of 20,000 strut steps; a node costs about as much as two struts. */
 export function costOf<Condition extends Surroundings>(
   machine: Machine,
   { steepest }: World<Condition>,
 ): number {
-  const work = (machine.members.length + 2 * machine.positionsM.length) * stepsOf(machine, steepest)
-  return Math.max(1, Math.round(work / 20_000))
+  return unitsOf(machine.members.length, machine.positionsM.length, stepsOf(machine, steepest))
+}
+
+/** In units of 20,000 strut steps; a node costs about as much as two struts. */
+export function unitsOf(struts: number, nodes: number, steps: number): number {
+  return Math.max(1, Math.round(((struts + 2 * nodes) * steps) / 20_000))
 }

@@ -53,8 +53,15 @@ export interface World<Condition extends Surroundings> {
   readonly slopeMost: number
 }
 
-const frameSeconds = 1 / numbers.framesPerSecond
+export const frameSeconds = 1 / numbers.framesPerSecond
 export const framesPerTrial = numbers.trialSeconds * numbers.framesPerSecond
+
+export const contactSpec = {
+  stiffness: numbers.contactNpm,
+  damping: numbers.contactNspm2,
+  exponent: 1,
+  depthLimitM: numbers.depthLimitM,
+} as const
 
 export type MachineSpec = LatticeSpec & { readonly stepSeconds: number }
 
@@ -68,12 +75,7 @@ export function describeMachine(machine: Machine, steepest: GroundSpec, divide =
     gravityMps2: [0, -numbers.gravityMps2, 0].slice(0, machine.dimensions),
     dragNspm: numbers.settleDragNspm,
     ground: steepest,
-    contact: {
-      stiffness: numbers.contactNpm,
-      damping: numbers.contactNspm2,
-      exponent: 1 as const,
-      depthLimitM: numbers.depthLimitM,
-    },
+    contact: contactSpec,
     drive: { startSeconds: numbers.settleSeconds, rampSeconds: numbers.rampSeconds },
     stepSeconds: numbers.stepSecondsMost,
   }
@@ -144,7 +146,10 @@ export function situate<Condition extends Surroundings>(
 
 /** Steps of a whole trial of this body, settling included; the same under every condition. */
 export function stepsOf(machine: Machine, steepest: GroundSpec): number {
-  const { stepSeconds } = describeMachine(machine, steepest)
+  return stepsPerTrial(describeMachine(machine, steepest).stepSeconds)
+}
+
+export function stepsPerTrial(stepSeconds: number): number {
   return Math.round((numbers.settleSeconds + numbers.trialSeconds) / stepSeconds)
 }
 
