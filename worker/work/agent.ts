@@ -229,7 +229,10 @@ export class Agent {
   }
 
   private serviceChanged({ announcement, lane }: Service): void {
-    if (lane !== undefined) this.shares.set(announcement.search, announcement.share)
+    if (lane !== undefined) {
+      this.shares.set(announcement.search, announcement.share)
+      lane.tokens = announcement.tokens
+    }
     void this.feeder.poke()
   }
 

@@ -92,7 +92,10 @@ export class Feeder {
     if (lane === undefined) return this.takeAhead(lanes)
     if (!this.options.room.fits(demandOf(lane))) return this.takeAhead(lanes)
     if (!hasLicences(lane)) return this.canBegin(lane) ? this.begin(lane, undefined) : this.take(lane)
-    const receipt = await this.options.licences.acquire(lane.options.announcement)
+    const receipt = await this.options.licences.acquire({
+      ...lane.options.announcement,
+      tokens: lane.tokens,
+    })
     if (receipt === undefined) return true
     if (this.canBegin(lane)) return this.begin(lane, receipt)
     // Kept for the job that comes now; what nobody uses goes back by itself.

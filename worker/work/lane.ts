@@ -71,6 +71,8 @@ export class SearchLane {
   readonly durations = new Durations()
   readonly jobs = new Set<HeldJob>()
   state: LaneState = 'closed'
+  /** Of each licence, how many the site has, as announced last. */
+  tokens: Announcement['tokens']
   private counts: LaneCounts = { simulations: 0, failures: 0, lost: 0 }
   private readonly events: LaneEvents
   private readonly pace: Pace
@@ -88,6 +90,7 @@ export class SearchLane {
   constructor(options: LaneOptions, events: LaneEvents) {
     this.options = options
     this.events = events
+    this.tokens = options.announcement.tokens
     this.pace = new Pace(defaultTimeLimit, options.announcement.secondsPerCost)
     this.usedMs = options.nowMs()
   }

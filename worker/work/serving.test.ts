@@ -236,6 +236,25 @@ describe('needs', () => {
     two.stop()
   })
 
+  test('tokens that the site bought meanwhile are used without starting anything again', async () => {
+    const made = scene({ cores: 4 })
+    const needs = { cores: 1, memoryMB: 10, tokens: { flow: 1 } }
+    made.queue.announce('weir', { needs, tokens: { flow: 1 } })
+    for (let i = 0; i < 12; i++) made.queue.add('weir', [2000])
+    const mostIn = async (halfSeconds: number) => {
+      let most = 0
+      for (let i = 0; i < halfSeconds; i++) {
+        await made.pass(500)
+        most = Math.max(most, WaitingPool.made[0]?.running ?? 0)
+      }
+      return most
+    }
+    expect(await mostIn(12)).toBe(1)
+    made.queue.announce('weir', { needs, tokens: { flow: 3 } })
+    expect(await mostIn(12)).toBe(3)
+    expect(WaitingPool.made).toHaveLength(1)
+  })
+
   test('tokens in use elsewhere: it waits without taking jobs, and without asking all the time', async () => {
     const made = scene()
     made.queue.announce('weir', {
