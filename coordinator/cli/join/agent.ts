@@ -31,6 +31,7 @@ import {
 import type { CommandInput, Output } from '../command.js'
 import { version } from './version.js'
 
+const keyBytes = 32
 /** How long a worker waits for a coordinator that has not started yet, where no --idle-exit says so. */
 const waitSeconds = 3600
 
@@ -122,7 +123,13 @@ function keyOf(file: string | undefined, record: string | undefined): () => Uint
     const key = readKey(file)
     return () => key
   }
-  return () => (record === undefined ? undefined : recordKey(record))
+  if (record === undefined) return () => undefined
+  // While the file cannot be read the last key holds, and before the first one nothing is trusted.
+  let key: Uint8Array = Uint8Array.from(randomBytes(keyBytes))
+  return () => {
+    key = recordKey(record) ?? key
+    return key
+  }
 }
 
 /** Lines for a log: time and sentence, or one JSON object a line. */
