@@ -19,7 +19,7 @@ export interface FleetWeather {
   readonly lie: 'random' | 'alike' | 'slight' | 'together'
   /** Chances in 1000 per look that other hosts are there, none and a single one among the possibilities. */
   readonly changes: number
-  /** Of 100 hosts so many are 20 times slower. */
+  /** Of 100 hosts so many are 8 times slower. */
   readonly slow: number
   /** How many hosts there are when the storm is over. */
   readonly inTheEnd: number
@@ -116,7 +116,7 @@ export class Machines {
   }
 
   /** Who takes it; undefined when nobody who may is there. Second simulations have a process of their own. */
-  choose(item: WorkItem): Chosen | undefined {
+  choose(item: WorkItem, nowMs: number): Chosen | undefined {
     const { avoidHosts = [], onProcessor } = item
     const fitting = this.#present.filter(
       ({ host, processor }) =>
@@ -134,12 +134,30 @@ export class Machines {
         worker: `${machine.host}/1/t${thread}`,
       })),
     )
-    const { machine, worker: thread } = threads[this.#draw.below(threads.length)]!
+    // The one of two drawn that is free sooner, so that no queue grows without bound before a slow machine.
+    const [one, two] = [0, 1].map(() => threads[this.#draw.below(threads.length)]!)
+    const { machine, worker: thread } =
+      this.#backlogMs(one!.worker, nowMs) <= this.#backlogMs(two!.worker, nowMs) ? one! : two!
     const isOwn = item.purpose === 'confirm' || item.avoid.includes(thread)
     const worker = isOwn ? `${machine.host}/${this.#processes++}` : thread
     this.#holders.set(key, machine.host)
     const kind = isOwn ? 'process' : 'thread'
     return { machine, executor: { kind, worker, host: machine.host, processor: machine.processor } }
+  }
+
+  #backlogMs(worker: string, nowMs: number): number {
+    return Math.max(0, (this.#busyUntilMs.get(worker) ?? 0) - nowMs)
+  }
+
+  /** How many items it makes sense to hand out: two for every thread that is not busy for long. */
+  room(nowMs: number): number {
+    let free = 0
+    for (const { host, cores } of this.#present) {
+      for (let thread = 0; thread < cores; thread++) {
+        if (this.#backlogMs(`${host}/1/t${thread}`, nowMs) < 15_000) free++
+      }
+    }
+    return 2 * free
   }
 
   /** From when on the worker is free; it is busy for so long then. */

@@ -161,8 +161,8 @@ export class World {
     }
     if (this.#happens(emptied)) this.#inFlight.splice(0)
     if (this.#happens(frozen)) this.#nowMs += 2 * leaseMs
-    if (this.#happens(redelivered) && this.#old.length > 0)
-      this.#simulate(this.#old[this.#draw.below(this.#old.length)]!)
+    const old = this.#happens(redelivered) ? this.#old[this.#draw.below(50)] : undefined
+    if (old) this.#simulate(old)
     if (this.#happens(mailTwice)) {
       for (const { number } of this.#engine.search.islands) {
         const mail = this.#disk.lastMail(number)
@@ -218,7 +218,8 @@ export class World {
     }
     // A coordinator that has just been started has nothing to hand out before it has looked.
     this.#makeDurable()
-    const items = this.#engine.work(2 * this.#weather.workers, this.#nowMs)
+    const room = this.#machines ? this.#machines.room(this.#nowMs) : 2 * this.#weather.workers
+    const items = this.#engine.work(room, this.#nowMs)
     for (const item of items) {
       if (this.#weather.redelivered > 0) this.#old[this.#order % 50] = item
       this.#simulate(item)
@@ -294,7 +295,7 @@ export class World {
   }
 
   #simulate(item: WorkItem): void {
-    const chosen = this.#machines?.choose(item)
+    const chosen = this.#machines?.choose(item, this.#nowMs)
     if (this.#machines && !chosen) {
       const executor = { kind: 'thread', worker: 'nobody', host: 'nobody' } as const
       this.#arrive(this.#nowMs + 10, {
@@ -308,7 +309,7 @@ export class World {
     }
     const worker = chosen ? 0 : this.#workerFor(item)
     const genome = genomeFromBytes(this.#plan.problem.spec, item.genome)
-    const slow = chosen?.machine.isSlow ? 20 : 1
+    const slow = chosen?.machine.isSlow ? 8 : 1
     const duration = fixtureCost(genome) * 100 * (1 + this.#draw.below(3)) * slow
     const delay = this.#happens(this.#weather.delayed) ? duration * this.#draw.below(1000) : 0
     const startMs = chosen
