@@ -10,11 +10,11 @@ import {
   writeFileSync,
 } from 'node:fs'
 import { tmpdir } from 'node:os'
-import { join } from 'node:path'
+import { join, relative } from 'node:path'
 import { afterAll, expect, test } from 'vitest'
 import { signatureOf } from '../../shared/cluster/signature.js'
 import { Refusal } from '../../shared/refusals.js'
-import { PluginCache, readKey } from './plugins.js'
+import { cacheFolder, PluginCache, readKey } from './plugins.js'
 
 const root = mkdtempSync(join(tmpdir(), 'skerry-plugins-'))
 afterAll(() => rmSync(root, { recursive: true, force: true }))
@@ -127,4 +127,9 @@ test('a key file: read without its line end; refused when others may read it, wh
   writeFileSync(join(root, 'short'), 'short', { mode: 0o600 })
   expect(() => readKey(join(root, 'short'))).toThrow('5 bytes')
   expect(() => readKey(join(root, 'none'))).toThrow('no such key file')
+})
+
+test('a folder that is named relative to here is the same folder from everywhere', () => {
+  const absolute = folder()
+  expect(cacheFolder(relative(process.cwd(), absolute), '/home/nobody', undefined)).toBe(absolute)
 })

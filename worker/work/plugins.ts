@@ -18,7 +18,7 @@ import {
   utimesSync,
   writeFileSync,
 } from 'node:fs'
-import { join } from 'node:path'
+import { join, resolve } from 'node:path'
 import type { Announcement } from '../../shared/cluster/messages.js'
 import { isSignatureOf, keyBytesLeast } from '../../shared/cluster/signature.js'
 import { limits } from '../../shared/limits.js'
@@ -182,7 +182,8 @@ const keyCure = 'Make one, once for the whole site: (umask 077; openssl rand -he
 
 /** A folder of the cache that only this user reads, as far as the system can tell. */
 export function cacheFolder(asked: string | undefined, home: string, cacheHome: string | undefined): string {
-  const folder = asked ?? join(cacheHome || join(home, '.cache'), 'skerry', 'problems')
+  // Absolute: simulations run in other working folders.
+  const folder = resolve(asked ?? join(cacheHome || join(home, '.cache'), 'skerry', 'problems'))
   try {
     mkdirSync(folder, { recursive: true, mode: 0o700 })
     if (asked === undefined) chmodSync(folder, 0o700)
