@@ -178,3 +178,39 @@ test('a second search of the same name is refused while the first runs', async (
   expect((await first.ended).code).toBe(75)
   expect(server.ask('HLEN', 'skerry:searches')).toBe('0')
 })
+
+test('simulations that hold licences: never more at once on two workers than the site has, and the same digest', async () => {
+  const licensed = problem.replace(
+    "version: '1',",
+    "version: '1', needs: { memoryMB: 200, tokens: { flow: 1 } },",
+  )
+  writeFileSync(join(folder, 'licensed.js'), licensed)
+  const search = searchOf(300).replace('./problem.js', './licensed.js')
+  writeFileSync(join(folder, 'licensed.yaml'), `${search}tokens: { flow: 3 }\n`)
+  const licensedRun = (record: string, ...words: string[]) =>
+    start(['run', 'licensed.yaml', '--record', record, ...words])
+  const here = await reportOf(licensedRun('records/licensed-here', '--cores', '2'))
+  server = await RedisServer.start()
+  const { url } = server
+  for (const host of ['h1', 'h2'])
+    start(['work', '--redis', url, '--cores', '2', '--host', host, '--cache', join(folder, `cache-${host}`)])
+  const life = licensedRun('records/licensed', '--redis', url)
+  let [most, isOver] = [0, false]
+  void life.ended.then(() => {
+    isOver = true
+  })
+  while (!isOver) {
+    // '1 <until>' for each simulation that holds one.
+    const held = server
+      .ask('HVALS', 'skerry:tokens:flow')
+      .split('\n')
+      .filter((line) => line !== '')
+    most = Math.max(
+      most,
+      held.reduce((sum, line) => sum + Number.parseInt(line, 10), 0),
+    )
+    await pause(100)
+  }
+  expect((await reportOf(life)).digest).toBe(here.digest)
+  expect(most).toBe(3)
+})
