@@ -69,6 +69,11 @@ const faultRows: readonly FaultRow[] = [
     says: 'there is no host of this name',
     cure: 'Check the name of the host in --redis, and that this machine can resolve it.',
   },
+  {
+    like: /max retries per request|ECONNRESET|EPIPE|Connection is closed|isn't writeable/i,
+    code: 'queue-unreachable',
+    says: 'the connection was lost',
+  },
   { like: /ECONNREFUSED/, code: 'queue-unreachable', says: 'nothing listens there' },
   {
     like: /EHOSTUNREACH|ENETUNREACH|EADDRNOTAVAIL/,

@@ -94,6 +94,8 @@ class Server {
     return new Promise((resolve, reject) => {
       const child = spawn('sh', ['-c', guard, this.options.program ?? 'redis-server', this.configFile], {
         stdio: ['pipe', 'pipe', 'pipe'],
+        // A group of its own: what the keyboard or a job's end sends to ours must not end it before its search.
+        detached: true,
       })
       this.child = child
       let ready = false
