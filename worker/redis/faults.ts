@@ -10,6 +10,8 @@ interface FaultRow {
   readonly cure?: string
   /** Trying again cannot help: the connection is given up. */
   readonly final?: true
+  /** True of many faults: another one that is known as well says more. */
+  readonly vague?: true
 }
 
 const ownWords =
@@ -73,6 +75,7 @@ const faultRows: readonly FaultRow[] = [
     like: /max retries per request|ECONNRESET|EPIPE|Connection is closed|isn't writeable/i,
     code: 'queue-unreachable',
     says: 'the connection was lost',
+    vague: true,
   },
   { like: /ECONNREFUSED/, code: 'queue-unreachable', says: 'nothing listens there' },
   {
@@ -125,7 +128,7 @@ export function isFinal(fault: unknown): boolean {
 /** True when the fault says by itself what is wrong. */
 export function isPlain(fault: unknown): boolean {
   const words = wordsOf(fault)
-  return faultRows.some(({ like }) => like.test(words))
+  return faultRows.some(({ like, vague }) => !vague && like.test(words))
 }
 
 function wordsOf(fault: unknown): string {
