@@ -34,5 +34,5 @@ export function preemptionLine(evaluationSeconds: number, savesState: boolean): 
   const shares = told.map(
     ({ life, share }) => `${percent(share)} where workers live ${duration(life)} on average`,
   )
-  return `An evaluation lasts ${duration(evaluationSeconds)} and begins again when its worker is taken away: that destroys ${shares.join(', ')}. With saveState and loadState it would go on instead.`
+  return `An evaluation lasts ${duration(evaluationSeconds)} and begins again when its worker is taken away: that destroys ${shares.join(', ')}. Shorter evaluations (fewer replicates at first) lose less.`
 }
