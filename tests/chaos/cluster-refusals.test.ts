@@ -86,7 +86,8 @@ test('a genome beyond what may travel is refused before anything is sent, with w
 })
 
 test('(19) healthy but idle: with work waiting that it never gets, a worker leaves with 69 and says so', async () => {
-  const site = await Site.open(0.1)
+  // Not smaller: a moment in which the search is not announced in time starts the minute again.
+  const site = await Site.open(0.25)
   try {
     site.announcement = { ...site.announcement, waiting: true }
     const worker = site.worker('host-a')
