@@ -22,5 +22,5 @@ export const golden: { readonly [name: string]: string } = {
   'pump-mount 2': '24d42d827c5d55eea18a91598b9c95b4c5888240e9f63ce879bf26d67a324942',
   'seal-pad 3': '167ccee85d1b7739893881da7b9c4617da73432db4376b23f505eef278301f2b',
   'ramp-walker 1': '7e229e3caf5f9fa83dd07df783b6e06654bbcd7e04387a3c8d3c42c774f36708',
-  'screen-rake 2+rapier2d-deterministic-0.20.0': '52753a2d1edcc911b4b6d963bb048b4470ac3a5d2c10d661697c1a1bce5da74e',
+  'screen-rake 3+rapier2d-deterministic-0.20.0': 'e29fe6f13d82ddb59fa703568493530aa13f2dcbebf1e218eaa6cf4c0cc8d9b8',
 }

@@ -56,7 +56,7 @@ const { stroke, power, duty } = actuatorMeasures(numbers.motor)
 export default defineProblem({
   name: 'screen-rake',
   // The library's version is part of the problem's: results of two versions are never taken for the same.
-  version: `2+${library}`,
+  version: `3+${library}`,
   summary: 'A motor-driven linkage rakes debris up an intake screen and over its lip into a trough.',
   genome: rakeGenome,
   objectives: {

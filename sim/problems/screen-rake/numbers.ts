@@ -13,17 +13,17 @@ export const numbers = {
   waterKgpm3: 1000,
 
   // The intake: a bar screen 0.5 m wide across a small channel. Bars lean back 70 degrees from the horizontal (hand-
-  // and machine-raked screens stand at 60 to 80 degrees: common practice, no source). From the lip an apron falls
-  // at 45 degrees into a trough: matted debris slides on wet steel up to a friction of 1 (assumed).
+  // and machine-raked screens stand at 60 to 80 degrees: common practice, no source). At the top the bars are bent over
+  // and run down at 45 degrees as the apron, so that tines pass between them until the debris slides: matted debris
+  // slides on wet steel up to a friction of 1. Straight piece and bend are assumed; the crest is 1.09 m high.
   screenAngle: 70 * degree,
-  screenLengthM: 1.2,
+  screenLengthM: 1.06,
+  bendRadiusM: 0.15,
   barThicknessM: 0.04,
   apronAngle: 45 * degree,
   apronLengthM: 0.3,
   troughDepthM: 0.3,
   troughLengthM: 0.6,
-  /** A piece is cleared when its centre is this far behind the lip. */
-  clearedBehindM: 0.02,
 
   // The machine hangs from a beam across the channel, above the screen; its base pin lies in this window.
   baseLowM: [-0.4, 1.4],
@@ -74,10 +74,11 @@ export const numbers = {
   sampleSeconds: 0.05,
   framesPerSecond: 20,
   /**
-   * What counts as cleared: a piece behind the lip in full, and this share of its way up to the lip for one that was
-   * only raised. Without it every machine that lifts scores like one that stands still, and nothing leads to clearing.
+   * What counts as cleared: a piece behind the lip in full, and this much of the share of its way to behind the lip for
+   * one that was only raised. Without it every machine that lifts scores like one that stands still, and nothing leads
+   * to clearing.
    */
-  raisedCounts: 0.3,
+  raisedCounts: 0.5,
   /** Deeper than this in the screen or deck at the start, the machine cannot be put up. */
   startDepthMostM: 0.03,
 
@@ -89,10 +90,20 @@ export const numbers = {
   pieceInertiaKgm2: 1,
 } as const
 
-/** Lip of the screen, where its face ends. */
-export const lipM: readonly [number, number] = [
-  numbers.screenLengthM * cos(numbers.screenAngle),
-  numbers.screenLengthM * sin(numbers.screenAngle),
+type Place = readonly [number, number]
+const { screenAngle, screenLengthM, bendRadiusM, apronAngle } = numbers
+
+/** Where the straight piece of the screen ends and the bend begins. */
+export const bendStartM: Place = [screenLengthM * cos(screenAngle), screenLengthM * sin(screenAngle)]
+/** Middle of the bend. */
+export const bendM: Place = [
+  bendStartM[0] + bendRadiusM * sin(screenAngle),
+  bendStartM[1] - bendRadiusM * cos(screenAngle),
+]
+/** Where the bend ends and the apron begins: the lip, behind which debris slides down by itself. */
+export const lipM: Place = [
+  bendM[0] + bendRadiusM * sin(apronAngle),
+  bendM[1] + bendRadiusM * cos(apronAngle),
 ]
 
 /** Limits of a drive with a stage of this ratio; effort N m, rate rad/s. */

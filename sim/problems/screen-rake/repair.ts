@@ -71,9 +71,8 @@ export function beginsClear(genome: RakeGenome): boolean {
     const [c, s] = [cos(turn), sin(turn)]
     const place = ([x, y]: Place): Place => [positionM[0]! + c * x - s * y, positionM[1]! + s * x + c * y]
     const line = { from: place(from), to: place(to) }
-    const reach = radiusM + numbers.barThicknessM / 2
     return plates.every(
-      (plate) => (label === 'comb' && plate.layer === 'bars') || apartM(line, plate) > reach,
+      (plate) => (label === 'comb' && plate.layer === 'bars') || apartM(line, plate) > radiusM + plate.halfM,
     )
   })
 }

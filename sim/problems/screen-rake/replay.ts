@@ -4,7 +4,7 @@ import type { FrameBody, Frames, Situation } from '../../../shared/problem.js'
 import type { RigidWorld } from '../../rigid/rigid2d.js'
 import type { RakeGenome } from './genome.js'
 import { buildMachine, type Outline } from './machine.js'
-import { numbers } from './numbers.js'
+import { bendStartM, numbers } from './numbers.js'
 import { type IntakeCondition, type Piece, walls } from './screen.js'
 import { runTrial } from './trial.js'
 
@@ -69,10 +69,9 @@ export function rakeFrames(genome: RakeGenome, { condition }: Situation<IntakeCo
   }
 }
 
-/** From the edge of the picture to the screen. */
+/** From the edge of the picture to the screen; the crest stands higher than any water. */
 function waterLine({ waterM }: IntakeCondition): number[] {
-  const [x0, y0, x1, y1] = walls.screen
-  return [-1.3, waterM, x0 + ((x1 - x0) * (waterM - y0)) / (y1 - y0), waterM]
+  return [-1.3, waterM, (waterM * bendStartM[0]) / bendStartM[1], waterM]
 }
 
 function pinPlaces(world: RigidWorld, joints: ReturnType<typeof buildMachine>['joints']): Float64Array {

@@ -1,10 +1,11 @@
 // The intake: what stands still, what the water brings, and everything else that is drawn for one simulation. Origin at
 // the foot of the screen; the water flows towards +x.
 
+import { atan2 } from '../../../shared/detmath/inverse-trigonometry.js'
 import { cos, sin } from '../../../shared/detmath/trigonometry.js'
 import type { Stream } from '../../../shared/streams.js'
 import type { BodySpec, MaterialSpec, ShapeSpec } from '../../rigid/spec.js'
-import { lipM, numbers } from './numbers.js'
+import { bendM, bendStartM, lipM, numbers } from './numbers.js'
 
 /** A bundle of debris, seen along the bars' tops: a disc. */
 export interface Piece {
@@ -89,39 +90,68 @@ export const apronEndM: Place = [
 const troughFloorM = apronEndM[1] - numbers.troughDepthM
 const troughEndM = apronEndM[0] + numbers.troughLengthM
 
-/** A straight plate as thick as the bars, by the middle line of its thickness. */
+/** A plate by the middle line of its thickness. */
 export interface Plate {
   readonly layer: 'bars' | 'deck'
   readonly from: Place
   readonly to: Place
   readonly turn: number
+  /** Half its thickness. */
+  readonly halfM: number
 }
 
 /** A plate whose upper left face runs from one place to another. */
 function below(layer: Plate['layer'], from: Place, to: Place, turn: number): Plate {
   const [x, y] = [half * sin(turn), -half * cos(turn)]
-  return { layer, from: [from[0] + x, from[1] + y], to: [to[0] + x, to[1] + y], turn }
+  return { layer, from: [from[0] + x, from[1] + y], to: [to[0] + x, to[1] + y], turn, halfM: half }
 }
 const level = (y: number, from: number, to: number) => below('deck', [from, y], [to, y], 0)
 
-/** Screen, apron, floor of the trough, channel floor. */
-export const plates: readonly Plate[] = [
-  below('bars', [0, 0], lipM, numbers.screenAngle),
-  below('deck', lipM, apronEndM, -numbers.apronAngle),
+/** Straight piece of the screen, apron, floor of the trough, channel floor. */
+const straightPlates: readonly Plate[] = [
+  below('bars', [0, 0], bendStartM, numbers.screenAngle),
+  below('bars', lipM, apronEndM, -numbers.apronAngle),
   level(troughFloorM, apronEndM[0], troughEndM),
   level(0, -3, 0),
 ]
+/** The bend, told by its middle: nothing gets to the rest of the disc behind the bars. */
+const bend: Plate = { layer: 'bars', from: bendM, to: bendM, turn: 0, halfM: numbers.bendRadiusM }
+export const plates: readonly Plate[] = [...straightPlates, bend]
+
+const wholeBend = numbers.screenAngle + numbers.apronAngle
+/** Way along the bars from the foot of the screen to the lip. */
+export const lipWayM = numbers.screenLengthM + numbers.bendRadiusM * wholeBend
+
+/**
+ * How far along the bars a place is, from the foot of the screen, m: up the straight piece, then round the bend as far
+ * as seen from its middle, at most to the lip. It grows all along the way that a piece must go.
+ */
+export function wayM([px, py]: Place): number {
+  const [x, y] = [px - bendM[0], py - bendM[1]]
+  const [c, s] = [cos(numbers.screenAngle), sin(numbers.screenAngle)]
+  const up = x * c + y * s
+  if (x < 0 && up <= 0) return numbers.screenLengthM + up
+  const down = x * cos(numbers.apronAngle) - y * sin(numbers.apronAngle)
+  if (x >= 0 && down >= 0) return lipWayM
+  return numbers.screenLengthM + numbers.bendRadiusM * atan2(up, y * c - x * s)
+}
 
 /** All that stands still, as one body. Tines pass between the bars. */
 export function standing(barFriction: number): BodySpec {
   const material: MaterialSpec = { friction: barFriction, density: 0 }
-  const shapes = plates.map(({ layer, from, to, turn }): ShapeSpec => {
+  const disc: ShapeSpec = {
+    outline: { kind: 'ball', radiusM: bend.halfM },
+    atM: bendM,
+    material,
+    layer: bend.layer,
+  }
+  const shapes = straightPlates.map(({ layer, from, to, turn }): ShapeSpec => {
     const [dx, dy] = [to[0] - from[0], to[1] - from[1]]
     const halfM = [Math.sqrt(dx * dx + dy * dy) / 2, half]
     const atM = [(from[0] + to[0]) / 2, (from[1] + to[1]) / 2]
     return { outline: { kind: 'box', halfM }, atM, turn, material, layer }
   })
-  return { name: 'intake', fixed: true, positionM: [0, 0], shapes }
+  return { name: 'intake', fixed: true, positionM: [0, 0], shapes: [...shapes, disc] }
 }
 
 /**
@@ -138,9 +168,15 @@ export const apart: readonly (readonly [string, string])[] = [
   ['tines', 'bars'],
 ]
 
+/** Places between the ends of the bend, for the replay. */
+const bendPoints = Array.from({ length: 7 }, (_, i) => {
+  const turn = numbers.screenAngle - ((i + 1) / 8) * wholeBend
+  return [bendM[0] - numbers.bendRadiusM * sin(turn), bendM[1] + numbers.bendRadiusM * cos(turn)]
+}).flat()
+
 /** Lines for the replay. */
 export const walls = {
-  screen: [0, 0, ...lipM],
+  screen: [0, 0, ...bendStartM, ...bendPoints, ...lipM],
   apron: [...lipM, ...apronEndM],
   trough: [apronEndM[0], troughFloorM, troughEndM, troughFloorM],
 } as const

@@ -15,21 +15,23 @@ import { type Fault, type RigidWorld, withRigid } from '../../rigid/rigid2d.js'
 import type { RigidSpec } from '../../rigid/spec.js'
 import type { RakeGenome } from './genome.js'
 import { buildMachine, type Machine } from './machine.js'
-import { lipM, numbers } from './numbers.js'
+import { numbers } from './numbers.js'
 import {
   apart,
   debrisBodies,
   type IntakeCondition,
+  lipWayM,
   massOfPiece,
   type Piece,
   standing,
   volumeOf,
+  wayM,
 } from './screen.js'
 
 export interface RakeFigures {
   /** Share of the debris's mass that is behind the lip at the end. */
   readonly overLip: number
-  /** Mean over all mass of the share of its way to behind the lip: 1 behind it at the end, else the most that was made. */
+  /** Mean over all mass of the share of its way along the bars to behind the lip: 1 behind it at the end, else the most that was made. */
   readonly raised: number
   readonly totalKg: number
   readonly energyJ: number
@@ -77,9 +79,9 @@ interface Trial {
   readonly machine: Machine
   readonly condition: IntakeCondition
   readonly firstPiece: number
-  /** Way from every piece to the goal after settling, and the least since. */
+  /** How far along the bars every piece was after settling, and the most since. */
   readonly startM: number[]
-  readonly leftM: number[]
+  readonly mostM: number[]
   readonly tallies: ReturnType<typeof startTally>[]
   fault: Fault | undefined
 }
@@ -94,7 +96,7 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
     condition,
     firstPiece,
     startM: [],
-    leftM: [],
+    mostM: [],
     tallies: machine.driven.map(startTally),
     fault: undefined,
   }
@@ -103,8 +105,8 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
   const steps = Math.round(numbers.settleSeconds / world.stepSeconds)
   for (let i = 0; i < steps && !trial.fault; i++) trial.fault = advanceOnce(trial)
   for (let i = 0; i < condition.pieces.length; i++) {
-    trial.startM.push(wayLeftM(world, firstPiece + i))
-    trial.leftM.push(trial.startM[i]!)
+    trial.startM.push(wayOfM(world, firstPiece + i))
+    trial.mostM.push(trial.startM[i]!)
   }
   // What a drive did while it held still belongs to no working cycle.
   for (const i of machine.driven.keys()) {
@@ -116,11 +118,10 @@ function startTrial(world: RigidWorld, machine: Machine, condition: IntakeCondit
   return trial
 }
 
-/** Straight way from a piece to where it counts as cleared, right behind the lip, m. */
-function wayLeftM(world: RigidWorld, body: number): number {
+/** How far along the bars a piece is, m. */
+function wayOfM(world: RigidWorld, body: number): number {
   const { pose } = world.peek(body)
-  const [x, y] = [lipM[0] + numbers.clearedBehindM - pose[0]!, lipM[1] - pose[1]!]
-  return Math.sqrt(x * x + y * y)
+  return wayM([pose[0]!, pose[1]!])
 }
 
 /** A machine that begins inside screen or deck cannot be put up. */
@@ -164,7 +165,7 @@ function loadPiece(
 
 /** Works for the whole time; the fault that ended it, or nothing. */
 function work(trial: Trial, look: Look | undefined): Fault | undefined {
-  const { world, machine, firstPiece, leftM } = trial
+  const { world, machine, firstPiece, mostM } = trial
   const joints = machine.driven.map(({ joint }) => world.joint(joint))
   const stepsPerSample = Math.round(numbers.sampleSeconds / world.stepSeconds)
   const samples = Math.round(numbers.workSeconds / numbers.sampleSeconds)
@@ -177,8 +178,8 @@ function work(trial: Trial, look: Look | undefined): Fault | undefined {
       if (fault) return fault
     }
     sample(trial, joints)
-    for (let k = 0; k < leftM.length; k++) {
-      leftM[k] = Math.min(leftM[k]!, wayLeftM(world, firstPiece + k))
+    for (let k = 0; k < mostM.length; k++) {
+      mostM[k] = Math.max(mostM[k]!, wayOfM(world, firstPiece + k))
     }
   }
   return world.look()
@@ -193,14 +194,14 @@ function sample({ world, machine, tallies }: Trial, joints: readonly number[]): 
   }
 }
 
-function figuresOf({ world, machine, condition, firstPiece, startM, leftM, tallies }: Trial): RakeFigures {
+function figuresOf({ world, machine, condition, firstPiece, startM, mostM, tallies }: Trial): RakeFigures {
   let [totalKg, overKg, raisedKg] = [0, 0, 0]
   for (const [i, piece] of condition.pieces.entries()) {
     const massKg = massOfPiece(piece)
     totalKg += massKg
-    const isOver = world.pose(firstPiece + i)[0]! > lipM[0] + numbers.clearedBehindM
+    const isOver = wayOfM(world, firstPiece + i) >= lipWayM
     if (isOver) overKg += massKg
-    raisedKg += massKg * (isOver ? 1 : 1 - leftM[i]! / startM[i]!)
+    raisedKg += massKg * (isOver ? 1 : (mostM[i]! - startM[i]!) / (lipWayM - startM[i]!))
   }
   const drives = machine.driven.map(({ joint }) => world.driveOf(world.joint(joint)))
   const motors = drives.map((drive, i) => ({
