@@ -1,6 +1,6 @@
-// A search finds rakes that clear more than the best of as many random ones; both are judged on fresh conditions.
+// Does a search find rakes that clear more than the best of as many random ones, judged on fresh conditions? Not shown so
+// far (README.md): a measurement on request, a line for each seed, that fails for seeds where it does not.
 //
-// The larger comparison that README.md tells of, a line for each seed:
 //   SKERRY_RAKE_SEEDS=21,22,23,24,25 SKERRY_RAKE_SIMULATIONS=900 npx vitest run sim/problems/screen-rake/search.test.ts
 
 import { expect, test } from 'vitest'
@@ -15,7 +15,8 @@ import { asProblem, problemPlan } from '../../problem.js'
 import rake from './index.js'
 
 const problem = asProblem(rake)
-const seeds = (process.env.SKERRY_RAKE_SEEDS ?? '21').split(',').map(Number)
+const asked = process.env.SKERRY_RAKE_SEEDS
+const seeds = (asked ?? '21').split(',').map(Number)
 const simulations = Number(process.env.SKERRY_RAKE_SIMULATIONS ?? 300)
 const freshConditions = 24
 
@@ -73,13 +74,13 @@ function meanAndError(values: readonly number[]): readonly [mean: number, standa
   return [mean, Math.sqrt(variance / values.length)]
 }
 
-test.each(seeds)(
-  'the best of a search clears more on fresh conditions than the best of as many random rakes (seed %i)',
+test.skipIf(asked === undefined).each(seeds)(
+  'the best of a search clears more on fresh conditions than the best of as many random rakes (seed %i; on request: SKERRY_RAKE_SEEDS)',
   (seed) => {
     const searched = retested(bestOf('steady-state', seed), seed)
     const random = retested(bestOf('random-sampling', seed), seed)
     const [more, error] = meanAndError(searched.cleared.map((value, i) => value - random.cleared[i]!))
-    if (process.env.SKERRY_RAKE_SEEDS) {
+    if (asked) {
       const told = ({ cleared, overLip }: Fresh) =>
         `${meanAndError(cleared)
           .map((value) => value.toFixed(3))
