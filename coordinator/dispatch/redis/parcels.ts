@@ -1,5 +1,5 @@
 // Packs waiting items into jobs: only items that ask for the same travel together, work that must go to certain
-// agents is addressed, confirmations go first.
+// agents is addressed, confirmations and what was lost go first.
 
 import type { Heartbeat } from '../../../shared/cluster/messages.js'
 import type { WorkItem } from '../../../shared/result.js'
@@ -104,7 +104,10 @@ function groupName(item: WorkItem, agent: string | undefined): string {
   return `${agent ?? ''} ${purpose} ${isolation} ${isUrgent(item)} ${avoided}`
 }
 
-/** Somebody waits for it: an island for a confirmation, or for the one evaluation that holds it up. */
-function isUrgent({ purpose, hedge }: WorkItem): boolean {
-  return purpose === 'confirm' || hedge === true
+/**
+ * Somebody waits for it: an island for a confirmation, or for the one evaluation that holds it up. What was lost is
+ * older than all that waits: behind that, its island would use up its lookahead before it came to its turn.
+ */
+export function isUrgent({ purpose, hedge, attempt }: WorkItem): boolean {
+  return purpose === 'confirm' || hedge === true || attempt > 1
 }

@@ -3,6 +3,7 @@
 import { cpus } from 'node:os'
 import type { Figure } from '../figures.js'
 import { runTask } from '../tasks.js'
+import { measureEfficiency } from './efficiency.js'
 
 const cores = Math.min(2, cpus().length)
 const evaluationsEach = 32
@@ -100,5 +101,13 @@ export const clusterFigures: readonly Figure[] = [
         },
       ]
     },
+  },
+  {
+    name: 'cluster-efficiency',
+    what: 'useful share of a fleet in virtual time: killed workers, orders of commits, migration, barriers',
+    rounds: { full: 1, quick: 1 },
+    takes: 'best',
+    dependsOnTime: false,
+    run: async ({ quick }) => measureEfficiency(quick),
   },
 ]
