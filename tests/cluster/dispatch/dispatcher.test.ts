@@ -258,6 +258,18 @@ describe('agents', () => {
     expect(quick.take(1)[0]!.items[0]!.attempt).toBe(3)
   })
 
+  test('what was lost goes out again before all that waits, in its own order', async () => {
+    await started()
+    agent('a')
+    await clock.pass(2 * times.heartbeatMs)
+    submit(3, 4, 5)
+    await clock.pass(10)
+    dispatcher.submit([itemOf(1, { attempt: 2 }), itemOf(2, { attempt: 2 }), itemOf(6)])
+    await clock.pass(10)
+    const waiting = queue.waiting().flatMap(({ items }) => items.map(({ evaluation }) => evaluation))
+    expect(waiting).toEqual([1, 2, 3, 4, 5, 6])
+  })
+
   test('addressed work is spread by cores', async () => {
     await started()
     agent('a', { host: 'h1', cores: 1 })

@@ -163,11 +163,11 @@ export class MemoryQueue implements CoordinatorQueue {
   }
   async add(jobs: readonly OutgoingJob[]): Promise<void> {
     this.#check()
-    for (const { job, agent, urgent } of jobs) {
-      const queue = this.#queue(agent === undefined ? 'work' : `to-${agent}`)
-      if (urgent) queue.unshift(encodeJob(job))
-      else queue.push(encodeJob(job))
-    }
+    const queueFor = (agent: string | undefined) => this.#queue(agent === undefined ? 'work' : `to-${agent}`)
+    for (const { job, agent, urgent } of jobs) if (!urgent) queueFor(agent).push(encodeJob(job))
+    // The last one put first goes first: in their own order, as the real queue has them.
+    for (const { job, agent, urgent } of jobs.toReversed())
+      if (urgent) queueFor(agent).unshift(encodeJob(job))
   }
   async remove(jobs: readonly { readonly dispatch: number }[]): Promise<void> {
     this.#check()
