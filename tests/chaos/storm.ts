@@ -15,8 +15,9 @@ export const workers = 8
 const hosts = 5
 const record = 'records/storm'
 
-/** What ends a coordinator or a worker and is mended by starting it again: no Redis, told to leave. */
-const startAgain = new Set([69, 75])
+/** What ends a coordinator or a worker and is mended by starting it again: told to leave with nothing in hand, no Redis,
+ * told to leave in the middle. */
+const startAgain = new Set([0, 69, 75])
 
 /** Undelivered answers: three times each, in another order. */
 const shuffleAnswers = `
