@@ -188,7 +188,9 @@ export class Storm {
 
   private again(what: string, end: Ending, start: () => void): void {
     if (this.over || this.failure) return
-    const mayEnd = end.signal === 'SIGKILL' || startAgain.has(end.code ?? -1)
+    // By the signal itself: killed, or told to leave before it had come to listen.
+    const bySignal = end.signal === 'SIGKILL' || end.signal === 'SIGTERM'
+    const mayEnd = bySignal || startAgain.has(end.code ?? -1)
     if (mayEnd) setTimeout(() => !this.over && start(), 200)
     else this.failure = new Error(`a ${what} ended with ${end.code ?? end.signal}:\n${end.out}\n${end.err}`)
   }

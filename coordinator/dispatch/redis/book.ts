@@ -65,7 +65,8 @@ export class Book {
   add(items: readonly WorkItem[]): void {
     for (const item of items) {
       const name = nameOf(item)
-      check(!this.#entries.has(name), 'a try of an item is handed over once')
+      // Work that was settled without it and is taken up anew counts its tries from 1 again: what is out answers it.
+      if (this.#entries.has(name)) continue
       this.#entries.set(name, { item, job: undefined, place: 0 })
       this.#waiting.push(item)
     }

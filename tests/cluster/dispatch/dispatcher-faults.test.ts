@@ -303,4 +303,15 @@ describe('what anybody could have written', () => {
     expect(dispatcher.counters).toMatchObject({ answers: 1, late: 2 })
     expect(dispatcher.status().outstanding).toBe(0)
   })
+
+  test('(33) work that was settled by another answer and is taken up anew while a try of it is out: that try answers', async () => {
+    const worker = await oneOut()
+    submit(1)
+    await clock.pass(10)
+    expect(dispatcher.status().outstanding).toBe(1)
+    const [job] = worker.take(1)
+    worker.answer(job!)
+    expect(resultsOf(await factsWithin(500)).length).toBe(1)
+    expect(dispatcher.status().outstanding).toBe(0)
+  })
 })
