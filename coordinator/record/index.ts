@@ -17,7 +17,6 @@ export {
 } from './open.js'
 export { type Pinned, type SearchIdentity, sha256Hex } from './pinned.js'
 export type { StoredReader, Totals } from './reader.js'
-export type { DamagedAppend, Verification } from './verify.js'
 export {
   copyShared,
   isShared,
@@ -27,3 +26,4 @@ export {
   watchSharedHolder,
   workCopyOf,
 } from './shared-folder/open.js'
+export type { DamagedAppend, Verification } from './verify.js'
