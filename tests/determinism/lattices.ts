@@ -19,7 +19,7 @@ import { randomBody, randomVariation } from '../reference/lattice-bodies.js'
 
 const seed = 20_261_209
 const bodies = 2
-const samples = 24
+const samples = 28
 const stepsASample = 50
 const sampleSeconds = 0.005
 
