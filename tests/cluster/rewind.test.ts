@@ -61,7 +61,7 @@ describe('rewinding', () => {
     const truth = new World(plan, 1, calm).run(0)
     let corrected = 0
     let reused = 0
-    for (let seed = 1; seed <= 20; seed++) {
+    for (let seed = 1; seed <= 60; seed++) {
       const fleet = { ...steady, hosts: 4, threads: 1, bad: 1, wrong: 300, lie: 'slight' } as const
       const { disk, engine } = new World(plan, seed, { ...calm, fleet }).run(4_000)
       const known = new KnownResults(tools, disk)
