@@ -26,7 +26,7 @@ export interface AgentQueueOptions {
 const ownEmptyMs = 50
 
 /** Agents that come back a second: so many connections a server takes without a storm. */
-const returnsPerMs = 0.2
+const returnsPerMs = 0.16
 
 /** An agent's queue over Redis. */
 export class RedisAgentQueue implements AgentQueue {

@@ -25,6 +25,7 @@ type Word =
   | { readonly kind: 'returned'; readonly atMs: readonly number[] }
 
 const returnMs = 40_000
+const settleMs = 5_000
 
 export async function runCrowd({ agents, processes }: CrowdOptions): Promise<Crowd> {
   const server = await RedisServer.start(['--maxclients', '10000'])
@@ -90,14 +91,17 @@ export async function holdAgents({ port, agents, first }: AgentsOptions): Promis
       }),
   )
   let refusals = 0
-  for (const queue of queues) {
+  for (const [n, queue] of queues.entries()) {
     try {
       await queue.open()
-      await queue.beat(beatOf(first))
+      await queue.beat(beatOf(first + n))
     } catch {
       refusals++
     }
   }
+  // Every process is here by now: the next heartbeat tells each how large the fleet is.
+  await pause(settleMs)
+  for (const [n, queue] of queues.entries()) await queue.beat(beatOf(first + n))
   const connected = queues.filter((queue) => queue.connected).length
   process.send?.({ kind: 'connected', refusals, connected } satisfies Word)
   while (queues.some((queue) => queue.connected)) await pause(5)
