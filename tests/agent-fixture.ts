@@ -17,11 +17,11 @@ import { clusterTimes } from '../shared/cluster/times.js'
 import { resultDigest } from '../shared/digests.js'
 import { refuse } from '../shared/refusals.js'
 import type { DispatchFact, WorkItem } from '../shared/result.js'
+import { Agent, type AgentOptions } from '../worker/cluster/agent.js'
+import { PluginCache } from '../worker/cluster/plugins.js'
+import type { AgentQueue, TakenJob } from '../worker/cluster/port.js'
+import { fixedLocation } from '../worker/cluster/server.js'
 import type { Pool, PoolEvents, PoolOptions } from '../worker/pool.js'
-import { Agent, type AgentOptions } from '../worker/work/agent.js'
-import { PluginCache } from '../worker/work/plugins.js'
-import type { AgentQueue, TakenJob } from '../worker/work/port.js'
-import { fixedLocation } from '../worker/work/server.js'
 
 const code = new TextEncoder().encode('export default 0')
 const pluginDigest = createHash('sha256').update(code).digest('hex')

@@ -4,7 +4,7 @@ import { availableParallelism } from 'node:os'
 import { noMachine } from '../../shared/making/types.js'
 import { type Needs, needsOf, needsWords, placesFor } from '../../shared/needs.js'
 import { exitCodes } from '../../shared/refusals.js'
-import { memoryMB } from '../../worker/work/machine.js'
+import { memoryMB } from '../../worker/cluster/machine.js'
 import type { IslandPlan } from '../evolution/plan.js'
 import {
   type DriftExpectation,

@@ -10,9 +10,9 @@ import type { Dispatcher, DispatchStatus } from '../../coordinator/engine/ports.
 import { clusterTimes } from '../../shared/cluster/times.js'
 import { hex, sha256 } from '../../shared/digests.js'
 import type { DispatchFact, WorkItem } from '../../shared/result.js'
+import { Agent, fixedLocation, PluginCache } from '../../worker/cluster/index.js'
 import { createPool, type Pool } from '../../worker/pool.js'
 import { parseAddress, RedisAgentQueue, RedisCoordinatorQueue } from '../../worker/redis/index.js'
-import { Agent, fixedLocation, PluginCache } from '../../worker/work/index.js'
 import { pause, RedisServer } from '../tools/redis-server.js'
 import type { DispatcherSetting, MakeDispatcher } from './dispatcher.js'
 

@@ -30,16 +30,8 @@ function trackedFiles(): string[] {
 function complaints(path: string, text: string): string[] {
   const lines = text.split('\n')
   return lines.flatMap((line, index) =>
-    forbidden.filter((word) => holds(line, word)).map((word) => `${path}:${index + 1} holds ${word}`),
+    forbidden.filter((word) => line.includes(word)).map((word) => `${path}:${index + 1} holds ${word}`),
   )
-}
-
-/** A path of the machine begins with its slash; folders of ours may have the same names (`./x/`, `a/x/`). */
-function holds(line: string, word: string): boolean {
-  const isPath = word.startsWith('/')
-  for (let at = line.indexOf(word); at >= 0; at = line.indexOf(word, at + 1))
-    if (!isPath || at === 0 || !/[\w.]/.test(line[at - 1]!)) return true
-  return false
 }
 
 test('no file holds a path of the machine it was written on, or the host of a package registry', () => {
@@ -52,13 +44,4 @@ test('no file holds a path of the machine it was written on, or the host of a pa
 test('each forbidden word is caught with its place', () => {
   for (const word of forbidden)
     expect(complaints('a.md', `first\nsee ${word}x`)).toEqual([`a.md:2 holds ${word}`])
-})
-
-test('a path is caught wherever it begins, and a folder of ours of the same name is none', () => {
-  for (const word of forbidden.filter((one) => one.startsWith('/'))) {
-    for (const line of [`${word}x`, `'${word}x'`, `=${word}`, `file://${word}`, `a.${word}, then ${word}`])
-      expect(complaints('a.md', line), line).toHaveLength(1)
-    for (const line of [`import '..${word}x'`, `a${word}b`])
-      expect(complaints('a.md', line), line).toEqual([])
-  }
 })

@@ -6,13 +6,6 @@ import { defaultPrefix, keyName } from '../../../shared/cluster/keys.js'
 import { clusterTimes } from '../../../shared/cluster/times.js'
 import { limits } from '../../../shared/limits.js'
 import { exitCodes, plainText, refuse } from '../../../shared/refusals.js'
-import { createPool } from '../../../worker/pool.js'
-import {
-  addressVariable,
-  certificateVariable,
-  parseAddress,
-  RedisAgentQueue,
-} from '../../../worker/redis/index.js'
 import {
   Agent,
   type AgentOptions,
@@ -27,7 +20,14 @@ import {
   recordLocation,
   secondsLeft,
   serveMetrics,
-} from '../../../worker/work/index.js'
+} from '../../../worker/cluster/index.js'
+import { createPool } from '../../../worker/pool.js'
+import {
+  addressVariable,
+  certificateVariable,
+  parseAddress,
+  RedisAgentQueue,
+} from '../../../worker/redis/index.js'
 import type { CommandInput, Output } from '../command.js'
 import { version } from './version.js'
 
