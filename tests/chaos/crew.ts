@@ -1,15 +1,14 @@
 // The cluster's dispatcher in the test's own process, a real Redis, and real `skerry work` processes: the test sees
 // every fact and when it came.
 
-import { createHash, randomBytes } from 'node:crypto'
 import { availableParallelism, loadavg } from 'node:os'
 import { join } from 'node:path'
-import { RedisDispatcher } from '../../coordinator/dispatch/redis/dispatcher.js'
+import type { RedisDispatcher } from '../../coordinator/dispatch/redis/dispatcher.js'
 import { type ClusterTimes, clusterTimes } from '../../shared/cluster/times.js'
 import { genomeBytes } from '../../shared/encodings.js'
 import type { DispatchFact, WorkItem } from '../../shared/result.js'
 import { bundlePlugin } from '../../worker/plugin/bundle.js'
-import { parseAddress, RedisCoordinatorQueue } from '../../worker/redis/index.js'
+import { dispatcherOver } from '../tools/dispatcher-over.js'
 import { pause, RedisServer } from '../tools/redis-server.js'
 import { Bench, type Life } from './programs.js'
 
@@ -123,40 +122,9 @@ export class Crew {
 }
 
 function dispatcherOn(url: string, plugin: Uint8Array, times: ClusterTimes): RedisDispatcher {
-  return new RedisDispatcher({
-    queue: new RedisCoordinatorQueue({
-      address: parseAddress(url),
-      prefix: 'skerry',
-      search,
-      times,
-      unprotected: false,
-    }),
-    plugin,
-    shape: { columns: 1, cases: 1 },
-    times,
-    clock: {
-      nowMs: () => performance.now(),
-      after: (ms, call) => {
-        const timer = setTimeout(call, ms)
-        return () => clearTimeout(timer)
-      },
-    },
-    nonce: randomBytes(8).toString('hex'),
-    search: {
-      search,
-      record: 'record-1',
-      holder: 1,
-      pluginDigest: createHash('sha256').update(plugin).digest('hex'),
-      pluginBytes: plugin.length,
-      seed: 1,
-      sharedConditions: true,
-      exactness: 'bits',
-      needs: { cores: 1, memoryMB: 256, tokens: {} },
-      tokens: {},
-      share: 1,
-      skerry: '0.0.0',
-    },
-  })
+  const shape = { columns: 1, cases: 1 }
+  const made = { search, record: 'record-1', plugin, shape, seed: 1, sharedConditions: true, memoryMB: 256 }
+  return dispatcherOver(url, times, made)
 }
 
 /** Resolves when it holds. */

@@ -1,18 +1,17 @@
 // The dispatcher over Redis as the contract suite asks for it: a real redis-server, the real agent beside the
 // coordinator in this process, its threads and processes the usual ones.
 
-import { randomBytes } from 'node:crypto'
 import { mkdtempSync, readFileSync, rmSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
-import { RedisDispatcher } from '../../coordinator/dispatch/redis/dispatcher.js'
+import type { RedisDispatcher } from '../../coordinator/dispatch/redis/dispatcher.js'
 import type { Dispatcher, DispatchStatus } from '../../coordinator/engine/ports.js'
 import { clusterTimes } from '../../shared/cluster/times.js'
-import { hex, sha256 } from '../../shared/digests.js'
 import type { DispatchFact, WorkItem } from '../../shared/result.js'
 import { Agent, fixedLocation, PluginCache } from '../../worker/cluster/index.js'
 import { createPool, type Pool } from '../../worker/pool.js'
-import { parseAddress, RedisAgentQueue, RedisCoordinatorQueue } from '../../worker/redis/index.js'
+import { parseAddress, RedisAgentQueue } from '../../worker/redis/index.js'
+import { dispatcherOver } from '../tools/dispatcher-over.js'
 import { pause, RedisServer } from '../tools/redis-server.js'
 import type { DispatcherSetting, MakeDispatcher } from './dispatcher.js'
 
@@ -77,40 +76,17 @@ class ClusterOfOne implements Dispatcher {
 }
 
 function coordinatorOn({ url }: RedisServer, setting: DispatcherSetting): RedisDispatcher {
+  const { seed, sharedConditions, megabytes: memoryMB } = setting
   const plugin = readFileSync(setting.pluginFile)
-  return new RedisDispatcher({
-    queue: new RedisCoordinatorQueue({
-      address: parseAddress(url),
-      prefix: 'skerry',
-      search,
-      times,
-      unprotected: false,
-    }),
+  const shape = { columns: 3, cases: 2 }
+  return dispatcherOver(url, times, {
+    search,
+    record: 'contract',
     plugin,
-    shape: { columns: 3, cases: 2 },
-    times,
-    clock: {
-      nowMs: () => performance.now(),
-      after: (ms, call) => {
-        const timer = setTimeout(call, ms)
-        return () => clearTimeout(timer)
-      },
-    },
-    nonce: randomBytes(8).toString('hex'),
-    search: {
-      search,
-      record: 'contract',
-      holder: 1,
-      pluginDigest: hex(sha256(plugin)),
-      pluginBytes: plugin.length,
-      seed: setting.seed,
-      sharedConditions: setting.sharedConditions,
-      exactness: 'bits',
-      needs: { cores: 1, memoryMB: setting.megabytes, tokens: {} },
-      tokens: {},
-      share: 1,
-      skerry: '0',
-    },
+    shape,
+    seed,
+    sharedConditions,
+    memoryMB,
   })
 }
 

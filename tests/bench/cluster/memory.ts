@@ -1,9 +1,7 @@
 // What Redis holds while 10,000 evaluations with genomes of 4 kB are out and nobody takes them.
 
-import { RedisDispatcher } from '../../../coordinator/dispatch/redis/dispatcher.js'
-import { needsSchema } from '../../../shared/cluster/messages.js'
 import { clusterTimes } from '../../../shared/cluster/times.js'
-import { parseAddress, RedisCoordinatorQueue } from '../../../worker/redis/index.js'
+import { dispatcherOver } from '../../tools/dispatcher-over.js'
 import { pause, RedisServer } from '../../tools/redis-server.js'
 import { itemOf } from './payload.js'
 
@@ -17,43 +15,11 @@ export async function measureMemory(options: {
   readonly genomeBytes: number
 }): Promise<RedisMemory> {
   const server = await RedisServer.start()
-  const times = clusterTimes()
   const search = 'memory'
-  const dispatcher = new RedisDispatcher({
-    queue: new RedisCoordinatorQueue({
-      address: parseAddress(server.url),
-      prefix: 'skerry',
-      search,
-      times,
-      unprotected: false,
-    }),
-    plugin: new Uint8Array(400_000),
-    shape: { columns: 1, cases: 1 },
-    times,
-    clock: {
-      nowMs: () => performance.now(),
-      after: (ms, call) => {
-        const timer = setTimeout(call, ms)
-        return () => clearTimeout(timer)
-      },
-    },
-    nonce: '00',
-    tell: () => {},
-    search: {
-      search,
-      record: 'bench',
-      holder: 1,
-      pluginDigest: '0'.repeat(64),
-      pluginBytes: 400_000,
-      seed: 1,
-      sharedConditions: true,
-      exactness: 'bits',
-      needs: needsSchema.parse({}),
-      tokens: {},
-      share: 1,
-      skerry: '0',
-    },
-  })
+  const plugin = new Uint8Array(400_000)
+  const shape = { columns: 1, cases: 1 }
+  const made = { search, record: 'bench', plugin, shape, seed: 1, sharedConditions: true, memoryMB: 1024 }
+  const dispatcher = dispatcherOver(server.url, clusterTimes(), made)
   try {
     await dispatcher.start()
     const { evaluations, genomeBytes } = options
